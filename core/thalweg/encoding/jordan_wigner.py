@@ -1,0 +1,14 @@
+"""The Jordan-Wigner encoding of fermionic modes on qubits."""
+
+from __future__ import annotations
+
+from typing import ClassVar, Literal
+
+from thalweg.encoding.settings import EncodingSettings
+
+
+class JordanWigner(EncodingSettings):
+    title: ClassVar[str] = "Jordan-Wigner"
+    about: ClassVar[str] = "Each qubit holds one occupation; strings grow with the distance of orbitals (Jordan and Wigner 1928)."
+
+    key: Literal["jordan-wigner"] = "jordan-wigner"

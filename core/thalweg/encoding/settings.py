@@ -1,0 +1,12 @@
+"""Settings that every linear encoding shares."""
+
+from __future__ import annotations
+
+from thalweg.options import Options, option
+
+
+class EncodingSettings(Options):
+    """Base of the encodings; each one adds `matrix(n)`: the GF(2) matrix A of b = A n."""
+
+    taper: bool = option(True, "Taper Z2 symmetries", "Remove one qubit for each Z2 symmetry, in the sector of the reference state.")
+    cut: float = option(1e-10, "Cut", "Pauli terms with a smaller coefficient are dropped.", unit="Eh", ge=0, advanced=True)

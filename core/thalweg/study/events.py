@@ -1,0 +1,78 @@
+"""The one stream of events that the window, the terminal and the tests consume. Every event is JSON."""
+
+from __future__ import annotations
+
+from typing import Annotated, Literal
+
+from pydantic import BaseModel, ConfigDict, Field, TypeAdapter
+
+from thalweg.study.result import StudyResult
+
+
+class Event(BaseModel):
+    model_config = ConfigDict(frozen=True)
+
+
+class Started(Event):
+    """A run begins. Sent once the figures are known, before the first evaluation of each start."""
+
+    kind: Literal["started"] = "started"
+    label: str
+    energy_unit: str
+    reference_name: str
+    reference_energy: float
+    exact_energy: float | None
+    target_error: float
+    n_parameters: int
+    n_starts: int
+
+
+class Stage(Event):
+    """What is being computed now; fraction done of the whole stage where it can be known."""
+
+    kind: Literal["stage"] = "stage"
+    text: str
+    fraction: float | None = None
+
+
+class Iteration(Event):
+    """One iterate of one start."""
+
+    kind: Literal["iteration"] = "iteration"
+    start: int  # 0-based
+    iteration: int
+    evaluations: int
+    energy: float
+    gradient_norm: float | None
+    seconds: float
+
+
+class Warned(Event):
+    kind: Literal["warned"] = "warned"
+    text: str
+
+
+class Finished(Event):
+    kind: Literal["finished"] = "finished"
+    result: StudyResult
+
+
+class Failed(Event):
+    """`what`, `why`, `fix` of a StudyError; for a defect `details` holds the traceback."""
+
+    kind: Literal["failed"] = "failed"
+    what: str
+    why: str = ""
+    fix: str = ""
+    field: str = ""
+    details: str = ""
+
+
+class StoppedEarly(Event):
+    """The person stopped before there was any best point to keep."""
+
+    kind: Literal["stopped"] = "stopped"
+
+
+AnyEvent = Annotated[Started | Stage | Iteration | Warned | Finished | Failed | StoppedEarly, Field(discriminator="kind")]
+EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)

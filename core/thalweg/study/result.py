@@ -1,0 +1,124 @@
+"""The result of one run: every number, and everything needed to judge and repeat it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from pydantic import BaseModel, ConfigDict
+
+from thalweg.study.spec import StudySpec
+
+#: Why a minimisation ended -> the sentence shown.
+STOP_REASONS: dict[str, str] = {
+    "gradient": "the largest gradient component fell below the limit",
+    "energy-change": "the energy no longer fell",
+    "converged": "the optimiser's own convergence test was met",
+    "target": "the target accuracy was reached",
+    "iterations": "the iteration limit was reached",
+    "evaluations": "the evaluation limit was reached",
+    "seconds": "the time limit was reached",
+    "line-search": "the line search found no lower point",
+    "stopped-by-person": "stopped by hand; the best point so far is kept",
+    "no-parameters": "the trial state has no parameters",
+    "not-finite": "the energy became infinite or not a number",
+}
+#: Reasons that count as an end of the search, as against an interruption.
+CONVERGED = frozenset({"gradient", "energy-change", "converged", "target", "no-parameters"})
+
+
+class Record(BaseModel):
+    model_config = ConfigDict(frozen=True)
+
+
+class Trace(Record):
+    """The iterates of one start, columns of equal length. gradient_norm may hold None."""
+
+    iteration: tuple[int, ...] = ()
+    evaluations: tuple[int, ...] = ()
+    energy: tuple[float, ...] = ()
+    gradient_norm: tuple[float | None, ...] = ()
+    seconds: tuple[float, ...] = ()
+
+
+class StartRecord(Record):
+    """One start of the minimisation."""
+
+    seed: int
+    energy: float
+    stop_reason: str
+    evaluations: int
+    iterations: int
+    gradient_norm: float | None
+    seconds: float
+    trace: Trace
+
+
+class LeadingWeight(Record):
+    label: str
+    weight: float
+    exact_weight: float | None
+
+
+class StudyResult(Record):
+    """All energies in `energy_unit`, core energy included. None: the figure does not exist for this study."""
+
+    label: str
+    energy_unit: str
+    energy: float
+    exact_energy: float | None
+    reference_name: str
+    reference_energy: float
+    error: float | None
+    target_error: float
+    reached_target: bool
+    verdict: str
+    verdict_kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | no-exact
+    remarks: tuple[str, ...] = ()
+    classical: dict[str, float | None] = {}
+
+    qubits: int
+    qubits_before_tapering: int
+    terms: int
+    one_norm: float
+    largest_weight: int
+    parameters: int
+    two_qubit_gates: int | None = None
+    sector_dimension: int | None = None
+
+    evaluations: int
+    iterations: int
+    seconds: float
+    preparation_seconds: float
+    stop_reason: str
+    gradient_norm: float | None
+    starts: tuple[StartRecord, ...] = ()
+    best_start: int = 0
+
+    n_electrons: float | None = None
+    s_z: float | None = None
+    s_squared: float | None = None
+    variance: float | None = None
+    fidelity: float | None = None
+    exact_degeneracy: int | None = None
+    exact_gap: float | None = None
+    exact_s_squared: float | None = None
+    exact_method: str = ""
+    leading: tuple[LeadingWeight, ...] = ()
+    natural_occupations: tuple[float, ...] = ()
+
+    final_parameters: tuple[float, ...] = ()
+    start_parameters: tuple[float, ...] = ()
+    parameter_labels: tuple[str, ...] = ()
+    operator_order: str = ""
+    pauli_terms: tuple[tuple[str, float], ...] = ()  # the heaviest, for the Hamiltonian picture
+
+    system_facts: dict[str, Any] = {}
+    seed: int
+    versions: dict[str, str]
+    constants: dict[str, float | str]
+    spec: StudySpec
+
+    @property
+    def trace(self) -> Trace:
+        """The iterates of the start that gave the answer."""
+        return self.starts[self.best_start].trace if self.starts else Trace()

@@ -1,0 +1,110 @@
+"""The study as data: everything a person chooses, and nothing that is computed.
+
+Scalars, strings and tuples only, so that two specs can be compared and hashed, and a session holds them as they are.
+"""
+
+from __future__ import annotations
+
+import json
+from typing import Annotated, Any, Literal
+
+from pydantic import Field, ValidationError
+
+from thalweg.ansatz import ANSATZE, UCCSD, HardwareEfficient
+from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
+from thalweg.errors import StudyError
+from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDescent, Momentum, NelderMead
+from thalweg.optimize.objective import StopRules
+from thalweg.options import Options, option
+from thalweg.registry import Alternatives
+from thalweg.systems import SYSTEMS, Integrals, Molecule
+from thalweg.units import CHEMICAL_ACCURACY
+
+AnySystem = Annotated[Molecule | Integrals, Field(discriminator="key")]
+AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
+AnyAnsatz = Annotated[UCCSD | HardwareEfficient, Field(discriminator="key")]
+AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
+
+ClassicalMethod = Literal["mp2", "ccsd", "ccsd(t)"]
+
+
+class Target(Options):
+    """What counts as accurate enough."""
+
+    error: float = option(
+        CHEMICAL_ACCURACY, "Target error", "Largest error against exact that counts as reached; the default is 1 kcal/mol.", unit="Eh", gt=0
+    )
+
+
+class StudySpec(Options):
+    """One study. The union members are told apart by their `key`."""
+
+    system: AnySystem
+    encoding: AnyEncoding = JordanWigner()
+    ansatz: AnyAnsatz = UCCSD()
+    optimizer: AnyOptimizer = LBFGSB()
+    stop: StopRules = StopRules()
+    target: Target = Target()
+    classical: tuple[ClassicalMethod, ...] = option((), "Classical methods", "Reference figures to compute beside the exact one.")
+    exact: bool = option(True, "Exact energy", "Diagonalise the Hamiltonian in its sector beside the minimisation.")
+    starts: int = option(1, "Starts", "Number of independent starts; the lowest counts.", ge=1, le=1000)
+    seed: int = option(1, "Seed", "Seed of every random choice.", ge=0, le=2**31 - 1)
+    memory_gib: float = option(4.0, "Memory budget", "Refuse work that would need more memory than this.", unit="GiB", gt=0, advanced=True)
+
+
+#: Section of the spec -> its alternatives, for forms, the terminal and contract tests.
+SECTIONS: dict[str, Alternatives[Any]] = {"system": SYSTEMS, "encoding": ENCODINGS, "ansatz": ANSATZE, "optimizer": OPTIMIZERS}
+
+
+def with_setting(spec: StudySpec, path: str, value: Any) -> StudySpec:
+    """A copy with one field changed. `path` is dotted, e.g. `optimizer.max_iterations`; strings are read as JSON where they parse.
+
+    Setting a section to a key (`ansatz` = `hardware-efficient`) switches the alternative and takes its defaults.
+    """
+    data = spec.model_dump()
+    if isinstance(value, str):
+        value = _read(value)
+    *parents, last = path.split(".")
+    node: Any = data
+    for name in parents:
+        if not isinstance(node, dict) or name not in node:
+            raise StudyError(f"Unknown setting '{path}'", f"there is no '{name}'", f"Use one of: {_names(node)}", path)
+        node = node[name]
+    if not isinstance(node, dict) or (last not in node and not parents):
+        raise StudyError(f"Unknown setting '{path}'", "no such field", f"Use one of: {_names(node)}", path)
+    if not parents and last in SECTIONS and isinstance(value, str):
+        value = {"key": SECTIONS[last].get(value).model_fields["key"].default} if value != data[last]["key"] else data[last]
+    node[last] = value
+    return spec_from_data(data)
+
+
+def spec_from_data(data: dict[str, Any]) -> StudySpec:
+    """Validates plain data; StudyError naming the first field at fault."""
+    try:
+        return StudySpec.model_validate(data)
+    except ValidationError as error:
+        raise study_error(error) from None
+
+
+def study_error(error: ValidationError) -> StudyError:
+    """The first validation message as what, why, how to mend."""
+    first = error.errors()[0]
+    keys = {key for section in SECTIONS.values() for key in section.keys()}  # noqa: SIM118 - a registry, not a dict
+    field = ".".join(str(part) for part in first["loc"] if str(part) not in keys)
+    cause = first.get("ctx", {}).get("error")
+    if isinstance(cause, StudyError):
+        return StudyError(cause.what, cause.why, cause.fix, field)
+    given = repr(first.get("input"))
+    why = first["msg"][:1].lower() + first["msg"][1:]
+    return StudyError(f"Setting '{field}' cannot be {given[:60]}", why, "Give a value that fits", field)
+
+
+def _read(text: str) -> Any:
+    try:
+        return json.loads(text)
+    except ValueError:
+        return {"true": True, "yes": True, "on": True, "false": False, "no": False, "off": False}.get(text.lower(), text)
+
+
+def _names(node: Any) -> str:
+    return ", ".join(node) if isinstance(node, dict) else "a field of the study"

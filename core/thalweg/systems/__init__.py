@@ -1,0 +1,10 @@
+"""What is studied. Each kind of system is one options class with `prepare(budget_bytes, neighbour) -> PreparedSystem`."""
+
+from thalweg.registry import Alternatives
+from thalweg.systems.integrals import Integrals
+from thalweg.systems.molecule import Molecule
+from thalweg.systems.prepared import PreparedSystem
+
+SYSTEMS: Alternatives[Molecule | Integrals] = Alternatives("system", [Molecule, Integrals])
+
+__all__ = ["SYSTEMS", "Integrals", "Molecule", "PreparedSystem"]

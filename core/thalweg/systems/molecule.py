@@ -1,0 +1,27 @@
+"""A molecule: geometry, basis, charge, multiplicity and active space; prepared by a PySCF mean field."""
+
+from __future__ import annotations
+
+from typing import ClassVar, Literal
+
+from thalweg.options import Options, option
+
+
+class Molecule(Options):
+    """Settings of a molecular system. Atoms are (symbol, x, y, z) in `unit`."""
+
+    title: ClassVar[str] = "Molecule"
+    about: ClassVar[str] = "A geometry with a Gaussian basis set; mean field and integrals are computed."
+
+    key: Literal["molecule"] = "molecule"
+    name: str = option("", "Name", "What the system is called in tables and pictures.")
+    atoms: tuple[tuple[str, float, float, float], ...] = option((), "Atoms", "Element and Cartesian coordinates of each atom.")
+    unit: Literal["angstrom", "bohr"] = option("angstrom", "Unit", "Unit of the coordinates.")
+    basis: str = option("sto-3g", "Basis set", "Name of the Gaussian basis set, as the literature writes it.")
+    charge: int = option(0, "Charge", "Total charge, in elementary charges.", unit="e", ge=-20, le=20)
+    multiplicity: int = option(1, "Multiplicity", "2S + 1: 1 singlet, 2 doublet, 3 triplet.", ge=1, le=20)
+    active_space: str = option(
+        "all", "Active space", "`all`, `frozen-core`, electrons and orbitals such as `4e,6o`, or a list of orbitals counted from 1 such as `2,3,5-8`."
+    )
+    cartesian: bool = option(False, "Cartesian functions", "Cartesian instead of spherical d and f functions.", advanced=True)
+    point_group: bool = option(True, "Point group", "Use the (Abelian) point group of the geometry.", advanced=True)
