@@ -35,6 +35,8 @@ class PreparedSystem:
         warnings: sentences to stand beside every number.
         ladder: orbital rungs, empty where there is no mean field.
         mean_field: the PySCF object for classical reference methods; never serialised.
+        reference_bits: basis state that a spin model's circuit starts from, bit q = 1 is spin down (Z = -1) on qubit q.
+        reference_kind: what is prepared from those bits: `bits`, `plus` (every qubit in |+>), `singlets` (dimer singlets); empty for fermions.
     """
 
     label: str
@@ -47,3 +49,5 @@ class PreparedSystem:
     warnings: tuple[str, ...] = ()
     ladder: tuple[OrbitalRow, ...] = ()
     mean_field: Any = None
+    reference_bits: int = 0
+    reference_kind: str = ""
