@@ -74,19 +74,32 @@ class CountedObjective:
         self.best_energy, self.best_parameters = np.inf, np.zeros(n_parameters)
         self.best_gradient_norm: float | None = None
         self._last: tuple[FloatArray, float, float | None] = (np.empty(0), np.inf, None)  # parameters, energy, gradient norm of the latest evaluation
+        self._gradient: FloatArray | None = None  # at the parameters of _last, where it was worked out
         self._reported, self._small_changes = np.inf, 0
 
+    def begin(self, start: FloatArray) -> None:
+        """Evaluates and reports the start as iterate 0, so that a stationary start is seen at once."""
+        self.value_and_gradient(start)
+        _, energy, norm = self._last
+        self._report(Progress(0, self.evaluations, energy, norm, self.seconds))
+        self._test_rules(energy, norm)
+
     def value(self, parameters: FloatArray) -> float:
+        if np.array_equal(self._last[0], parameters):
+            return self._last[1] - self.offset
         self._before()
         energy = self._energy(parameters)
         self._after(parameters, energy, None)
         return energy - self.offset
 
     def value_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
+        if self._gradient is not None and np.array_equal(self._last[0], parameters):
+            return self._last[1] - self.offset, self._gradient.copy()  # optimisers ask again for their own start
         self._before()
         energy, gradient = self._energy_and_gradient(parameters)
         self.gradient_evaluations += 1
         self._after(parameters, energy, float(np.abs(gradient).max(initial=0.0)))
+        self._gradient = gradient.copy()
         return energy - self.offset, gradient
 
     def iterate(self, parameters: FloatArray) -> None:
@@ -114,7 +127,7 @@ class CountedObjective:
         self.evaluations += 1
         if not np.isfinite(energy):
             raise Stopped("not-finite")
-        self._last = (parameters.copy(), energy, norm)
+        self._last, self._gradient = (parameters.copy(), energy, norm), None
         if energy < self.best_energy:
             self.best_energy, self.best_parameters, self.best_gradient_norm = energy, parameters.copy(), norm
 

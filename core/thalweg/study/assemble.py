@@ -1,0 +1,174 @@
+"""Puts the result together: facts of the best state, classical figures, verdict, settings and versions."""
+
+from __future__ import annotations
+
+import platform
+from importlib import metadata
+from typing import Any
+
+import numpy as np
+
+from thalweg import __version__
+from thalweg.arrays import FloatArray
+from thalweg.circuit.program import GateProgram
+from thalweg.exact.answer import ExactAnswer
+from thalweg.simulate.engine import Engine, StateFacts
+from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
+from thalweg.study.outcome import Outcome
+from thalweg.study.problem import Problem
+from thalweg.study.result import LeadingWeight, StudyResult
+from thalweg.study.verdict import Evidence, judge
+from thalweg.units import constants_record
+
+#: A ground space with less weight than this in the tapered sector cannot be reached from the reference.
+LOST_WEIGHT = 1e-6
+
+
+def assemble(problem: Problem, exact: ExactAnswer | None, engine: Engine, outcome: Outcome) -> StudyResult:
+    """The result of a finished or stopped minimisation."""
+    best = outcome.starts[outcome.best]
+    parameters = outcome.best_parameters[outcome.best]
+    energy, gradient = engine.energy_and_gradient(parameters)
+    norm = float(np.abs(gradient).max(initial=0.0))
+    vectors, remarks = exact_vectors(problem, exact)
+    facts = engine.facts(parameters, vectors)
+    classical, classical_remarks = _classical(problem)
+    two_qubit = program_gates(problem).two_qubit
+    evidence = _evidence(problem, exact, outcome, energy, norm, facts, two_qubit)
+    verdict = judge(evidence)
+    remarks += classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome)
+    prepared, encoded, program = problem.prepared, problem.encoded, problem.program
+    sector = prepared.fermions.sector if prepared.fermions is not None else None
+    return StudyResult(
+        label=prepared.label,
+        energy_unit=prepared.energy_unit,
+        energy=energy,
+        exact_energy=None if exact is None else exact.energy,
+        reference_name=prepared.reference_name,
+        reference_energy=prepared.reference_energy,
+        error=evidence.error,
+        target_error=evidence.target,
+        reached_target=verdict.reached,
+        verdict=verdict.sentence,
+        verdict_kind=verdict.kind,
+        remarks=remarks,
+        classical=classical,
+        qubits=encoded.working.n_qubits,
+        qubits_before_tapering=encoded.full.n_qubits,
+        terms=len(encoded.working),
+        one_norm=encoded.working.one_norm,
+        largest_weight=encoded.working.largest_weight,
+        parameters=program.n_parameters,
+        two_qubit_gates=two_qubit,
+        sector_dimension=sector.dimension if sector else None,
+        evaluations=sum(s.evaluations for s in outcome.starts),
+        iterations=sum(s.iterations for s in outcome.starts),
+        seconds=sum(s.seconds for s in outcome.starts),
+        preparation_seconds=problem.seconds,
+        stop_reason=best.stop_reason,
+        gradient_norm=norm,
+        starts=tuple(outcome.starts),
+        best_start=outcome.best,
+        final_parameters=_plain(parameters),
+        start_parameters=_plain(outcome.start_parameters[outcome.best]),
+        parameter_labels=program.labels(),
+        operator_order=program.order,
+        pauli_terms=heaviest_terms(encoded.working),
+        system_facts=prepared.facts,
+        seed=problem.spec.seed,
+        versions=versions(),
+        constants=constants_record(),
+        spec=problem.spec,
+        **_exact_fields(exact),
+        **_state_fields(facts),
+    )
+
+
+def exact_vectors(problem: Problem, exact: ExactAnswer | None) -> tuple[Any, tuple[str, ...]]:
+    """The ground space in the engine's representation, and a remark where the working register does not hold it."""
+    if exact is None or exact.vectors is None:
+        return None, ()
+    if not isinstance(problem.program, GateProgram) or problem.prepared.fermions is None:
+        return exact.vectors, ()
+    vectors = problem.encoded.from_sector(exact.vectors)
+    lost = 1.0 - float(np.min(np.sum(np.abs(vectors) ** 2, axis=-1)))
+    if lost < LOST_WEIGHT:
+        return vectors, ()
+    remark = (
+        "The exact ground state lies in another symmetry sector than the reference, outside the tapered register; switch tapering off to reach it."
+    )
+    return vectors, (remark,)
+
+
+def versions() -> dict[str, str]:
+    """Program, Python and the libraries that numbers depend on."""
+    found = {"thalweg": __version__, "python": platform.python_version()}
+    for name in ("numpy", "scipy", "numba", "pyscf", "openfermion"):
+        try:
+            found[name] = metadata.version(name)
+        except metadata.PackageNotFoundError:
+            found[name] = "not installed"
+    return found
+
+
+def _evidence(
+    problem: Problem, exact: ExactAnswer | None, outcome: Outcome, energy: float, norm: float, facts: StateFacts, two_qubit: int | None
+) -> Evidence:
+    prepared, best = problem.prepared, outcome.best
+    sector = prepared.fermions.sector if prepared.fermions is not None else None
+    exact_energy = None if exact is None else exact.energy
+    return Evidence(
+        unit=prepared.energy_unit,
+        error=None if exact_energy is None else energy - exact_energy,
+        target=problem.spec.target.error,
+        reference_error=None if exact_energy is None else prepared.reference_energy - exact_energy,
+        stop_reason=outcome.starts[best].stop_reason,
+        gradient_norm=norm,
+        start_gradient_norm=outcome.start_gradient_norms[best],
+        lowered=outcome.start_energies[best] - energy,
+        parameters=problem.program.n_parameters,
+        two_qubit_gates=two_qubit,
+        n_electrons=facts.n_electrons,
+        expected_electrons=sector.n_electrons if sector else None,
+        s_z=facts.s_z,
+        expected_s_z=sector.s_z if sector else None,
+        s_squared=facts.s_squared,
+        exact_s_squared=None if exact is None else exact.s_squared,
+    )
+
+
+def _classical(problem: Problem) -> tuple[dict[str, float | None], tuple[str, ...]]:
+    if not problem.spec.classical or problem.prepared.fermions is None:
+        return {}, ()
+    from thalweg.exact.classical import classical_energies
+
+    return classical_energies(problem.prepared.fermions, problem.spec.classical)
+
+
+def _spread_remark(outcome: Outcome) -> tuple[str, ...]:
+    energies = [s.energy for s in outcome.starts]
+    if len(energies) < 2:
+        return ()
+    return (f"{len(energies)} starts end between {min(energies):.9f} and {max(energies):.9f}; the lowest counts.",)
+
+
+def _exact_fields(exact: ExactAnswer | None) -> dict[str, Any]:
+    if exact is None:
+        return {}
+    return {"exact_degeneracy": exact.degeneracy, "exact_gap": exact.gap, "exact_s_squared": exact.s_squared, "exact_method": exact.method}
+
+
+def _state_fields(facts: StateFacts) -> dict[str, Any]:
+    return {
+        "n_electrons": facts.n_electrons,
+        "s_z": facts.s_z,
+        "s_squared": facts.s_squared,
+        "variance": facts.variance,
+        "fidelity": facts.fidelity,
+        "leading": tuple(LeadingWeight(**vars(state)) for state in facts.leading),
+        "natural_occupations": facts.natural_occupations,
+    }
+
+
+def _plain(values: FloatArray) -> tuple[float, ...]:
+    return tuple(float(v) for v in values)

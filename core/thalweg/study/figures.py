@@ -1,0 +1,122 @@
+"""The derived figures of a study, without minimising: what the set-up column and `inspect` show."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from thalweg.circuit.compile import excitation_gates
+from thalweg.circuit.program import ExcitationProgram, GateProgram
+from thalweg.cost.gates import GateCounts, gate_counts
+from thalweg.encoding.encoded import EncodedSystem
+from thalweg.operators.pauli import PauliExpansion, pauli_label
+from thalweg.study.problem import Problem, make_engine, prepare
+from thalweg.study.result import Record
+from thalweg.study.spec import StudySpec
+from thalweg.watch import SILENT, Watch
+
+#: How many Pauli terms a result lists; the session keeps the settings that give all of them.
+MAX_LISTED_TERMS = 200
+
+
+class Rung(Record):
+    """One orbital of the ladder."""
+
+    number: int
+    energy: float
+    occupation: float
+    irrep: str
+    active: bool
+    frozen: bool
+
+
+class StudyFigures(Record):
+    """Figures of a study before it is run. None where a figure has no meaning for the system."""
+
+    label: str
+    energy_unit: str
+    reference_name: str
+    reference_energy: float
+    n_electrons: int | None
+    n_orbitals: int | None
+    sector: str
+    sector_dimension: int | None
+    qubits: int
+    qubits_before_tapering: int
+    terms: int
+    terms_before_tapering: int
+    one_norm: float
+    largest_weight: int
+    symmetries: tuple[str, ...]
+    parameters: int
+    factors: int
+    two_qubit_gates: int | None
+    depth: int | None
+    memory_bytes: int
+    operator_order: str
+    facts: dict[str, Any]
+    warnings: tuple[str, ...]
+    ladder: tuple[Rung, ...]
+    pauli_terms: tuple[tuple[str, float], ...]
+
+
+def inspect(spec: StudySpec, watch: Watch = SILENT) -> StudyFigures:
+    """Works out every figure that needs no minimisation and no diagonalisation."""
+    return figures_of(prepare(spec, watch), watch)
+
+
+def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
+    prepared, encoded, program = problem.prepared, problem.encoded, problem.program
+    sector = prepared.fermions.sector if prepared.fermions is not None else None
+    watch.stage("Counting gates")
+    gates = program_gates(problem)
+    return StudyFigures(
+        label=prepared.label,
+        energy_unit=prepared.energy_unit,
+        reference_name=prepared.reference_name,
+        reference_energy=prepared.reference_energy,
+        n_electrons=sector.n_electrons if sector else None,
+        n_orbitals=sector.n_orbitals if sector else None,
+        sector=str(sector) if sector else "",
+        sector_dimension=sector.dimension if sector else None,
+        qubits=encoded.working.n_qubits,
+        qubits_before_tapering=encoded.full.n_qubits,
+        terms=len(encoded.working),
+        terms_before_tapering=len(encoded.full),
+        one_norm=encoded.working.one_norm,
+        largest_weight=encoded.working.largest_weight,
+        symmetries=symmetry_texts(encoded),
+        parameters=program.n_parameters,
+        factors=len(program.parameter),
+        two_qubit_gates=gates.two_qubit,
+        depth=gates.depth,
+        memory_bytes=make_engine(problem, watch).memory_bytes(),
+        operator_order=program.order,
+        facts=prepared.facts,
+        warnings=warnings_of(problem),
+        ladder=tuple(Rung(**vars(row)) for row in prepared.ladder),
+        pauli_terms=heaviest_terms(encoded.working),
+    )
+
+
+def program_gates(problem: Problem) -> GateCounts:
+    """Gates of the trial state on the working register."""
+    program = problem.program
+    circuit = excitation_gates(program, problem.encoded) if isinstance(program, ExcitationProgram) else program
+    assert isinstance(circuit, GateProgram)
+    return gate_counts(circuit)
+
+
+def warnings_of(problem: Problem) -> tuple[str, ...]:
+    note = problem.encoded.degenerate_note
+    return problem.prepared.warnings + ((note,) if note else ())
+
+
+def symmetry_texts(encoded: EncodedSystem) -> tuple[str, ...]:
+    """`Z0 Z2 = +1 (qubit 0 removed)` for each Z2 symmetry used."""
+    return tuple(f"{s.label} = {s.value:+d} (qubit {s.removed} removed)" for s in encoded.symmetries)
+
+
+def heaviest_terms(expansion: PauliExpansion, count: int = MAX_LISTED_TERMS) -> tuple[tuple[str, float], ...]:
+    """The terms of largest |coefficient|, identity included, descending."""
+    order = abs(expansion.coefficients).argsort(kind="stable")[::-1][:count]
+    return tuple((pauli_label(int(expansion.x[i]), int(expansion.z[i])), float(expansion.coefficients[i])) for i in order)

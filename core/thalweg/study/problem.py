@@ -1,0 +1,147 @@
+"""From settings to everything prepared: the system, its qubits, the trial state and the engine. Read-only once made."""
+
+from __future__ import annotations
+
+import time
+from collections import OrderedDict
+from collections.abc import Callable, Hashable
+from dataclasses import dataclass
+from typing import Any
+
+from thalweg.ansatz.ground import Ground
+from thalweg.circuit.program import ExcitationProgram, GateProgram, Program
+from thalweg.encoding.encoded import EncodedSystem, encode_fermions, encode_spins
+from thalweg.errors import StudyError
+from thalweg.exact.answer import ExactAnswer
+from thalweg.simulate.engine import Engine
+from thalweg.study.spec import StudySpec
+from thalweg.systems.prepared import PreparedSystem
+from thalweg.watch import SILENT, Watch
+
+GIB = 2**30
+
+
+@dataclass(frozen=True)
+class Problem:
+    """What a minimisation and an inspection stand on.
+
+    Attributes:
+        spec: the settings.
+        prepared: integrals or bonds, reference energy, facts.
+        encoded: the Hamiltonian on qubits, before and after tapering.
+        program: the trial state as data.
+        seconds: time that the preparation took.
+    """
+
+    spec: StudySpec
+    prepared: PreparedSystem
+    encoded: EncodedSystem
+    program: Program
+    ground: Ground
+    seconds: float
+
+    @property
+    def budget_bytes(self) -> int:
+        return int(self.spec.memory_gib * GIB)
+
+
+class _Recent:
+    """The last few results of a pure function, so that an edit of one section does not repeat the others."""
+
+    def __init__(self, size: int) -> None:
+        self._size = size
+        self._kept: OrderedDict[Hashable, Any] = OrderedDict()
+
+    def get(self, key: Hashable, make: Callable[[], Any]) -> Any:
+        if key not in self._kept:
+            self._kept[key] = make()
+            while len(self._kept) > self._size:
+                self._kept.popitem(last=False)
+        self._kept.move_to_end(key)
+        return self._kept[key]
+
+
+_systems, _encodings, _products, _answers = _Recent(4), _Recent(4), _Recent(2), _Recent(4)
+
+
+def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | None = None) -> Problem:
+    """Works out system, encoding and trial state. `neighbour` seeds the mean field of a scan point.
+
+    Raises StudyError for what a person can mend, Stopped when asked to stop.
+    """
+    begun = time.perf_counter()
+    prepared = prepare_system(spec, watch, neighbour)
+    watch.stage("Encoding")
+    encoded = _encodings.get((spec.system, spec.encoding), lambda: _encode(spec, prepared))
+    watch.stage("Building the trial state")
+    ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits)
+    program = spec.ansatz.build(ground)
+    return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
+
+
+def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | None = None) -> PreparedSystem:
+    """The system alone, from the recent ones where it is among them."""
+    budget = int(spec.memory_gib * GIB)
+    key = (spec.system, budget)
+    prepared: PreparedSystem = _systems.get(key, lambda: spec.system.prepare(watch, budget_bytes=budget, neighbour=neighbour))
+    return prepared
+
+
+def _encode(spec: StudySpec, prepared: PreparedSystem) -> EncodedSystem:
+    if prepared.fermions is not None:
+        return encode_fermions(prepared.fermions, spec.encoding)
+    assert prepared.spins is not None
+    return encode_spins(prepared.spins, spec.encoding, prepared.reference_bits)
+
+
+def make_engine(problem: Problem, watch: Watch = SILENT) -> Engine:
+    """The engine that fits the program; StudyError when it would not fit the memory budget."""
+    program = problem.program
+    if isinstance(program, ExcitationProgram):
+        from thalweg.simulate.sector import SectorEngine
+
+        assert problem.prepared.fermions is not None
+        return SectorEngine(problem.prepared.fermions, program, sector_product(problem))
+    return _register_engine(problem, program, watch)
+
+
+def _register_engine(problem: Problem, program: GateProgram, watch: Watch) -> Engine:
+    from thalweg.simulate.register import RegisterEngine
+
+    encoded = problem.encoded
+    return RegisterEngine(
+        encoded.working,
+        program,
+        number=encoded.number,
+        s_z=encoded.s_z,
+        s_squared=encoded.s_squared,
+        label=encoded.occupation_label,
+        budget_bytes=problem.budget_bytes,
+        watch=watch,
+    )
+
+
+def sector_product(problem: Problem) -> Any:
+    """H applied to sector states, built once for a system and shared by engine and exact answer."""
+    from thalweg.simulate.sector import SectorHamiltonian
+
+    fermions = problem.prepared.fermions
+    assert fermions is not None
+    return _products.get((problem.spec.system,), lambda: SectorHamiltonian(fermions))
+
+
+def exact_answer(problem: Problem, watch: Watch = SILENT) -> ExactAnswer | None:
+    """The exact lowest level in the representation of the sector (fermions) or the register (spins)."""
+    if not problem.spec.exact:
+        return None
+    answer: ExactAnswer = _answers.get((problem.spec.system, problem.budget_bytes), lambda: _diagonalise(problem, watch))
+    return answer
+
+
+def _diagonalise(problem: Problem, watch: Watch) -> ExactAnswer:
+    watch.stage("Exact diagonalisation")
+    if problem.prepared.fermions is not None:
+        from thalweg.exact.determinant import lowest_level
+
+        return lowest_level(problem.prepared.fermions, watch=watch, budget_bytes=problem.budget_bytes, sector_hamiltonian=sector_product(problem))
+    raise StudyError("No exact energy", "this kind of system has no exact solver", "Switch the exact energy off", "exact")

@@ -1,0 +1,100 @@
+"""The sentence that says whether the study reached its target, and that can say no."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from thalweg.study.result import CONVERGED, STOP_REASONS
+
+#: Deviations of N and S_z above this mean another sector; of S^2 another spin.
+NUMBER_TOLERANCE = 1e-3
+SPIN_TOLERANCE = 0.05
+
+
+@dataclass(frozen=True)
+class Evidence:
+    """What the verdict is drawn from. Energies in `unit`; None where a figure does not exist."""
+
+    unit: str
+    error: float | None
+    target: float
+    reference_error: float | None
+    stop_reason: str
+    gradient_norm: float | None
+    start_gradient_norm: float | None
+    lowered: float  # start energy minus best energy
+    parameters: int
+    two_qubit_gates: int | None
+    n_electrons: float | None
+    expected_electrons: float | None
+    s_z: float | None
+    expected_s_z: float | None
+    s_squared: float | None
+    exact_s_squared: float | None
+
+
+@dataclass(frozen=True)
+class Verdict:
+    kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | no-exact
+    sentence: str
+    reached: bool
+
+
+def judge(evidence: Evidence) -> Verdict:
+    """The first of these that applies: no exact energy, wrong sector, stationary start, reached, not converged, outside."""
+    if evidence.error is None:
+        return Verdict("no-exact", f"No exact energy to compare with; the search ended because {STOP_REASONS[evidence.stop_reason]}", False)
+    wrong = _wrong_symmetry(evidence)
+    if wrong:
+        return Verdict("wrong-symmetry", wrong, False)
+    above = f"{amount(evidence.error, evidence.unit)} above exact"
+    if evidence.error <= evidence.target:
+        return Verdict("reached", f"Reaches {_target(evidence)}: {above} with {_cost(evidence)}{_interrupted(evidence)}", True)
+    if _is_stationary(evidence):
+        return Verdict("stationary", f"Stationary start: every gradient vanishes at a point {above}; choose another start or trial state", False)
+    if evidence.stop_reason not in CONVERGED:
+        return Verdict("not-converged", f"Not converged: {above} when {STOP_REASONS[evidence.stop_reason]}", False)
+    return Verdict("outside", f"Outside {_target(evidence)}: {above} with {_cost(evidence)}", False)
+
+
+def amount(value: float, unit: str) -> str:
+    """An energy difference in words: mEh with three digits for hartree, otherwise the plain unit."""
+    return f"{value * 1e3:.3g} mEh" if unit == "hartree" else f"{value:.3g} {unit}"
+
+
+def _wrong_symmetry(e: Evidence) -> str:
+    assert e.error is not None
+    found = []
+    if e.n_electrons is not None and e.expected_electrons is not None and abs(e.n_electrons - e.expected_electrons) > NUMBER_TOLERANCE:
+        found.append(f"particle number {e.n_electrons:.3f} instead of {e.expected_electrons:g}")
+    if e.s_z is not None and e.expected_s_z is not None and abs(e.s_z - e.expected_s_z) > NUMBER_TOLERANCE:
+        found.append(f"S_z {e.s_z:.3f} instead of {e.expected_s_z:g}")
+    if e.s_squared is not None and e.exact_s_squared is not None and abs(e.s_squared - e.exact_s_squared) > SPIN_TOLERANCE:
+        found.append(f"S^2 {e.s_squared:.3f} instead of {e.exact_s_squared:.3f}")
+    where = f"{amount(abs(e.error), e.unit)} {'above' if e.error >= 0 else 'below'} the exact energy of the sector asked for"
+    if found:
+        return f"Wrong symmetry: {' and '.join(found)}; {where}"
+    if e.error < -max(1e-7, 1e-3 * e.target):
+        return f"Below the exact energy: {where}, so the state has left the sector or the reference is not its lowest state"
+    return ""
+
+
+def _is_stationary(e: Evidence) -> bool:
+    return e.parameters > 0 and e.start_gradient_norm is not None and e.start_gradient_norm < 1e-7 and e.lowered < 1e-9
+
+
+def _target(e: Evidence) -> str:
+    from thalweg.units import CHEMICAL_ACCURACY
+
+    if e.unit == "hartree" and abs(e.target - CHEMICAL_ACCURACY) < 1e-9:
+        return "chemical accuracy"
+    return f"the target of {amount(e.target, e.unit)}"
+
+
+def _cost(e: Evidence) -> str:
+    parameters = f"{e.parameters:,} parameter{'' if e.parameters == 1 else 's'}"
+    return parameters if e.two_qubit_gates is None else f"{parameters}; {e.two_qubit_gates:,} two-qubit gates"
+
+
+def _interrupted(e: Evidence) -> str:
+    return "" if e.stop_reason in CONVERGED else f"; the search was not converged ({STOP_REASONS[e.stop_reason]})"
