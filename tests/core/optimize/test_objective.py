@@ -1,0 +1,100 @@
+"""The objective counts, remembers the best, and stops."""
+
+import numpy as np
+import pytest
+from thalweg.errors import Stopped
+from thalweg.optimize.objective import CountedObjective, StopRules
+
+OFFSET = 3.0
+
+
+def bowl(x):
+    return OFFSET + float(x @ x)
+
+
+def make(rules=None, *, should_stop=lambda: False, target=None, energy=bowl):
+    reports = []
+    objective = CountedObjective(
+        energy,
+        lambda x: (energy(x), 2 * x),
+        2,
+        offset=OFFSET,
+        rules=rules or StopRules(gradient=0),
+        target_energy=target,
+        report=reports.append,
+        should_stop=should_stop,
+    )
+    return objective, reports
+
+
+def test_values_are_counted_from_the_offset_and_the_best_is_kept():
+    objective, _ = make()
+    for point in ([1.0, 0.0], [0.5, 0.0], [2.0, 0.0]):
+        objective.value(np.array(point))
+    assert objective.evaluations == 3
+    assert objective.best_energy == OFFSET + 0.25
+    assert objective.best_parameters.tolist() == [0.5, 0.0]
+
+
+def test_begin_reports_the_start_as_iterate_zero_and_it_is_not_evaluated_again():
+    objective, reports = make()
+    start = np.array([1.0, 1.0])
+    objective.begin(start)
+    value, gradient = objective.value_and_gradient(start)
+    assert (reports[0].iteration, reports[0].energy, reports[0].gradient_norm) == (0, OFFSET + 2.0, 2.0)
+    assert (value, gradient.tolist(), objective.evaluations) == (2.0, [2.0, 2.0], 1)
+
+
+def test_a_change_to_the_returned_gradient_does_not_reach_the_store():
+    objective, _ = make()
+    start = np.array([1.0, 1.0])
+    objective.begin(start)
+    objective.value_and_gradient(start)[1][:] = 99
+    assert objective.value_and_gradient(start)[1].tolist() == [2.0, 2.0]
+
+
+@pytest.mark.parametrize(
+    ("rules", "points", "reason"),
+    [
+        (StopRules(gradient=0.1), [[1.0, 0], [0.01, 0]], "gradient"),
+        (StopRules(gradient=0, energy_change=1e-3), [[1.0, 0], [0.01, 0], [0.001, 0], [0.0001, 0]], "energy-change"),
+        (StopRules(gradient=0, evaluations=2), [[1.0, 0], [0.5, 0], [0.2, 0]], "evaluations"),
+        (StopRules(gradient=0, at_target=True), [[1.0, 0], [0.01, 0]], "target"),
+    ],
+)
+def test_each_rule_stops_with_its_own_reason(rules, points, reason):
+    objective, _ = make(rules, target=OFFSET + 0.01)
+
+    def walk():
+        for point in points:
+            objective.value_and_gradient(np.array(point))
+            objective.iterate(np.array(point))
+
+    with pytest.raises(Stopped) as stop:
+        walk()
+    assert stop.value.reason == reason
+
+
+def test_time_and_the_person_stop_before_the_next_evaluation():
+    for rules, ask, reason in ((StopRules(seconds=1e-9), False, "seconds"), (StopRules(), True, "stopped-by-person")):
+        objective, _ = make(rules, should_stop=lambda ask=ask: ask)
+        with pytest.raises(Stopped) as stop:
+            objective.value(np.zeros(2))
+        assert stop.value.reason == reason
+        assert objective.evaluations == 0
+
+
+def test_an_energy_that_is_not_a_number_stops_the_search():
+    objective, _ = make(energy=lambda x: float("nan"))
+    with pytest.raises(Stopped) as stop:
+        objective.value(np.zeros(2))
+    assert stop.value.reason == "not-finite"
+
+
+def test_an_iterate_other_than_the_last_point_is_reported_with_its_own_energy():
+    objective, reports = make()
+    objective.value_and_gradient(np.array([0.5, 0.0]))
+    objective.value_and_gradient(np.array([2.0, 0.0]))
+    objective.iterate(np.array([0.5, 0.0]))
+    assert reports[-1].energy == OFFSET + 0.25
+    assert reports[-1].gradient_norm == 1.0

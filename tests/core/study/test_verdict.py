@@ -1,0 +1,66 @@
+"""The verdict says yes only when everything is in order, and says no in words."""
+
+from dataclasses import replace
+
+import pytest
+from thalweg.study.verdict import Evidence, judge
+from thalweg.units import CHEMICAL_ACCURACY
+
+GOOD = Evidence(
+    unit="hartree",
+    error=1.1e-5,
+    target=CHEMICAL_ACCURACY,
+    reference_error=0.02,
+    stop_reason="gradient",
+    gradient_norm=1e-7,
+    start_gradient_norm=0.1,
+    lowered=0.02,
+    parameters=44,
+    two_qubit_gates=1216,
+    n_electrons=4.0,
+    expected_electrons=4,
+    s_z=0.0,
+    expected_s_z=0,
+    s_squared=1e-9,
+    exact_s_squared=0.0,
+)
+
+
+def test_a_good_run_reaches_the_target_and_states_its_cost():
+    verdict = judge(GOOD)
+    assert verdict.reached
+    assert verdict.sentence == "Reaches chemical accuracy: 0.011 mEh above exact with 44 parameters; 1,216 two-qubit gates"
+
+
+@pytest.mark.parametrize(
+    ("change", "kind", "words"),
+    [
+        ({"error": None}, "no-exact", "No exact energy"),
+        ({"n_electrons": 3.2}, "wrong-symmetry", "particle number 3.200 instead of 4"),
+        ({"s_z": 0.4}, "wrong-symmetry", "S_z 0.400 instead of 0"),
+        ({"s_squared": 2.0}, "wrong-symmetry", "S^2 2.000 instead of 0.000"),
+        ({"error": -0.01}, "wrong-symmetry", "Below the exact energy"),
+        ({"error": 0.02, "lowered": 0.0, "start_gradient_norm": 0.0}, "stationary", "Stationary start"),
+        ({"error": 0.02, "stop_reason": "evaluations"}, "not-converged", "Not converged: 20 mEh above exact"),
+        ({"error": 0.02}, "outside", "Outside chemical accuracy: 20 mEh above exact"),
+    ],
+)
+def test_anything_amiss_is_a_no(change, kind, words):
+    verdict = judge(replace(GOOD, **change))
+    assert not verdict.reached
+    assert verdict.kind == kind
+    assert words in verdict.sentence
+
+
+def test_wrong_symmetry_outranks_a_small_error():
+    assert judge(replace(GOOD, error=0.0, s_squared=2.0)).kind == "wrong-symmetry"
+
+
+def test_an_interrupted_search_inside_the_target_says_so():
+    verdict = judge(replace(GOOD, stop_reason="stopped-by-person"))
+    assert verdict.reached
+    assert "not converged" in verdict.sentence
+
+
+def test_another_target_and_unit_are_named():
+    assert "the target of 0.01 J" in judge(replace(GOOD, unit="J", target=0.01, error=0.002)).sentence
