@@ -1,0 +1,151 @@
+"""The session: a set-up being edited and the ledger of everything that was run from it. One JSON file, UTF-8, no code in it."""
+
+from __future__ import annotations
+
+import json
+import math
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import Any, Literal
+
+from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
+
+from thalweg import __version__
+from thalweg.errors import StudyError
+from thalweg.storage.files import read_limited, write_atomically
+from thalweg.storage.migrations import CURRENT_FORMAT, migrate
+from thalweg.study.result import StudyResult
+from thalweg.study.spec import StudySpec
+
+#: The ending that names a session file (any other is read as well).
+SUFFIX = ".thalweg.json"
+PROGRAM = "thalweg"
+
+
+def now() -> datetime:
+    return datetime.now(UTC).replace(microsecond=0)
+
+
+class SessionPart(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False)
+
+
+class Run(SessionPart):
+    """One row of the ledger; the result holds the settings that it came from."""
+
+    number: int = Field(ge=1, description="Number of the run in its session, counted from 1; not given twice.")
+    result: StudyResult
+    note: str = Field("", description="The person's own remark.")
+
+
+class Session(SessionPart):
+    """Everything that a colleague needs to see the same pictures without running again, and to run again."""
+
+    format: Literal[1] = Field(CURRENT_FORMAT, description="Format number of this file.")
+    program: Literal["thalweg"] = PROGRAM
+    program_version: str = Field(default_factory=lambda: __version__, description="The version that saved the file last.")
+    name: str = ""
+    created: datetime = Field(default_factory=now, description="ISO 8601, with offset.")
+    modified: datetime = Field(default_factory=now, description="ISO 8601, with offset.")
+    setup: StudySpec | None = Field(None, description="The set-up as it was last edited.")
+    runs: tuple[Run, ...] = ()
+
+    @model_validator(mode="after")
+    def _numbers_are_unique(self) -> Session:
+        numbers = [run.number for run in self.runs]
+        if len(set(numbers)) != len(numbers):
+            raise ValueError("two runs carry the same number")
+        return self
+
+    def with_result(self, result: StudyResult, note: str = "") -> Session:
+        """A copy with one more run, under the next free number."""
+        number = 1 + max((run.number for run in self.runs), default=0)
+        return self.model_copy(update={"runs": (*self.runs, Run(number=number, result=result, note=note)), "modified": now()})
+
+
+def save_session(session: Session, path: Path) -> None:
+    """Writes the file whole or not at all. StudyError when a figure is not finite or the system refuses."""
+    data = session.model_copy(update={"program_version": __version__}).model_dump(mode="python")
+    place = first_not_finite(data)
+    if place:
+        raise StudyError("The session cannot be saved", f"the figure {place} is not a finite number", "Delete that run and save again")
+    text = json.dumps(data, ensure_ascii=False, allow_nan=False, separators=(",", ":"), default=_plain)
+    write_atomically(path, text.encode("utf-8"))
+
+
+def load_session(path: Path) -> Session:
+    """Reads a session of this or an older format. StudyError for everything else; the file is never changed."""
+    return parse_session(read_limited(path), path.name)
+
+
+def is_session(content: bytes) -> bool:
+    """Whether these bytes are a session of any format, told by the program's name in them."""
+    try:
+        return bool(_object(content, "").get("program") == PROGRAM)
+    except StudyError:
+        return False
+
+
+def parse_session(content: bytes, name: str) -> Session:
+    """The session in `content`; `name` is what error sentences call the file."""
+    data = _object(content, name)
+    if data.get("program") != PROGRAM:
+        raise StudyError(f"{name} is not a session", "it does not carry the mark of this program", "Open a file that Thalweg has saved")
+    try:
+        return Session.model_validate(migrate(data))
+    except ValidationError as error:
+        first = error.errors()[0]
+        place = ".".join(str(part) for part in first["loc"]) or "the file"
+        why = f"{place}: {first['msg'][:1].lower()}{first['msg'][1:]}"
+        raise StudyError(f"{name} is damaged", why, "Go back to a copy that was not edited by hand") from None
+    except RecursionError:
+        raise StudyError(f"{name} is damaged", "it is nested too deeply", "Go back to an undamaged copy") from None
+
+
+def _object(content: bytes, name: str) -> dict[str, Any]:
+    try:
+        text = content.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise StudyError(f"{name} is not a session", f"byte {error.start} is not UTF-8 text", "Open a file that Thalweg has saved") from None
+    try:
+        data = json.loads(text, parse_constant=_refuse_constant, parse_float=_finite)
+    except RecursionError:
+        raise StudyError(f"{name} is damaged", "it is nested too deeply", "Go back to an undamaged copy") from None
+    except ValueError as error:
+        why = f"it is not complete JSON ({error})"
+        raise StudyError(f"{name} is damaged or not a session", why, "Go back to an undamaged copy") from None
+    if not isinstance(data, dict):
+        raise StudyError(f"{name} is not a session", "a session is one JSON object", "Open a file that Thalweg has saved")
+    return data
+
+
+def _refuse_constant(text: str) -> float:
+    raise ValueError(f"{text} is not a number that JSON knows")
+
+
+def _finite(text: str) -> float:
+    value = float(text)
+    if not math.isfinite(value):
+        raise ValueError(f"{text} is too large for a number")
+    return value
+
+
+def first_not_finite(node: Any, place: str = "") -> str:
+    """Dotted place of the first infinite or undefined float in plain data; empty when there is none."""
+    if isinstance(node, float):
+        return "" if math.isfinite(node) else place
+    if isinstance(node, dict):
+        pairs: Any = node.items()
+    elif isinstance(node, list | tuple):
+        pairs = enumerate(node)
+    else:
+        return ""
+    return next((found for key, item in pairs if (found := first_not_finite(item, f"{place}.{key}" if place else str(key)))), "")
+
+
+def _plain(value: Any) -> Any:
+    if isinstance(value, datetime):
+        return value.isoformat()
+    if hasattr(value, "tolist"):  # numpy scalars and arrays among the facts
+        return value.tolist()
+    raise TypeError(f"{type(value).__name__} has no place in a session")
