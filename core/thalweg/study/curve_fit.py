@@ -1,0 +1,173 @@
+"""What a curve yields: errors along it, and the constants of a diatomic from a stated fit."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.units import BOHR_IN_ANGSTROM, ELECTRON_MASS_IN_DALTON, HARTREE_IN_INVERSE_CM
+
+#: Points nearest the minimum that a fit uses at most, and the largest degree of its polynomial.
+FIT_POINTS, FIT_DEGREE = 11, 6
+#: A fit whose root mean square residual is larger than this (Eh) is not trusted.
+LARGEST_RESIDUAL = 1e-4
+#: The slope (Eh per angstrom) below which the end of a curve counts as the separated fragments.
+FLAT_SLOPE = 2e-3
+
+
+@dataclass(frozen=True)
+class ErrorMeasures:
+    """Errors of one curve against another, in the energy unit of the curve.
+
+    The non-parallelity error is the largest minus the smallest signed error (common practice).
+    """
+
+    maximum: float
+    mean: float
+    npe: float
+    at_minimum: float
+
+
+@dataclass(frozen=True)
+class CurveMinimum:
+    """A minimum found by a local polynomial fit.
+
+    Attributes:
+        r_e, e_min: position (unit of the coordinate) and energy of the minimum.
+        curvature: second derivative of the energy there, energy unit / coordinate unit squared.
+        third, fourth: higher derivatives there.
+        first, last: range of the coordinate that was fitted.
+        degree, points: of the polynomial.
+        residual: root mean square of the fit.
+    """
+
+    r_e: float
+    e_min: float
+    curvature: float
+    third: float
+    fourth: float
+    first: float
+    last: float
+    degree: int
+    points: int
+    residual: float
+
+    def sentence(self) -> str:
+        return (
+            f"polynomial of degree {self.degree} in (r - r0)/r through {self.points} points from {self.first:.4g} to {self.last:.4g}, "
+            f"root mean square residual {self.residual:.2g}"
+        )
+
+
+@dataclass(frozen=True)
+class DiatomicConstants:
+    """Harmonic frequency and anharmonicity, cm^-1, from the derivatives at the minimum (Dunham 1932)."""
+
+    omega_e: float
+    omega_e_x_e: float
+    b_e: float
+
+
+def error_measures(energies: Sequence[float], exact: Sequence[float]) -> ErrorMeasures:
+    """Measures over all points at which both curves exist (at least one)."""
+    errors = np.asarray(energies) - np.asarray(exact)
+    return ErrorMeasures(
+        maximum=float(np.abs(errors).max()),
+        mean=float(np.abs(errors).mean()),
+        npe=float(errors.max() - errors.min()),
+        at_minimum=float(errors[int(np.argmin(exact))]),
+    )
+
+
+def fit_minimum(coordinates: Sequence[float], energies: Sequence[float], *, inverse: bool = True) -> CurveMinimum | None:
+    """The minimum of a curve, or None where the curve has no inner minimum, too few points, or too large a residual.
+
+    Fits a polynomial in (r - r0)/r (Simons, Parr and Finlan 1973), which follows both walls of a bond better than one in r;
+    with `inverse` False in (r - r0), for angles and factors. r0 is the lowest point.
+    """
+    r, e = _sorted(coordinates, energies)
+    lowest = int(np.argmin(e)) if e.size else 0
+    if e.size < 5 or lowest in (0, e.size - 1):
+        return None
+    window = _window(r, lowest)
+    r, e, r0 = r[window], e[window], r[lowest]
+    shift = e.min()
+    z = _variable(r, r0, inverse)
+    degree = min(FIT_DEGREE, r.size - 2)
+    polynomial = np.polynomial.Polynomial.fit(z, e - shift, degree)
+    residual = float(np.sqrt(np.mean((polynomial(z) - (e - shift)) ** 2)))
+    place = _stationary(polynomial, r, r0, inverse)
+    if place is None or residual > LARGEST_RESIDUAL:
+        return None
+    energy, _, second, third, fourth = _derivatives(polynomial, place, r0, inverse)
+    return CurveMinimum(place, energy + shift, second, third, fourth, float(r[0]), float(r[-1]), degree, int(r.size), residual)
+
+
+def diatomic_constants(minimum: CurveMinimum, reduced_mass: float) -> DiatomicConstants:
+    """omega_e = sqrt(k/mu), omega_e x_e = 3/2 B_e (5/4 a1^2 - a2), with V = a0 xi^2 (1 + a1 xi + a2 xi^2) (Dunham 1932).
+
+    `minimum` in hartree and angstrom, `reduced_mass` in dalton.
+    """
+    mass = reduced_mass / ELECTRON_MASS_IN_DALTON
+    r = minimum.r_e / BOHR_IN_ANGSTROM
+    second, third, fourth = (d * BOHR_IN_ANGSTROM**n for d, n in ((minimum.curvature, 2), (minimum.third, 3), (minimum.fourth, 4)))
+    a1, a2 = third * r / (3 * second), fourth * r**2 / (12 * second)
+    b_e = 1 / (2 * mass * r**2)
+    return DiatomicConstants(
+        omega_e=float(np.sqrt(second / mass)) * HARTREE_IN_INVERSE_CM,
+        omega_e_x_e=float(1.5 * b_e * (1.25 * a1**2 - a2)) * HARTREE_IN_INVERSE_CM,
+        b_e=float(b_e) * HARTREE_IN_INVERSE_CM,
+    )
+
+
+def well_depth(coordinates: Sequence[float], energies: Sequence[float], minimum: CurveMinimum) -> float | None:
+    """D_e: the energy at the far end above the minimum; None where the curve has not flattened out there."""
+    r, e = _sorted(coordinates, energies)
+    slope = (e[-1] - e[-2]) / (r[-1] - r[-2])
+    return None if abs(slope) > FLAT_SLOPE or r[-1] <= minimum.last else float(e[-1] - minimum.e_min)
+
+
+def _sorted(coordinates: Sequence[float], energies: Sequence[float]) -> tuple[FloatArray, FloatArray]:
+    r, e = np.asarray(coordinates, float), np.asarray(energies, float)
+    order = np.argsort(r)
+    return r[order], e[order]
+
+
+def _window(r: FloatArray, lowest: int) -> slice:
+    """The lowest point with at most half the fit points on each side."""
+    half = FIT_POINTS // 2
+    first = max(0, lowest - half)
+    last = min(r.size, max(lowest + half, first + FIT_POINTS - 1) + 1)
+    return slice(max(0, last - FIT_POINTS), last)
+
+
+def _variable(r: FloatArray | float, r0: float, inverse: bool) -> FloatArray:
+    return np.asarray((r - r0) / r if inverse else r - r0)
+
+
+def _stationary(polynomial: np.polynomial.Polynomial, r: FloatArray, r0: float, inverse: bool) -> float | None:
+    """The stationary point nearest the lowest point of the curve, with positive curvature, inside the fitted range."""
+    roots = polynomial.deriv().roots()
+    real = roots[np.abs(roots.imag) < 1e-9].real
+    places = [r0 / (1 - z) if inverse else r0 + z for z in real if not inverse or z < 1]
+    inside = [p for p in places if r[0] <= p <= r[-1] and _derivatives(polynomial, p, r0, inverse)[2] > 0]
+    return float(min(inside, key=lambda p: abs(p - r0))) if inside else None
+
+
+def _derivatives(polynomial: np.polynomial.Polynomial, r: float, r0: float, inverse: bool) -> tuple[float, float, float, float, float]:
+    """The polynomial and its first four derivatives with respect to r (Faa di Bruno's rule for z(r) = 1 - r0/r)."""
+    z = float(_variable(r, r0, inverse))
+    p = [float(polynomial.deriv(n)(z)) if n else float(polynomial(z)) for n in range(5)]
+    if not inverse:
+        return p[0], p[1], p[2], p[3], p[4]
+    z1, z2, z3, z4 = r0 / r**2, -2 * r0 / r**3, 6 * r0 / r**4, -24 * r0 / r**5
+    return (
+        p[0],
+        p[1] * z1,
+        p[2] * z1**2 + p[1] * z2,
+        p[3] * z1**3 + 3 * p[2] * z1 * z2 + p[1] * z3,
+        p[4] * z1**4 + 6 * p[3] * z1**2 * z2 + p[2] * (4 * z1 * z3 + 3 * z2**2) + p[1] * z4,
+    )
