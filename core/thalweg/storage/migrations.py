@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from typing import Any
+from typing import Any, Final
 
 from thalweg.errors import StudyError
 
 #: The number that a session file carries. Raise it with every change that an older program could not read.
-CURRENT_FORMAT = 1
+CURRENT_FORMAT: Final = 1
 
 Step = Callable[[dict[str, Any]], dict[str, Any]]
 

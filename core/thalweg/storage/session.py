@@ -6,7 +6,7 @@ import json
 import math
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import Any, Literal
+from typing import Any, Final, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
 
@@ -19,7 +19,7 @@ from thalweg.study.spec import StudySpec
 
 #: The ending that names a session file (any other is read as well).
 SUFFIX = ".thalweg.json"
-PROGRAM = "thalweg"
+PROGRAM: Final = "thalweg"
 
 
 def now() -> datetime:
