@@ -37,6 +37,8 @@ class PreparedSystem:
         mean_field: the PySCF object for classical reference methods; never serialised.
         reference_bits: basis state that a spin model's circuit starts from, bit q = 1 is spin down (Z = -1) on qubit q.
         reference_kind: what is prepared from those bits: `bits`, `plus` (every qubit in |+>), `singlets` (dimer singlets); empty for fermions.
+        reference_pairs: the pairs of sites that form singlets when `reference_kind` is `singlets`.
+        translations: site permutations (site i moves to entry i) of the lattice, candidates for symmetries of the exact solver.
     """
 
     label: str
@@ -51,3 +53,5 @@ class PreparedSystem:
     mean_field: Any = None
     reference_bits: int = 0
     reference_kind: str = ""
+    reference_pairs: tuple[tuple[int, int], ...] = ()
+    translations: tuple[tuple[int, ...], ...] = ()
