@@ -13,6 +13,12 @@ Bond = tuple[int, int]
 
 def moving_fragment(n_atoms: int, bonds: Iterable[Bond], fixed: int, moved: int) -> tuple[int, ...]:
     """Atoms that move with `moved` when its bond to `fixed` is cut; only `moved` itself where a ring joins the two anyway."""
+    side = beyond_bond(n_atoms, bonds, fixed, moved)
+    return (moved,) if fixed in side else tuple(sorted(side))
+
+
+def beyond_bond(n_atoms: int, bonds: Iterable[Bond], fixed: int, moved: int) -> set[int]:
+    """Atoms still joined to `moved` when its bond to `fixed` is cut; holds `fixed` when the bond is part of a ring."""
     neighbours: dict[int, set[int]] = {i: set() for i in range(n_atoms)}
     for i, j in bonds:
         if {i, j} != {fixed, moved}:
@@ -23,7 +29,7 @@ def moving_fragment(n_atoms: int, bonds: Iterable[Bond], fixed: int, moved: int)
         for atom in neighbours[open_atoms.pop()] - reached:
             reached.add(atom)
             open_atoms.append(atom)
-    return (moved,) if fixed in reached else tuple(sorted(reached))
+    return reached
 
 
 def set_distance(positions: FloatArray, fixed: int, moved: int, distance: float, fragment: Sequence[int]) -> FloatArray:

@@ -1,0 +1,35 @@
+"""Varying any numeric setting, such as a coupling of a lattice model."""
+
+from __future__ import annotations
+
+from typing import ClassVar, Literal
+
+from thalweg.errors import StudyError
+from thalweg.options import option
+from thalweg.study.path.base import ScanPath
+from thalweg.study.spec import StudySpec, with_setting
+
+
+class SettingPath(ScanPath):
+    title: ClassVar[str] = "Setting"
+    about: ClassVar[str] = "Any numeric setting of the study, such as a coupling, a field or the number of sites."
+
+    key: Literal["setting"] = "setting"
+    setting: str = option("", "Setting", "Dotted name of the setting, such as `system.model.field`.")
+
+    def at(self, spec: StudySpec, value: float) -> StudySpec:
+        current = self._current(spec)
+        if isinstance(current, int) and value != round(value):
+            raise StudyError(f"'{self.setting}' cannot be {value:g}", "it is a whole number", "Choose points that are whole numbers", "path")
+        return with_setting(spec, self.setting, round(value) if isinstance(current, int) else float(value))
+
+    def axis(self, spec: StudySpec) -> str:
+        return self.setting
+
+    def _current(self, spec: StudySpec) -> int | float:
+        node: object = spec
+        for name in self.setting.split("."):
+            node = getattr(node, name, None)
+        if isinstance(node, bool) or not isinstance(node, int | float):
+            raise StudyError(f"'{self.setting}' cannot be varied", "it is not a number of this study", "Name a numeric setting", "path.setting")
+        return node
