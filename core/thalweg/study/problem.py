@@ -46,7 +46,10 @@ class Problem:
 
 
 class _Recent:
-    """The last few results of a pure function, so that an edit of one section does not repeat the others."""
+    """The last few results of a pure function, so that an edit of one section does not repeat the others.
+
+    Where a prepared system is the input its identity is the key; the kept value holds the system, so that the identity stays its own.
+    """
 
     def __init__(self, size: int) -> None:
         self._size = size
@@ -72,7 +75,7 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | 
     begun = time.perf_counter()
     prepared = prepare_system(spec, watch, neighbour)
     watch.stage("Encoding")
-    encoded = _encodings.get((spec.system, spec.encoding), lambda: _encode(spec, prepared))
+    encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared)))[1]
     watch.stage("Building the trial state")
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits)
     program = spec.ansatz.build(ground)
@@ -82,8 +85,11 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | 
 def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | None = None) -> PreparedSystem:
     """The system alone, from the recent ones where it is among them."""
     budget = int(spec.memory_gib * GIB)
+    if neighbour is not None:  # the mean field depends on the neighbour, so the settings alone are no key
+        seeded: PreparedSystem = spec.system.prepare(watch, budget_bytes=budget, neighbour=neighbour)
+        return seeded
     key = (spec.system, budget)
-    prepared: PreparedSystem = _systems.get(key, lambda: spec.system.prepare(watch, budget_bytes=budget, neighbour=neighbour))
+    prepared: PreparedSystem = _systems.get(key, lambda: spec.system.prepare(watch, budget_bytes=budget))
     return prepared
 
 
@@ -127,14 +133,15 @@ def sector_product(problem: Problem) -> Any:
 
     fermions = problem.prepared.fermions
     assert fermions is not None
-    return _products.get((problem.spec.system,), lambda: SectorHamiltonian(fermions))
+    return _products.get(id(problem.prepared), lambda: (problem.prepared, SectorHamiltonian(fermions)))[1]
 
 
 def exact_answer(problem: Problem, watch: Watch = SILENT) -> ExactAnswer | None:
     """The exact lowest level in the representation of the sector (fermions) or the register (spins)."""
     if not problem.spec.exact:
         return None
-    answer: ExactAnswer = _answers.get((problem.spec.system, problem.budget_bytes), lambda: _diagonalise(problem, watch))
+    key = (id(problem.prepared), problem.budget_bytes)
+    answer: ExactAnswer = _answers.get(key, lambda: (problem.prepared, _diagonalise(problem, watch)))[1]
     return answer
 
 
