@@ -1,0 +1,169 @@
+"""A Pauli expansion made ready to act on vectors of 2^n amplitudes."""
+
+from __future__ import annotations
+
+from itertools import pairwise
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import FloatArray, MaskArray
+from thalweg.kernels import register_product as kernels
+from thalweg.operators.pauli import PauliExpansion
+from thalweg.watch import SILENT, Watch
+
+#: Qubits of one block: its row of 8 * 2^12 bytes and its amplitudes stay in the second-level cache.
+BLOCK_BITS = 12
+#: An x mask with at most this many different high parts of z keeps its rows; others transform their coefficients for each block.
+MAX_ROWS = 6
+#: Bytes that stored rows may take, and that a stored matrix may take.
+ROW_BYTES = 2**25
+MATRIX_BYTES = 2**26
+#: The matrix is stored only where at most this share of its possible elements differs from 0.
+SPARSE_SHARE = 0.3
+#: Amplitudes times x masks between two looks at the watch: below 50 ms.
+STEP = 2**24
+
+
+class ExpansionProduct:
+    """H v and <v|H|v> for register vectors, shape (2^n,), float64 or complex128.
+
+    A real vector asks for `is_real`, that is for an operator whose strings all have an even number of Y.
+
+    Attributes:
+        n_qubits: register size.
+        is_real: whether H is a real symmetric matrix.
+        memory_bytes: what the prepared tables take.
+    """
+
+    def __init__(
+        self, expansion: PauliExpansion, *, block_bits: int = BLOCK_BITS, row_bytes: int = ROW_BYTES, matrix_bytes: int = MATRIX_BYTES
+    ) -> None:
+        self.n_qubits = expansion.n_qubits
+        self._bits = min(block_bits, expansion.n_qubits)
+        self._tables = _tables(expansion, self._bits, row_bytes)
+        self.is_real = not bool(self._tables[1].any())
+        self._matrix = self._stored_matrix(expansion, matrix_bytes)
+        tables = self._tables if self._matrix is None else self._tables + self._matrix
+        self.memory_bytes = sum(int(table.nbytes) for table in tables)
+
+    def apply(self, vector: Any, out: Any, watch: Watch = SILENT) -> float:
+        """Writes H v into `out`, which must not overlap v, and returns Re <v|H v>. Both contiguous, of one dtype."""
+        if vector.dtype == np.float64 and not self.is_real:
+            raise TypeError("a real vector needs an operator whose strings all have an even number of Y")
+        if self._matrix is not None:
+            return self._walk_rows(lambda first, last: kernels.apply_stored(vector, out, first, last, *self._matrix), watch)
+        kernel = kernels.apply_real if vector.dtype == np.float64 else kernels.apply_complex
+        return self._walk_blocks(lambda first, last: kernel(vector, out, first, last, self._bits, *self._tables), watch)
+
+    def expectation(self, vector: Any, watch: Watch = SILENT) -> float:
+        """<v|H|v> without a second vector."""
+        if self._matrix is not None:
+            return self._walk_rows(lambda first, last: kernels.expectation_stored(vector, first, last, *self._matrix), watch)
+        complex_vector = vector.astype(np.complex128, copy=False)
+        return self._walk_blocks(lambda first, last: kernels.expectation_complex(complex_vector, first, last, self._bits, *self._tables), watch)
+
+    def _walk_blocks(self, part: Any, watch: Watch) -> float:
+        blocks = 1 << (self.n_qubits - self._bits)
+        step = max(1, STEP // max(1, self._tables[0].size << self._bits))
+        return _sum_parts(part, blocks, step, watch)
+
+    def _walk_rows(self, part: Any, watch: Watch) -> float:
+        assert self._matrix is not None
+        rows = 1 << self.n_qubits
+        return _sum_parts(part, rows, max(1, STEP * rows // max(1, self._matrix[1].size)), watch)
+
+    def _stored_matrix(self, expansion: PauliExpansion, matrix_bytes: int) -> tuple[Any, ...] | None:
+        """(row starts, columns, values) where the matrix is real, sparse and small enough; otherwise None."""
+        entries, size = self._tables[0].size, 1 << self.n_qubits
+        if not self.is_real or self.n_qubits > 32 or entries * size > matrix_bytes:
+            return None
+        tables = (self._tables[0], *self._tables[2:])
+        blocks = size >> self._bits
+        threshold = 1e-15 * float(np.abs(expansion.coefficients).sum())
+        counts = np.zeros(size, dtype=np.int64)
+        kernels.count_stored(0, blocks, self._bits, threshold, counts, *tables)
+        stored = int(counts.sum())
+        if stored * 12 > matrix_bytes or stored > SPARSE_SHARE * entries * size:
+            return None
+        pointers = np.concatenate([[0], np.cumsum(counts)])
+        columns, values = np.empty(stored, dtype=np.uint32), np.empty(stored)
+        kernels.fill_stored(0, blocks, self._bits, threshold, pointers, columns, values, *tables)
+        return pointers, columns, values
+
+
+def product_bytes(expansion: PauliExpansion) -> int:
+    """Upper bound of `ExpansionProduct.memory_bytes`, before anything is allocated."""
+    return ROW_BYTES + 2 * MATRIX_BYTES + 64 * len(expansion)
+
+
+def _sum_parts(part: Any, count: int, step: int, watch: Watch) -> float:
+    total = 0.0
+    for first in range(0, count, step):
+        watch.check()
+        total += float(part(first, min(count, first + step)))
+    return total
+
+
+def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, ...]:
+    """The arrays that `kernels.register_product` describes."""
+    x, z = expansion.x, expansion.z
+    y_count = np.bitwise_count(x & z).astype(np.int64)
+    odd = (y_count & 1).astype(bool)
+    values = expansion.coefficients * np.where(y_count & 2, -1.0, 1.0)  # i^y = (1 or i) times this sign
+    low = np.uint64((1 << bits) - 1)
+    order = np.lexsort((z & low, z & ~low, odd, x))
+    x, z, odd, values = x[order], z[order], odd[order], values[order]
+    begins = _changes(x, odd)
+    entry_x, entry_odd = x[begins], odd[begins]
+    bounds = np.append(begins, x.size)
+    firsts, stored = [0], []
+    group_z, group_row, group_value = [], [], []
+    rows: list[FloatArray] = []
+    n_groups = 0
+    for first, last in zip(bounds[:-1].tolist(), bounds[1:].tolist(), strict=True):
+        parts = np.append(first + _changes(z[first:last] & ~low), last)
+        keep = parts.size - 1 <= MAX_ROWS and (len(rows) + parts.size - 1) * 8 << bits <= row_bytes
+        stored.append(keep)
+        if keep:
+            numbers = np.arange(len(rows), len(rows) + parts.size - 1)
+            rows += [_row(z[a:b] & low, values[a:b], bits) for a, b in pairwise(parts)]
+            group_z.append(z[parts[:-1]] & ~low)
+            group_row.append(numbers)
+            group_value.append(np.zeros(numbers.size))
+        else:
+            group_z.append(z[first:last])
+            group_row.append(np.zeros(last - first, dtype=np.int64))
+            group_value.append(values[first:last])
+        n_groups += group_z[-1].size
+        firsts.append(n_groups)
+    return (
+        entry_x,
+        entry_odd,
+        np.array(firsts, dtype=np.int64),
+        np.array(stored, dtype=bool),
+        _joined(group_z, np.uint64),
+        _joined(group_row, np.int64),
+        _joined(group_value, np.float64),
+        np.array(rows).reshape(len(rows), 1 << bits),
+    )
+
+
+def _changes(*keys: Any) -> Any:
+    """Positions where any of the sorted keys takes a new value; 0 is one of them."""
+    different = np.zeros(keys[0].size, dtype=bool)
+    different[:1] = True
+    for key in keys:
+        different[1:] |= key[1:] != key[:-1]
+    return np.flatnonzero(different)
+
+
+def _row(z_low: MaskArray, values: FloatArray, bits: int) -> FloatArray:
+    row = np.zeros(1 << bits)
+    row[z_low.astype(np.int64)] = values
+    kernels.walsh_hadamard(row)
+    return row
+
+
+def _joined(parts: list[Any], dtype: Any) -> Any:
+    return np.concatenate(parts).astype(dtype) if parts else np.empty(0, dtype=dtype)

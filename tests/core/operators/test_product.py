@@ -1,0 +1,103 @@
+"""A Pauli expansion acting on vectors, against dense matrices made by Kronecker products."""
+
+import numpy as np
+import pytest
+from thalweg.errors import Stopped
+from thalweg.operators.pauli import PauliExpansion, collect_terms
+from thalweg.operators.product import ExpansionProduct, product_bytes
+from thalweg.watch import Watch
+
+PAULI = {
+    (0, 0): np.eye(2),
+    (1, 0): np.array([[0, 1], [1, 0]]),
+    (0, 1): np.diag([1, -1]),
+    (1, 1): np.array([[0, -1j], [1j, 0]]),
+}
+
+
+def dense(expansion: PauliExpansion) -> np.ndarray:
+    matrix = np.zeros((1 << expansion.n_qubits,) * 2, dtype=complex)
+    for x, z, c in zip(expansion.x.tolist(), expansion.z.tolist(), expansion.coefficients, strict=True):
+        term = np.eye(1)
+        for q in range(expansion.n_qubits):
+            term = np.kron(PAULI[x >> q & 1, z >> q & 1], term)  # qubit 0 is the least significant, hence rightmost
+        matrix += c * term
+    return matrix
+
+
+def random_expansion(rng: np.random.Generator, n: int, terms: int, *, real: bool) -> PauliExpansion:
+    x, z = (rng.integers(0, 1 << n, terms, dtype=np.uint64) for _ in range(2))
+    if real:
+        keep = np.bitwise_count(x & z) % 2 == 0
+        x, z = x[keep], z[keep]
+    return collect_terms(n, x, z, rng.normal(size=x.size))
+
+
+def random_vector(rng: np.random.Generator, n: int) -> np.ndarray:
+    vector = rng.normal(size=1 << n) + 1j * rng.normal(size=1 << n)
+    return vector / np.linalg.norm(vector)
+
+
+@pytest.mark.parametrize("matrix_bytes", [0, 2**20])
+@pytest.mark.parametrize("row_bytes", [0, 2**20])
+@pytest.mark.parametrize("block_bits", [1, 2, 3, 12])
+@pytest.mark.parametrize("real", [False, True])
+@pytest.mark.parametrize("n", [1, 2, 4, 6])
+def test_product_and_expectation_agree_with_dense_matrices(n, real, block_bits, row_bytes, matrix_bytes):
+    rng = np.random.default_rng(n + 10 * block_bits)
+    for terms in (1, 5, 60):
+        expansion = random_expansion(rng, n, terms, real=real)
+        product = ExpansionProduct(expansion, block_bits=block_bits, row_bytes=row_bytes, matrix_bytes=matrix_bytes)
+        vector, matrix = random_vector(rng, n), dense(expansion)
+        out = np.full_like(vector, np.nan)
+        value = product.apply(vector, out)
+        np.testing.assert_allclose(out, matrix @ vector, atol=1e-12)
+        assert value == pytest.approx(np.vdot(vector, matrix @ vector).real, abs=1e-12)
+        assert product.expectation(vector) == pytest.approx(value, abs=1e-12)
+
+
+@pytest.mark.parametrize("matrix_bytes", [0, 2**20])
+def test_real_operators_act_on_real_vectors(matrix_bytes):
+    rng = np.random.default_rng(3)
+    expansion = random_expansion(rng, 5, 80, real=True)
+    product = ExpansionProduct(expansion, block_bits=3, matrix_bytes=matrix_bytes)
+    vector = rng.normal(size=32)
+    out = np.empty(32)
+    assert product.is_real
+    value = product.apply(vector, out)
+    np.testing.assert_allclose(out, dense(expansion).real @ vector, atol=1e-12)
+    assert product.expectation(vector) == pytest.approx(value, abs=1e-12)
+
+
+def test_sparse_operators_keep_their_matrix_and_dense_ones_do_not():
+    pair = [(0b11, 0b00), (0b11, 0b11)]  # X0 X1 + Y0 Y1: half of its elements vanish
+    masks = [(x << q, z << q) for q in range(7) for x, z in pair] + [(0b11 << q, 0b1100 << q) for q in range(5)]
+    x, z = (np.array(column, dtype=np.uint64) for column in zip(*masks, strict=True))
+    sparse = collect_terms(8, x[:2], z[:2], np.ones(2))
+    with_matrix = ExpansionProduct(sparse)
+    assert with_matrix.memory_bytes < product_bytes(sparse)
+    vector = random_vector(np.random.default_rng(0), 8)
+    out = np.empty_like(vector)
+    for expansion in (sparse, collect_terms(8, x, z, np.ones(x.size))):
+        ExpansionProduct(expansion).apply(vector, out)
+        np.testing.assert_allclose(out, dense(expansion) @ vector, atol=1e-12)
+
+
+def test_an_odd_number_of_y_refuses_real_vectors():
+    product = ExpansionProduct(PauliExpansion(1, np.array([1], np.uint64), np.array([1], np.uint64), np.ones(1)))
+    with pytest.raises(TypeError, match="even number of Y"):
+        product.apply(np.ones(2), np.empty(2))
+
+
+def test_an_empty_expansion_gives_zero():
+    nothing = PauliExpansion(2, np.empty(0, np.uint64), np.empty(0, np.uint64), np.empty(0))
+    out = np.ones(4, dtype=complex)
+    assert ExpansionProduct(nothing).apply(np.ones(4, dtype=complex), out) == 0.0
+    assert not out.any()
+
+
+def test_a_product_can_be_stopped():
+    product = ExpansionProduct(random_expansion(np.random.default_rng(1), 4, 20, real=False))
+    vector = np.ones(16, dtype=complex)
+    with pytest.raises(Stopped):
+        product.apply(vector, np.empty_like(vector), Watch(should_stop=lambda: True))
