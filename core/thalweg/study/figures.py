@@ -2,61 +2,18 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 from thalweg.circuit.compile import excitation_gates
 from thalweg.circuit.program import ExcitationProgram, GateProgram
 from thalweg.cost.gates import GateCounts, gate_counts
 from thalweg.encoding.encoded import EncodedSystem
 from thalweg.operators.pauli import PauliExpansion, pauli_label
+from thalweg.study.derived import Rung, StudyFigures
 from thalweg.study.problem import Problem, make_engine, prepare
-from thalweg.study.result import Record
 from thalweg.study.spec import StudySpec
 from thalweg.watch import SILENT, Watch
 
 #: How many Pauli terms a result lists; the session keeps the settings that give all of them.
 MAX_LISTED_TERMS = 200
-
-
-class Rung(Record):
-    """One orbital of the ladder."""
-
-    number: int
-    energy: float
-    occupation: float
-    irrep: str
-    active: bool
-    frozen: bool
-
-
-class StudyFigures(Record):
-    """Figures of a study before it is run. None where a figure has no meaning for the system."""
-
-    label: str
-    energy_unit: str
-    reference_name: str
-    reference_energy: float
-    n_electrons: int | None
-    n_orbitals: int | None
-    sector: str
-    sector_dimension: int | None
-    qubits: int
-    qubits_before_tapering: int
-    terms: int
-    terms_before_tapering: int
-    one_norm: float
-    largest_weight: int
-    symmetries: tuple[str, ...]
-    parameters: int
-    factors: int
-    two_qubit_gates: int | None
-    depth: int | None
-    memory_bytes: int
-    operator_order: str
-    facts: dict[str, Any]
-    warnings: tuple[str, ...]
-    ladder: tuple[Rung, ...]
-    pauli_terms: tuple[tuple[str, float], ...]
 
 
 def inspect(spec: StudySpec, watch: Watch = SILENT) -> StudyFigures:
