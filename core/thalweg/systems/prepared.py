@@ -3,10 +3,16 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, Final
 
+import numpy as np
+
+from thalweg.arrays import FloatArray
 from thalweg.operators.fermion import FermionHamiltonian
 from thalweg.operators.pauli import PauliExpansion
+
+#: Memory that a system may take unless told otherwise, bytes.
+DEFAULT_BUDGET: Final = 4 * 2**30
 
 
 @dataclass(frozen=True)
@@ -55,3 +61,17 @@ class PreparedSystem:
     reference_kind: str = ""
     reference_pairs: tuple[tuple[int, int], ...] = ()
     translations: tuple[tuple[int, ...], ...] = ()
+
+
+def masks(occupation: FloatArray) -> tuple[int, int]:
+    """Occupied (alpha, beta) orbital masks of occupations 2, 1 and 0; singly occupied orbitals hold alpha electrons."""
+    alpha = sum(1 << p for p, n in enumerate(occupation.tolist()) if n >= 1)
+    beta = sum(1 << p for p, n in enumerate(occupation.tolist()) if n == 2)
+    return alpha, beta
+
+
+def read_only(array: Any) -> Any:
+    """A contiguous copy-free view that refuses writes."""
+    array = np.ascontiguousarray(array)
+    array.flags.writeable = False
+    return array
