@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import numpy as np
-
 from thalweg.circuit.program import Excitation, Gate, GateProgram
 from thalweg.operators.pauli import PauliExpansion
 

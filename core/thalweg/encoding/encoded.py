@@ -15,7 +15,7 @@ from thalweg.encoding.linear import (
     s_squared_operator,
     s_z_operator,
 )
-from thalweg.encoding.occupations import alpha_beta_masks, determinant_masks, interleave, occupation_text, order_signs, orbital_list
+from thalweg.encoding.occupations import alpha_beta_masks, determinant_masks, interleave, occupation_text, orbital_list, order_signs
 from thalweg.encoding.settings import EncodingSettings
 from thalweg.encoding.symmetry import Symmetry, Tapering, commuting_z_masks, independent, lightest, sector_value, taper_by
 from thalweg.operators.fermion import FermionHamiltonian, Sector
@@ -62,7 +62,8 @@ class EncodedSystem:
 
         Amplitudes outside the tapered sector are left out: what a row lacks of norm 1 is the weight lost.
         """
-        assert self.linear is not None and self.sector is not None
+        assert self.linear is not None
+        assert self.sector is not None
         alpha, beta = determinant_masks(self.sector)
         occupations = interleave(alpha)[:, None] | interleave(beta)[:, None].T << np.uint64(1)
         states = np.asarray(vectors) * order_signs(alpha, beta)
@@ -105,7 +106,7 @@ def encode_fermions(hamiltonian: FermionHamiltonian, settings: EncodingSettings)
     alpha, beta = (np.array([mask], np.uint64) for mask in hamiltonian.reference)
     occupied = interleave(alpha) | interleave(beta) << np.uint64(1)
     reference = int(linear.encode(occupied)[0])
-    tapering, symmetries = Tapering(full.n_qubits), ()
+    tapering, symmetries = _nothing_removed(full.n_qubits)
     if settings.taper:
         tapering, symmetries = _fermion_symmetries(hamiltonian, linear, full, reference)
     working = tapering.expansion(full)
@@ -131,7 +132,7 @@ def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, referenc
     A Hamiltonian without any X or Y is left whole: each qubit would be a symmetry and nothing would remain to be searched.
     """
     diagonal = not np.any(expansion.x)
-    tapering, symmetries = Tapering(expansion.n_qubits), ()
+    tapering, symmetries = _nothing_removed(expansion.n_qubits)
     if settings.taper and not diagonal:
         masks = commuting_z_masks(expansion)
         tapering = taper_by(expansion.n_qubits, masks, reference_bits)
@@ -146,6 +147,10 @@ def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, referenc
         int(tapering.strip(np.array([reference_bits], np.uint64))[0]),
         remarks=(DIAGONAL_NOTE,) if settings.taper and diagonal else (),
     )
+
+
+def _nothing_removed(n_qubits: int) -> tuple[Tapering, tuple[Symmetry, ...]]:
+    return Tapering(n_qubits), ()
 
 
 def _fermion_symmetries(

@@ -45,7 +45,7 @@ def order_signs(alpha: MaskArray, beta: MaskArray) -> FloatArray:
         has = (alpha >> np.uint64(p) & ONE).astype(np.uint8)
         below = np.bitwise_count(beta & np.uint64((1 << p) - 1)) & 1
         odd ^= has[:, None] & below[None, :]
-    return 1.0 - 2.0 * odd
+    return 1.0 - 2.0 * odd.astype(np.float64)
 
 
 def occupation_text(alpha: int, beta: int, n_orbitals: int) -> str:

@@ -178,7 +178,7 @@ def _write_one_spin(
                 at = _emit(x, z, c, at, cut, u, z0, 0.5 * f[q, r])
                 at = _emit(x, z, c, at, cut, u, z1, -0.5 * f[q, r])
                 for p in range(m):
-                    if p == q or p == r:
+                    if p in (q, r):
                         continue
                     weight = 0.25 * (g[p, q, p, r] - g[p, p, q, r])
                     z_p = flip[2 * p + spin]
@@ -253,7 +253,9 @@ def _write_both_spins(
 
 
 @njit(cache=True, nogil=True)
-def ladder_strings(modes: IntArray, creates: np.ndarray, update: MaskArray, flip: MaskArray, parity: MaskArray) -> tuple[int, MaskArray, FloatArray]:
+def ladder_strings(
+    modes: IntArray, creates: np.ndarray, update: MaskArray, flip: MaskArray, parity: MaskArray
+) -> tuple[np.uint64, MaskArray, FloatArray]:
     """The product of ladder operators on k distinct modes, the last one acting first, as X^x sum_j c_j Z^z_j.
 
     Args:

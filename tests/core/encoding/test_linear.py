@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from support.dense import expansion_matrix
 from support.molecules import random_hamiltonian, stored_molecule
-
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.encoding.interchange import to_fermion_operator, to_qubit_operator
 from thalweg.encoding.linear import linear_encoding, map_hamiltonian, number_operator, s_squared_operator, s_z_operator
 from thalweg.errors import StudyError
+from thalweg.operators.fermion import Sector
 
 ALL = [kind() for kind in ENCODINGS]
 
@@ -35,7 +37,7 @@ def largest_difference(left, right) -> float:
 @pytest.mark.parametrize("encoding", ALL, ids=lambda e: e.key)
 @pytest.mark.parametrize("name", ["H2_sto-3g_singlet_0.7414", "H1-Li1_sto-3g_singlet_1.45", "H2_6-31g_singlet_0.75"])
 def test_molecule_maps_as_openfermion_maps_it(name, encoding):
-    data, hamiltonian = stored_molecule(name)
+    _, hamiltonian = stored_molecule(name)
     n = 2 * hamiltonian.n_orbitals
     expected = oracle(encoding.key, to_fermion_operator(hamiltonian), n)
     mine = to_qubit_operator(map_hamiltonian(hamiltonian, linear_encoding(encoding, n)))
@@ -98,7 +100,7 @@ def test_observables_equal_those_of_openfermion(encoding, m):
         assert np.allclose(matrix, plain[np.ix_(reverse, reverse)], atol=1e-13)
 
 
-def test_largest_register_maps_with_every_string_once():
+def test_every_string_is_written_once_and_in_order():
     hamiltonian = random_hamiltonian(7, 2, 2, 3)
     expansion = map_hamiltonian(hamiltonian, linear_encoding(ParityEncoding(), 14))
     pairs = set(zip(expansion.x.tolist(), expansion.z.tolist(), strict=True))
@@ -119,10 +121,6 @@ def test_sixty_two_qubits_keep_the_reference_energy():
     one_body[far] = hamiltonian.one_body
     two_body[np.ix_(*[[3, 30]] * 4)] = hamiltonian.two_body
     small = to_qubit_operator(map_hamiltonian(hamiltonian, linear_encoding(JordanWigner(), 4)))
-    from dataclasses import replace
-
-    from thalweg.operators.fermion import Sector
-
     wide = replace(hamiltonian, one_body=one_body, two_body=two_body, sector=Sector(m, 1, 1), orbital_irreps=np.zeros(m, np.int64))
     large = map_hamiltonian(wide, linear_encoding(JordanWigner(), 62))
     assert len(large) == len(small.terms)
