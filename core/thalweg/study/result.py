@@ -19,6 +19,7 @@ STOP_REASONS: dict[str, str] = {
     "seconds": "the time limit was reached",
     "line-search": "the line search found no lower point",
     "stopped-by-person": "stopped by hand; the best point so far is kept",
+    "cut-off": "the calculation was cut off; the lowest energy so far is kept",
     "no-parameters": "the trial state has no parameters",
     "not-finite": "the energy became infinite or not a number",
 }
