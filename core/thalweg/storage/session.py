@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import json
-import math
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any, Final, Literal
@@ -14,6 +12,7 @@ from thalweg import __version__
 from thalweg.errors import StudyError
 from thalweg.storage.files import read_limited, write_atomically
 from thalweg.storage.migrations import CURRENT_FORMAT, migrate
+from thalweg.storage.plain_json import first_not_finite, json_text, read_json
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 
@@ -69,8 +68,7 @@ def save_session(session: Session, path: Path) -> None:
     place = first_not_finite(data)
     if place:
         raise StudyError("The session cannot be saved", f"the figure {place} is not a finite number", "Delete that run and save again")
-    text = json.dumps(data, ensure_ascii=False, allow_nan=False, separators=(",", ":"), default=_plain)
-    write_atomically(path, text.encode("utf-8"))
+    write_atomically(path, json_text(data).encode("utf-8"))
 
 
 def load_session(path: Path) -> Session:
@@ -108,7 +106,7 @@ def _object(content: bytes, name: str) -> dict[str, Any]:
     except UnicodeDecodeError as error:
         raise StudyError(f"{name} is not a session", f"byte {error.start} is not UTF-8 text", "Open a file that Thalweg has saved") from None
     try:
-        data = json.loads(text, parse_constant=_refuse_constant, parse_float=_finite)
+        data = read_json(text)
     except RecursionError:
         raise StudyError(f"{name} is damaged", "it is nested too deeply", "Go back to an undamaged copy") from None
     except ValueError as error:
@@ -117,35 +115,3 @@ def _object(content: bytes, name: str) -> dict[str, Any]:
     if not isinstance(data, dict):
         raise StudyError(f"{name} is not a session", "a session is one JSON object", "Open a file that Thalweg has saved")
     return data
-
-
-def _refuse_constant(text: str) -> float:
-    raise ValueError(f"{text} is not a number that JSON knows")
-
-
-def _finite(text: str) -> float:
-    value = float(text)
-    if not math.isfinite(value):
-        raise ValueError(f"{text} is too large for a number")
-    return value
-
-
-def first_not_finite(node: Any, place: str = "") -> str:
-    """Dotted place of the first infinite or undefined float in plain data; empty when there is none."""
-    if isinstance(node, float):
-        return "" if math.isfinite(node) else place
-    if isinstance(node, dict):
-        pairs: Any = node.items()
-    elif isinstance(node, list | tuple):
-        pairs = enumerate(node)
-    else:
-        return ""
-    return next((found for key, item in pairs if (found := first_not_finite(item, f"{place}.{key}" if place else str(key)))), "")
-
-
-def _plain(value: Any) -> Any:
-    if isinstance(value, datetime):
-        return value.isoformat()
-    if hasattr(value, "tolist"):  # numpy scalars and arrays among the facts
-        return value.tolist()
-    raise TypeError(f"{type(value).__name__} has no place in a session")
