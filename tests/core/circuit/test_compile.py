@@ -16,7 +16,7 @@ from thalweg.encoding.encoded import encode_fermions
 from thalweg.encoding.occupations import determinant_masks, interleave, order_signs
 from thalweg.operators.fermion import FermionHamiltonian
 
-ALL = [kind for kind in ENCODINGS]
+ALL = list(ENCODINGS)
 
 
 def program_of(hamiltonian: FermionHamiltonian, excitations: list[Excitation]) -> ExcitationProgram:
