@@ -2,9 +2,20 @@
 
 from __future__ import annotations
 
+from itertools import combinations
 from typing import ClassVar, Literal
 
+import numpy as np
+
+from thalweg.ansatz.ground import Ground
+from thalweg.arrays import FloatArray
+from thalweg.circuit.program import Gate, GateProgram
 from thalweg.options import Options, option
+
+#: Width in radians of the `small-random` start.
+SMALL_WIDTH = 0.1
+
+_Row = tuple[Gate, int, int, int, float]  # kind, x, z, parameter, factor
 
 
 class HardwareEfficient(Options):
@@ -20,3 +31,59 @@ class HardwareEfficient(Options):
     start: Literal["zero", "small-random", "uniform-random"] = option(
         "small-random", "Start", "Zero angles, normal angles of width 0.1, or uniform angles over the whole circle."
     )
+
+    def build(self, ground: Ground) -> GateProgram:
+        """Rotations on every qubit before the first and after each entangling layer, each with its own parameter.
+
+        At zero angles the reference comes out unchanged up to its sign, because CZ is diagonal.
+        """
+        n = ground.qubits.n_qubits
+        pairs = entangled_pairs(n, self.entangler)
+        rows: list[_Row] = []
+        labels: list[str] = []
+        for layer in range(self.depth + 1):
+            if layer:
+                rows += [(Gate.CZ, 1 << a, 1 << b, -1, 0.0) for a, b in pairs]
+            self._rotation_layer(n, layer, rows, labels)
+        kind, x, z, parameter, factor = zip(*rows, strict=True) if rows else ((),) * 5
+        return GateProgram(
+            n_qubits=n,
+            reference=ground.reference_bits,
+            kind=np.array(kind, dtype=np.uint8),
+            x=np.array(x, dtype=np.uint64),
+            z=np.array(z, dtype=np.uint64),
+            parameter=np.array(parameter, dtype=np.int64),
+            factor=np.array(factor, dtype=np.float64),
+            n_parameters=len(labels),
+            order=self._order(),
+            parameter_labels=tuple(labels),
+        )
+
+    def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
+        """Angles in radians, shape (K,)."""
+        if self.start == "zero":
+            return np.zeros(program.n_parameters)
+        if self.start == "small-random":
+            return rng.normal(0.0, SMALL_WIDTH, program.n_parameters)
+        return rng.uniform(-np.pi, np.pi, program.n_parameters)
+
+    def _rotation_layer(self, n: int, layer: int, rows: list[_Row], labels: list[str]) -> None:
+        where = f"after entangling layer {layer}" if layer else "before the first entangling layer"
+        for axis in self.rotations.upper().split("-"):
+            for q in range(n):
+                x = 1 << q if axis == "RY" else 0
+                rows.append((Gate.ROTATION, x, 1 << q, len(labels), 1.0))
+                labels.append(f"{axis} on qubit {q} {where}")
+
+    def _order(self) -> str:
+        rotations = " then ".join(self.rotations.upper().split("-"))
+        joined = {"line": "along a line", "ring": "around a ring", "all-pairs": "between all pairs"}[self.entangler]
+        return f"{rotations} on every qubit; then {self.depth} times: CZ {joined}, {rotations} on every qubit"
+
+
+def entangled_pairs(n: int, entangler: str) -> list[tuple[int, int]]:
+    """The pairs of qubits of one entangling layer. A ring of two qubits has one bond, not two."""
+    if entangler == "all-pairs":
+        return list(combinations(range(n), 2))
+    pairs = [(q, q + 1) for q in range(n - 1)]
+    return [*pairs, (0, n - 1)] if entangler == "ring" and n > 2 else pairs

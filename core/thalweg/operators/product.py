@@ -94,7 +94,10 @@ class ExpansionProduct:
 
 def product_bytes(expansion: PauliExpansion) -> int:
     """Upper bound of `ExpansionProduct.memory_bytes`, before anything is allocated."""
-    return ROW_BYTES + 2 * MATRIX_BYTES + 64 * len(expansion)
+    terms, size = len(expansion), 1 << expansion.n_qubits
+    rows = min(ROW_BYTES, (terms * 8) << min(BLOCK_BITS, expansion.n_qubits))
+    matrix = min(MATRIX_BYTES, 12 * terms * size) + 16 * size if np.unique(expansion.x).size * size <= MATRIX_BYTES else 0
+    return rows + matrix + 64 * terms
 
 
 def _sum_parts(part: Any, count: int, step: int, watch: Watch) -> float:

@@ -1,0 +1,188 @@
+"""The register engine against dense matrices, the shift rule, and the reference library for second quantisation."""
+
+import numpy as np
+import pytest
+from scipy.linalg import expm
+from thalweg.circuit.program import Gate, GateProgram
+from thalweg.errors import Stopped, StudyError
+from thalweg.operators.pauli import PauliExpansion, collect_terms
+from thalweg.simulate.register import RegisterEngine
+from thalweg.watch import Watch
+
+ONE = {
+    (0, 0): np.eye(2),
+    (1, 0): np.array([[0, 1], [1, 0]]),
+    (0, 1): np.diag([1, -1]),
+    (1, 1): np.array([[0, -1j], [1j, 0]]),
+}
+
+
+def pauli_matrix(n, x, z):
+    matrix = np.eye(1)
+    for q in range(n):
+        matrix = np.kron(ONE[x >> q & 1, z >> q & 1], matrix)  # qubit 0 is the least significant
+    return matrix
+
+
+def dense(expansion):
+    terms = zip(expansion.x.tolist(), expansion.z.tolist(), expansion.coefficients, strict=True)
+    return sum((c * pauli_matrix(expansion.n_qubits, x, z) for x, z, c in terms), np.zeros((1 << expansion.n_qubits,) * 2, complex))
+
+
+def gate_matrix(n, kind, x, z, angle):
+    """Each gate by its textbook definition (Nielsen and Chuang, chapter 4)."""
+    if kind == Gate.ROTATION:
+        return expm(-0.5j * angle * pauli_matrix(n, x, z))
+    if kind == Gate.HADAMARD:
+        return (pauli_matrix(n, x, 0) + pauli_matrix(n, 0, x)) / np.sqrt(2)
+    identity, z_first = np.eye(1 << n), pauli_matrix(n, 0, x)
+    flip = pauli_matrix(n, 0, z) if kind == Gate.CZ else pauli_matrix(n, z, 0)
+    return (identity + z_first) / 2 + (identity - z_first) / 2 @ flip
+
+
+def dense_state(program, parameters):
+    state = np.zeros(1 << program.n_qubits, dtype=complex)
+    state[program.reference] = 1
+    rows = zip(program.kind.tolist(), program.x.tolist(), program.z.tolist(), program.parameter.tolist(), program.factor.tolist(), strict=True)
+    for kind, x, z, k, factor in rows:
+        state = gate_matrix(program.n_qubits, kind, x, z, factor if k < 0 else factor * parameters[k]) @ state
+    return state
+
+
+def random_expansion(rng, n, terms):
+    x, z = (rng.integers(0, 1 << n, terms, dtype=np.uint64) for _ in range(2))
+    return collect_terms(n, x, z, rng.normal(size=terms))
+
+
+def random_program(rng, n, gates, n_parameters=5):
+    """Every kind of gate; rotations of any weight, with shared, fixed and differently scaled angles."""
+    kinds = [Gate.ROTATION] * 3 + [Gate.HADAMARD] + ([Gate.CZ, Gate.CNOT] if n > 1 else [])
+    rows = []
+    for _ in range(gates):
+        kind = kinds[rng.integers(len(kinds))]
+        if kind == Gate.ROTATION:
+            style = rng.integers(4)
+            x, z = (int(v) for v in rng.integers(0, 1 << n, 2))
+            qubit = 1 << int(rng.integers(n))
+            x, z = [(x, z), (qubit, qubit), (0, qubit), (0, z)][style]
+            rows.append((kind, x, z, int(rng.integers(-1, n_parameters)), float(rng.normal())))
+        elif kind == Gate.HADAMARD:
+            rows.append((kind, 1 << int(rng.integers(n)), 0, -1, 0.0))
+        else:
+            a, b = rng.choice(n, 2, replace=False)
+            rows.append((kind, 1 << int(a), 1 << int(b), -1, 0.0))
+    kind, x, z, parameter, factor = zip(*rows, strict=True)
+    return GateProgram(
+        n,
+        int(rng.integers(1 << n)),
+        np.array(kind, np.uint8),
+        np.array(x, np.uint64),
+        np.array(z, np.uint64),
+        np.array(parameter, np.int64),
+        np.array(factor, float),
+        n_parameters,
+    )
+
+
+@pytest.mark.parametrize("seed", range(4))
+@pytest.mark.parametrize("n", [1, 2, 3, 4, 5, 6])
+def test_states_and_energies_agree_with_dense_matrices(n, seed):
+    rng = np.random.default_rng([n, seed])
+    program, hamiltonian = random_program(rng, n, 40), random_expansion(rng, n, 30)
+    parameters = rng.normal(size=program.n_parameters)
+    engine = RegisterEngine(hamiltonian, program)
+    expected = dense_state(program, parameters)
+    state = engine.state(parameters)
+    np.testing.assert_allclose(state, expected, atol=1e-12)
+    assert np.linalg.norm(state) == pytest.approx(1.0, abs=1e-12)
+    energy = np.vdot(expected, dense(hamiltonian) @ expected).real
+    assert engine.energy(parameters) == pytest.approx(energy, abs=1e-12)
+    assert engine.energy_and_gradient(parameters)[0] == pytest.approx(energy, abs=1e-12)
+
+
+@pytest.mark.parametrize("n", [1, 3, 6])
+def test_gradient_agrees_with_central_differences(n):
+    rng = np.random.default_rng(n)
+    program = random_program(rng, n, 30)
+    engine = RegisterEngine(random_expansion(rng, n, 30), program)
+    parameters = rng.normal(size=program.n_parameters)
+    gradient = engine.energy_and_gradient(parameters)[1]
+    step = 1e-5
+    for k, direction in enumerate(np.eye(program.n_parameters) * step):
+        difference = (engine.energy(parameters + direction) - engine.energy(parameters - direction)) / (2 * step)
+        assert gradient[k] == pytest.approx(difference, abs=1e-8)
+
+
+def test_gradient_agrees_with_the_two_term_shift_rule():
+    """dE/dtheta = (E(theta + pi/2) - E(theta - pi/2)) / 2 for exp(-i theta/2 P) (Mitarai et al. 2018; Schuld et al. 2019)."""
+    rng = np.random.default_rng(11)
+    n, gates = 5, 24
+    x, z = (rng.integers(0, 1 << n, gates, dtype=np.uint64) for _ in range(2))
+    program = GateProgram(n, 9, np.zeros(gates, np.uint8), x, z, np.arange(gates), np.ones(gates), gates)
+    engine = RegisterEngine(random_expansion(rng, n, 25), program)
+    parameters = rng.uniform(-np.pi, np.pi, gates)
+    gradient = engine.energy_and_gradient(parameters)[1]
+    for k, shift in enumerate(np.eye(gates) * np.pi / 2):
+        assert gradient[k] == pytest.approx((engine.energy(parameters + shift) - engine.energy(parameters - shift)) / 2, abs=1e-12)
+
+
+def test_facts_agree_with_dense_matrices():
+    rng = np.random.default_rng(5)
+    n = 4
+    program = random_program(rng, n, 30)
+    hamiltonian, number, s_z, s_squared = (random_expansion(rng, n, 12) for _ in range(4))
+    engine = RegisterEngine(hamiltonian, program, number=number, s_z=s_z, s_squared=s_squared, label=lambda bits: f"<{bits}>")
+    parameters = rng.normal(size=program.n_parameters)
+    state, matrix = dense_state(program, parameters), dense(hamiltonian)
+    vectors = np.linalg.eigh(matrix)[1].T[:2]
+    facts = engine.facts(parameters, vectors)
+    for value, observable in ((facts.n_electrons, number), (facts.s_z, s_z), (facts.s_squared, s_squared)):
+        assert value == pytest.approx(np.vdot(state, dense(observable) @ state).real, abs=1e-12)
+    mean = np.vdot(state, matrix @ state).real
+    assert facts.variance == pytest.approx(np.vdot(state, matrix @ matrix @ state).real - mean**2, abs=1e-11)
+    assert facts.fidelity == pytest.approx(sum(abs(np.vdot(v, state)) ** 2 for v in vectors), abs=1e-12)
+    weights = np.abs(state) ** 2
+    order = np.argsort(-weights)
+    assert [entry.label for entry in facts.leading] == [f"<{bits}>" for bits in order[: len(facts.leading)]]
+    assert facts.leading[0].weight == pytest.approx(weights[order[0]], abs=1e-12)
+    assert facts.leading[0].exact_weight == pytest.approx(np.mean(np.abs(vectors[:, order[0]]) ** 2), abs=1e-12)
+
+
+def test_facts_without_observables_and_exact_vectors_are_unknown():
+    program = random_program(np.random.default_rng(2), 2, 5)
+    facts = RegisterEngine(random_expansion(np.random.default_rng(3), 2, 5), program).facts(np.zeros(5), None)
+    assert (facts.n_electrons, facts.s_z, facts.s_squared, facts.fidelity) == (None,) * 4
+    assert facts.leading[0].exact_weight is None
+    assert set(facts.leading[0].label) <= {"0", "1"}
+
+
+def test_an_eigenstate_has_no_variance():
+    z = PauliExpansion(3, np.zeros(3, np.uint64), np.array([1, 2, 4], np.uint64), np.array([1e3, 2e3, 3e3]))
+    empty = np.empty(0, np.uint64)
+    program = GateProgram(3, 5, np.empty(0, np.uint8), empty, empty, np.empty(0, np.int64), np.empty(0), 0)
+    engine = RegisterEngine(z, program)
+    assert engine.energy(np.empty(0)) == pytest.approx(-1e3 + 2e3 - 3e3)
+    assert engine.facts(np.empty(0), None).variance == pytest.approx(0.0, abs=1e-18)
+
+
+def test_a_register_past_the_budget_is_refused_with_the_figure():
+    n = 40
+    expansion = PauliExpansion(n, np.zeros(1, np.uint64), np.ones(1, np.uint64), np.ones(1))
+    empty = np.empty(0, np.uint64)
+    program = GateProgram(n, 0, np.empty(0, np.uint8), empty, empty, np.empty(0, np.int64), np.empty(0), 0)
+    with pytest.raises(StudyError, match=r"40 qubits does not fit: it needs 3.28e\+04 GiB of memory and 4 GiB are allowed"):
+        RegisterEngine(expansion, program)
+
+
+def test_memory_is_estimated_from_the_size_of_the_register():
+    rng = np.random.default_rng(0)
+    estimates = [RegisterEngine(random_expansion(rng, n, 3), random_program(rng, n, 3)).memory_bytes() for n in (4, 5)]
+    assert estimates[1] - estimates[0] >= 32 * 16
+
+
+def test_a_stop_ends_an_evaluation():
+    rng = np.random.default_rng(8)
+    engine = RegisterEngine(random_expansion(rng, 3, 5), random_program(rng, 3, 9), watch=Watch(should_stop=lambda: True))
+    for evaluate in (engine.energy, engine.energy_and_gradient, engine.state):
+        with pytest.raises(Stopped):
+            evaluate(np.zeros(5))
