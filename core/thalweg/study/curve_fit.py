@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -54,6 +54,18 @@ class CurveMinimum:
     degree: int
     points: int
     residual: float
+
+    def scaled(self, factor: float) -> CurveMinimum:
+        """The same minimum with the coordinate multiplied by `factor`, as from bohr to angstrom."""
+        return replace(
+            self,
+            r_e=self.r_e * factor,
+            curvature=self.curvature / factor**2,
+            third=self.third / factor**3,
+            fourth=self.fourth / factor**4,
+            first=self.first * factor,
+            last=self.last * factor,
+        )
 
     def sentence(self) -> str:
         return (

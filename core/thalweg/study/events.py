@@ -7,6 +7,7 @@ from typing import Annotated, Literal
 from pydantic import BaseModel, ConfigDict, Field, TypeAdapter
 
 from thalweg.study.result import StudyResult
+from thalweg.study.scan_result import CurvePoint, ScanResult
 
 
 class Event(BaseModel):
@@ -74,5 +75,31 @@ class StoppedEarly(Event):
     kind: Literal["stopped"] = "stopped"
 
 
-AnyEvent = Annotated[Started | Stage | Iteration | Warned | Finished | Failed | StoppedEarly, Field(discriminator="kind")]
+class ScanStarted(Event):
+    """A scan begins; the values of its points are in the unit of the coordinate."""
+
+    kind: Literal["scan-started"] = "scan-started"
+    axis: str
+    unit: str
+    points: tuple[float, ...]
+
+
+class ScanPoint(Event):
+    """A point is new, or a lower energy replaced its first one."""
+
+    kind: Literal["scan-point"] = "scan-point"
+    point: CurvePoint
+    done: int
+    total: int
+
+
+class ScanFinished(Event):
+    kind: Literal["scan-finished"] = "scan-finished"
+    result: ScanResult
+
+
+AnyEvent = Annotated[
+    Started | Stage | Iteration | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
+    Field(discriminator="kind"),
+]
 EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)

@@ -15,7 +15,7 @@ from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine
 from thalweg.study.spec import StudySpec
-from thalweg.systems.prepared import PreparedSystem
+from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
 from thalweg.watch import SILENT, Watch
 
 GIB = 2**30
@@ -67,7 +67,7 @@ class _Recent:
 _systems, _encodings, _products, _answers = _Recent(4), _Recent(4), _Recent(2), _Recent(4)
 
 
-def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | None = None) -> Problem:
+def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> Problem:
     """Works out system, encoding and trial state. `neighbour` seeds the mean field of a scan point.
 
     Raises StudyError for what a person can mend, Stopped when asked to stop.
@@ -82,7 +82,7 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | 
     return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
 
 
-def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: PreparedSystem | None = None) -> PreparedSystem:
+def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
     """The system alone, from the recent ones where it is among them."""
     budget = int(spec.memory_gib * GIB)
     if neighbour is not None:  # the mean field depends on the neighbour, so the settings alone are no key

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import Any
 
 import numpy as np
 
@@ -15,10 +16,10 @@ from thalweg.study.assemble import assemble
 from thalweg.study.events import AnyEvent, Finished, Iteration, Stage, Started, Warned
 from thalweg.study.figures import warnings_of
 from thalweg.study.outcome import Outcome
+from thalweg.study.point_seed import PointSeed
 from thalweg.study.problem import Problem, exact_answer, make_engine, prepare
 from thalweg.study.result import StartRecord, StudyResult, Trace
 from thalweg.study.spec import StudySpec
-from thalweg.systems.prepared import PreparedSystem
 from thalweg.watch import Watch
 
 #: Width of the normal displacement, in radians, of every start after the first when the ansatz itself starts at a fixed point.
@@ -29,21 +30,25 @@ def never() -> bool:
     return False
 
 
-def run(
-    spec: StudySpec,
-    emit: Callable[[AnyEvent], None] = lambda event: None,
-    should_stop: Callable[[], bool] = never,
-    *,
-    neighbour: PreparedSystem | None = None,
-    initial: FloatArray | None = None,
-) -> StudyResult:
+def run(spec: StudySpec, emit: Callable[[AnyEvent], None] = lambda event: None, should_stop: Callable[[], bool] = never) -> StudyResult:
     """Runs one study and returns its result, which is also emitted as `Finished`.
 
-    `neighbour` seeds the mean field and `initial`, shape (K,), replaces the first start's parameters: both serve scans.
     Raises StudyError for what a person can mend, and Stopped when stopped before there is a best point to keep.
     """
+    result, _ = run_from(spec, None, emit, should_stop)
+    emit(Finished(result=result))
+    return result
+
+
+def run_from(
+    spec: StudySpec,
+    seed: PointSeed | None,
+    emit: Callable[[AnyEvent], None] = lambda event: None,
+    should_stop: Callable[[], bool] = never,
+) -> tuple[StudyResult, PointSeed]:
+    """As `run`, from a neighbour's seed where there is one; also returns the seed for the next neighbour."""
     watch = Watch(lambda text, fraction: emit(Stage(text=text, fraction=fraction)), should_stop, lambda text: emit(Warned(text=text)))
-    problem = prepare(spec, watch, neighbour)
+    problem = prepare(spec, watch, seed.mean_field if seed is not None else None)
     for text in warnings_of(problem):
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)
@@ -51,10 +56,9 @@ def run(
     emit(_started(problem, exact))
     watch.stage("Minimising")
     minimisation = Minimisation(problem, engine, exact, emit, should_stop)
-    minimisation.run(initial)
+    minimisation.run(None if seed is None else seed.parameters_for(problem.program))
     result = assemble(problem, exact, engine, minimisation.outcome())
-    emit(Finished(result=result))
-    return result
+    return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
 
 
 class Minimisation:
@@ -124,7 +128,7 @@ class Minimisation:
         problem = self._problem
         if initial is not None and initial.shape == (self._engine.n_parameters,):
             return initial.copy()
-        ansatz = problem.spec.ansatz
+        ansatz: Any = problem.spec.ansatz  # each one takes the kind of program that it builds
         start: FloatArray = ansatz.start_parameters(problem.ground, problem.program, rng)
         if index and ansatz.start in ("zero", "mp2"):  # a fixed point would repeat itself
             start = start + rng.normal(0.0, DISPLACEMENT, start.size)

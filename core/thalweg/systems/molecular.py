@@ -13,7 +13,8 @@ from thalweg.systems.active_space import ActiveSpace, choose_active_space, cut_d
 from thalweg.systems.elements import Element, core_orbitals, formula
 from thalweg.systems.geometry import Atoms, check_geometry, coordinates_in_bohr, elements_of, short_distance_doubt, shortest_distance
 from thalweg.systems.mean_field import MeanField, build_mole, solve
-from thalweg.systems.prepared import OrbitalRow, PreparedSystem, masks, read_only
+from thalweg.systems.orbital_following import follow, seed_of, usable_density
+from thalweg.systems.prepared import MeanFieldSeed, OrbitalRow, PreparedSystem, masks, read_only
 from thalweg.watch import Watch
 
 if TYPE_CHECKING:
@@ -21,11 +22,13 @@ if TYPE_CHECKING:
 
 #: Integrals between irreps whose product is not totally symmetric are zero; larger ones than this (Eh) mean wrong labels.
 _FORBIDDEN_LIMIT = 1e-4
+#: Fact that lists what was said when the orbitals of a neighbour were followed.
+FOLLOWING = "orbital_following"
 #: A frontier gap below this makes the reference one of several like determinants, Eh.
 _SMALL_GAP = 1e-3
 
 
-def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour: PreparedSystem | None) -> PreparedSystem:
+def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour: MeanFieldSeed | None) -> PreparedSystem:
     """See `Molecule.prepare`."""
     check_geometry(spec.atoms, spec.unit)
     elements = elements_of(spec.atoms)
@@ -36,10 +39,10 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     mole = build_mole(symbols, xyz, spec.basis.strip(), spec.charge, n_alpha - n_beta, spec.cartesian, spec.point_group, budget_bytes)
     n_functions = int(mole.nao_nr())
     _check_size(n_functions, mole.nelec[0], budget_bytes)
-    field = solve(mole, watch, _seed(neighbour, n_functions))
+    field = solve(mole, watch, usable_density(neighbour, n_functions))
     watch.stage("integrals")
     n_core = sum(max(0, core_orbitals(e.number) - mole.atom_nelec_core(i) // 2) for i, e in enumerate(elements))
-    space = choose_active_space(spec.active_space, field.occupation, field.energies, n_core)
+    space, following = follow(neighbour, field, choose_active_space(spec.active_space, field.occupation, field.energies, n_core))
     _check_memory(n_functions, len(space.active), budget_bytes, "system.active_space")
     core_energy, one_body, pairs = _active_integrals(field, space)
     irreps, dropped = field.irreps[list(space.active)], 0.0
@@ -54,10 +57,11 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
         energy_unit="hartree",
         reference_name="Hartree-Fock" if mole.spin == 0 else "Hartree-Fock (restricted open shell)",
         reference_energy=fermions.reference_energy,
-        facts=_facts(spec, elements, mole, field, space, core_energy, dropped),
+        facts=_facts(spec, elements, mole, field, space, core_energy, dropped) | ({FOLLOWING: list(following)} if following else {}),
         warnings=_warnings(spec.atoms, spec.unit, field, space),
         ladder=_ladder(field, space),
         mean_field=field.solver,
+        seed=seed_of(field, space),
     )
 
 
@@ -105,14 +109,6 @@ def _check_memory(n_functions: int, n_active: int, budget_bytes: int, field: str
             "Take a smaller basis set or active space, or raise the memory budget",
             field,
         )
-
-
-def _seed(neighbour: PreparedSystem | None, n_functions: int) -> FloatArray | None:
-    """Density matrix of a neighbouring geometry if it has the same number of functions."""
-    if neighbour is None or neighbour.mean_field is None:
-        return None
-    density = np.asarray(neighbour.mean_field.make_rdm1())
-    return density if density.shape[-1] == n_functions else None
 
 
 def _active_integrals(field: MeanField, space: ActiveSpace) -> tuple[float, FloatArray, FloatArray]:
@@ -234,9 +230,9 @@ def _gap(field: MeanField) -> float | None:
 
 def _ladder(field: MeanField, space: ActiveSpace) -> tuple[OrbitalRow, ...]:
     active, core = set(space.active), set(space.core)
+    irreps = [field.irrep_names[i] if field.irrep_names else "" for i in field.irreps.tolist()]
     return tuple(
-        OrbitalRow(p + 1, float(field.energies[p]), float(field.occupation[p]), field.row_names[p], p in active, p in core)
-        for p in range(field.energies.size)
+        OrbitalRow(p + 1, float(field.energies[p]), float(field.occupation[p]), irreps[p], p in active, p in core) for p in range(field.energies.size)
     )
 
 
@@ -246,9 +242,8 @@ def _formula(elements: tuple[Element, ...], charge: int) -> str:
 
 
 def _group_title(mole: Any) -> str:
-    names = {"Dooh": "D∞h", "Coov": "C∞v", "SO3": "K"}
-    full, used = names.get(mole.topgroup, mole.topgroup), {"Dooh": "D2h", "Coov": "C2v"}.get(mole.groupname, mole.groupname)
-    return full if full == used else f"{full} (used as {used})"
+    full = {"Dooh": "D∞h", "Coov": "C∞v", "SO3": "K"}.get(mole.topgroup, mole.topgroup)
+    return full if full == mole.groupname else f"{full} (used as {mole.groupname})"
 
 
 def _basis_title(basis: str) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import ClassVar, Literal
 
 from thalweg.options import Options, option
-from thalweg.systems.prepared import DEFAULT_BUDGET, PreparedSystem
+from thalweg.systems.prepared import DEFAULT_BUDGET, MeanFieldSeed, PreparedSystem
 from thalweg.watch import SILENT, Watch
 
 
@@ -28,8 +28,10 @@ class Molecule(Options):
     cartesian: bool = option(False, "Cartesian functions", "Cartesian instead of spherical d and f functions.", advanced=True)
     point_group: bool = option(True, "Point group", "Use the (Abelian) point group of the geometry.", advanced=True)
 
-    def prepare(self, watch: Watch = SILENT, *, budget_bytes: int = DEFAULT_BUDGET, neighbour: PreparedSystem | None = None) -> PreparedSystem:
-        """Mean field, integrals and active space. The density matrix of `neighbour` (another geometry of the same molecule) seeds the mean field.
+    def prepare(self, watch: Watch = SILENT, *, budget_bytes: int = DEFAULT_BUDGET, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
+        """Mean field, integrals and active space.
+
+        The density of `neighbour` (another geometry of the same molecule) seeds the mean field, and its active orbitals are followed.
 
         Raises StudyError for whatever cannot be computed, with the setting at fault; Stopped when the watch says so.
         """

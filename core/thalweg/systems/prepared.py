@@ -28,6 +28,28 @@ class OrbitalRow:
 
 
 @dataclass(frozen=True)
+class MeanFieldSeed:
+    """What a neighbouring geometry takes over: plain arrays, so that it travels between processes.
+
+    Attributes:
+        density: density matrix in the basis, (functions,) * 2, or (2,) + that for open shells.
+        orbitals: S^(1/2) C, shape (functions, orbitals): coefficients in symmetrically orthogonalised functions.
+        occupation: 2, 1 or 0 for each orbital.
+        core, active: orbitals counted from 0.
+        energy: of the mean field, Eh.
+        follow: pick the neighbour's active orbitals by overlap instead of those that the description of the space picks.
+    """
+
+    density: Any
+    orbitals: Any
+    occupation: Any
+    core: tuple[int, ...]
+    active: tuple[int, ...]
+    energy: float
+    follow: bool = True
+
+
+@dataclass(frozen=True)
 class PreparedSystem:
     """Read-only ground on which encoding, trial state and exact answer stand.
 
@@ -41,6 +63,7 @@ class PreparedSystem:
         warnings: sentences to stand beside every number.
         ladder: orbital rungs, empty where there is no mean field.
         mean_field: the PySCF object for classical reference methods; never serialised.
+        seed: what a neighbouring geometry may take over; None where there is no mean field.
         reference_bits: basis state that a spin model's circuit starts from, bit q = 1 is spin down (Z = -1) on qubit q.
         reference_kind: what is prepared from those bits: `bits`, `plus` (every qubit in |+>), `singlets` (dimer singlets); empty for fermions.
         reference_pairs: the pairs of sites that form singlets when `reference_kind` is `singlets`.
@@ -57,6 +80,7 @@ class PreparedSystem:
     warnings: tuple[str, ...] = ()
     ladder: tuple[OrbitalRow, ...] = ()
     mean_field: Any = None
+    seed: MeanFieldSeed | None = None
     reference_bits: int = 0
     reference_kind: str = ""
     reference_pairs: tuple[tuple[int, int], ...] = ()

@@ -10,9 +10,8 @@ from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
 from thalweg.options import Options
 from thalweg.study.spec import StudySpec
-from thalweg.systems.geometry import bonds_of
+from thalweg.systems.geometry import bonds
 from thalweg.systems.molecule import Molecule
-from thalweg.units import LENGTH_UNITS
 
 
 class ScanPath(Options):
@@ -61,8 +60,7 @@ def positions_of(molecule: Molecule) -> FloatArray:
 
 def bond_graph(molecule: Molecule) -> list[tuple[int, int]]:
     """Bonds by covalent radii, zero-based."""
-    scale = 1.0 / LENGTH_UNITS[molecule.unit]
-    return list(bonds_of(tuple(atom[0] for atom in molecule.atoms), positions_of(molecule) * scale))
+    return list(bonds(molecule.atoms, molecule.unit))
 
 
 def with_positions(spec: StudySpec, positions: FloatArray) -> StudySpec:
