@@ -34,19 +34,19 @@ class Run(SessionPart):
 
     number: int = Field(ge=1, description="Number of the run in its session, counted from 1; not given twice.")
     result: StudyResult
-    note: str = Field("", description="The person's own remark.")
+    note: str = Field(default="", description="The person's own remark.")
 
 
 class Session(SessionPart):
     """Everything that a colleague needs to see the same pictures without running again, and to run again."""
 
-    format: Literal[1] = Field(CURRENT_FORMAT, description="Format number of this file.")
+    format: Literal[1] = Field(default=CURRENT_FORMAT, description="Format number of this file.")
     program: Literal["thalweg"] = PROGRAM
     program_version: str = Field(default_factory=lambda: __version__, description="The version that saved the file last.")
     name: str = ""
     created: datetime = Field(default_factory=now, description="ISO 8601, with offset.")
     modified: datetime = Field(default_factory=now, description="ISO 8601, with offset.")
-    setup: StudySpec | None = Field(None, description="The set-up as it was last edited.")
+    setup: StudySpec | None = Field(default=None, description="The set-up as it was last edited.")
     runs: tuple[Run, ...] = ()
 
     @model_validator(mode="after")

@@ -37,7 +37,8 @@ def repeat(first: StudyResult, emit: Callable[[AnyEvent], None] = lambda event: 
     A start that was ended by hand or by the clock is ended after the same number of iterations, and its lowest iterates are compared.
     """
     ends = OuterEnds(first)
-    spec = first.spec.model_copy(update={"stop": first.spec.stop.model_copy(update={"seconds": 0.0})})
+    stop_rules = first.spec.stop.model_copy(update={"seconds": 0.0})
+    spec = first.spec.model_copy(update={"stop": stop_rules, "starts": len(first.starts)})
 
     def watch(event: AnyEvent) -> None:
         ends.take(event)
@@ -77,7 +78,7 @@ class OuterEnds:
 
 def _compare(first: StudyResult, second: StudyResult, *, outer: bool) -> Repetition:
     if outer:
-        deviation, compared = abs(lowest_iterate(second) - lowest_iterate(first)), "lowest iterate of a run that was ended from outside"
+        deviation, compared = abs(lowest_iterate(second, first) - lowest_iterate(first, first)), "lowest iterate of a run that was ended from outside"
     else:
         deviation, compared = abs(second.energy - first.energy), "energy"
     exact = None
@@ -86,6 +87,7 @@ def _compare(first: StudyResult, second: StudyResult, *, outer: bool) -> Repetit
     return Repetition(result=second, deviation=deviation, exact_deviation=exact, compared=compared)
 
 
-def lowest_iterate(result: StudyResult) -> float:
-    """The lowest energy among the reported iterates of all starts."""
-    return min(energy for start in result.starts for energy in start.trace.energy)
+def lowest_iterate(result: StudyResult, first: StudyResult) -> float:
+    """The lowest energy among the iterates of all starts, as far as each start of `first` went."""
+    pairs = zip(result.starts, first.starts, strict=True)
+    return min(energy for start, until in pairs for energy in start.trace.energy[: until.iterations + 1])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import pytest
+
 from thalweg.study.result import LeadingWeight, StartRecord, StudyResult, Trace
 from thalweg.study.spec import StudySpec
 from thalweg.systems import Molecule

@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+
 from thalweg.errors import StudyError
 from thalweg.storage import files
 from thalweg.storage.migrations import CURRENT_FORMAT, migrate

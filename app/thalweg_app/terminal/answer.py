@@ -1,0 +1,172 @@
+"""What the terminal prints: the verdict first, then aligned figures with their units, and the remarks that belong to them."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from typing import Any
+
+from thalweg.study.figures import StudyFigures
+from thalweg.study.result import STOP_REASONS, StudyResult
+from thalweg.units import HARTREE_IN_KCAL_PER_MOL
+from thalweg_app.presenters.wording import bytes_text, counted, significant, unit_name
+
+Rows = list[tuple[str, str]]
+
+
+def answer_lines(result: StudyResult) -> list[str]:
+    """The answer of one run."""
+    rows = [*_energy_rows(result), *_state_rows(result), *_cost_rows(result), *_search_rows(result)]
+    remarks = [f"Remark: {remark}" for remark in result.remarks]
+    return [_ended(result.verdict), "", *aligned(rows), *([""] if remarks else []), *remarks]
+
+
+def figures_lines(figures: StudyFigures) -> list[str]:
+    """What `inspect` prints: the figures of a study that has not been run."""
+    unit = unit_name(figures.energy_unit)
+    rows: Rows = [("System", figures.label), (figures.reference_name, _energy(figures.reference_energy, unit))]
+    if figures.n_electrons is not None:
+        rows += [
+            ("Electrons", f"{figures.n_electrons} active"),
+            ("Orbitals", f"{figures.n_orbitals} active"),
+            ("Sector", f"{figures.sector_dimension:,} determinants: {figures.sector}"),
+        ]
+    rows += _qubit_rows(figures.qubits, figures.qubits_before_tapering, figures.terms, figures.one_norm, figures.largest_weight, unit)
+    rows += [("Symmetry", text) for text in figures.symmetries]
+    rows += [("Parameters", f"{figures.parameters:,} ({counted(figures.factors, 'factor')})")]
+    if figures.two_qubit_gates is not None:
+        rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
+    rows += [("Memory", bytes_text(figures.memory_bytes)), ("Operator order", figures.operator_order)]
+    rows += [(_words(name), _fact(value)) for name, value in figures.facts.items()]
+    warnings = [f"Warning: {text}" for text in figures.warnings]
+    return [*aligned(rows), *_ladder(figures), *([""] if warnings else []), *warnings]
+
+
+def aligned(rows: Iterable[tuple[str, str]]) -> list[str]:
+    """Names in one column, figures in the next; empty figures are left out."""
+    kept = [(name, text) for name, text in rows if text]
+    width = max((len(name) for name, _ in kept), default=0)
+    return [f"{name:<{width}}  {text}" for name, text in kept]
+
+
+def difference_text(value: float, energy_unit: str) -> str:
+    """`0.0110 mEh = 0.0069 kcal/mol`; other units plain."""
+    if energy_unit != "hartree":
+        return f"{significant(value)} {unit_name(energy_unit)}"
+    return f"{significant(value * 1e3)} mEh = {significant(value * HARTREE_IN_KCAL_PER_MOL)} kcal/mol"
+
+
+def _energy(value: float, unit: str) -> str:
+    return f"{value:.8f} {unit}"
+
+
+def _energy_rows(result: StudyResult) -> Rows:
+    unit = unit_name(result.energy_unit)
+    spec = result.spec
+    rows = [
+        ("System", result.label),
+        ("Energy", f"{_energy(result.energy, unit)}  ({spec.ansatz.title}, {spec.optimizer.title}, {spec.encoding.title})"),
+    ]
+    if result.exact_energy is not None:
+        several = f", {result.exact_degeneracy}-fold degenerate" if (result.exact_degeneracy or 1) > 1 else ""
+        rows.append(("Exact", f"{_energy(result.exact_energy, unit)}  ({result.exact_method}{several})"))
+    rows.append((result.reference_name, _energy(result.reference_energy, unit)))
+    rows += [
+        (name.upper(), _energy(value, unit) if value is not None else "not available for this system") for name, value in result.classical.items()
+    ]
+    if result.error is not None:
+        target = difference_text(result.target_error, result.energy_unit)
+        rows.append(("Error", f"{difference_text(result.error, result.energy_unit)}  (target {target})"))
+    return rows
+
+
+def _state_rows(result: StudyResult) -> Rows:
+    unit = unit_name(result.energy_unit)
+    rows = []
+    if result.fidelity is not None:
+        rows.append(("Fidelity with exact", f"{result.fidelity:.6f}"))
+    if result.variance is not None:
+        rows.append(("Energy variance", f"{significant(result.variance)} {unit}^2"))
+    if result.n_electrons is not None:
+        rows.append(("Electrons", f"{result.n_electrons:.6g}"))
+    if result.s_z is not None:
+        rows.append(("S_z", f"{result.s_z:.6g}"))
+    if result.s_squared is not None:
+        exact = f"  (exact {result.exact_s_squared:.6g})" if result.exact_s_squared is not None else ""
+        rows.append(("S^2", f"{_without_dust(result.s_squared):.6g}{exact}"))
+    return rows
+
+
+def _without_dust(value: float) -> float:
+    """Rounding errors around zero read as zero."""
+    return 0.0 if abs(value) < 1e-9 else value
+
+
+def _cost_rows(result: StudyResult) -> Rows:
+    rows = _qubit_rows(
+        result.qubits, result.qubits_before_tapering, result.terms, result.one_norm, result.largest_weight, unit_name(result.energy_unit)
+    )
+    if result.sector_dimension is not None:
+        rows.append(("Sector", counted(result.sector_dimension, "determinant")))
+    rows.append(("Parameters", f"{result.parameters:,}"))
+    if result.two_qubit_gates is not None:
+        rows.append(("Two-qubit gates", f"{result.two_qubit_gates:,}"))
+    return rows
+
+
+def _qubit_rows(qubits: int, before: int, terms: int, one_norm: float, weight: int, unit: str) -> Rows:
+    removed = f"  ({before} before {before - qubits} were removed by Z2 symmetries)" if before != qubits else ""
+    return [
+        ("Qubits", f"{qubits}{removed}"),
+        ("Pauli terms", f"{terms:,}, largest on {counted(weight, 'qubit')}"),
+        ("One-norm", f"{one_norm:.6f} {unit}"),
+    ]
+
+
+def _search_rows(result: StudyResult) -> Rows:
+    unit = unit_name(result.energy_unit)
+    starts = f", best of {len(result.starts)} starts" if len(result.starts) > 1 else ""
+    rows = [
+        ("Stopped because", STOP_REASONS.get(result.stop_reason, result.stop_reason)),
+        ("Evaluations", f"{result.evaluations:,} in {counted(result.iterations, 'iteration')}{starts}"),
+    ]
+    if result.gradient_norm is not None:
+        rows.append(("Largest gradient", f"{significant(result.gradient_norm)} {unit}"))
+    rows.append(("Time", f"{result.seconds:.2f} s, preparation {result.preparation_seconds:.2f} s"))
+    rows += [("Operator order", result.operator_order), ("Seed", str(result.seed))]
+    return rows
+
+
+def _ladder(figures: StudyFigures) -> list[str]:
+    if not figures.ladder:
+        return []
+    head = f"{'Orbital':>7}  {'Energy/Eh':>12}  {'Occupation':>10}  {'Irrep':<6}  Part"
+    lines = [
+        f"{rung.number:>7}  {rung.energy:>12.6f}  {rung.occupation:>10g}  {rung.irrep:<6}  {_part(rung.active, rung.frozen)}"
+        for rung in figures.ladder
+    ]
+    return ["", head, *lines]
+
+
+def _part(active: bool, frozen: bool) -> str:
+    if active:
+        return "active"
+    return "frozen" if frozen else "left out"
+
+
+def _words(name: str) -> str:
+    text = name.replace("_", " ")
+    return text[:1].upper() + text[1:]
+
+
+def _fact(value: Any) -> str:
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if isinstance(value, float):
+        return f"{value:.8g}"
+    if isinstance(value, list | tuple):
+        return ", ".join(_fact(item) for item in value)
+    return "" if value is None else str(value)
+
+
+def _ended(sentence: str) -> str:
+    return sentence if sentence.endswith((".", "!", "?")) else sentence + "."

@@ -1,0 +1,72 @@
+"""`thalweg check`: repeats every run of a session and states the deviation."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from thalweg.errors import StudyError
+from thalweg.storage.session import Run, load_session
+from thalweg.study.repeat import Repetition, repeat
+from thalweg_app.presenters.wording import significant, unit_name
+from thalweg_app.terminal.answer import aligned
+from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.display import make_display
+
+PAST_TOLERANCE = 1
+
+
+@click.command()
+@click.argument("session_file", metavar="SESSION", type=click.Path(path_type=Path))
+@click.option("--tolerance", type=click.FloatRange(min=0.0), default=1e-7, show_default=True, help="Largest deviation allowed, in the energy unit.")
+@click.option("--quiet", is_flag=True, help="Show no progress.")
+def check(session_file: Path, tolerance: float, quiet: bool) -> int:
+    """Repeat every run of SESSION with its own settings and seed, and state how far each answer deviates.
+
+    The exit status is 1 when a deviation is past the tolerance, or a run cannot be repeated.
+    """
+    session = load_session(session_file)
+    if not session.runs:
+        raise StudyError(f"{session_file} has nothing to check", "it holds no run", "Run the study first")
+    worst = 0
+    for run in session.runs:
+        good, status = _check_run(run, tolerance, quiet)
+        if status:
+            return status
+        worst = max(worst, 0 if good else PAST_TOLERANCE)
+    held = "Every run repeats within" if worst == 0 else "Not every run repeats within"
+    click.echo(f"{held} {tolerance:g}.")
+    return worst
+
+
+def _check_run(run: Run, tolerance: float, quiet: bool) -> tuple[bool, int]:
+    """Whether the run held, and the exit status owed to a signal."""
+    first = run.result
+    if not quiet:
+        print(f"Run {run.number} of the session: {first.label}", file=sys.stderr)
+    try:
+        again, status = attend(lambda emit, should_stop: repeat(first, emit, should_stop), make_display(first.spec, quiet=quiet))
+    except StudyError as error:
+        click.echo(f"Run {run.number}  {first.label}: cannot be repeated. {error}")
+        return False, 0
+    if again is None:
+        click.echo(f"Run {run.number}  {first.label}: stopped before it was repeated.")
+        return False, status or 130
+    good = again.within(tolerance)
+    click.echo(f"Run {run.number}  {first.label}: {'repeats' if good else 'PAST TOLERANCE'}")
+    click.echo("\n".join("    " + line for line in aligned(_rows(run, again))))
+    return good, status
+
+
+def _rows(run: Run, again: Repetition) -> list[tuple[str, str]]:
+    first, unit = run.result, unit_name(run.result.energy_unit)
+    rows = [
+        ("Deviation", f"{significant(again.deviation)} {unit} ({again.compared}: {first.energy:.10f} then, {again.result.energy:.10f} now)"),
+        ("Exact energy", f"{significant(again.exact_deviation)} {unit}" if again.exact_deviation is not None else ""),
+    ]
+    changed = [
+        f"{name} {then} -> {again.result.versions.get(name)}" for name, then in first.versions.items() if again.result.versions.get(name) != then
+    ]
+    return [*rows, ("Versions changed", ", ".join(changed))]

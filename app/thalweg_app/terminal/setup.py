@@ -1,0 +1,159 @@
+"""The options that `solve` and `inspect` share, and how they become the settings of a study."""
+
+from __future__ import annotations
+
+import sys
+import tempfile
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any, TypeVar
+
+import click
+
+from thalweg.errors import StudyError
+from thalweg.storage.files import read_limited
+from thalweg.storage.session import is_session, parse_session
+from thalweg.study.spec import SECTIONS, StudySpec, with_setting
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+STANDARD_INPUT = "-"
+MAX_STANDARD_INPUT = 64 * 2**20
+
+#: Terminal option -> the setting that it stands for.
+PLAIN_OPTIONS = {
+    "unit": "system.unit",
+    "charge": "system.charge",
+    "multiplicity": "system.multiplicity",
+    "basis": "system.basis",
+    "encoding": "encoding",
+    "taper": "encoding.taper",
+    "ansatz": "ansatz",
+    "depth": "ansatz.depth",
+    "optimizer": "optimizer",
+    "starts": "starts",
+    "seed": "seed",
+}
+
+
+def setup_options(command: Command) -> Command:
+    """Adds the argument and the options of a set-up to a command."""
+    for add in reversed(_options()):
+        command = add(command)
+    return command
+
+
+def _options() -> list[Callable[[Command], Command]]:
+    choice = {name: click.Choice(alternatives.keys(), case_sensitive=False) for name, alternatives in SECTIONS.items()}
+    return [
+        click.argument("input_name", metavar="INPUT"),
+        click.option("--charge", type=int, help="Total charge."),
+        click.option("--multiplicity", type=int, help="2S + 1: 1 singlet, 2 doublet, 3 triplet."),
+        click.option("--basis", help="Gaussian basis set, e.g. sto-3g, 6-31g, cc-pvdz."),
+        click.option("--unit", type=click.Choice(["angstrom", "bohr"], case_sensitive=False), help="Unit of the coordinates."),
+        click.option("--frozen-core", is_flag=True, help="Freeze the core orbitals."),
+        click.option("--active", metavar="4e,6o", help="Active electrons and orbitals, or a list of orbitals such as 2,3,5-8."),
+        click.option("--encoding", type=choice["encoding"], help="Fermions to qubits."),
+        click.option("--taper/--no-taper", default=None, help="Remove a qubit for each Z2 symmetry."),
+        click.option("--ansatz", type=choice["ansatz"], help="Trial state."),
+        click.option("--depth", type=int, help="Number of layers of a layered circuit."),
+        click.option("--optimizer", type=choice["optimizer"], help="Search for the lowest energy."),
+        click.option("--starts", type=int, help="Number of independent starts; the lowest counts."),
+        click.option("--seed", type=int, help="Seed of every random choice."),
+        click.option("--classical", metavar="mp2,ccsd", help="Classical methods to compute beside: mp2, ccsd, ccsd(t)."),
+        click.option("--set", "settings", multiple=True, metavar="FIELD=VALUE", help="Any other setting, e.g. stop.gradient=1e-8. Repeatable."),
+    ]
+
+
+def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
+    """The settings that the options describe, and notes on how the input was read. StudyError when they do not fit."""
+    unit = options["unit"]
+    spec, notes = read_input(options["input_name"], unit or "angstrom")
+    given = {path: options[name] for name, path in PLAIN_OPTIONS.items() if options[name] is not None}
+    if options["classical"] is not None:
+        given["classical"] = [name.strip().lower() for name in options["classical"].split(",") if name.strip()]
+    if options["frozen_core"] or options["active"] is not None:
+        given["system.active_space"] = _active_space(options["frozen_core"], options["active"])
+    for path, value in given.items():
+        spec = _with_option(spec, path, value)
+    for text in options["settings"]:
+        path, sign, value = text.partition("=")
+        if not sign:
+            raise StudyError(f"--set {text} has no value", "it needs a field and a value", "Write it as --set field=value")
+        spec = with_setting(spec, path.strip(), value.strip())
+    return spec, notes
+
+
+def read_input(name: str, unit: str) -> tuple[StudySpec, tuple[str, ...]]:
+    """A file (geometry, integrals, session), `-` for standard input, or the name of a sample; a file goes before a sample."""
+    if name == STANDARD_INPUT:
+        return _from_standard_input(unit)
+    path = Path(name)
+    if path.exists():
+        return _from_file(path, unit)
+    sample = find_sample(name)
+    if sample is None:
+        raise StudyError(f"There is no file '{name}'", "and no sample has this name", "See `thalweg samples` for the samples, or check the path")
+    spec, notes = _from_file(sample, unit)
+    return spec, (f"Sample {sample.name}", *notes)
+
+
+def find_sample(name: str) -> Path | None:
+    """The sample whose file name, with or without its ending, is `name`; upper and lower case are alike."""
+    from thalweg.paths import data_folder
+
+    wanted = name.lower()
+    for path in sorted(data_folder("sample_systems").iterdir()):
+        if path.is_file() and wanted in (path.name.lower(), path.name.split(".")[0].lower()):
+            return path
+    return None
+
+
+def _from_file(path: Path, unit: str) -> tuple[StudySpec, tuple[str, ...]]:
+    if path.suffix.lower() == ".json" and is_session(content := read_limited(path)):
+        return _from_session(content, path.name)
+    from thalweg.systems.read_file import open_system
+
+    system, notes = open_system(path, unit=unit)
+    return StudySpec(system=system), tuple(notes)
+
+
+def _from_session(content: bytes, name: str) -> tuple[StudySpec, tuple[str, ...]]:
+    session = parse_session(content, name)
+    if session.setup is not None:
+        return session.setup, (f"Set-up of session {name}",)
+    if session.runs:
+        return session.runs[-1].result.spec, (f"Settings of run {session.runs[-1].number} of session {name}",)
+    raise StudyError(f"Session {name} is empty", "it holds neither a set-up nor a run", "Give a geometry or a session with a set-up")
+
+
+def _from_standard_input(unit: str) -> tuple[StudySpec, tuple[str, ...]]:
+    content = sys.stdin.buffer.read(MAX_STANDARD_INPUT + 1)
+    if len(content) > MAX_STANDARD_INPUT:
+        raise StudyError("Standard input is too long", f"the limit is {MAX_STANDARD_INPUT // 2**20} MiB", "Give the name of the file instead")
+    if not content.strip():
+        raise StudyError("Standard input is empty", "nothing was piped in", "Pipe a geometry in, or give the name of a file")
+    if is_session(content):
+        return _from_session(content, "on standard input")
+    with tempfile.TemporaryDirectory() as folder:  # the readers tell the form of a file by its content
+        path = Path(folder) / "standard-input"
+        path.write_bytes(content)
+        return _from_file(path, unit)
+
+
+def _active_space(frozen_core: bool, active: str | None) -> str:
+    if frozen_core and active is not None:
+        raise StudyError(
+            "--frozen-core and --active exclude each other", "an active space already says which orbitals are frozen", "Give one of the two"
+        )
+    return "frozen-core" if active is None else active
+
+
+def _with_option(spec: StudySpec, path: str, value: Any) -> StudySpec:
+    """As `with_setting`, with a sentence of its own where the chosen alternative has no such field."""
+    section, _, field = path.partition(".")
+    chosen = getattr(spec, section)
+    if field and field not in type(chosen).model_fields:
+        fields = ", ".join(name for name in type(chosen).model_fields if name != "key")
+        raise StudyError(f"{chosen.title} has no setting '{field}'", f"it has {fields}", f"Leave the option out or choose another {section}", path)
+    return with_setting(spec, path, value)

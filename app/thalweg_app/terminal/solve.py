@@ -1,0 +1,94 @@
+"""`thalweg solve`: one study from input to answer."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import Any
+
+import click
+
+from thalweg.errors import StudyError
+from thalweg.storage.files import ensure_writable, read_limited, write_atomically
+from thalweg.storage.plain_json import json_text
+from thalweg.storage.session import Session, is_session, load_session, save_session
+from thalweg.study.result import StudyResult
+from thalweg.study.spec import StudySpec
+from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.display import make_display
+from thalweg_app.terminal.setup import read_setup, setup_options
+
+STANDARD_OUTPUT = "-"
+
+
+@click.command()
+@setup_options
+@click.option("--save", type=click.Path(path_type=Path), metavar="FILE", help="Save a session; a session that is there gets one more run.")
+@click.option("--figure", type=click.Path(path_type=Path), metavar="FILE", help="Draw the convergence as PNG, SVG or PDF.")
+@click.option("--json", "json_file", metavar="FILE|-", help="Write the result as one JSON object; - is standard output and nothing else.")
+@click.option("--quiet", is_flag=True, help="Show no progress.")
+def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: bool, **options: Any) -> int:
+    """Find the lowest energy of a trial state and judge it against the exact one.
+
+    INPUT is a file (XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a session), the name of a sample, or - for standard input.
+    The exit status is 0 when the study ran, whatever its verdict; 2 for bad input; 130 after Ctrl-C, with the best so far kept.
+    """
+    spec, notes = read_setup(options)
+    session = _session_to_extend(save, spec)
+    _check_targets(figure, json_file)
+    with_notes = () if quiet else notes
+    for note in with_notes:
+        print(note, file=sys.stderr)
+    from thalweg.study.run import run
+
+    result, status = attend(lambda emit, should_stop: run(spec, emit, should_stop), make_display(spec, quiet=quiet))
+    if result is None:
+        print("Stopped before the first energy: there is nothing to keep.", file=sys.stderr)
+        return status
+    _print(result, json_file)
+    _keep(result, session, save, figure)
+    return status
+
+
+def _session_to_extend(save: Path | None, spec: StudySpec) -> Session:
+    """The session at `save`, or a new one. StudyError, before any work is done, when something else is there."""
+    if save is None or not save.exists():
+        if save is not None:
+            ensure_writable(save)
+        return Session(name=save.name.split(".")[0] if save else "", setup=spec)
+    if not is_session(read_limited(save)):
+        raise StudyError(f"{save} is not overwritten", "it is there and is not a session", "Give another name to --save")
+    return load_session(save)
+
+
+def _check_targets(figure: Path | None, json_file: str | None) -> None:
+    if figure is not None:
+        from thalweg_app.figures import check_format
+
+        check_format(figure)
+        ensure_writable(figure)
+    if json_file not in (None, STANDARD_OUTPUT):
+        ensure_writable(Path(json_file))
+
+
+def _print(result: StudyResult, json_file: str | None) -> None:
+    if json_file == STANDARD_OUTPUT:
+        click.echo(json_text(result.model_dump(), indent=1))
+        return
+    from thalweg_app.terminal.answer import answer_lines
+
+    click.echo("\n".join(answer_lines(result)))
+    if json_file is not None:
+        write_atomically(Path(json_file), json_text(result.model_dump(), indent=1).encode() + b"\n")
+
+
+def _keep(result: StudyResult, session: Session, save: Path | None, figure: Path | None) -> None:
+    if save is not None:
+        extended = session.with_result(result)
+        save_session(extended, save)
+        print(f"Saved as run {extended.runs[-1].number} of {save}", file=sys.stderr)
+    if figure is not None:
+        from thalweg_app.figures import convergence_figure, save_figure
+
+        save_figure(convergence_figure(result), figure)
+        print(f"Drawn in {figure}", file=sys.stderr)
