@@ -8,22 +8,24 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable, Iterable
-from concurrent.futures import FIRST_COMPLETED, Executor, Future, wait
-from concurrent.futures.process import BrokenProcessPool
+from concurrent.futures import Executor
+from dataclasses import replace
 
+from thalweg.errors import Stopped
 from thalweg.study.events import AnyEvent, ScanFinished, ScanPoint, ScanStarted, Stage
 from thalweg.study.point_seed import PointSeed
+from thalweg.study.scan_mean_fields import BRANCH, CurveField, curve_fields
 from thalweg.study.scan_result import CurvePoint, ScanResult
 from thalweg.study.scan_spec import BLOCK, ScanSpec
 from thalweg.study.scan_summary import flagged_points, needs_healing, summarise
-from thalweg.study.scan_task import PointOutcome, solve_point
+from thalweg.study.scan_task import PointOutcome
+from thalweg.study.scan_tasks import PointTasks
+from thalweg.watch import Watch
 
 #: A rerun replaces a point when its energy is lower by more than this.
 LOWER = 1e-9
 #: Rounds of the healing pass; each lets a better solution travel one point further.
 HEALING_ROUNDS = 2 * BLOCK
-#: How often a waiting scan looks whether it should stop, seconds.
-TICK = 0.05
 
 
 def run_scan(
@@ -57,16 +59,22 @@ class _Scan:
         self._scan, self._make_pool, self._emit, self._should_stop = scan, make_pool, emit, should_stop
         self._outcomes: list[PointOutcome | None] = [_known(done.get(x)) for x in scan.points]
         self._retried: set[int] = set()
-        self._tasks = _Tasks(make_pool, should_stop)
+        self._fields: list[CurveField | None] = [None] * len(scan.points)
+        self._tasks = PointTasks(make_pool, should_stop)
         self._begun = time.perf_counter()
 
     def run(self) -> ScanResult:
         self._emit(ScanStarted(axis=self._scan.path.axis(self._scan.study), unit=self._scan.path.unit(self._scan.study), points=self._scan.points))
         try:
+            watch = Watch(lambda text, fraction: self._emit(Stage(text=text, fraction=fraction)), self._should_stop)
+            if any(outcome is None for outcome in self._outcomes):
+                self._fields = curve_fields(self._scan, watch)
             self._blocks(forward=True)
             if self._scan.both_directions:
                 self._blocks(forward=False)
             self._heal()
+        except Stopped:  # while the mean fields were followed: what is finished is kept
+            pass
         finally:
             self._tasks.close()
         result = summarise(self._scan, self._curve(), time.perf_counter() - self._begun)
@@ -93,7 +101,7 @@ class _Scan:
             seed = known.seed if known is not None else seed
             chain = chain[1:]
         if chain:
-            self._tasks.submit((chain[0], chain[1:]), self._scan, self._scan.points[chain[0]], seed)
+            self._tasks.submit((chain[0], chain[1:]), self._scan, self._scan.points[chain[0]], self._start(chain[0], seed))
 
     def _heal(self) -> None:
         """Reruns block edges and doubtful points from their neighbours, and passes every improvement on to both sides."""
@@ -106,10 +114,17 @@ class _Scan:
             self._emit(Stage(text="Checking points from both sides", fraction=round_number / HEALING_ROUNDS))
             self._retried.update(i for i, _ in pairs)
             for i, n in pairs:
-                self._tasks.submit((i, []), self._scan, self._scan.points[i], self._seed(n))
+                self._tasks.submit((i, []), self._scan, self._scan.points[i], self._start(i, self._seed(n)))
             found = sorted(self._tasks.results(), key=lambda item: item[0][0])  # in order of the curve, not of arrival
             lowered = {index for (index, _), outcome in found if self._keep(index, outcome)}
             wanted = sorted({n for i in lowered for n in (i - 1, i + 1)} - lowered)
+
+    def _start(self, index: int, neighbour: PointSeed | None) -> PointSeed | None:
+        """The neighbour's parameters with the point's own mean field where the curve's mean fields were followed first."""
+        field = self._fields[index]
+        if field is None:
+            return neighbour
+        return PointSeed(field.seed, *((neighbour.parameters, neighbour.labels) if neighbour is not None else ((), ())))
 
     def _seed(self, index: int) -> PointSeed | None:
         outcome = self._outcomes[index] if 0 <= index < len(self._outcomes) else None
@@ -122,73 +137,23 @@ class _Scan:
         lower = outcome.result is not None and old is not None and old.result is not None and outcome.result.energy < old.result.energy - LOWER
         if not first and not lower:
             return False
-        self._outcomes[index] = outcome
+        if lower and outcome.result is not None and abs(outcome.result.reference_energy - self._reference(index)) > BRANCH:
+            note = "mean-field-branch: starts from the two sides lead to different mean fields; the lower variational energy is kept"
+            outcome = replace(outcome, notes=(*outcome.notes, note))
+        field = self._fields[index]
+        self._outcomes[index] = outcome if field is None else replace(outcome, notes=tuple(dict.fromkeys((*outcome.notes, *field.notes))))
         curve = self._curve()
         self._emit(ScanPoint(point=curve[index], done=sum(o is not None for o in self._outcomes), total=len(self._outcomes)))
         return lower
 
+    def _reference(self, index: int) -> float:
+        outcome = self._outcomes[index]
+        assert outcome is not None
+        assert outcome.result is not None
+        return outcome.result.reference_energy
+
     def _curve(self) -> list[CurvePoint]:
         return flagged_points(self._scan, self._outcomes, self._retried)
-
-
-class _Tasks:
-    """Tasks on a pool that may lose workers: a broken pool is made anew and its tasks are submitted once more."""
-
-    def __init__(self, make_pool: Callable[[], Executor], should_stop: Callable[[], bool]) -> None:
-        self._make_pool, self._should_stop = make_pool, should_stop
-        self._pool: Executor | None = None
-        self._waiting: dict[Future[PointOutcome], tuple[tuple[int, list[int]], ScanSpec, float, PointSeed | None, int]] = {}
-
-    def submit(self, tag: tuple[int, list[int]], scan: ScanSpec, value: float, seed: PointSeed | None, tries: int = 0) -> None:
-        if self._should_stop():
-            return
-        self._pool = self._pool or self._make_pool()
-        future = self._pool.submit(solve_point, scan, value, seed)
-        self._waiting[future] = (tag, scan, value, seed, tries)
-
-    def results(self) -> Iterable[tuple[tuple[int, list[int]], PointOutcome]]:
-        """Outcomes as they come, until nothing is under way; those submitted meanwhile included."""
-        while self._waiting:
-            if self._should_stop():
-                self._abandon()
-                return
-            finished, _ = wait(self._waiting, timeout=TICK, return_when=FIRST_COMPLETED)
-            for future in finished:
-                entry = self._waiting.pop(future, None)
-                if entry is not None:
-                    outcome = self._outcome(future, entry)
-                    if outcome is not None:
-                        yield entry[0], outcome
-
-    def _outcome(
-        self, future: Future[PointOutcome], entry: tuple[tuple[int, list[int]], ScanSpec, float, PointSeed | None, int]
-    ) -> PointOutcome | None:
-        tag, scan, value, seed, tries = entry
-        try:
-            return future.result()
-        except BrokenProcessPool:
-            if tries:
-                return PointOutcome(None, None, failure="The worker process ended twice at this point, perhaps for want of memory.")
-            lost = [(tag, scan, value, seed, tries), *self._waiting.values()]
-            self._waiting.clear()
-            self.close()
-            for old_tag, old_scan, old_value, old_seed, old_tries in lost:
-                self.submit(old_tag, old_scan, old_value, old_seed, old_tries + 1)
-            return None
-        except Exception as error:
-            return PointOutcome(None, None, failure=f"{type(error).__name__}: {error}")
-
-    def _abandon(self) -> None:
-        for future in self._waiting:
-            future.cancel()
-        self._waiting.clear()
-        for process in list((getattr(self._pool, "_processes", None) or {}).values()):
-            process.kill()  # a point under way cannot be asked to stop from here, and its result is not wanted
-
-    def close(self) -> None:
-        if self._pool is not None:
-            self._pool.shutdown(wait=False, cancel_futures=True)
-            self._pool = None
 
 
 def _known(point: CurvePoint | None) -> PointOutcome | None:
