@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from typing import Any
 
-from thalweg.study.figures import StudyFigures
+from thalweg.study.derived import StudyFigures
 from thalweg.study.result import STOP_REASONS, StudyResult
 from thalweg.units import HARTREE_IN_KCAL_PER_MOL
 from thalweg_app.presenters.wording import bytes_text, counted, significant, unit_name
