@@ -18,7 +18,7 @@ Atoms = tuple[tuple[str, float, float, float], ...]
 
 MAX_ATOMS = 1000
 #: Nearer than this (angstrom) counts as one spot.
-_SAME_SPOT = 1e-2
+_SAME_SPOT = 0.05
 #: Nearer than this (angstrom) is shorter than any bond; H2 has 0.74.
 _SHORT = 0.5
 #: Tolerance on the sum of covalent radii below which a bond is drawn, angstrom (common practice).
@@ -135,9 +135,15 @@ def short_distance_doubt(atoms: Atoms, unit: str) -> str:
 
 def unit_doubt(atoms: Atoms, unit: str) -> str:
     """As `short_distance_doubt`, and also a sentence when lengths declared as angstrom would be common bond lengths in bohr."""
-    ratio = _nearest_ratio(atoms, unit)
-    if unit == "angstrom" and 0.75 < ratio * BOHR_IN_ANGSTROM < 1.25 and ratio > 1.41:
-        return f"{describe_shortest(atoms, unit)} is long for a bond: were bohr given as angstrom?"
+    if unit == "angstrom" and len(atoms) > 1:
+        pair = shortest_distance(atoms, unit)
+        assert pair is not None
+        hydrogen = atoms[pair.first][0] == atoms[pair.second][0] == "H"
+        # H2 has 1.2 times its covalent radii, other bonds 0.75 to 1.1 times
+        low, high = (1.1, 1.25) if hydrogen else (0.75, 1.1)
+        ratio = _nearest_ratio(atoms, unit)
+        if ratio > 1.41 and low < ratio * BOHR_IN_ANGSTROM < high:
+            return f"{describe_shortest(atoms, unit)} is long for a bond: were bohr given as angstrom?"
     return short_distance_doubt(atoms, unit)
 
 

@@ -5,57 +5,25 @@ PySCF is imported inside functions: the window's process never loads it, and Win
 
 from __future__ import annotations
 
-import os
-import re
 import warnings
-from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
 
-from thalweg.arrays import FloatArray, IntArray
-from thalweg.errors import StudyError
-from thalweg.systems.active_space import DEGENERATE
+from thalweg.arrays import FloatArray
+from thalweg.systems.gaussian_basis import pyscf_module, with_turned_axes
+from thalweg.systems.orbital_order import MeanField, settled
 from thalweg.watch import Watch
 
 _CONVERGED_ENERGY = 1e-11  # Eh
 _CONVERGED_GRADIENT = 1e-7
 _MAX_CYCLES = 100
 _MAX_FOLLOWED = 4
+#: A solution outside the point group is spoken of only when it is lower by more than this, Eh.
+_WORTH_TELLING = 1e-6
 #: An instability is followed only to a solution lower than this, Eh.
 _LOWER = 1e-8
-#: Orbital energies nearer than this are one level whose orbitals may be turned into each other, Eh.
-_SAME_LEVEL = 1e-7
-
-
-@dataclass
-class MeanField:
-    """Orbitals in their final order: doubly occupied, singly occupied, empty; by energy, then by irrep.
-
-    Attributes:
-        solver: the PySCF object, holding these orbitals.
-        energy: Eh, nuclear repulsion included.
-        orbitals: shape (functions, orbitals).
-        energies, occupation: shape (orbitals,), Eh; 2, 1 or 0.
-        irreps: labels whose product is the bitwise xor, shape (orbitals,); all 0 without a point group.
-        irrep_names: name of each label, empty without a point group.
-        row_names: irrep of each orbital in the full group, for people.
-        iterations: of all solutions together.
-    """
-
-    solver: Any
-    energy: float
-    orbitals: FloatArray
-    energies: FloatArray
-    occupation: FloatArray
-    irreps: IntArray
-    irrep_names: tuple[str, ...]
-    row_names: tuple[str, ...]
-    iterations: int
-    converged: bool
-    stability: str
-    warnings: tuple[str, ...]
 
 
 @dataclass
@@ -71,111 +39,50 @@ class _Progress:
         self.watch.check()
 
 
-def build_mole(
-    symbols: Sequence[str], xyz: FloatArray, basis: str, charge: int, n_unpaired: int, cartesian: bool, point_group: bool, budget_bytes: int
-) -> Any:
-    """The PySCF molecule; `xyz` in bohr, shape (atoms, 3). Raises StudyError for an unknown basis or missing PySCF."""
-    gto = _pyscf_module("gto")
-    _check_basis(gto, basis, symbols)
-    mole = gto.Mole(verbose=0, max_memory=budget_bytes / 1e6, incore_anyway=True)
-    # A single atom is treated in D2h: the full rotation group has no labels that compose by xor.
-    symmetry: bool | str = "D2h" if point_group and len(symbols) == 1 else point_group
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore")
-        mole.build(
-            dump_input=False,
-            parse_arg=False,
-            atom=[(s, tuple(r)) for s, r in zip(symbols, xyz.tolist(), strict=True)],
-            unit="Bohr",
-            basis=basis,
-            ecp={s: basis for s in set(symbols) if _has_core_potential(gto, basis, s)},
-            charge=charge,
-            spin=n_unpaired,
-            cart=cartesian,
-            symmetry=symmetry,
-        )
-    return mole
-
-
 def solve(mole: Any, watch: Watch, seed: FloatArray | None = None) -> MeanField:
     """RHF or ROHF from PySCF's atomic guess or from the density matrix `seed`, shape (functions, functions) or (2, ...)."""
-    lib = _pyscf_module("lib")
+    lib = pyscf_module("lib")
     progress = _Progress(watch)
     # One thread: sums of several threads come in any order, and the same settings must give the same numbers.
     with lib.with_omp_threads(1), warnings.catch_warnings():
         warnings.simplefilter("ignore")
         solver = _first_solution(mole, progress, seed)
         stability = _make_stable(solver, progress)
-        _check_broken_symmetry(solver, progress)
-        return _settled(solver, progress, stability)
-
-
-def _pyscf_module(name: str) -> Any:
-    try:
-        import importlib
-
-        return importlib.import_module(f"pyscf.{name}")
-    except ImportError:
-        raise StudyError(
-            "A geometry cannot be computed here",
-            "the library PySCF, which computes mean fields and integrals, is not installed (there is none for Windows)",
-            "Load an FCIDUMP or HDF5 file with the integrals instead, or use Linux or macOS",
-            "system",
-        ) from None
-
-
-def _check_basis(gto: Any, basis: str, symbols: Sequence[str]) -> None:
-    unknown = StudyError(
-        f"Unknown basis set '{basis[:40]}'",
-        "PySCF has none of this name",
-        "Use a name from the literature, e.g. sto-3g, 6-31g*, cc-pvdz",
-        "system.basis",
-    )
-    # PySCF would read a file of this name or an inline listing: a session must run again without either.
-    if not re.fullmatch(r"[\w+*(),.@ -]{1,60}", basis) or os.path.isfile(basis) or basis.lower().startswith("gth"):
-        raise unknown
-    missing = [s for s in dict.fromkeys(symbols) if not _has_basis(gto, basis, s)]
-    if not missing:
-        return
-    if not any(_has_basis(gto, basis, s) for s in ("H", "C", "Na", "Fe", "I")):
-        raise unknown
-    raise StudyError(f"The basis set '{basis}' has no functions for {missing[0]}", "it does not cover this element", "Choose another", "system.basis")
-
-
-def _has_basis(gto: Any, basis: str, symbol: str) -> bool:
-    try:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            return bool(gto.basis.load(basis, symbol))
-    except Exception:  # PySCF raises half a dozen types for a name that it cannot read
-        return False
-
-
-def _has_core_potential(gto: Any, basis: str, symbol: str) -> bool:
-    try:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            return bool(gto.basis.load_ecp(basis, symbol))
-    except Exception:  # as above: most basis sets have none
-        return False
+        solver = _checked_for_broken_symmetry(solver, progress)
+        return settled(solver, stability, progress.iterations, tuple(progress.remarks))
 
 
 def _first_solution(mole: Any, progress: _Progress, seed: FloatArray | None) -> Any:
-    scf = _pyscf_module("scf")
+    solver = _new_solver(mole, progress)
+    solver.kernel(seed)
+    if not solver.converged:
+        _rescue(solver, progress)
+    return solver
+
+
+def _new_solver(mole: Any, progress: _Progress) -> Any:
+    scf = pyscf_module("scf")
     solver = scf.ROHF(mole) if mole.spin else scf.RHF(mole)
     solver.verbose, solver.chkfile = 0, None
     solver.max_cycle, solver.conv_tol, solver.conv_tol_grad = _MAX_CYCLES, _CONVERGED_ENERGY, _CONVERGED_GRADIENT
     solver.callback = progress.step
-    solver.kernel(seed)
+    return solver
+
+
+def _rescue(solver: Any, progress: _Progress) -> None:
+    """What is tried when the iterations do not converge: the second-order method, with the electrons of each irrep held fixed.
+
+    Degenerate open shells make the plain iterations swap the components of the shell without end.
+    """
+    if solver.mol.symmetry:
+        solver.irrep_nelec = solver.get_irrep_nelec()
+        solver.kernel(solver.make_rdm1())
     if not solver.converged:
         _second_order(solver, solver.mo_coeff, progress)
-        if solver.converged:
-            progress.remarks.append(f"The mean field did not converge in {_MAX_CYCLES} iterations and was finished by the second-order method")
-        else:
-            progress.remarks.append(
-                "The mean field did not converge, not even by the second-order method: the orbitals are not Hartree-Fock orbitals"
-            )
-    return solver
+    if solver.converged:
+        progress.remarks.append(f"The mean field did not converge in {_MAX_CYCLES} iterations and was finished by other means")
+    else:
+        progress.remarks.append("The mean field did not converge, not even by the second-order method: the orbitals are not Hartree-Fock orbitals")
 
 
 def _second_order(solver: Any, orbitals: FloatArray, progress: _Progress) -> None:
@@ -193,7 +100,7 @@ def _has_rotations(solver: Any) -> bool:
 
 def _lowest_rotation(solver: Any, with_symmetry: bool) -> FloatArray | None:
     """Orbitals turned along the lowest internal instability; None when there is none."""
-    stability = _pyscf_module("scf.stability")
+    stability = pyscf_module("scf.stability")
     check = stability.rohf_internal if solver.mol.spin else stability.rhf_internal
     try:
         orbitals, stable = check(solver, with_symmetry=with_symmetry, return_status=True)
@@ -225,97 +132,42 @@ def _make_stable(solver: Any, progress: _Progress) -> str:
     return "stable"
 
 
-def _check_broken_symmetry(solver: Any, progress: _Progress) -> None:
-    """Looks for a lower solution outside the point group: takes its occupation if that fits the group, else says so."""
+def _checked_for_broken_symmetry(solver: Any, progress: _Progress) -> Any:
+    """Looks for a lower solution outside the point group. One that fits the group with its axes turned is taken; another is only told of."""
     if not solver.mol.symmetry or not _has_rotations(solver):
-        return
+        return solver
     orbitals = _lowest_rotation(solver, with_symmetry=False)
     if orbitals is None:
-        return
-    scf = _pyscf_module("scf")
+        return solver
     plain = solver.mol.copy()
     plain.symmetry = False
-    plain.build(dump_input=False, parse_arg=False)
-    broken = scf.ROHF(plain) if plain.spin else scf.RHF(plain)
-    broken.verbose, broken.chkfile = 0, None
-    broken.conv_tol, broken.conv_tol_grad, broken._eri = _CONVERGED_ENERGY, _CONVERGED_GRADIENT, solver._eri
-    broken.mo_occ = solver.mo_occ
+    broken = _new_solver(plain, progress)
+    broken._eri, broken.mo_occ = solver._eri, solver.mo_occ
     _second_order(broken, np.asarray(orbitals), progress)
+    if broken.e_tot > solver.e_tot - _WORTH_TELLING:
+        return solver
+    turned = _solved_with_turned_axes(solver, broken.make_rdm1(), progress)
+    if turned is not None:
+        solver = turned
     fall = float(solver.e_tot - broken.e_tot)
-    if fall > 1e-6:
+    if fall > _WORTH_TELLING:
         progress.remarks.append(
             f"A mean field {1e3 * fall:.3f} mEh lower breaks the point group {solver.mol.groupname}: switch the point group off to start from it"
         )
+    return solver
 
 
-def _settled(solver: Any, progress: _Progress, stability: str) -> MeanField:
-    """Brings the orbitals into the order and phases that `MeanField` promises, in the solver too."""
-    energies, occupation = np.array(solver.mo_energy, dtype=float), np.array(solver.mo_occ, dtype=float)
-    orbitals = np.array(solver.mo_coeff, dtype=float)
-    full = np.array(solver.get_orbsym(), dtype=np.int64) if solver.mol.symmetry else np.zeros(energies.size, dtype=np.int64)
-    order = np.lexsort((full, _levels(energies, DEGENERATE), -occupation))
-    energies, occupation, full, orbitals = energies[order], occupation[order], full[order], orbitals[:, order]
-    for block in _blocks(_levels(energies, _SAME_LEVEL), full, occupation):
-        orbitals[:, block] = _turned_to_standard(orbitals[:, block])
-    lib, symm = _pyscf_module("lib"), _pyscf_module("symm")
-    grouped = bool(solver.mol.symmetry) and solver.mol.groupname != "C1"
-    abelian = {"Dooh": "D2h", "Coov": "C2v"}.get(solver.mol.groupname, solver.mol.groupname)
-    irreps = full % 10 if grouped else np.zeros_like(full)
-    names = [n.replace("Dooh", "") for n in (symm.irrep_id2name(solver.mol.groupname, int(i)) for i in full)] if grouped else [""] * full.size
-    count = {"D2h": 8, "C2v": 4, "C2h": 4, "D2": 4}.get(abelian, 2)
-    solver.mo_coeff = lib.tag_array(orbitals, orbsym=full) if solver.mol.symmetry else orbitals
-    spin_energies = {n: np.asarray(getattr(solver.mo_energy, n))[order] for n in ("mo_ea", "mo_eb") if hasattr(solver.mo_energy, n)}
-    solver.mo_energy = lib.tag_array(energies, **spin_energies) if spin_energies else energies
-    solver.mo_occ = occupation
-    solver.callback = None
-    return MeanField(
-        solver=solver,
-        energy=float(solver.e_tot),
-        orbitals=orbitals,
-        energies=energies,
-        occupation=occupation,
-        irreps=irreps,
-        irrep_names=tuple(symm.irrep_id2name(abelian, i) for i in range(count)) if grouped else (),
-        row_names=tuple(names),
-        iterations=progress.iterations,
-        converged=bool(solver.converged),
-        stability=stability,
-        warnings=tuple(progress.remarks),
-    )
+def _solved_with_turned_axes(solver: Any, seed: FloatArray, progress: _Progress) -> Any | None:
+    """The solution in the same Abelian group turned by 45 degrees about z, if the molecule allows that and it is lower; else None.
 
-
-def _levels(energies: FloatArray, tolerance: float) -> IntArray:
-    """Number of the level that each energy belongs to: energies nearer than `tolerance` to the next are one level."""
-    order = np.argsort(energies, kind="stable")
-    steps = np.concatenate([[0], np.cumsum(np.diff(energies[order]) > tolerance)])
-    levels = np.empty(energies.size, dtype=np.int64)
-    levels[order] = steps
-    return levels
-
-
-def _blocks(*labels: FloatArray | IntArray) -> list[np.ndarray]:
-    """Indices that agree in all labels."""
-    _, member = np.unique(np.stack([np.asarray(v, dtype=float) for v in labels]), axis=1, return_inverse=True)
-    member = member.ravel()
-    return [np.flatnonzero(member == k) for k in range(int(member.max()) + 1)]
-
-
-def _turned_to_standard(block: FloatArray) -> FloatArray:
-    """The orthonormal orbitals (functions, k) of one level turned into a form that does not depend on how they were found.
-
-    Each orbital in turn takes the whole weight of the first basis function on which the rest is large, and is positive there.
+    A fourfold axis (D4h, C4v, D4) leaves two choices of the twofold axes, and degenerate shells may be filled along either.
     """
-    block = block.copy()
-    for k in range(block.shape[1]):
-        rest = block[:, k:]
-        weight = np.linalg.norm(rest, axis=1)
-        pivot = int(np.flatnonzero(weight > 0.9 * weight.max())[0])
-        direction = rest[pivot] / weight[pivot]
-        # Householder: an orthogonal matrix whose first column is `direction`
-        v = direction.copy()
-        v[0] += 1.0 if v[0] >= 0 else -1.0
-        turn = np.eye(v.size) - 2.0 * np.outer(v, v) / (v @ v)
-        block[:, k:] = rest @ turn
-        if block[pivot, k] < 0:
-            block[:, k] *= -1.0
-    return block
+    turned_mole = with_turned_axes(solver.mol)
+    if turned_mole is None:
+        return None
+    turned = _new_solver(turned_mole, progress)
+    turned._eri = solver._eri
+    turned.kernel(seed)
+    if not turned.converged or turned.e_tot > solver.e_tot - _WORTH_TELLING or _lowest_rotation(turned, with_symmetry=True) is not None:
+        return None
+    return turned

@@ -11,9 +11,11 @@ from thalweg.errors import StudyError
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.systems.active_space import ActiveSpace, choose_active_space, cut_degeneracies
 from thalweg.systems.elements import Element, core_orbitals, formula
-from thalweg.systems.geometry import Atoms, check_geometry, coordinates_in_bohr, elements_of, short_distance_doubt, shortest_distance
-from thalweg.systems.mean_field import MeanField, build_mole, solve
+from thalweg.systems.gaussian_basis import build_mole
+from thalweg.systems.geometry import check_geometry, coordinates_in_bohr, elements_of, short_distance_doubt, shortest_distance
+from thalweg.systems.mean_field import solve
 from thalweg.systems.orbital_following import follow, seed_of, usable_density
+from thalweg.systems.orbital_order import MeanField
 from thalweg.systems.prepared import MeanFieldSeed, OrbitalRow, PreparedSystem, masks, read_only
 from thalweg.watch import Watch
 
@@ -45,9 +47,10 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     space, following = follow(neighbour, field, choose_active_space(spec.active_space, field.occupation, field.energies, n_core))
     _check_memory(n_functions, len(space.active), budget_bytes, "system.active_space")
     core_energy, one_body, pairs = _active_integrals(field, space)
-    irreps, dropped = field.irreps[list(space.active)], 0.0
-    if field.irrep_names:
-        dropped = _drop_forbidden(one_body, pairs, irreps)
+    dropped = _drop_forbidden(one_body, pairs, field.irreps[list(space.active)])
+    if dropped > _FORBIDDEN_LIMIT:
+        field = field.without_point_group(f"Integrals of {dropped:.1e} Eh break the point group, so the search does not use it")
+        dropped = 0.0
     watch.check()
     fermions = _hamiltonian(field, space, core_energy, one_body, pairs)
     return PreparedSystem(
@@ -58,7 +61,7 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
         reference_name="Hartree-Fock" if mole.spin == 0 else "Hartree-Fock (restricted open shell)",
         reference_energy=fermions.reference_energy,
         facts=_facts(spec, elements, mole, field, space, core_energy, dropped) | ({FOLLOWING: list(following)} if following else {}),
-        warnings=_warnings(spec.atoms, spec.unit, field, space),
+        warnings=_warnings(spec, field, space),
         ladder=_ladder(field, space),
         mean_field=field.solver,
         seed=seed_of(field, space),
@@ -134,20 +137,18 @@ def _active_integrals(field: MeanField, space: ActiveSpace) -> tuple[float, Floa
 
 
 def _drop_forbidden(one_body: FloatArray, pairs: FloatArray, irreps: IntArray) -> float:
-    """Sets integrals that the point group forbids to zero, in place; returns the largest that was dropped, Eh.
+    """Sets integrals that the point group forbids to zero, in place; returns the largest of them, Eh. Nothing is set above the limit.
 
     A geometry given to finite digits breaks its group a little. The dropped part couples to other irreps only, so the energy
     changes by its square.
     """
     row, column = np.tril_indices(irreps.size)
     labels = irreps[row] ^ irreps[column]
-    largest = 0.0
-    for table, forbidden in ((one_body, irreps[:, None] != irreps[None, :]), (pairs, labels[:, None] != labels[None, :])):
-        if np.any(forbidden):
-            largest = max(largest, float(np.abs(table[forbidden]).max()))
-            table[forbidden] = 0.0
-    if largest > _FORBIDDEN_LIMIT:
-        raise RuntimeError(f"irrep labels do not fit the integrals: {largest:.1e} Eh between different irreps")
+    forbidden = ((one_body, irreps[:, None] != irreps[None, :]), (pairs, labels[:, None] != labels[None, :]))
+    largest = max(float(np.abs(table[mask]).max(initial=0.0)) for table, mask in forbidden)
+    if largest <= _FORBIDDEN_LIMIT:
+        for table, mask in forbidden:
+            table[mask] = 0.0
     return largest
 
 
@@ -185,7 +186,7 @@ def _facts(
         "basis": spec.basis.strip(),
         "functions": "Cartesian" if spec.cartesian else "spherical",
         "orbitals": int(field.energies.size),
-        "point_group": _group_title(mole) if spec.point_group else "not used",
+        "point_group": _group_title(mole) if mole.symmetry else "not used",
         "nuclear_repulsion": float(mole.energy_nuc()),
         "shortest_distance_angstrom": pair.angstrom if pair else None,
         "shortest_distance_bohr": pair.bohr if pair else None,
@@ -209,9 +210,11 @@ def _facts(
     return facts
 
 
-def _warnings(atoms: Atoms, unit: str, field: MeanField, space: ActiveSpace) -> tuple[str, ...]:
+def _warnings(spec: Molecule, field: MeanField, space: ActiveSpace) -> tuple[str, ...]:
     found = list(field.warnings)
-    if doubt := short_distance_doubt(atoms, unit):
+    if spec.point_group and not field.solver.mol.symmetry:
+        found.append("The point group of the geometry could not be worked out and is not used")
+    if doubt := short_distance_doubt(spec.atoms, spec.unit):
         found.append(doubt)
     n_functions = field.orbitals.shape[0]
     if field.energies.size < n_functions:

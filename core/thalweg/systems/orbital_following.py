@@ -13,7 +13,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.systems.active_space import ActiveSpace
-from thalweg.systems.mean_field import MeanField
+from thalweg.systems.orbital_order import MeanField
 from thalweg.systems.prepared import MeanFieldSeed
 
 #: An active space that keeps less than this of any of its orbitals' weight is another space.

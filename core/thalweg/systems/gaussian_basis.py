@@ -1,0 +1,119 @@
+"""The molecule in its Gaussian basis, as PySCF holds it.
+
+PySCF is imported inside functions: the window's process never loads it, and Windows has none.
+"""
+
+from __future__ import annotations
+
+import importlib
+import os
+import re
+import warnings
+from collections.abc import Sequence
+from functools import lru_cache
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.errors import StudyError
+
+
+def build_mole(
+    symbols: Sequence[str], xyz: FloatArray, basis: str, charge: int, n_unpaired: int, cartesian: bool, point_group: bool, budget_bytes: int
+) -> Any:
+    """The PySCF molecule; `xyz` in bohr, shape (atoms, 3). Raises StudyError for an unknown basis or missing PySCF."""
+    gto = pyscf_module("gto")
+    _check_basis(basis, symbols)
+    mole = gto.Mole(
+        verbose=0,
+        max_memory=budget_bytes / 1e6,
+        incore_anyway=True,
+        atom=[(s, tuple(r)) for s, r in zip(symbols, xyz.tolist(), strict=True)],
+        unit="Bohr",
+        basis=basis,
+        ecp={s: basis for s in dict.fromkeys(symbols) if _has_core_potential(basis, s)},
+        charge=charge,
+        spin=n_unpaired,
+        cart=cartesian,
+    )
+    return _built(mole, point_group)
+
+
+def _built(mole: Any, point_group: bool) -> Any:
+    """Works out basis and point group; a geometry whose group PySCF cannot work out is left without one."""
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        try:
+            mole.build(dump_input=False, parse_arg=False, symmetry=point_group)
+            # The labels of atoms and linear molecules do not compose by xor, and PySCF gives both components of a degenerate
+            # shell one shape there, which no unevenly filled shell has.
+            if abelian := {"SO3": "D2h", "Dooh": "D2h", "Coov": "C2v"}.get(mole.groupname if point_group else ""):
+                mole.build(dump_input=False, parse_arg=False, symmetry=abelian)
+        except pyscf_module("lib.exceptions").PointGroupSymmetryError:
+            mole.build(dump_input=False, parse_arg=False, symmetry=False)
+    return mole
+
+
+def with_turned_axes(mole: Any) -> Any | None:
+    """A copy in the same Abelian group with its x and y axes turned by 45 degrees about z; None when the geometry does not allow that."""
+    half = np.sqrt(0.5)
+    axes = np.array([[half, half, 0.0], [-half, half, 0.0], [0.0, 0.0, 1.0]]) @ mole._symm_axes
+    turned = mole.copy()
+    try:
+        turned.symm_orb, turned.irrep_id = pyscf_module("symm").symm_adapted_basis(turned, turned.groupname, turned._symm_orig, axes)
+    except pyscf_module("lib.exceptions").PointGroupSymmetryError:
+        return None
+    turned._symm_axes = axes
+    turned.irrep_name = [pyscf_module("symm").irrep_id2name(turned.groupname, i) for i in turned.irrep_id]
+    return turned
+
+
+def pyscf_module(name: str) -> Any:
+    try:
+        return importlib.import_module(f"pyscf.{name}")
+    except ImportError:
+        raise StudyError(
+            "A geometry cannot be computed here",
+            "the library PySCF, which computes mean fields and integrals, is not installed (there is none for Windows)",
+            "Load an FCIDUMP or HDF5 file with the integrals instead, or use Linux or macOS",
+            "system",
+        ) from None
+
+
+def _check_basis(basis: str, symbols: Sequence[str]) -> None:
+    unknown = StudyError(
+        f"Unknown basis set '{basis[:40]}'",
+        "PySCF has none of this name",
+        "Use a name from the literature, e.g. sto-3g, 6-31g*, cc-pvdz",
+        "system.basis",
+    )
+    # PySCF would read a file of this name or an inline listing: a session must run again without either.
+    if not re.fullmatch(r"[\w+*(),.@ -]{1,60}", basis) or os.path.isfile(basis) or basis.lower().startswith("gth"):
+        raise unknown
+    missing = [s for s in dict.fromkeys(symbols) if not _has_basis(basis, s)]
+    if not missing:
+        return
+    if not any(_has_basis(basis, s) for s in ("H", "C", "Na", "Fe", "I")):
+        raise unknown
+    raise StudyError(f"The basis set '{basis}' has no functions for {missing[0]}", "it does not cover this element", "Choose another", "system.basis")
+
+
+@lru_cache(512)
+def _has_basis(basis: str, symbol: str) -> bool:
+    try:
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")
+            return bool(pyscf_module("gto").basis.load(basis, symbol))
+    except Exception:  # PySCF raises half a dozen types for a name that it cannot read
+        return False
+
+
+@lru_cache(512)
+def _has_core_potential(basis: str, symbol: str) -> bool:
+    try:
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")
+            return bool(pyscf_module("gto").basis.load_ecp(basis, symbol))
+    except Exception:  # as above: most basis sets have none
+        return False
