@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from thalweg.errors import Stopped
 from thalweg.optimize.objective import CountedObjective, StopRules
 

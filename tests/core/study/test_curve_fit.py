@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from thalweg.study.curve_fit import diatomic_constants, error_measures, fit_minimum, well_depth
 from thalweg.units import BOHR_IN_ANGSTROM, ELECTRON_MASS_IN_DALTON, HARTREE_IN_INVERSE_CM
 

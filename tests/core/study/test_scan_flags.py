@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from thalweg.study.scan_flags import extremum_of_second_derivative, jumps, spin_crossings
 
 SMOOTH = [1e-5 * (1 + 0.2 * i + 0.03 * i * i) for i in range(20)]

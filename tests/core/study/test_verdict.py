@@ -3,6 +3,7 @@
 from dataclasses import replace
 
 import pytest
+
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import CHEMICAL_ACCURACY
 

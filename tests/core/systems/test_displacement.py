@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+
 from thalweg.systems.displacement import (
     angle_degrees,
     breathed,
