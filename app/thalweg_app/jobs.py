@@ -31,9 +31,10 @@ def inspect(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
 
 
 def draw(payload: Any, emit: Emit, should_stop: ShouldStop) -> str:
-    """Draws a figure to a file; the payload holds the `figure` as data and the `path`, whose ending tells the format."""
-    from thalweg_app.plots.printing import Figure, draw_figure
+    """Draws the payload's `chart` to its `path`, whose ending tells the format: png, svg or pdf."""
+    from thalweg_app.plots.printing import draw_chart
+    from thalweg_app.presenters.chart import chart_from_data
 
     path = Path(payload["path"])
-    draw_figure(Figure.model_validate(payload["figure"]), path)
+    draw_chart(chart_from_data(payload["chart"]), path)
     return str(path)

@@ -1,0 +1,167 @@
+"""Draws a `Chart` on the screen: linked panels, zoom and pan, read-out under the pointer, double click to fit."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import pyqtgraph as pg
+from PySide6.QtCore import QPointF, Qt, Signal
+from PySide6.QtGui import QKeyEvent
+from PySide6.QtWidgets import QLabel, QSizePolicy, QStackedLayout, QVBoxLayout, QWidget
+
+from thalweg_app.colours import LIGHT, Palette
+from thalweg_app.plots.legend import Legend
+from thalweg_app.plots.panel_view import PanelView
+from thalweg_app.presenters.chart import Chart
+
+ZOOM_STEP, PAN_STEP = 0.8, 0.1
+
+
+class ChartView(QWidget):
+    """`read_out` carries the values under the pointer, an empty text when it is elsewhere."""
+
+    read_out = Signal(str)
+
+    def __init__(self, name: str, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._chart = Chart(name)
+        self._palette = LIGHT
+        self._panels: list[PanelView] = []
+        self._follows = True
+        self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+        self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
+        self.setAccessibleName(name)
+        self.legend = Legend()
+        self.graphics = pg.GraphicsLayoutWidget()
+        self.graphics.setFrameShape(self.graphics.Shape.NoFrame)
+        self.graphics.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+        self.graphics.ci.layout.setVerticalSpacing(2)
+        self.graphics.ci.setContentsMargins(2, 2, 10, 2)
+        self._empty = QLabel(alignment=Qt.AlignmentFlag.AlignCenter, wordWrap=True)
+        self._empty.setProperty("role", "muted")
+        drawn = QWidget()
+        below = QVBoxLayout(drawn)
+        below.setContentsMargins(0, 0, 0, 0)
+        below.setSpacing(2)
+        below.addWidget(self.legend)
+        below.addWidget(self.graphics, 1)
+        self._stack = QStackedLayout(self)
+        self._stack.addWidget(self._empty)
+        self._stack.addWidget(drawn)
+        self._moved = pg.SignalProxy(self.graphics.scene().sigMouseMoved, rateLimit=30, slot=self._on_move)
+        self.graphics.scene().sigMouseClicked.connect(self._on_click)
+
+    @property
+    def chart(self) -> Chart:
+        return self._chart
+
+    def show_chart(self, chart: Chart) -> None:
+        """Changes what differs. The range follows the data until the person zooms or pans."""
+        fresh = self._chart.is_empty or chart.title != self._chart.title
+        self._chart = chart
+        self._empty.setText(chart.empty)
+        self._stack.setCurrentIndex(0 if chart.is_empty else 1)
+        self.setAccessibleDescription(chart.description or chart.empty)
+        if not chart.is_empty:
+            self._match_panels()
+            self.legend.show_chart(chart, self._palette)
+            if fresh or self._follows:
+                self.fit()
+
+    def set_palette(self, palette: Palette) -> None:
+        self._palette = palette
+        self.graphics.setBackground(palette.raised)
+        self.show_chart(self._chart)
+
+    def fit(self) -> None:
+        """Shows all data and follows them again."""
+        self._follows = True
+        ranges = [r for p in self._panels if (r := p.x_range()) is not None]
+        if ranges:
+            low, high = min(r[0] for r in ranges), max(r[1] for r in ranges)
+            bars = any(p.has_bars for p in self._panels)
+            air = 0.0 if bars else max((high - low) * 0.03, 0.25 if high == low else 0.0)
+            for panel in self._panels:
+                panel.item.setXRange(low - air, high + air, padding=0)
+        for panel in self._panels:
+            if (heights := panel.y_range()) is not None:
+                panel.item.setYRange(*heights, padding=0)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802 - Qt's name
+        moves = {Qt.Key.Key_Left: (-1, 0), Qt.Key.Key_Right: (1, 0), Qt.Key.Key_Up: (0, 1), Qt.Key.Key_Down: (0, -1)}
+        key = Qt.Key(event.key())
+        if key in (Qt.Key.Key_Plus, Qt.Key.Key_Equal):
+            self._scale(ZOOM_STEP)
+        elif key == Qt.Key.Key_Minus:
+            self._scale(1 / ZOOM_STEP)
+        elif key in (Qt.Key.Key_0, Qt.Key.Key_Home):
+            self.fit()
+        elif key in moves:
+            self._pan(*moves[key])
+        else:
+            super().keyPressEvent(event)
+
+    def _match_panels(self) -> None:
+        panels = self._chart.panels
+        same = len(panels) == len(self._panels) and all(
+            v.log == p.log and v.has_bars == bool(p.categories) for v, p in zip(self._panels, panels, strict=True)
+        )
+        if same:
+            for view, panel in zip(self._panels, panels, strict=True):
+                view.show(panel, self._palette)
+        else:
+            self._build_panels()
+        self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
+
+    def _build_panels(self) -> None:
+        self.graphics.clear()
+        self._panels = [PanelView(panel, self._palette, self.font()) for panel in self._chart.panels]
+        for row, (view, panel) in enumerate(zip(self._panels, self._chart.panels, strict=True)):
+            self.graphics.addItem(view.item, row=row, col=0)
+            self.graphics.ci.layout.setRowStretchFactor(row, round(100 * panel.share))
+            view.item.getViewBox().sigRangeChangedManually.connect(self._on_manual_range)
+            if row:
+                view.item.setXLink(self._panels[0].item)
+            if row < len(self._panels) - 1:
+                view.item.getAxis("bottom").setStyle(showValues=False)
+
+    def _on_manual_range(self, *_: Any) -> None:
+        self._follows = False
+
+    def _on_click(self, event: Any) -> None:
+        if event.double():
+            self.fit()
+
+    def _on_move(self, arguments: tuple[QPointF]) -> None:
+        position = arguments[0]
+        under = next((p for p in self._panels if p.item.sceneBoundingRect().contains(position)), None)
+        found = None if under is None else under.read_out(under.item.getViewBox().mapSceneToView(position).x())
+        for panel in self._panels:
+            panel.hair.setVisible(found is not None)
+            if found is not None:
+                panel.hair.setPos(found[0])
+        if found is None or under is None:
+            self.read_out.emit("")
+            return
+        place, texts = found
+        lead = texts.pop(0) if under.has_bars else f"{self._chart.x_title} {place:g}"
+        unit = self._chart.panels[self._panels.index(under)].y_title
+        self.read_out.emit(f"{lead}    {unit}:  " + "   ".join(texts))
+
+    def leaveEvent(self, event: Any) -> None:  # noqa: N802
+        for panel in self._panels:
+            panel.hair.setVisible(False)
+        self.read_out.emit("")
+        super().leaveEvent(event)
+
+    def _scale(self, factor: float) -> None:
+        self._follows = False
+        for panel in self._panels:
+            panel.item.getViewBox().scaleBy((factor, factor))
+
+    def _pan(self, across: int, up: int) -> None:
+        self._follows = False
+        for i, panel in enumerate(self._panels):
+            (x0, x1), (y0, y1) = panel.item.getViewBox().viewRange()
+            sideways = across * PAN_STEP * (x1 - x0) if i == 0 else 0.0  # x is linked
+            panel.item.getViewBox().translateBy(sideways, up * PAN_STEP * (y1 - y0))

@@ -1,0 +1,190 @@
+"""The set-up being edited: settings that always validate, beside what was typed and does not, with undo and redo."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+from types import MappingProxyType
+from typing import Any
+
+from thalweg.errors import StudyError
+from thalweg.options import Options
+from thalweg.study.spec import SECTIONS, StudySpec, spec_from_data
+from thalweg.systems import Integrals, Molecule
+from thalweg_app.presenters.fields import FieldFacts, fields_of
+from thalweg_app.presenters.history import History
+from thalweg_app.presenters.listeners import Listeners
+from thalweg_app.presenters.numbers import parse_number, parse_whole
+
+_NOTHING: Mapping[Any, Any] = MappingProxyType({})
+
+
+@dataclass(frozen=True)
+class Draft:
+    """A snapshot of the set-up.
+
+    Attributes:
+        spec: the last settings that validate.
+        typed: field path -> the text in it that does not validate; nothing typed is lost.
+        errors: field path -> what is wrong with that text.
+        shelf: (section, key) -> settings of an alternative that is not chosen now, to come back to.
+    """
+
+    spec: StudySpec
+    typed: Mapping[str, Any] = field(default_factory=lambda: _NOTHING)
+    errors: Mapping[str, StudyError] = field(default_factory=lambda: _NOTHING)
+    shelf: Mapping[tuple[str, str], Options] = field(default_factory=lambda: _NOTHING)
+
+
+class SetupEditing:
+    """Takes edits field by field. `changed` tells of every new draft."""
+
+    def __init__(self, history: History, spec: StudySpec | None = None) -> None:
+        self._history = history
+        self._draft = Draft(spec or StudySpec(system=Molecule()))
+        self._refused: tuple[StudySpec, StudyError] | None = None
+        self.changed = Listeners()
+
+    @property
+    def draft(self) -> Draft:
+        return self._draft
+
+    @property
+    def spec(self) -> StudySpec:
+        return self._draft.spec
+
+    @property
+    def has_system(self) -> bool:
+        return _has_content(self.spec.system)
+
+    @property
+    def errors(self) -> dict[str, StudyError]:
+        """Field path -> error, what was typed and what the calculation refused alike."""
+        found = dict(self._draft.errors)
+        if self._refused is not None and self._refused[0] == self.spec:
+            found.setdefault(self._refused[1].field, self._refused[1])
+        return found
+
+    @property
+    def obstacle(self) -> str:
+        """Why Run is not possible now; empty when it is."""
+        if not self.has_system:
+            return "There is no system yet: open a geometry, paste one, or take a sample."
+        return next((str(error) for error in self.errors.values()), "")
+
+    def load(self, spec: StudySpec) -> None:
+        """Takes over settings as a new beginning, which undo does not reach behind."""
+        self._put(Draft(spec))
+
+    def edit(self, path: str, value: Any) -> None:
+        """Sets a field to what was typed or chosen; text is read as the field's kind. Bad input stays in the field with its error."""
+        draft = self._draft
+        if value == self.shown(path) and path not in draft.errors:
+            return
+        try:
+            spec = self._with(path, self._read(path, value))
+        except StudyError as error:
+            self._record(_title(path, draft.spec), replace(draft, typed={**draft.typed, path: value}, errors={**draft.errors, path: error}))
+            return
+        typed, errors = _without(draft.typed, path), _without(draft.errors, path)
+        self._record(_title(path, draft.spec), replace(draft, spec=spec, typed=typed, errors=errors))
+
+    def choose(self, section: str, key: str) -> None:
+        """Switches a section to another alternative, which comes back as it was left."""
+        draft = self._draft
+        old: Options = getattr(draft.spec, section)
+        if old.key == key:  # type: ignore[attr-defined]
+            return
+        cls = SECTIONS[section].get(key)
+        new = draft.shelf.get((section, key)) or _carried_over(cls, old)
+        spec = draft.spec.model_copy(update={section: new})
+        shelf = {**draft.shelf, (section, old.key): old}  # type: ignore[attr-defined]
+        typed = {p: v for p, v in draft.typed.items() if not p.startswith(section + ".")}
+        errors = {p: e for p, e in draft.errors.items() if not p.startswith(section + ".")}
+        self._record(f"choose {cls.title}", Draft(spec, typed, errors, shelf))
+
+    def replace_system(self, system: Any, text: str) -> None:
+        """Takes another system, e.g. from a file, and keeps all other sections."""
+        draft = self._draft
+        typed = {p: v for p, v in draft.typed.items() if not p.startswith("system.")}
+        errors = {p: e for p, e in draft.errors.items() if not p.startswith("system.")}
+        self._record(text, replace(draft, spec=draft.spec.model_copy(update={"system": system}), typed=typed, errors=errors))
+
+    def use(self, spec: StudySpec, text: str) -> None:
+        """Puts the settings of a run back; undo returns to what was there."""
+        if spec != self.spec or self._draft.errors:
+            self._record(text, Draft(spec, shelf=self._draft.shelf))
+
+    def refuse(self, spec: StudySpec, error: StudyError) -> None:
+        """Notes that a calculation refused these settings; the mark goes when they change."""
+        self._refused = (spec, error)
+        self.changed()
+
+    def shown(self, path: str) -> Any:
+        """What the field shows: the text that does not validate, or the value."""
+        if path in self._draft.typed:
+            return self._draft.typed[path]
+        node: Any = self.spec
+        for name in path.split("."):
+            node = getattr(node, name)
+        return node
+
+    def _read(self, path: str, value: Any) -> Any:
+        facts = facts_of(path, self.spec)
+        if not isinstance(value, str) or facts is None:
+            return value
+        if facts.kind == "number":
+            return parse_number(value, path)
+        return parse_whole(value, path) if facts.kind == "whole" else value.strip()
+
+    def _with(self, path: str, value: Any) -> StudySpec:
+        data = self.spec.model_dump()
+        *parents, last = path.split(".")
+        node = data
+        for name in parents:
+            node = node[name]
+        node[last] = value
+        return spec_from_data(data)
+
+    def _record(self, text: str, draft: Draft) -> None:
+        before = self._draft
+        self._put(draft)
+        self._history.record(text, lambda: self._put(before), lambda: self._put(draft))
+
+    def _put(self, draft: Draft) -> None:
+        self._draft = draft
+        self.changed()
+
+
+def facts_of(path: str, spec: StudySpec) -> FieldFacts | None:
+    """Metadata of the field at a dotted path, None for fields with an editor of their own."""
+    *parents, last = path.split(".")
+    owner: Any = spec
+    for name in parents:
+        owner = getattr(owner, name)
+    return next((facts for facts in fields_of(type(owner)) if facts.name == last), None)
+
+
+def _title(path: str, spec: StudySpec) -> str:
+    facts = facts_of(path, spec)
+    title = facts.title if facts else path.rsplit(".", 1)[-1].replace("_", " ")
+    return f"change of {title[:1].lower() + title[1:] if title[1:2].islower() else title}"
+
+
+def _has_content(system: Any) -> bool:
+    if isinstance(system, Molecule):
+        return bool(system.atoms)
+    if isinstance(system, Integrals):
+        return bool(system.listing)
+    return True
+
+
+def _carried_over(cls: type[Options], old: Options) -> Options:
+    """Defaults of `cls`, with the settings that both alternatives share (e.g. tapering) kept where they validate."""
+    shared = {n: getattr(old, n) for n in cls.model_fields if n != "key" and n in type(old).model_fields}
+    shared = {n: v for n, v in shared.items() if cls.model_fields[n].annotation == type(old).model_fields[n].annotation}
+    return cls.model_validate(shared)
+
+
+def _without(mapping: Mapping[str, Any], path: str) -> dict[str, Any]:
+    return {p: v for p, v in mapping.items() if p != path}

@@ -1,0 +1,67 @@
+"""The one line that a folded section shows: what is chosen, and what it costs."""
+
+from __future__ import annotations
+
+from thalweg.study.derived import StudyFigures
+from thalweg.study.spec import StudySpec
+from thalweg.systems import Molecule
+from thalweg_app.presenters import wording
+from thalweg_app.presenters.wording import counted
+
+SECTION_TITLES = {"system": "System", "encoding": "Encoding", "ansatz": "Trial state", "optimizer": "Search"}
+
+
+def summary(section: str, spec: StudySpec, figures: StudyFigures | None) -> str:
+    """The line without the section's number and title. Figures are left out where they are not known."""
+    makers = {"system": _system, "encoding": _encoding, "ansatz": _ansatz, "optimizer": _search}
+    return makers[section](spec, figures)
+
+
+def formula(atoms: tuple[tuple[str, float, float, float], ...]) -> str:
+    """`H2O` from the atoms: carbon first, then hydrogen, then by the alphabet (Hill order)."""
+    symbols = [symbol.capitalize() for symbol, *_ in atoms]
+    first = [s for s in ("C", "H") if "C" in symbols and s in symbols]
+    order = first + sorted(set(symbols) - set(first))
+    return "".join(s + (str(n) if (n := symbols.count(s)) > 1 else "") for s in order)
+
+
+def system_label(spec: StudySpec) -> str:
+    system = spec.system
+    if isinstance(system, Molecule):
+        name = system.name or formula(system.atoms)
+        return f"{name}, {system.basis.upper() if system.basis[:3] == 'sto' else system.basis}" if name else ""
+    return str(getattr(system, "name", "") or system.title)
+
+
+def _system(spec: StudySpec, figures: StudyFigures | None) -> str:
+    label = system_label(spec)
+    if not label:
+        return "none yet"
+    if figures is None:
+        return label
+    if figures.n_electrons is None or figures.n_orbitals is None:
+        return f"{label}: {counted(figures.qubits_before_tapering, 'site')}"
+    return f"{label}: {counted(figures.n_electrons, 'electron')} in {counted(figures.n_orbitals, 'orbital')}"
+
+
+def _encoding(spec: StudySpec, figures: StudyFigures | None) -> str:
+    chosen = f"{spec.encoding.title}, {'tapered' if spec.encoding.taper else 'not tapered'}"
+    if figures is None:
+        return chosen
+    before, after = figures.qubits_before_tapering, figures.qubits
+    qubits = f"{before} → {counted(after, 'qubit')}" if before != after else counted(after, "qubit")
+    return f"{chosen}: {qubits}, {counted(figures.terms, 'term')}"
+
+
+def _ansatz(spec: StudySpec, figures: StudyFigures | None) -> str:
+    if figures is None:
+        return spec.ansatz.title
+    gates = "" if figures.two_qubit_gates is None else f", {counted(figures.two_qubit_gates, 'two-qubit gate')}"
+    return f"{spec.ansatz.title}: {counted(figures.parameters, 'parameter')}{gates}"
+
+
+def _search(spec: StudySpec, figures: StudyFigures | None) -> str:
+    unit = figures.energy_unit if figures is not None else "hartree"
+    value = wording.difference(spec.target.error, unit)
+    _, name = wording.difference_factor(unit, "mEh")
+    return f"{spec.optimizer.title}: {counted(spec.starts, 'start')}, target {value} {name}"

@@ -1,0 +1,152 @@
+"""The Convergence picture as data: energy and error against iteration, evaluations or seconds."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal, Protocol
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.study.result import StudyResult, Trace
+from thalweg.units import CHEMICAL_ACCURACY
+from thalweg_app.presenters import wording
+from thalweg_app.presenters.chart import Band, Chart, Level, Panel, Role, Series
+from thalweg_app.presenters.live import LiveRun
+
+XChoice = Literal["iteration", "evaluations", "seconds"]
+X_TITLES: dict[XChoice, str] = {"iteration": "Iteration", "evaluations": "Energy evaluations", "seconds": "Seconds"}
+CLASSICAL_NAMES = {"mp2": "MP2", "ccsd": "CCSD", "ccsd(t)": "CCSD(T)"}
+EMPTY = "Press Run to see the energy fall towards the exact one."
+
+
+class Columns(Protocol):
+    """What `Trace` and `LiveStart` have in common."""
+
+    @property
+    def energy(self) -> Sequence[float]: ...
+    @property
+    def gradient_norm(self) -> Sequence[float | None]: ...
+
+
+@dataclass(frozen=True)
+class Shown:
+    """One run in the picture, finished or under way."""
+
+    name: str
+    unit: str
+    reference_name: str
+    reference_energy: float
+    exact_energy: float | None
+    target: float
+    starts: tuple[Columns, ...]
+    best_start: int
+    classical: dict[str, float | None]
+
+    @property
+    def lead(self) -> Columns:
+        return self.starts[self.best_start]
+
+
+def shown_result(number: int, result: StudyResult) -> Shown:
+    starts: tuple[Columns, ...] = tuple(s.trace for s in result.starts) or (Trace(),)
+    return Shown(
+        f"Run {number}",
+        result.energy_unit,
+        result.reference_name,
+        result.reference_energy,
+        result.exact_energy,
+        result.target_error,
+        starts,
+        result.best_start,
+        result.classical,
+    )
+
+
+def shown_live(live: LiveRun) -> Shown | None:
+    """None before the first iterate."""
+    if live.started is None or not live.starts:
+        return None
+    s = live.started
+    name = "Running" if live.check_of is None else f"Check of run {live.check_of}"
+    lead = len(live.starts) - 1
+    return Shown(name, s.energy_unit, s.reference_name, s.reference_energy, s.exact_energy, s.target_error, tuple(live.starts), lead, {})
+
+
+def convergence(main: Shown | None, overlays: Sequence[Shown] = (), x: XChoice = "iteration", difference_unit: str = "mEh") -> Chart:
+    """Energies of the main run with its levels; errors of the main run and of every overlay of the same unit."""
+    if main is None:
+        return Chart("Convergence", X_TITLES[x], (), EMPTY)
+    factor, unit = wording.difference_factor(main.unit, difference_unit)
+    others = [o for o in overlays if o.unit == main.unit]
+    energy = Panel(
+        f"Energy / {wording.unit_name(main.unit)}",
+        _curves(main, others, x, lambda run, start: _array(start.energy)),
+        _levels(main),
+        share=1.15,
+    )
+    return Chart("Convergence", X_TITLES[x], (energy, _lower(main, others, x, factor, unit)), EMPTY, _describe(main))
+
+
+def _lower(main: Shown, others: list[Shown], x: XChoice, factor: float, unit: str) -> Panel:
+    if main.exact_energy is None:
+        curves = _curves(main, others, x, lambda run, start: _positive(_array(start.gradient_norm)))
+        return Panel("Largest gradient component", curves, log=True)
+
+    def error(run: Shown, start: Columns) -> FloatArray:
+        exact = np.nan if run.exact_energy is None else run.exact_energy
+        return _positive((_array(start.energy) - exact) * factor)
+
+    band = Band(main.target * factor, f"{_target_name(main)}, {wording.significant(main.target * factor)} {unit}")
+    return Panel(f"Error against exact / {unit}", _curves(main, others, x, error), band=band, log=True)
+
+
+def _curves(main: Shown, others: list[Shown], x: XChoice, values: object) -> tuple[Series, ...]:
+    assert callable(values)
+    curves = []
+    for k, start in enumerate(main.starts):
+        if k != main.best_start:
+            curves.append(_series(f"{main.name}, start {k + 1}", start, x, values(main, start), "faint", k))
+    for rank, other in enumerate(others):
+        curves.append(_series(other.name, other.lead, x, values(other, other.lead), "overlay", rank))
+    curves.append(_series(main.name, main.lead, x, values(main, main.lead), "variational", 0))
+    return tuple(curves)
+
+
+def _series(name: str, start: Columns, x: XChoice, y: FloatArray, role: Role, rank: int) -> Series:
+    along = np.asarray(getattr(start, x), dtype=np.float64)
+    n = min(along.size, y.size)
+    return Series(name, along[:n], y[:n], role, rank, legend=role != "faint")
+
+
+def _levels(main: Shown) -> tuple[Level, ...]:
+    levels = [Level(main.reference_name, main.reference_energy, "reference")]
+    for rank, (key, value) in enumerate(main.classical.items()):
+        if value is not None:
+            levels.append(Level(CLASSICAL_NAMES.get(key, key), value, "classical", rank))
+    if main.exact_energy is not None:
+        levels.append(Level("Exact", main.exact_energy, "exact"))
+    return tuple(levels)
+
+
+def _target_name(main: Shown) -> str:
+    chemical = main.unit == "hartree" and abs(main.target - CHEMICAL_ACCURACY) < 1e-9
+    return "Chemical accuracy" if chemical else "Target"
+
+
+def _describe(main: Shown) -> str:
+    energies = main.lead.energy
+    if not energies:
+        return main.name
+    unit = wording.unit_name(main.unit)
+    last = f"{main.name}: energy {energies[-1]:.6f} {unit} after {len(energies) - 1} iterations"
+    return last if main.exact_energy is None else f"{last}, exact {main.exact_energy:.6f} {unit}"
+
+
+def _array(values: Sequence[float | None]) -> FloatArray:
+    return np.array([np.nan if v is None else v for v in values], dtype=np.float64)
+
+
+def _positive(values: FloatArray) -> FloatArray:
+    return np.where(values > 0, values, np.nan)
