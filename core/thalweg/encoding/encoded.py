@@ -163,7 +163,8 @@ def _fermion_symmetries(
     named = [(_spin_orbitals(every, 0), "parity of the alpha electrons"), (_spin_orbitals(0, every), "parity of the beta electrons")]
     for bit in range(int(hamiltonian.orbital_irreps.max(initial=0)).bit_length()):
         odd = sum(1 << p for p, irrep in enumerate(hamiltonian.orbital_irreps) if int(irrep) >> bit & 1)
-        named.append((_spin_orbitals(odd, odd), f"parity of the electrons in {_irrep_text(hamiltonian, bit)}"))
+        if odd:
+            named.append((_spin_orbitals(odd, odd), f"parity of the electrons in {_irrep_text(hamiltonian, bit)}"))
     named += [(modes, _modes_text(modes)) for modes in lightest([linear.modes_of(mask) for mask in space])]
     text = {linear.z_mask(modes): label for modes, label in reversed(named)}
     masks = independent([linear.z_mask(modes) for modes, _ in named], space)
