@@ -17,10 +17,12 @@ from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDe
 from thalweg.optimize.objective import StopRules
 from thalweg.options import Options, option
 from thalweg.registry import Alternatives
-from thalweg.systems import SYSTEMS, Integrals, Molecule
+from thalweg.systems import SYSTEMS, Integrals, LatticeModel, Molecule
+from thalweg.systems.lattice import LATTICES
+from thalweg.systems.lattice_model import MODELS
 from thalweg.units import CHEMICAL_ACCURACY
 
-AnySystem = Annotated[Molecule | Integrals, Field(discriminator="key")]
+AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="key")]
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
 AnyAnsatz = Annotated[UCCSD | HardwareEfficient, Field(discriminator="key")]
 AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
@@ -54,12 +56,15 @@ class StudySpec(Options):
 
 #: Section of the spec -> its alternatives, for forms, the terminal and contract tests.
 SECTIONS: dict[str, Alternatives[Any]] = {"system": SYSTEMS, "encoding": ENCODINGS, "ansatz": ANSATZE, "optimizer": OPTIMIZERS}
+#: Every field of the spec, at any depth, that holds one of several alternatives.
+UNIONS: dict[str, Alternatives[Any]] = SECTIONS | {"lattice": LATTICES, "model": MODELS}
 
 
 def with_setting(spec: StudySpec, path: str, value: Any) -> StudySpec:
     """A copy with one field changed. `path` is dotted, e.g. `optimizer.max_iterations`; strings are read as JSON where they parse.
 
-    Setting a section to a key (`ansatz` = `hardware-efficient`) switches the alternative and takes its defaults.
+    Setting a section or a union within one to a key (`ansatz` = `hardware-efficient`, `system.lattice` = `kagome`) switches the
+    alternative and takes its defaults.
     """
     data = spec.model_dump()
     if isinstance(value, str):
@@ -72,8 +77,8 @@ def with_setting(spec: StudySpec, path: str, value: Any) -> StudySpec:
         node = node[name]
     if not isinstance(node, dict) or (last not in node and not parents):
         raise StudyError(f"Unknown setting '{path}'", "no such field", f"Use one of: {_names(node)}", path)
-    if not parents and last in SECTIONS and isinstance(value, str):
-        value = {"key": SECTIONS[last].get(value).model_fields["key"].default} if value != data[last]["key"] else data[last]
+    if last in UNIONS and isinstance(value, str) and isinstance(node[last], dict):
+        value = {"key": UNIONS[last].get(value).model_fields["key"].default} if value != node[last]["key"] else node[last]
     node[last] = value
     return spec_from_data(data)
 
@@ -89,14 +94,26 @@ def spec_from_data(data: dict[str, Any]) -> StudySpec:
 def study_error(error: ValidationError) -> StudyError:
     """The first validation message as what, why, how to mend."""
     first = error.errors()[0]
-    keys = {key for section in SECTIONS.values() for key in section.keys()}  # noqa: SIM118 - a registry, not a dict
-    field = ".".join(str(part) for part in first["loc"] if str(part) not in keys)
+    field = _path(first["loc"])
     cause = first.get("ctx", {}).get("error")
     if isinstance(cause, StudyError):
         return StudyError(cause.what, cause.why, cause.fix, field)
     given = repr(first.get("input"))
     why = first["msg"][:1].lower() + first["msg"][1:]
     return StudyError(f"Setting '{field}' cannot be {given[:60]}", why, "Give a value that fits", field)
+
+
+def _path(location: tuple[int | str, ...]) -> str:
+    """Dotted path of a field; the keys by which pydantic names the member of a union are left out."""
+    parts: list[str] = []
+    members: list[str] = []
+    for part in map(str, location):
+        if part in members:
+            members = []
+            continue
+        parts.append(part)
+        members = UNIONS[part].keys() if part in UNIONS else []
+    return ".".join(parts)
 
 
 def _read(text: str) -> Any:

@@ -2,9 +2,10 @@
 
 from thalweg.registry import Alternatives
 from thalweg.systems.integrals import Integrals
+from thalweg.systems.lattice_model import LatticeModel
 from thalweg.systems.molecule import Molecule
 from thalweg.systems.prepared import PreparedSystem
 
-SYSTEMS: Alternatives[Molecule | Integrals] = Alternatives("system", [Molecule, Integrals])
+SYSTEMS: Alternatives[Molecule | Integrals | LatticeModel] = Alternatives("system", [Molecule, Integrals, LatticeModel])
 
-__all__ = ["SYSTEMS", "Integrals", "Molecule", "PreparedSystem"]
+__all__ = ["SYSTEMS", "Integrals", "LatticeModel", "Molecule", "PreparedSystem"]
