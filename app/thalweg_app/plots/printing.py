@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 from pathlib import Path
 from typing import Any
 
@@ -9,27 +10,42 @@ import numpy as np
 
 from thalweg.errors import StudyError
 from thalweg.paths import data_folder
+from thalweg.storage.files import write_atomically
 from thalweg_app.colours import LIGHT, style_of
 from thalweg_app.presenters.chart import Chart, Panel
 
 FORMATS = ("png", "svg", "pdf")
 RESOLUTION = 200  # dots an inch of a PNG
+#: Fonts are kept as text.
+SETTINGS: dict[str, Any] = {
+    "font.family": ["Inter", "DejaVu Sans"],
+    "font.size": 9,
+    "svg.fonttype": "none",
+    "pdf.fonttype": 42,
+    "axes.unicode_minus": True,
+}
 _DASHES: dict[str, Any] = {"solid": "-", "dash": (0, (5, 2.5)), "dot": (0, (1.2, 1.8)), "dashdot": (0, (5, 2, 1.2, 2)), "longdash": (0, (9, 3))}
 #: More marks than this would melt into one another.
 MAX_MARKS = 120
 
 
-def draw_chart(chart: Chart, path: Path) -> None:
-    """Writes the chart to `path`; StudyError when the ending is unknown or the file cannot be written."""
+def picture_format(path: Path) -> str:
+    """`png`, `svg` or `pdf`, told by the ending; StudyError for any other."""
     kind = path.suffix.lower().lstrip(".")
     if kind not in FORMATS:
         raise StudyError(f"Cannot save a picture as '{path.name}'", "its ending is not png, svg or pdf", "Give the file one of these endings")
-    figure = make_figure(chart)
-    try:
-        figure.savefig(path, format=kind, dpi=RESOLUTION, bbox_inches="tight")
-    except OSError as error:
-        why = (error.strerror or str(error)).lower()
-        raise StudyError(f"Cannot write {path.name}", why, "Choose another folder or make room") from None
+    return kind
+
+
+def draw_chart(chart: Chart, path: Path) -> None:
+    """Writes the chart to `path`; StudyError when the ending is unknown or the file cannot be written."""
+    import matplotlib
+
+    kind = picture_format(path)
+    content = io.BytesIO()
+    with matplotlib.rc_context(SETTINGS):  # some settings count when the figure is made, others when it is written
+        make_figure(chart).savefig(content, format=kind, dpi=RESOLUTION, bbox_inches="tight")
+    write_atomically(path, content.getvalue())
 
 
 def make_figure(chart: Chart) -> Any:
@@ -38,8 +54,7 @@ def make_figure(chart: Chart) -> Any:
     from matplotlib.figure import Figure
 
     _use_own_font()
-    settings = {"font.family": ["Inter", "DejaVu Sans"], "font.size": 9, "svg.fonttype": "none", "pdf.fonttype": 42, "axes.unicode_minus": True}
-    with matplotlib.rc_context(settings):
+    with matplotlib.rc_context(SETTINGS):
         height = 2.4 + 1.9 * max(0, len(chart.panels) - 1) + 0.6
         figure = Figure(figsize=(6.4, height), layout="constrained")
         shares = [p.share for p in chart.panels] or [1.0]
@@ -97,7 +112,9 @@ def _draw_bars(panel: Panel, ax: Any) -> None:
         shift = 0.0 if stacked else (i - (len(panel.bars) - 1) / 2) * width
         fill = style.colour if style.filled else "none"
         hatch = None if style.filled else "////"
-        ax.bar(np.arange(bars.values.size) + shift, bars.values, width, color=fill, edgecolor=style.colour, hatch=hatch, linewidth=0.8, label=bars.name)
+        ax.bar(
+            np.arange(bars.values.size) + shift, bars.values, width, color=fill, edgecolor=style.colour, hatch=hatch, linewidth=0.8, label=bars.name
+        )
     if panel.categories:
         ax.set_xticks(range(len(panel.categories)), panel.categories, rotation=60 if len(panel.categories) > 6 else 0, fontsize=7)
 
@@ -110,4 +127,6 @@ def _draw_band(panel: Panel, ax: Any) -> None:
     ax.set_ylim(low, max(high, band.upper * (3 if panel.log else 1)))
     ax.axhspan(low if band.lower is None else band.lower, band.upper, color=LIGHT.band, zorder=0)
     ax.axhline(band.upper, color=LIGHT.good, linewidth=0.8)
-    ax.annotate(band.text, (0.99, band.upper), xycoords=("axes fraction", "data"), xytext=(0, 2), textcoords="offset points", ha="right", fontsize=7.5)
+    ax.annotate(
+        band.text, (0.99, band.upper), xycoords=("axes fraction", "data"), xytext=(0, 2), textcoords="offset points", ha="right", fontsize=7.5
+    )

@@ -14,6 +14,8 @@ from thalweg.storage.plain_json import json_text
 from thalweg.storage.session import Session, is_session, load_session, save_session
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
+from thalweg_app.plots.printing import draw_chart, picture_format
+from thalweg_app.presenters.traces import convergence, shown_result
 from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
@@ -36,8 +38,7 @@ def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: 
     spec, notes = read_setup(options)
     session = _session_to_extend(save, spec)
     _check_targets(figure, json_file)
-    with_notes = () if quiet else notes
-    for note in with_notes:
+    for note in () if quiet else notes:
         print(note, file=sys.stderr)
     from thalweg.study.run import run
 
@@ -63,9 +64,7 @@ def _session_to_extend(save: Path | None, spec: StudySpec) -> Session:
 
 def _check_targets(figure: Path | None, json_file: str | None) -> None:
     if figure is not None:
-        from thalweg_app.figures import check_format
-
-        check_format(figure)
+        picture_format(figure)
         ensure_writable(figure)
     if json_file not in (None, STANDARD_OUTPUT):
         ensure_writable(Path(json_file))
@@ -83,12 +82,10 @@ def _print(result: StudyResult, json_file: str | None) -> None:
 
 
 def _keep(result: StudyResult, session: Session, save: Path | None, figure: Path | None) -> None:
+    session = session.with_result(result)
     if save is not None:
-        extended = session.with_result(result)
-        save_session(extended, save)
-        print(f"Saved as run {extended.runs[-1].number} of {save}", file=sys.stderr)
+        save_session(session, save)
+        print(f"Saved as run {session.runs[-1].number} of {save}", file=sys.stderr)
     if figure is not None:
-        from thalweg_app.figures import convergence_figure, save_figure
-
-        save_figure(convergence_figure(result), figure)
+        draw_chart(convergence(shown_result(session.runs[-1].number, result)), figure)
         print(f"Drawn in {figure}", file=sys.stderr)
