@@ -68,7 +68,8 @@ def cut_degeneracies(space: ActiveSpace, energies: FloatArray) -> tuple[str, ...
     active = set(space.active)
     order = np.argsort(energies, kind="stable").tolist()
     return tuple(
-        f"Orbitals {p + 1} and {q + 1} have the same energy and the active space holds only one of them: the answer depends on their orientation"
+        f"Orbitals {min(p, q) + 1} and {max(p, q) + 1} have the same energy and the active space holds only one of them: "
+        "the answer depends on their orientation"
         for p, q in pairwise(order)
         if (p in active) != (q in active) and energies[q] - energies[p] < DEGENERATE
     )

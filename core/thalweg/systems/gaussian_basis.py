@@ -25,14 +25,15 @@ def build_mole(
     """The PySCF molecule; `xyz` in bohr, shape (atoms, 3). Raises StudyError for an unknown basis or missing PySCF."""
     gto = pyscf_module("gto")
     _check_basis(basis, symbols)
+    elements = list(dict.fromkeys(symbols))
     mole = gto.Mole(
         verbose=0,
         max_memory=budget_bytes / 1e6,
         incore_anyway=True,
         atom=[(s, tuple(r)) for s, r in zip(symbols, xyz.tolist(), strict=True)],
         unit="Bohr",
-        basis=basis,
-        ecp={s: basis for s in dict.fromkeys(symbols) if _has_core_potential(basis, s)},
+        basis={s: _functions(basis, s) for s in elements},
+        ecp={s: potential for s in elements if (potential := _core_potential(basis, s))},
         charge=charge,
         spin=n_unpaired,
         cart=cartesian,
@@ -91,29 +92,30 @@ def _check_basis(basis: str, symbols: Sequence[str]) -> None:
     # PySCF would read a file of this name or an inline listing: a session must run again without either.
     if not re.fullmatch(r"[\w+*(),.@ -]{1,60}", basis) or os.path.isfile(basis) or basis.lower().startswith("gth"):
         raise unknown
-    missing = [s for s in dict.fromkeys(symbols) if not _has_basis(basis, s)]
+    missing = [s for s in dict.fromkeys(symbols) if _functions(basis, s) is None]
     if not missing:
         return
-    if not any(_has_basis(basis, s) for s in ("H", "C", "Na", "Fe", "I")):
+    if all(_functions(basis, s) is None for s in ("H", "C", "Na", "Fe", "I")):
         raise unknown
     raise StudyError(f"The basis set '{basis}' has no functions for {missing[0]}", "it does not cover this element", "Choose another", "system.basis")
 
 
 @lru_cache(512)
-def _has_basis(basis: str, symbol: str) -> bool:
-    try:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            return bool(pyscf_module("gto").basis.load(basis, symbol))
-    except Exception:  # PySCF raises half a dozen types for a name that it cannot read
-        return False
+def _functions(basis: str, symbol: str) -> list[Any] | None:
+    """The basis functions of an element as PySCF lists them; None where there are none."""
+    return _loaded("load", basis, symbol)
 
 
 @lru_cache(512)
-def _has_core_potential(basis: str, symbol: str) -> bool:
+def _core_potential(basis: str, symbol: str) -> list[Any] | None:
+    """The effective core potential that belongs to the basis set; None for most."""
+    return _loaded("load_ecp", basis, symbol)
+
+
+def _loaded(loader: str, basis: str, symbol: str) -> list[Any] | None:
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
-            return bool(pyscf_module("gto").basis.load_ecp(basis, symbol))
-    except Exception:  # as above: most basis sets have none
-        return False
+            return getattr(pyscf_module("gto").basis, loader)(basis, symbol) or None
+    except Exception:  # PySCF raises half a dozen types for a name that it cannot read
+        return None
