@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
+
 from thalweg.circuit.program import Excitation, Gate, GateProgram
 from thalweg.operators.pauli import PauliExpansion
 
@@ -32,10 +35,10 @@ def sparse_matrix(expansion: PauliExpansion):
 
     size = 1 << expansion.n_qubits
     columns = np.arange(size)
-    values: dict[int, np.ndarray] = {}
+    values = {0: np.zeros(size, complex)}
     for x, z, c in zip(expansion.x.tolist(), expansion.z.tolist(), expansion.coefficients, strict=True):
-        sign = 1 - 2 * (np.bitwise_count(columns & z) & 1)
-        values[x] = values.get(x, 0) + c * 1j ** (x & z).bit_count() * sign
+        sign = 1.0 - 2.0 * (np.bitwise_count(columns & z) & 1)
+        values[x] = values.get(x, 0.0) + c * 1j ** (x & z).bit_count() * sign
     rows = np.concatenate([columns ^ x for x in values])
     return csr_matrix((np.concatenate(list(values.values())), (rows, np.tile(columns, len(values)))), shape=(size, size))
 
@@ -61,7 +64,8 @@ def gate_state(program: GateProgram, parameters: np.ndarray) -> np.ndarray:
     return state
 
 
-def annihilators(n: int) -> list[np.ndarray]:
+@lru_cache(maxsize=8)
+def annihilators(n: int) -> tuple[np.ndarray, ...]:
     """a_p of n interleaved spin orbitals on |n_0 n_1 ...> = (a+_0)^n_0 (a+_1)^n_1 ... |vacuum>, bit p of the index = n_p."""
     size = 1 << n
     found = []
@@ -71,7 +75,7 @@ def annihilators(n: int) -> list[np.ndarray]:
             if state >> p & 1:
                 matrix[state ^ 1 << p, state] = (-1) ** (state & ((1 << p) - 1)).bit_count()
         found.append(matrix)
-    return found
+    return tuple(found)
 
 
 def excitation_matrix(excitation: Excitation, n: int) -> np.ndarray:

@@ -6,6 +6,7 @@ from functools import lru_cache
 from pathlib import Path
 
 import numpy as np
+
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 
 #: Geometries of Verteletskyi, Yen and Izmaylov, J. Chem. Phys. 152, 124114 (2020): all bonds 1.0 angstrom, HOH 107.6 degrees.

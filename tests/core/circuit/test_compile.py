@@ -9,6 +9,7 @@ import pytest
 from scipy.linalg import expm
 from support.dense import excitation_matrix, gate_state
 from support.molecules import computed_molecule, random_hamiltonian
+
 from thalweg.circuit import Excitation, ExcitationProgram
 from thalweg.circuit.compile import FULL_REGISTER, excitation_gates
 from thalweg.encoding import ENCODINGS

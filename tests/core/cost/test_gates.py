@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+
 from thalweg.circuit import Gate, GateProgram
 from thalweg.cost.gates import gate_counts
 
@@ -50,6 +51,7 @@ def test_fixed_gates_are_counted():
 def test_double_excitation_without_overlap_of_strings_takes_48_cnot():
     # Romero et al. 2018: a double excitation has 8 strings; on four neighbouring qubits each has weight 4
     from support.molecules import random_hamiltonian
+
     from thalweg.circuit import Excitation, ExcitationProgram
     from thalweg.circuit.compile import excitation_gates
     from thalweg.encoding import JordanWigner

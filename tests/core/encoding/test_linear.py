@@ -10,6 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from support.dense import expansion_matrix
 from support.molecules import random_hamiltonian, stored_molecule
+
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.encoding.interchange import to_fermion_operator, to_qubit_operator
 from thalweg.encoding.linear import linear_encoding, map_hamiltonian, number_operator, s_squared_operator, s_z_operator
