@@ -10,6 +10,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
+from thalweg.systems.wording import counted
 
 FIELD = "system.active_space"
 CORE_RULE = "the orbitals of the preceding noble gas of each atom: none for H and He, 1s for Li to Ne, 1s 2s 2p for Na to Ar, and so on"
@@ -97,7 +98,9 @@ def _frozen_core(occupation: FloatArray, energies: FloatArray, n_core: int | Non
     lowest = _by_energy(occupation, energies)[:n_core]
     if n_core > occupation.size or np.any(occupation[lowest] < 2):
         raise _error(
-            f"The {n_core} core orbitals are not all doubly occupied", "the molecule has too few electrons to freeze its core", "Take `all` orbitals"
+            f"The core of {counted(n_core, 'orbital')} is not doubly occupied",
+            "the molecule has too few electrons to freeze its core",
+            "Take `all` orbitals",
         )
     core = tuple(sorted(lowest.tolist()))
     rest = tuple(p for p in range(occupation.size) if p not in core)
@@ -106,25 +109,27 @@ def _frozen_core(occupation: FloatArray, energies: FloatArray, n_core: int | Non
 
 def _around_fermi_level(n_electrons: int, n_orbitals: int, occupation: FloatArray, energies: FloatArray) -> ActiveSpace:
     total, single = int(occupation.sum()), int(np.sum(occupation == 1))
-    asked = f"{n_electrons} electrons in {n_orbitals} orbitals"
+    asked = f"{counted(n_electrons, 'electron')} in {counted(n_orbitals, 'orbital')}"
     if n_electrons > total:
-        raise _error(f"The active space asks for {n_electrons} electrons", f"the system has {total}", f"Ask for at most {total}e")
+        raise _error(f"The active space asks for {counted(n_electrons, 'electron')}", f"the system has {total}", f"Ask for at most {total}e")
     if (total - n_electrons) % 2:
         raise _error(
             f"The active space asks for {n_electrons} of {total} electrons", "frozen orbitals hold two electrons each", f"Ask for {n_electrons + 1}e"
         )
-    if n_electrons < max(single, 1):
-        raise _error(f"The active space asks for {asked}", f"{single} orbitals are singly occupied", f"Ask for at least {max(single, 2)}e")
+    if n_electrons == 0:
+        raise _error(f"The active space asks for {asked}", "there would be nothing to correlate", f"Ask for at least {max(single, 2)}e")
+    if n_electrons < single:
+        raise _error(f"The active space asks for {asked}", f"{single} orbitals are singly occupied", f"Ask for at least {single}e")
     n_core = (total - n_electrons) // 2
     if n_core + n_orbitals > occupation.size:
         raise _error(
             f"The active space asks for {asked}",
-            f"{occupation.size - n_core} orbitals are left above the {n_core} frozen ones",
+            f"{counted(occupation.size - n_core, 'orbital')} of {occupation.size} remain when {n_core} {'is' if n_core == 1 else 'are'} frozen",
             f"Ask for at most {occupation.size - n_core}o, or take a larger basis set",
         )
     needed = (n_electrons - single) // 2 + single
     if n_orbitals < needed:
-        raise _error(f"The active space asks for {asked}", f"these electrons occupy {needed} orbitals", f"Ask for at least {needed}o")
+        raise _error(f"The active space asks for {asked}", f"these electrons occupy {counted(needed, 'orbital')}", f"Ask for at least {needed}o")
     order = _by_energy(occupation, energies)
     core = tuple(sorted(order[:n_core].tolist()))
     active = tuple(sorted(order[n_core : n_core + n_orbitals].tolist()))

@@ -19,14 +19,24 @@ from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
 
 
+def count_functions(symbols: Sequence[str], basis: str, cartesian: bool) -> int:
+    """Number of basis functions, before anything is computed. Raises StudyError for an unknown basis or missing PySCF."""
+    pyscf_module("gto")
+    _check_basis(basis, symbols)
+    total = 0
+    for symbol in symbols:
+        for momentum, *rows in _functions(basis, symbol) or []:
+            contracted = len(next(row for row in rows if isinstance(row, list | tuple))) - 1
+            total += contracted * ((momentum + 1) * (momentum + 2) // 2 if cartesian else 2 * momentum + 1)
+    return total
+
+
 def build_mole(
     symbols: Sequence[str], xyz: FloatArray, basis: str, charge: int, n_unpaired: int, cartesian: bool, point_group: bool, budget_bytes: int
 ) -> Any:
-    """The PySCF molecule; `xyz` in bohr, shape (atoms, 3). Raises StudyError for an unknown basis or missing PySCF."""
-    gto = pyscf_module("gto")
-    _check_basis(basis, symbols)
+    """The PySCF molecule; `xyz` in bohr, shape (atoms, 3). The basis is one that `count_functions` took."""
     elements = list(dict.fromkeys(symbols))
-    mole = gto.Mole(
+    mole = pyscf_module("gto").Mole(
         verbose=0,
         max_memory=budget_bytes / 1e6,
         incore_anyway=True,

@@ -2,21 +2,23 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.errors import StudyError
 from thalweg.operators.fermion import FermionHamiltonian, Sector
-from thalweg.systems.active_space import ActiveSpace, choose_active_space, cut_degeneracies
-from thalweg.systems.elements import Element, core_orbitals, formula
-from thalweg.systems.gaussian_basis import build_mole
-from thalweg.systems.geometry import check_geometry, coordinates_in_bohr, elements_of, short_distance_doubt, shortest_distance
+from thalweg.systems.active_space import ActiveSpace, choose_active_space
+from thalweg.systems.elements import Element, core_orbitals
+from thalweg.systems.gaussian_basis import build_mole, count_functions
+from thalweg.systems.geometry import check_geometry, coordinates_in_bohr, elements_of
 from thalweg.systems.mean_field import solve
+from thalweg.systems.molecular_facts import basis_title, charged_formula, facts_of, ladder_of, warnings_of
 from thalweg.systems.orbital_following import follow, seed_of, usable_density
 from thalweg.systems.orbital_order import MeanField
-from thalweg.systems.prepared import MeanFieldSeed, OrbitalRow, PreparedSystem, masks, read_only
+from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem, masks, read_only
+from thalweg.systems.wording import counted
 from thalweg.watch import Watch
 
 if TYPE_CHECKING:
@@ -26,8 +28,6 @@ if TYPE_CHECKING:
 _FORBIDDEN_LIMIT = 1e-4
 #: Fact that lists what was said when the orbitals of a neighbour were followed.
 FOLLOWING = "orbital_following"
-#: A frontier gap below this makes the reference one of several like determinants, Eh.
-_SMALL_GAP = 1e-3
 
 
 def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour: MeanFieldSeed | None) -> PreparedSystem:
@@ -36,11 +36,12 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     elements = elements_of(spec.atoms)
     n_alpha, n_beta = _electrons(elements, spec.charge, spec.multiplicity)
     watch.stage("mean field")
-    symbols = [e.symbol for e in elements]
+    symbols, basis = [e.symbol for e in elements], spec.basis.strip()
+    _check_memory(count_functions(symbols, basis, spec.cartesian), 0, budget_bytes, "system.basis")
     xyz = coordinates_in_bohr(spec.atoms, spec.unit)
-    mole = build_mole(symbols, xyz, spec.basis.strip(), spec.charge, n_alpha - n_beta, spec.cartesian, spec.point_group, budget_bytes)
+    mole = build_mole(symbols, xyz, basis, spec.charge, n_alpha - n_beta, spec.cartesian, spec.point_group, budget_bytes)
     n_functions = int(mole.nao_nr())
-    _check_size(n_functions, mole.nelec[0], budget_bytes)
+    _check_filling(n_functions, int(mole.nelec[0]))
     field = solve(mole, watch, usable_density(neighbour, n_functions))
     watch.stage("integrals")
     n_core = sum(max(0, core_orbitals(e.number) - mole.atom_nelec_core(i) // 2) for i, e in enumerate(elements))
@@ -54,15 +55,15 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     watch.check()
     fermions = _hamiltonian(field, space, core_energy, one_body, pairs)
     return PreparedSystem(
-        label=f"{spec.name.strip() or _formula(elements, spec.charge)}, {_basis_title(spec.basis.strip())}",
+        label=f"{spec.name.strip() or charged_formula(elements, spec.charge)}, {basis_title(spec.basis.strip())}",
         fermions=fermions,
         spins=None,
         energy_unit="hartree",
         reference_name="Hartree-Fock" if mole.spin == 0 else "Hartree-Fock (restricted open shell)",
         reference_energy=fermions.reference_energy,
-        facts=_facts(spec, elements, mole, field, space, core_energy, dropped) | ({FOLLOWING: list(following)} if following else {}),
-        warnings=_warnings(spec, field, space),
-        ladder=_ladder(field, space),
+        facts=facts_of(spec, elements, mole, field, space, core_energy, dropped) | ({FOLLOWING: list(following)} if following else {}),
+        warnings=warnings_of(spec, field, space),
+        ladder=ladder_of(field, space),
         mean_field=field.solver,
         seed=seed_of(field, space),
     )
@@ -72,10 +73,10 @@ def _electrons(elements: tuple[Element, ...], charge: int, multiplicity: int) ->
     """(alpha, beta) electrons; StudyError when the charge or the multiplicity cannot be."""
     total, unpaired = sum(e.number for e in elements) - charge, multiplicity - 1
     if total < 1:
-        raise StudyError(f"A charge of {charge} leaves {total} electrons", "there is nothing to compute", "Lower the charge", "system.charge")
+        raise StudyError(f"A charge of {charge} leaves no electrons", "there is nothing to compute", "Lower the charge", "system.charge")
     if unpaired > total:
         raise StudyError(
-            f"Multiplicity {multiplicity} needs {unpaired} unpaired electrons",
+            f"Multiplicity {multiplicity} needs {counted(unpaired, 'unpaired electron')}",
             f"the molecule has {total}",
             "Lower the multiplicity",
             "system.multiplicity",
@@ -85,19 +86,21 @@ def _electrons(elements: tuple[Element, ...], charge: int, multiplicity: int) ->
         near = f"{multiplicity - 1} or {multiplicity + 1}" if multiplicity > 1 else "2"
         raise StudyError(
             f"Multiplicity {multiplicity} cannot be",
-            f"with charge {charge} there are {total} electrons, {kind} number",
+            f"with charge {charge} the molecule has {counted(total, 'electron')}, {kind} number",
             f"Set the multiplicity to {near}, or change the charge",
             "system.multiplicity",
         )
     return (total + unpaired) // 2, (total - unpaired) // 2
 
 
-def _check_size(n_functions: int, n_alpha: int, budget_bytes: int) -> None:
+def _check_filling(n_functions: int, n_alpha: int) -> None:
     if n_alpha > n_functions:
         raise StudyError(
-            f"{n_alpha} alpha electrons do not fit", f"the basis set has {n_functions} orbitals", "Take a larger basis set", "system.basis"
+            f"{counted(n_alpha, 'alpha electron')} do not fit",
+            f"the basis set has {counted(n_functions, 'orbital')}",
+            "Take a larger basis set",
+            "system.basis",
         )
-    _check_memory(n_functions, 0, budget_bytes, "system.basis")
 
 
 def _check_memory(n_functions: int, n_active: int, budget_bytes: int, field: str) -> None:
@@ -167,92 +170,3 @@ def _hamiltonian(field: MeanField, space: ActiveSpace, core_energy: float, one_b
         orbital_energies=read_only(field.energies[active]),
         irrep_names=field.irrep_names,
     )
-
-
-def _facts(
-    spec: Molecule, elements: tuple[Element, ...], mole: Any, field: MeanField, space: ActiveSpace, core_energy: float, dropped: float
-) -> dict[str, Any]:
-    from pyscf import __version__ as version
-
-    from thalweg.units import BOHR_IN_ANGSTROM
-
-    pair = shortest_distance(spec.atoms, spec.unit)
-    gap = _gap(field)
-    facts: dict[str, Any] = {
-        "formula": _formula(elements, spec.charge),
-        "electrons": int(mole.nelectron),
-        "charge": spec.charge,
-        "multiplicity": spec.multiplicity,
-        "basis": spec.basis.strip(),
-        "functions": "Cartesian" if spec.cartesian else "spherical",
-        "orbitals": int(field.energies.size),
-        "point_group": _group_title(mole) if mole.symmetry else "not used",
-        "nuclear_repulsion": float(mole.energy_nuc()),
-        "shortest_distance_angstrom": pair.angstrom if pair else None,
-        "shortest_distance_bohr": pair.bohr if pair else None,
-        "bohr_in_angstrom": BOHR_IN_ANGSTROM,
-        "active_space": space.rule,
-        "frozen_orbitals": len(space.core),
-        "active_electrons": space.n_electrons,
-        "active_orbitals": len(space.active),
-        "core_energy": core_energy,
-        "mean_field": "ROHF" if mole.spin else "RHF",
-        "mean_field_energy": field.energy,
-        "mean_field_iterations": field.iterations,
-        "mean_field_converged": field.converged,
-        "mean_field_stability": field.stability,
-        "homo_lumo_gap": gap,
-        "largest_dropped_integral": dropped,
-        "integrals_by": f"PySCF {version}",
-    }
-    if replaced := sum(mole.atom_nelec_core(i) for i in range(mole.natm)):
-        facts["core_potential_electrons"] = int(replaced)
-    return facts
-
-
-def _warnings(spec: Molecule, field: MeanField, space: ActiveSpace) -> tuple[str, ...]:
-    found = list(field.warnings)
-    if spec.point_group and not field.solver.mol.symmetry:
-        found.append("The point group of the geometry could not be worked out and is not used")
-    if doubt := short_distance_doubt(spec.atoms, spec.unit):
-        found.append(doubt)
-    n_functions = field.orbitals.shape[0]
-    if field.energies.size < n_functions:
-        found.append(f"{n_functions - field.energies.size} of {n_functions} basis functions are linearly dependent and were left out")
-    gap = _gap(field)
-    if gap is not None and gap < _SMALL_GAP:
-        found.append(f"The frontier gap is {1e3 * gap:.3f} mEh: other determinants are as good a reference as the one taken")
-    return (*found, *cut_degeneracies(space, field.energies))
-
-
-def _gap(field: MeanField) -> float | None:
-    """Lowest empty minus highest occupied orbital energy, Eh; None when no orbital is empty."""
-    empty = field.energies[field.occupation == 0]
-    return float(empty.min() - field.energies[field.occupation > 0].max()) if empty.size else None
-
-
-def _ladder(field: MeanField, space: ActiveSpace) -> tuple[OrbitalRow, ...]:
-    active, core = set(space.active), set(space.core)
-    irreps = [field.irrep_names[i] if field.irrep_names else "" for i in field.irreps.tolist()]
-    return tuple(
-        OrbitalRow(p + 1, float(field.energies[p]), float(field.occupation[p]), irreps[p], p in active, p in core) for p in range(field.energies.size)
-    )
-
-
-def _formula(elements: tuple[Element, ...], charge: int) -> str:
-    size = "" if abs(charge) == 1 else str(abs(charge))
-    return formula(tuple(e.symbol for e in elements)) + (f"{size}{'+' if charge > 0 else '-'}" if charge else "")
-
-
-def _group_title(mole: Any) -> str:
-    full = {"Dooh": "D∞h", "Coov": "C∞v", "SO3": "K"}.get(mole.topgroup, mole.topgroup)
-    return full if full == mole.groupname else f"{full} (used as {mole.groupname})"
-
-
-def _basis_title(basis: str) -> str:
-    """As the literature writes it: STO-3G, 6-31G*, cc-pVDZ, def2-SVP."""
-    lower = basis.lower()
-    for prefix in ("aug-cc-p", "cc-p", "def2-"):
-        if lower.startswith(prefix):
-            return prefix + lower[len(prefix) :].upper()
-    return basis.upper()
