@@ -107,7 +107,7 @@ def make_engine(problem: Problem, watch: Watch = SILENT) -> Engine:
         from thalweg.simulate.sector import SectorEngine
 
         assert problem.prepared.fermions is not None
-        return SectorEngine(problem.prepared.fermions, program, sector_product(problem))
+        return SectorEngine(problem.prepared.fermions, program, sector_product(problem), budget_bytes=problem.budget_bytes)
     return _register_engine(problem, program, watch)
 
 

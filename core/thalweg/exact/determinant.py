@@ -1,0 +1,229 @@
+"""The exact lowest levels of an electron sector: every point-group irrep is searched, so that no lower state is missed."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.errors import StudyError
+from thalweg.exact.answer import ExactAnswer
+from thalweg.exact.davidson import Eigenpairs, lowest_pairs
+from thalweg.kernels.spin_strings import small_matrix
+from thalweg.operators.fermion import FermionHamiltonian
+from thalweg.operators.sector_hamiltonian import SectorHamiltonian, SymmetryBlock
+from thalweg.operators.spin_square import s_squared
+from thalweg.watch import SILENT, Watch
+
+#: Blocks up to this size are diagonalised densely.
+DENSE_LIMIT = 400
+#: Residual norms, Eh: of the first look at every irrep, and of a converged level.
+ROUGH, CONVERGED = 3e-2, 1e-7
+#: Levels closer than this are one level, Eh.
+SAME_LEVEL = 1e-7
+#: Determinants of lowest energy from which Davidson's guesses are made.
+GUESS_SPACE = 200
+
+
+@dataclass(frozen=True)
+class Level:
+    """One level of the sector.
+
+    Attributes:
+        energy: Eh, core energy included.
+        irreps: label of each of its states, as many as its degeneracy.
+        vectors: (degeneracy, Na, Nb), strings ascending, orthonormal.
+        s_squared: <S^2> of each state.
+        residual: the largest |H v - E v|, Eh.
+    """
+
+    energy: float
+    irreps: tuple[int, ...]
+    vectors: FloatArray
+    s_squared: tuple[float, ...]
+    residual: float
+
+
+@dataclass
+class _Found:
+    """What is known of one irrep so far."""
+
+    irrep: int
+    block: SymmetryBlock
+    pairs: Eigenpairs
+    complete: bool = False
+    method: str = field(default="")
+
+
+def lowest_level(
+    hamiltonian: FermionHamiltonian, *, watch: Watch = SILENT, budget_bytes: int, sector_hamiltonian: SectorHamiltonian | None = None
+) -> ExactAnswer:
+    """The lowest level of the (N_alpha, N_beta) sector, its degeneracy and the gap to the next.
+
+    Raises StudyError when the work would not fit the memory budget, Stopped when asked to stop.
+    """
+    search = _Search(hamiltonian, watch, budget_bytes, sector_hamiltonian)
+    (ground,), following = search.levels(1)
+    remarks = _remarks(hamiltonian, search.product, ground)
+    if ground.residual > CONVERGED:
+        remarks += (f"The exact level is converged only to a residual of {ground.residual:.1e} Eh.",)
+    return ExactAnswer(
+        energy=ground.energy,
+        degeneracy=len(ground.irreps),
+        gap=None if following is None else following - ground.energy,
+        vectors=ground.vectors,
+        s_squared=ground.s_squared[0],
+        method=search.method(ground),
+        residual=ground.residual,
+        remarks=remarks,
+    )
+
+
+def lowest_levels(
+    hamiltonian: FermionHamiltonian,
+    count: int,
+    *,
+    watch: Watch = SILENT,
+    budget_bytes: int,
+    sector_hamiltonian: SectorHamiltonian | None = None,
+) -> tuple[Level, ...]:
+    """The `count` lowest levels (fewer where the sector has no more), ascending. Raises as `lowest_level`."""
+    return _Search(hamiltonian, watch, budget_bytes, sector_hamiltonian).levels(count)[0]
+
+
+class _Search:
+    """Looks roughly at every irrep, then converges those that can hold a wanted level."""
+
+    def __init__(self, hamiltonian: FermionHamiltonian, watch: Watch, budget_bytes: int, product: SectorHamiltonian | None) -> None:
+        self._hamiltonian, self._watch = hamiltonian, watch
+        self.product = SectorHamiltonian(hamiltonian) if product is None else product
+        needed = self.product.memory_bytes() + 8 * hamiltonian.sector.dimension * 30
+        if needed > budget_bytes:
+            raise StudyError(
+                "The exact energy does not fit the memory budget",
+                f"{hamiltonian.sector} make {hamiltonian.sector.dimension:,} determinants, which need about {needed / 2**30:.1f} GiB",
+                "Choose a smaller active space, raise the memory budget, or switch the exact energy off",
+                "exact",
+            )
+        self._found: list[_Found] = []
+
+    def levels(self, count: int) -> tuple[tuple[Level, ...], float | None]:
+        """The lowest levels with all their states, and the energy of the one after them (None where there is none)."""
+        wanted = count + 1
+        self._look(wanted)
+        while True:
+            self._converge(wanted, count)
+            groups, ceiling = self._groups()
+            complete = [g for g in groups if g[0][0] < ceiling - SAME_LEVEL][:count]
+            exhausted = np.isinf(ceiling)
+            if exhausted or (len(complete) == count and len(groups) > count):
+                following = groups[len(complete)][0][0] + self._hamiltonian.core_energy if len(groups) > len(complete) else None
+                return tuple(self._level(group) for group in complete), following
+            wanted *= 2
+
+    def method(self, level: Level) -> str:
+        names = self._hamiltonian.irrep_names
+        irreps = " + ".join(names[g] if g < len(names) else f"irrep {g}" for g in level.irreps)
+        kinds = " and ".join(sorted({f.method for f in self._found}))
+        where = f"; lowest level in {irreps}" if self.product.n_irreps > 1 else ""
+        blocks = f"{len(self._found)} symmetry blocks" if len(self._found) > 1 else "the whole sector"
+        return f"{kinds} diagonalisation of {blocks}{where}"
+
+    def _look(self, count: int) -> None:
+        for irrep in range(self.product.n_irreps):
+            block = self.product.block(irrep)
+            if block.layout.size == 0:
+                continue
+            self._watch.stage("Exact diagonalisation", irrep / self.product.n_irreps)
+            if block.layout.size <= DENSE_LIMIT:
+                self._found.append(_Found(irrep, block, _dense(block), True, "dense"))
+                continue
+            guesses = _guesses(block, self._hamiltonian, count)
+            pairs = lowest_pairs(block.apply, block.diagonal, guesses, count, ROUGH, self._watch)
+            self._found.append(_Found(irrep, block, pairs, False, "Davidson"))
+
+    def _converge(self, wanted: int, count: int) -> None:
+        """Converges `wanted` states in each irrep, in ascending order, until the rest lies above the levels wanted."""
+        for found in sorted(self._found, key=lambda f: float(f.pairs.values[0])):
+            groups, _ = self._groups()
+            bound = float(found.pairs.values[0] - found.pairs.residuals[0])
+            if len(groups) > count and bound > groups[count][0][0] + SAME_LEVEL:
+                continue
+            states = min(wanted, found.block.layout.size)
+            if found.complete and len(found.pairs.values) >= states:
+                continue
+            start = found.pairs.vectors
+            if len(start) < states:
+                start = np.concatenate([start, _guesses(found.block, self._hamiltonian, states)])
+            found.pairs = lowest_pairs(found.block.apply, found.block.diagonal, start, states, CONVERGED, self._watch)
+            found.complete = True
+
+    def _groups(self) -> tuple[list[list[tuple[float, int, int]]], float]:
+        """Levels among the converged states, ascending, each a list of (energy, index of irrep, index of state); and a ceiling.
+
+        Above the ceiling some irrep has states that were not worked out; a level at the ceiling may have more of them.
+        """
+        states = sorted((float(v), i, k) for i, f in enumerate(self._found) if f.complete for k, v in enumerate(f.pairs.values))
+        partial = [f for f in self._found if f.complete and len(f.pairs.values) < f.block.layout.size]
+        ceiling = min((float(f.pairs.values[-1]) for f in partial), default=np.inf)
+        groups: list[list[tuple[float, int, int]]] = []
+        for state in states:
+            if state[0] > ceiling + SAME_LEVEL:
+                break
+            if groups and state[0] - groups[-1][0][0] < SAME_LEVEL:
+                groups[-1].append(state)
+            else:
+                groups.append([state])
+        return groups, ceiling
+
+    def _level(self, group: list[tuple[float, int, int]]) -> Level:
+        vectors, squares, residuals = [], [], []
+        for _, i, k in group:
+            found = self._found[i]
+            flat = np.ascontiguousarray(found.pairs.vectors[k])
+            vectors.append(found.block.layout.to_matrix(flat))
+            squares.append(s_squared(found.block, self._hamiltonian.sector, flat))
+            residuals.append(float(found.pairs.residuals[k]))
+        irreps = tuple(self._found[i].irrep for _, i, _ in group)
+        return Level(group[0][0] + self._hamiltonian.core_energy, irreps, np.stack(vectors), tuple(squares), max(residuals))
+
+
+def _dense(block: SymmetryBlock) -> Eigenpairs:
+    matrix = block.dense_matrix()
+    values, vectors = np.linalg.eigh(matrix)
+    residuals = np.linalg.norm(matrix @ vectors - vectors * values, axis=0)
+    return Eigenpairs(values, np.ascontiguousarray(vectors.T), residuals)
+
+
+def _guesses(block: SymmetryBlock, hamiltonian: FermionHamiltonian, count: int) -> FloatArray:
+    """Lowest eigenvectors among the determinants of lowest energy, with a little noise so that no spin is left out."""
+    order = np.argsort(block.diagonal, kind="stable")[:GUESS_SPACE]
+    alphas, betas = block.layout.masks(order)
+    _, small = np.linalg.eigh(small_matrix(alphas, betas, np.ascontiguousarray(hamiltonian.one_body), np.ascontiguousarray(hamiltonian.two_body)))
+    guesses = np.random.default_rng(1).normal(0.0, 1e-3 / np.sqrt(block.layout.size), (count, block.layout.size))
+    guesses[:, order] += small[:, :count].T
+    return guesses
+
+
+def _remarks(hamiltonian: FermionHamiltonian, product: SectorHamiltonian, ground: Level) -> tuple[str, ...]:
+    remarks = []
+    lowest_spin = abs(hamiltonian.sector.s_z)
+    square = ground.s_squared[0]
+    if abs(square - lowest_spin * (lowest_spin + 1)) > 0.05:
+        remarks.append(f"The lowest state of the sector is a {spin_name(square)}, S^2 = {square:.2f}.")
+    if product.reference_irrep not in ground.irreps:
+        names = hamiltonian.irrep_names
+        here, there = (names[g] if g < len(names) else f"irrep {g}" for g in (ground.irreps[0], product.reference_irrep))
+        remarks.append(f"The lowest state of the sector has the symmetry {here}, the reference determinant {there}.")
+    return tuple(remarks)
+
+
+def spin_name(square: float) -> str:
+    """`triplet` for S^2 = 2; `state of mixed spin` where S^2 is not S (S + 1) of any S."""
+    multiplicity = np.sqrt(1.0 + 4.0 * max(square, 0.0))
+    names = ("singlet", "doublet", "triplet", "quartet", "quintet", "sextet", "septet", "octet")
+    nearest = round(multiplicity)
+    if abs(multiplicity - nearest) > 0.05:
+        return "state of mixed spin"
+    return names[nearest - 1] if nearest <= len(names) else f"state of multiplicity {nearest}"

@@ -1,0 +1,94 @@
+"""Bit masks of occupied orbitals: counts, parities, ranks, and the action of excitations on strings of one spin."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numba import njit, types
+from numba.extending import intrinsic
+
+
+@intrinsic
+def count_bits(typing_context: Any, mask: Any) -> Any:
+    """Number of set bits of a uint64, by the machine's own instruction."""
+
+    def emit(context: Any, builder: Any, signature: Any, arguments: Any) -> Any:
+        return builder.ctpop(arguments[0])
+
+    return types.uint64(types.uint64), emit
+
+
+@njit(cache=True, nogil=True)
+def binomials(size: int) -> np.ndarray:
+    """Pascal's triangle, shape (size + 1, size + 1), int64."""
+    table = np.zeros((size + 1, size + 1), dtype=np.int64)
+    for n in range(size + 1):
+        table[n, 0] = 1
+        for k in range(1, n + 1):
+            table[n, k] = table[n - 1, k - 1] + table[n - 1, k]
+    return table
+
+
+@njit(cache=True, nogil=True)
+def fill_strings(strings: np.ndarray, n_electrons: int) -> None:
+    """Fills with the masks of `n_electrons` bits, ascending; the size of the array must be the binomial."""
+    one = np.uint64(1)
+    mask = (one << np.uint64(n_electrons)) - one
+    for i in range(strings.size):
+        strings[i] = mask
+        if mask == np.uint64(0):
+            break
+        low = mask & (~mask + one)  # next mask with as many bits (Gosper)
+        ripple = mask + low
+        mask = (((ripple ^ mask) >> np.uint64(2)) // low) | ripple
+
+
+@njit(cache=True, nogil=True)
+def rank_of(mask: np.uint64, binomial: np.ndarray) -> int:
+    """Position of a mask among the ascending masks with as many bits: sum over its bits p_k of C(p_k, k + 1)."""
+    rank, k, p = 0, 0, 0
+    one = np.uint64(1)
+    while mask:
+        if mask & one:
+            k += 1
+            rank += binomial[p, k] if k <= p else 0
+        mask >>= one
+        p += 1
+    return rank
+
+
+@njit(cache=True, nogil=True)
+def excite(mask: np.uint64, source: np.ndarray, target: np.ndarray) -> tuple[np.uint64, int]:
+    """E |mask> with E = (a+_t0 a+_t1 ...)(... a_s1 a_s0): the new mask and the sign, 0 where the product vanishes."""
+    one = np.uint64(1)
+    below = np.uint64(0)
+    for k in range(source.size):
+        bit = one << np.uint64(source[k])
+        if not mask & bit:
+            return mask, 0
+        below += count_bits(mask & (bit - one))
+        mask ^= bit
+    for k in range(target.size - 1, -1, -1):
+        bit = one << np.uint64(target[k])
+        if mask & bit:
+            return mask, 0
+        below += count_bits(mask & (bit - one))
+        mask |= bit
+    return mask, 1 - 2 * int(below & one)
+
+
+@njit(cache=True, nogil=True)
+def excitation_pairs(strings: np.ndarray, inverse: np.ndarray, binomial: np.ndarray, source: np.ndarray, target: np.ndarray) -> Any:
+    """(from, to, sign) of every string on which the excitation does not vanish, in the order of `strings`.
+
+    strings: (N,) uint64 masks in any order; inverse: (N,) position in `strings` of the mask with each ascending rank.
+    """
+    start, end, sign = np.empty(strings.size, np.int64), np.empty(strings.size, np.int64), np.empty(strings.size)
+    n = 0
+    for i in range(strings.size):
+        mask, s = excite(strings[i], source, target)
+        if s != 0:
+            start[n], end[n], sign[n] = i, inverse[rank_of(mask, binomial)], s
+            n += 1
+    return start[:n].copy(), end[:n].copy(), sign[:n].copy()

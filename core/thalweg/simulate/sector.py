@@ -1,0 +1,132 @@
+"""The engine for number-conserving programs: real amplitudes of one electron sector, kept irrep by irrep."""
+
+from __future__ import annotations
+
+from math import comb
+
+import numpy as np
+
+from thalweg.arrays import FloatArray, IntArray
+from thalweg.circuit.program import ExcitationProgram
+from thalweg.errors import StudyError
+from thalweg.kernels import sector as kernels
+from thalweg.operators.fermion import FermionHamiltonian
+from thalweg.operators.sector_hamiltonian import SectorHamiltonian, SymmetryBlock, estimated_bytes, group_order
+from thalweg.simulate.engine import StateFacts
+from thalweg.simulate.sector_facts import state_facts
+from thalweg.simulate.sector_pairs import OneSpin, SpinPairs, pair_lists
+
+__all__ = ["SectorEngine", "SectorHamiltonian"]
+
+
+class SectorEngine:
+    """E(theta) and its gradient for one excitation program on one Hamiltonian.
+
+    The point group is used where reference and excitations keep it; otherwise the whole sector is. The gradient comes
+    from one backward sweep over psi and H psi: dE/dtheta_k = 2 <H psi|A_k|psi> with both undone factor by factor.
+    """
+
+    def __init__(
+        self,
+        hamiltonian: FermionHamiltonian,
+        program: ExcitationProgram,
+        product: SectorHamiltonian | None = None,
+        *,
+        budget_bytes: int | None = None,
+    ) -> None:
+        """`product` shares H between engines; StudyError where the estimate is past `budget_bytes`."""
+        self._hamiltonian, self._program = hamiltonian, program
+        self._bytes = engine_bytes(hamiltonian, program)
+        if budget_bytes is not None and self._bytes > budget_bytes:
+            raise _over_budget(hamiltonian, self._bytes)
+        self._product = SectorHamiltonian(hamiltonian) if product is None else product
+        self.n_parameters = program.n_parameters
+        self._parameter = np.asarray(program.parameter, np.int64)
+        self._factor = np.asarray(program.factor, float)
+        symmetric = keeps_point_group(program, hamiltonian.orbital_irreps)
+        self._block: SymmetryBlock = self._product.block(self._product.reference_irrep) if symmetric else self._product.whole
+        layout = self._block.layout
+        self._start = layout.index(*program.reference)
+        alpha, alpha_ids = pair_lists(layout.alpha, [(e.alpha_source, e.alpha_target) for e in program.excitations], rows=True)
+        beta, beta_ids = pair_lists(layout.beta, [(e.beta_source, e.beta_target) for e in program.excitations], rows=False)
+        self._factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
+        self._lists = (layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), self._factors)
+
+    def energy(self, parameters: FloatArray) -> float:
+        psi = self._run(parameters)
+        return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi))
+
+    def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
+        angles = self._angles(parameters)
+        psi = self._forward(angles)
+        dual = self._block.apply(psi)
+        energy = self._hamiltonian.core_energy + float(psi @ dual)
+        slopes = np.empty(angles.size)
+        kernels.sweep_back(psi, dual, *self._lists, angles, slopes)
+        gradient = np.bincount(self._parameter, weights=slopes * self._factor, minlength=self.n_parameters)
+        return energy, gradient.astype(float)
+
+    def state(self, parameters: FloatArray) -> FloatArray:
+        """Amplitudes (alpha, beta), strings ascending."""
+        return self._block.layout.to_matrix(self._run(parameters))
+
+    def facts(self, parameters: FloatArray, exact_vectors: FloatArray | None) -> StateFacts:
+        psi = self._run(parameters)
+        return state_facts(self._block, self._program.sector, psi, exact_vectors)
+
+    def memory_bytes(self) -> int:
+        return self._bytes
+
+    def _angles(self, parameters: FloatArray) -> FloatArray:
+        return self._factor * np.asarray(parameters, float)[self._parameter]
+
+    def _run(self, parameters: FloatArray) -> FloatArray:
+        return self._forward(self._angles(parameters))
+
+    def _forward(self, angles: FloatArray) -> FloatArray:
+        psi = np.zeros(self._block.layout.size)
+        psi[self._start] = 1.0
+        kernels.rotate_all(psi, *self._lists, angles)
+        return psi
+
+
+def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) -> int:
+    """Estimate, from sizes alone, of what an engine and its share of H take, bytes."""
+    sector = program.sector
+    symmetric = keeps_point_group(program, hamiltonian.orbital_irreps)
+    order = group_order(hamiltonian.orbital_irreps) if symmetric else 1
+    alpha = {(e.alpha_source, e.alpha_target) for e in program.excitations}
+    beta = {(e.beta_source, e.beta_target) for e in program.excitations}
+    pairs = _pair_count(sector.n_orbitals, sector.n_alpha, alpha) + _pair_count(sector.n_orbitals, sector.n_beta, beta)
+    return estimated_bytes(sector, order, blocks=1) + 24 * pairs + 4 * 8 * sector.dimension // order
+
+
+def _pair_count(n_orbitals: int, n_electrons: int, excitations: set[OneSpin]) -> int:
+    """Pairs of strings in all these excitations, orbitals in common left out of account."""
+    ranks = [len(source) for source, _ in excitations]
+    return sum(comb(max(n_orbitals - 2 * r, 0), n_electrons - r) for r in ranks if n_electrons >= r)
+
+
+def _over_budget(hamiltonian: FermionHamiltonian, needed: int) -> StudyError:
+    return StudyError(
+        "The trial state does not fit the memory budget",
+        f"{hamiltonian.sector} make {hamiltonian.sector.dimension:,} determinants, which need about {needed / 2**30:.1f} GiB",
+        "Choose a smaller active space or raise the memory budget",
+        "memory_gib",
+    )
+
+
+def keeps_point_group(program: ExcitationProgram, orbital_irreps: IntArray) -> bool:
+    """True when every excitation is totally symmetric."""
+    labels = np.asarray(orbital_irreps).tolist()
+    for e in program.excitations:
+        product = 0
+        for p in (*e.alpha_source, *e.alpha_target, *e.beta_source, *e.beta_target):
+            product ^= labels[p]
+        if product:
+            return False
+    return True
+
+
+def _plain(pairs: SpinPairs) -> tuple[IntArray, IntArray, IntArray, FloatArray]:
+    return pairs.first, pairs.start, pairs.end, pairs.sign
