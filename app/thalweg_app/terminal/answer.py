@@ -12,6 +12,10 @@ from thalweg_app.presenters.wording import bytes_text, counted, significant, uni
 
 Rows = list[tuple[str, str]]
 
+#: Facts of a molecule that are energies, and endings that name a length's unit.
+ENERGY_FACTS = frozenset({"nuclear_repulsion", "core_energy", "mean_field_energy", "homo_lumo_gap", "largest_dropped_integral"})
+LENGTH_ENDINGS = {"_angstrom": "angstrom", "_bohr": "bohr"}
+
 
 def answer_lines(result: StudyResult) -> list[str]:
     """The answer of one run."""
@@ -36,9 +40,9 @@ def figures_lines(figures: StudyFigures) -> list[str]:
     if figures.two_qubit_gates is not None:
         rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
     rows += [("Memory", bytes_text(figures.memory_bytes)), ("Operator order", figures.operator_order)]
-    rows += [(_words(name), _fact(value)) for name, value in figures.facts.items()]
+    facts = [(_words(name), _fact(name, value)) for name, value in figures.facts.items()]
     warnings = [f"Warning: {text}" for text in figures.warnings]
-    return [*aligned(rows), *_ladder(figures), *([""] if warnings else []), *warnings]
+    return [*aligned(rows), "", *aligned(facts), *_ladder(figures), *([""] if warnings else []), *warnings]
 
 
 def aligned(rows: Iterable[tuple[str, str]]) -> list[str]:
@@ -89,9 +93,9 @@ def _state_rows(result: StudyResult) -> Rows:
     if result.n_electrons is not None:
         rows.append(("Electrons", f"{result.n_electrons:.6g}"))
     if result.s_z is not None:
-        rows.append(("S_z", f"{result.s_z:.6g}"))
+        rows.append(("S_z", f"{_without_dust(result.s_z):.6g}"))
     if result.s_squared is not None:
-        exact = f"  (exact {result.exact_s_squared:.6g})" if result.exact_s_squared is not None else ""
+        exact = f"  (exact {_without_dust(result.exact_s_squared):.6g})" if result.exact_s_squared is not None else ""
         rows.append(("S^2", f"{_without_dust(result.s_squared):.6g}{exact}"))
     return rows
 
@@ -154,18 +158,23 @@ def _part(active: bool, frozen: bool) -> str:
 
 
 def _words(name: str) -> str:
-    text = name.replace("_", " ")
+    """`Shortest distance` for `shortest_distance_bohr`, whose unit stands behind the figure."""
+    for ending in LENGTH_ENDINGS:
+        name = name.removesuffix(ending) if name != "bohr_in_angstrom" else name
+    text = name.replace("_", " ").replace("homo lumo", "HOMO-LUMO")
     return text[:1].upper() + text[1:]
 
 
-def _fact(value: Any) -> str:
+def _fact(name: str, value: Any) -> str:
     if isinstance(value, bool):
         return "yes" if value else "no"
-    if isinstance(value, float):
-        return f"{value:.8g}"
     if isinstance(value, list | tuple):
-        return ", ".join(_fact(item) for item in value)
-    return "" if value is None else str(value)
+        return ", ".join(_fact(name, item) for item in value)
+    if not isinstance(value, float):
+        return "" if value is None else str(value)
+    length = next((unit for ending, unit in LENGTH_ENDINGS.items() if name.endswith(ending)), "")
+    unit = length or ("Eh" if name in ENERGY_FACTS else "")
+    return f"{value:.8g} {unit}".rstrip()
 
 
 def _ended(sentence: str) -> str:

@@ -68,7 +68,7 @@ class LineDisplay(SilentDisplay):
         before = self._live.stage
         self._live.take([event])
         if isinstance(event, Stage) and event.text != before:
-            self.say(event.text)
+            self.say(event.text[:1].upper() + event.text[1:])
         elif isinstance(event, Warned):
             self.say(f"Warning: {event.text}")
         elif isinstance(event, Iteration) and time.monotonic() - self._last_line >= LINE_INTERVAL:

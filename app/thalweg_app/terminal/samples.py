@@ -12,5 +12,5 @@ def samples() -> int:
     """List the samples; each name can be given to `thalweg solve` and `thalweg inspect`."""
     from thalweg.systems.samples import list_samples
 
-    click.echo("\n".join(aligned((sample.name, sample.about) for sample in list_samples())))
+    click.echo("\n".join(aligned((sample.name, sample.description) for sample in list_samples())))
     return 0

@@ -99,14 +99,11 @@ def read_input(name: str, unit: str) -> tuple[StudySpec, tuple[str, ...]]:
 
 
 def find_sample(name: str) -> Path | None:
-    """The sample whose file name, with or without its ending, is `name`; upper and lower case are alike."""
-    from thalweg.paths import data_folder
+    """The file of the sample with this name or file name; upper and lower case are alike."""
+    from thalweg.systems.samples import list_samples
 
-    wanted = name.lower()
-    for path in sorted(data_folder("sample_systems").iterdir()):
-        if path.is_file() and wanted in (path.name.lower(), path.name.split(".")[0].lower()):
-            return path
-    return None
+    wanted = name.casefold()
+    return next((s.file for s in list_samples() if wanted in (s.name.casefold(), s.file.name.casefold())), None)
 
 
 def _from_file(path: Path, unit: str) -> tuple[StudySpec, tuple[str, ...]]:
