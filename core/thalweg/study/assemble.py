@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import platform
+from functools import cache
 from importlib import metadata
 from typing import Any
 
@@ -102,13 +103,18 @@ def exact_vectors(problem: Problem, exact: ExactAnswer | None) -> tuple[Any, tup
 
 def versions() -> dict[str, str]:
     """Program, Python and the libraries that numbers depend on."""
-    found = {"thalweg": __version__, "python": platform.python_version()}
+    return dict(_versions())
+
+
+@cache  # reading package metadata takes milliseconds
+def _versions() -> tuple[tuple[str, str], ...]:
+    found = [("thalweg", __version__), ("python", platform.python_version())]
     for name in ("numpy", "scipy", "numba", "pyscf", "openfermion"):
         try:
-            found[name] = metadata.version(name)
+            found.append((name, metadata.version(name)))
         except metadata.PackageNotFoundError:
-            found[name] = "not installed"
-    return found
+            found.append((name, "not installed"))
+    return tuple(found)
 
 
 def _evidence(

@@ -11,9 +11,11 @@ from thalweg.arrays import FloatArray
 from thalweg.units import BOHR_IN_ANGSTROM, ELECTRON_MASS_IN_DALTON, HARTREE_IN_INVERSE_CM
 
 #: Points nearest the minimum that a fit uses at most, and the largest degree of its polynomial.
-FIT_POINTS, FIT_DEGREE = 11, 6
+FIT_POINTS, FIT_DEGREE = 11, 9
+#: The degree rises until the root mean square residual (Eh) is below this, or one point is left over.
+GOOD_RESIDUAL = 1e-8
 #: A fit whose root mean square residual is larger than this (Eh) is not trusted.
-LARGEST_RESIDUAL = 1e-4
+LARGEST_RESIDUAL = 2e-5
 #: The slope (Eh per angstrom) below which the end of a curve counts as the separated fragments.
 FLAT_SLOPE = 2e-3
 
@@ -42,6 +44,7 @@ class CurveMinimum:
         first, last: range of the coordinate that was fitted.
         degree, points: of the polynomial.
         residual: root mean square of the fit.
+        variable: that the polynomial is in.
     """
 
     r_e: float
@@ -54,6 +57,7 @@ class CurveMinimum:
     degree: int
     points: int
     residual: float
+    variable: str = "ln r"
 
     def scaled(self, factor: float) -> CurveMinimum:
         """The same minimum with the coordinate multiplied by `factor`, as from bohr to angstrom."""
@@ -69,7 +73,7 @@ class CurveMinimum:
 
     def sentence(self) -> str:
         return (
-            f"polynomial of degree {self.degree} in (r - r0)/r through {self.points} points from {self.first:.4g} to {self.last:.4g}, "
+            f"polynomial of degree {self.degree} in {self.variable} through {self.points} points from {self.first:.4g} to {self.last:.4g}, "
             f"root mean square residual {self.residual:.2g}"
         )
 
@@ -94,11 +98,11 @@ def error_measures(energies: Sequence[float], exact: Sequence[float]) -> ErrorMe
     )
 
 
-def fit_minimum(coordinates: Sequence[float], energies: Sequence[float], *, inverse: bool = True) -> CurveMinimum | None:
+def fit_minimum(coordinates: Sequence[float], energies: Sequence[float], *, logarithmic: bool = True) -> CurveMinimum | None:
     """The minimum of a curve, or None where the curve has no inner minimum, too few points, or too large a residual.
 
-    Fits a polynomial in (r - r0)/r (Simons, Parr and Finlan 1973), which follows both walls of a bond better than one in r;
-    with `inverse` False in (r - r0), for angles and factors. r0 is the lowest point.
+    Fits a polynomial in ln(r/r0), with r0 the lowest point: at the same degree it follows both walls of a bond better than one in r or
+    1/r (tried on full-CI curves of H2). With `logarithmic` False in (r - r0), for angles and factors.
     """
     r, e = _sorted(coordinates, energies)
     lowest = int(np.argmin(e)) if e.size else 0
@@ -107,15 +111,15 @@ def fit_minimum(coordinates: Sequence[float], energies: Sequence[float], *, inve
     window = _window(r, lowest)
     r, e, r0 = r[window], e[window], r[lowest]
     shift = e.min()
-    z = _variable(r, r0, inverse)
-    degree = min(FIT_DEGREE, r.size - 2)
-    polynomial = np.polynomial.Polynomial.fit(z, e - shift, degree)
-    residual = float(np.sqrt(np.mean((polynomial(z) - (e - shift)) ** 2)))
-    place = _stationary(polynomial, r, r0, inverse)
+    z = _variable(r, r0, logarithmic)
+    degree, polynomial, residual = _smallest_good_fit(z, e - shift)
+    place = _stationary(polynomial, r, r0, logarithmic)
     if place is None or residual > LARGEST_RESIDUAL:
         return None
-    energy, _, second, third, fourth = _derivatives(polynomial, place, r0, inverse)
-    return CurveMinimum(place, energy + shift, second, third, fourth, float(r[0]), float(r[-1]), degree, int(r.size), residual)
+    energy, _, second, third, fourth = _derivatives(polynomial, place, r0, logarithmic)
+    return CurveMinimum(
+        place, energy + shift, second, third, fourth, float(r[0]), float(r[-1]), degree, int(r.size), residual, "ln r" if logarithmic else "r"
+    )
 
 
 def diatomic_constants(minimum: CurveMinimum, reduced_mass: float) -> DiatomicConstants:
@@ -156,26 +160,36 @@ def _window(r: FloatArray, lowest: int) -> slice:
     return slice(max(0, last - FIT_POINTS), last)
 
 
-def _variable(r: FloatArray | float, r0: float, inverse: bool) -> FloatArray:
-    return np.asarray((r - r0) / r if inverse else r - r0)
+def _variable(r: FloatArray | float, r0: float, logarithmic: bool) -> FloatArray:
+    return np.asarray(np.log(r / r0) if logarithmic else r - r0)
 
 
-def _stationary(polynomial: np.polynomial.Polynomial, r: FloatArray, r0: float, inverse: bool) -> float | None:
+def _smallest_good_fit(z: FloatArray, e: FloatArray) -> tuple[int, np.polynomial.Polynomial, float]:
+    """Degree, polynomial and root mean square residual of the lowest degree that fits well: more would only follow noise."""
+    for degree in range(2, min(FIT_DEGREE, z.size - 2) + 1):
+        polynomial = np.polynomial.Polynomial.fit(z, e, degree)
+        residual = float(np.sqrt(np.mean((polynomial(z) - e) ** 2)))
+        if residual < GOOD_RESIDUAL:
+            break
+    return degree, polynomial, residual
+
+
+def _stationary(polynomial: np.polynomial.Polynomial, r: FloatArray, r0: float, logarithmic: bool) -> float | None:
     """The stationary point nearest the lowest point of the curve, with positive curvature, inside the fitted range."""
     roots = polynomial.deriv().roots()
     real = roots[np.abs(roots.imag) < 1e-9].real
-    places = [r0 / (1 - z) if inverse else r0 + z for z in real if not inverse or z < 1]
-    inside = [p for p in places if r[0] <= p <= r[-1] and _derivatives(polynomial, p, r0, inverse)[2] > 0]
+    places = [r0 * np.exp(z) if logarithmic else r0 + z for z in real if abs(z) < 50]
+    inside = [p for p in places if r[0] <= p <= r[-1] and _derivatives(polynomial, p, r0, logarithmic)[2] > 0]
     return float(min(inside, key=lambda p: abs(p - r0))) if inside else None
 
 
-def _derivatives(polynomial: np.polynomial.Polynomial, r: float, r0: float, inverse: bool) -> tuple[float, float, float, float, float]:
-    """The polynomial and its first four derivatives with respect to r (Faa di Bruno's rule for z(r) = 1 - r0/r)."""
-    z = float(_variable(r, r0, inverse))
+def _derivatives(polynomial: np.polynomial.Polynomial, r: float, r0: float, logarithmic: bool) -> tuple[float, float, float, float, float]:
+    """The polynomial and its first four derivatives with respect to r (Faa di Bruno's rule for z(r) = ln(r/r0))."""
+    z = float(_variable(r, r0, logarithmic))
     p = [float(polynomial.deriv(n)(z)) if n else float(polynomial(z)) for n in range(5)]
-    if not inverse:
+    if not logarithmic:
         return p[0], p[1], p[2], p[3], p[4]
-    z1, z2, z3, z4 = r0 / r**2, -2 * r0 / r**3, 6 * r0 / r**4, -24 * r0 / r**5
+    z1, z2, z3, z4 = 1 / r, -1 / r**2, 2 / r**3, -6 / r**4
     return (
         p[0],
         p[1] * z1,

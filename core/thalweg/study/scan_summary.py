@@ -104,7 +104,7 @@ def _error(result: StudyResult | None) -> float | None:
 
 def _figures(scan: ScanSpec, x: Sequence[float], energies: Sequence[float], mass: float | None) -> CurveFigures:
     distance = scan.path.is_distance
-    minimum = fit_minimum(x, energies, inverse=distance) if len(x) >= 5 else None
+    minimum = fit_minimum(x, energies, logarithmic=distance) if len(x) >= 5 else None
     if minimum is None:
         return CurveFigures(remarks=("No minimum: the curve has none inside, too few points, or does not follow a smooth fit.",))
     depth = well_depth(x, energies, minimum) if distance else None

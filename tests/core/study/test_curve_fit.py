@@ -43,9 +43,9 @@ def test_a_curve_with_a_jump_is_not_fitted():
     assert fit_minimum(r, morse(r) + 0.01 * (r > 0.8)) is None
 
 
-def test_a_parabola_in_an_angle_needs_no_inverse_variable():
+def test_a_parabola_in_an_angle_needs_no_logarithm():
     degrees = np.linspace(80, 130, 15)
-    minimum = fit_minimum(degrees, 1e-4 * (degrees - 104.5) ** 2, inverse=False)
+    minimum = fit_minimum(degrees, 1e-4 * (degrees - 104.5) ** 2, logarithmic=False)
     assert minimum.r_e == pytest.approx(104.5)
     assert minimum.curvature == pytest.approx(2e-4)
 
