@@ -51,6 +51,7 @@ class ExcitationProgram:
         parameter, factor: shape (F,).
         n_parameters: K.
         order: one line that states the factor order, recorded with every result.
+        parameter_labels: K texts, or empty: then the labels of each parameter's factors are joined.
     """
 
     sector: Sector
@@ -60,10 +61,11 @@ class ExcitationProgram:
     factor: FloatArray
     n_parameters: int
     order: str = ""
+    parameter_labels: tuple[str, ...] = ()
 
     def labels(self) -> tuple[str, ...]:
-        """One label a parameter: the labels of its factors joined."""
-        return _joined(self.n_parameters, self.parameter, [e.label() for e in self.excitations])
+        """One label a parameter."""
+        return self.parameter_labels or _joined(self.n_parameters, self.parameter, [e.label() for e in self.excitations])
 
 
 class Gate(IntEnum):
