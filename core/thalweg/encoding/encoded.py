@@ -126,15 +126,18 @@ def encode_fermions(hamiltonian: FermionHamiltonian, settings: EncodingSettings)
     )
 
 
-def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, reference_bits: int) -> EncodedSystem:
-    """A spin Hamiltonian, one qubit a site, tapered by its products of Z in the sector of the reference state.
+def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, reference_bits: int, *, may_taper: bool = False) -> EncodedSystem:
+    """A spin Hamiltonian, one qubit a site.
 
-    A Hamiltonian without any X or Y is left whole: each qubit would be a symmetry and nothing would remain to be searched.
+    With `may_taper`, and where the settings ask for it, products of Z that commute with it are removed in the sector of the
+    reference state. That suits circuits that know qubits only; whatever numbers the sites (pairs, preparation of
+    superpositions, mixers) needs them all. A Hamiltonian without any X or Y is left whole: each qubit would be a symmetry and
+    nothing would remain to be searched.
     """
-    diagonal = not np.any(expansion.x)
+    wanted, diagonal = may_taper and settings.taper, not np.any(expansion.x)
     tapering, symmetries = _nothing_removed(expansion.n_qubits)
-    if settings.taper and not diagonal:
-        masks = commuting_z_masks(expansion)
+    if wanted and not diagonal:
+        masks = lightest(commuting_z_masks(expansion))
         tapering = taper_by(expansion.n_qubits, masks, reference_bits)
         symmetries = _named([(m, "parity of sites " + _counted(m)) for m in masks], tapering, reference_bits)
     working = tapering.expansion(expansion)
@@ -145,7 +148,7 @@ def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, referenc
         symmetries,
         tapering,
         int(tapering.strip(np.array([reference_bits], np.uint64))[0]),
-        remarks=(DIAGONAL_NOTE,) if settings.taper and diagonal else (),
+        remarks=(DIAGONAL_NOTE,) if wanted and diagonal else (),
     )
 
 

@@ -285,6 +285,39 @@ def ladder_strings(
 
 
 @njit(cache=True, nogil=True)
+def generator_strings(
+    modes: IntArray, creates: np.ndarray, ends: IntArray, update: MaskArray, flip: MaskArray, parity: MaskArray
+) -> tuple[MaskArray, MaskArray, FloatArray, IntArray]:
+    """T - T+ = i sum_j c_j P_j for each of F products T of ladder operators on distinct modes.
+
+    Args:
+        modes, creates: the ladder operators of all products, one after the other; see `ladder_strings`.
+        ends: where each product ends in them, shape (F,).
+
+    Returns:
+        x, z, c and the product that each string belongs to, all of one shape.
+    """
+    total, begin = 0, 0
+    for end in ends:
+        total += 1 << (end - begin - 1)
+        begin = end
+    xs, zs = np.empty(total, np.uint64), np.empty(total, np.uint64)
+    cs, owner = np.empty(total), np.empty(total, np.int64)
+    at, begin = 0, 0
+    for f in range(ends.size):
+        x, z, c = ladder_strings(modes[begin : ends[f]], creates[begin : ends[f]], update, flip, parity)
+        begin = ends[f]
+        for j in range(z.size):
+            # (X^x Z^z)+ = (-1)^|x&z| X^x Z^z: an odd number of Y survives, with X^x Z^z = -i (-1)^((|x&z|-1)/2) P
+            power = bit_count(x & z[j])
+            if power & ONE:
+                xs[at], zs[at], owner[at] = x, z[j], f
+                cs[at] = 2.0 * c[j] if power & np.uint64(2) else -2.0 * c[j]
+                at += 1
+    return xs[:at], zs[:at], cs[:at], owner[:at]
+
+
+@njit(cache=True, nogil=True)
 def row_space(masks: MaskArray, n: int) -> MaskArray:
     """Reduced basis over GF(2) of the span of the masks: row q has leading bit q (0 where there is none), shape (n,)."""
     basis = np.zeros(n, np.uint64)

@@ -238,7 +238,7 @@ def heisenberg_chain(n: int):
 
 def test_spin_chain_loses_the_parity_qubit_and_keeps_its_sector():
     chain = heisenberg_chain(6)
-    encoded = encode_spins(chain, JordanWigner(), 0b010101)
+    encoded = encode_spins(chain, JordanWigner(), 0b010101, may_taper=True)
     assert encoded.working.n_qubits == 5
     # Heisenberg open chain of six spins 1/2, S.S: exact diagonalisation, see e.g. Bonner and Fisher 1964
     assert lowest_energy(encoded.working) == pytest.approx(-2.4935771339, abs=1e-9)
@@ -249,20 +249,29 @@ def test_spin_chain_loses_the_parity_qubit_and_keeps_its_sector():
     assert np.allclose(sparse_matrix(encoded.working) @ placed, values[0] * placed, atol=1e-12)
 
 
+def test_sites_stay_whole_unless_tapering_is_both_allowed_and_wanted():
+    chain = heisenberg_chain(3)
+    for settings, may_taper in ((JordanWigner(), False), (JordanWigner(taper=False), True)):
+        encoded = encode_spins(chain, settings, 0b010, may_taper=may_taper)
+        assert encoded.working is encoded.full is chain
+        assert (encoded.reference_bits, encoded.symmetries, encoded.remarks) == (0b010, (), ())
+        assert encoded.occupation_label(0b011) == "110"
+
+
 def test_strings_with_an_odd_number_of_y_keep_their_spectrum_under_tapering():
     # X0 Y1 - Y0 X1 commutes with Z0 Z1
     pairs = collect_terms(3, np.array([3, 3, 6], np.uint64), np.array([2, 1, 6], np.uint64), np.array([0.7, -0.7, 0.4]))
     spectrum = np.linalg.eigvalsh(expansion_matrix(pairs))
-    found = [np.linalg.eigvalsh(expansion_matrix(encode_spins(pairs, JordanWigner(), bits).working)) for bits in (0b000, 0b001)]
+    found = [np.linalg.eigvalsh(expansion_matrix(encode_spins(pairs, JordanWigner(), bits, may_taper=True).working)) for bits in (0b000, 0b001)]
     assert np.allclose(np.sort(np.concatenate(found)), spectrum, atol=1e-12)
 
 
 def test_diagonal_spin_hamiltonian_is_left_whole_and_says_so():
     ising = collect_terms(3, np.zeros(2, np.uint64), np.array([3, 6], np.uint64), np.array([1.0, 1.0]))
-    encoded = encode_spins(ising, JordanWigner(), 0b010)
+    encoded = encode_spins(ising, JordanWigner(), 0b010, may_taper=True)
     assert encoded.working is encoded.full
     assert encoded.remarks == (DIAGONAL_NOTE,)
-    assert encode_spins(ising, JordanWigner(taper=False), 0b010).remarks == ()
+    assert encode_spins(ising, JordanWigner(taper=False), 0b010, may_taper=True).remarks == ()
 
 
 def test_label_of_a_string_names_its_letters():
