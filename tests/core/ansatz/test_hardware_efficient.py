@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from thalweg.ansatz.ground import Ground
 from thalweg.ansatz.hardware_efficient import HardwareEfficient, entangled_pairs
 from thalweg.circuit.program import Gate

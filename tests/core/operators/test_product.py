@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from thalweg.errors import Stopped
 from thalweg.operators.pauli import PauliExpansion, collect_terms
 from thalweg.operators.product import ExpansionProduct, product_bytes

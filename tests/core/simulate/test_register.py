@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from scipy.linalg import expm
+
 from thalweg.circuit.program import Gate, GateProgram
 from thalweg.errors import Stopped, StudyError
 from thalweg.operators.pauli import PauliExpansion, collect_terms
@@ -32,7 +32,7 @@ def dense(expansion):
 def gate_matrix(n, kind, x, z, angle):
     """Each gate by its textbook definition (Nielsen and Chuang, chapter 4)."""
     if kind == Gate.ROTATION:
-        return expm(-0.5j * angle * pauli_matrix(n, x, z))
+        return np.cos(angle / 2) * np.eye(1 << n) - 1j * np.sin(angle / 2) * pauli_matrix(n, x, z)
     if kind == Gate.HADAMARD:
         return (pauli_matrix(n, x, 0) + pauli_matrix(n, 0, x)) / np.sqrt(2)
     identity, z_first = np.eye(1 << n), pauli_matrix(n, 0, x)
@@ -54,17 +54,19 @@ def random_expansion(rng, n, terms):
     return collect_terms(n, x, z, rng.normal(size=terms))
 
 
-def random_program(rng, n, gates, n_parameters=5):
+def random_program(rng, n, gates, n_parameters=5, *, real=False):
     """Every kind of gate; rotations of any weight, with shared, fixed and differently scaled angles."""
     kinds = [Gate.ROTATION] * 3 + [Gate.HADAMARD] + ([Gate.CZ, Gate.CNOT] if n > 1 else [])
     rows = []
     for _ in range(gates):
         kind = kinds[rng.integers(len(kinds))]
         if kind == Gate.ROTATION:
-            style = rng.integers(4)
+            style = rng.integers(5)
             x, z = (int(v) for v in rng.integers(0, 1 << n, 2))
             qubit = 1 << int(rng.integers(n))
-            x, z = [(x, z), (qubit, qubit), (0, qubit), (0, z)][style]
+            x, z = [(x, z), (qubit, qubit), (0, qubit), (0, z), (qubit, 0)][style]
+            if real and (x & z).bit_count() % 2 == 0:
+                x, z = qubit, qubit | z & ~qubit
             rows.append((kind, x, z, int(rng.integers(-1, n_parameters)), float(rng.normal())))
         elif kind == Gate.HADAMARD:
             rows.append((kind, 1 << int(rng.integers(n)), 0, -1, 0.0))
@@ -98,6 +100,21 @@ def test_states_and_energies_agree_with_dense_matrices(n, seed):
     energy = np.vdot(expected, dense(hamiltonian) @ expected).real
     assert engine.energy(parameters) == pytest.approx(energy, abs=1e-12)
     assert engine.energy_and_gradient(parameters)[0] == pytest.approx(energy, abs=1e-12)
+
+
+@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize("real", [False, True])
+@pytest.mark.parametrize("tile_bytes_bits", [7, 8, 9])
+def test_tiles_smaller_than_the_register_change_nothing(tile_bytes_bits, real, seed):
+    rng = np.random.default_rng([tile_bytes_bits, seed])
+    n = 7
+    program, hamiltonian = random_program(rng, n, 60, real=real), random_expansion(rng, n, 30)
+    parameters = rng.normal(size=program.n_parameters)
+    tiled, whole = (RegisterEngine(hamiltonian, program, tile_bytes_bits=bits) for bits in (tile_bytes_bits, 16))
+    np.testing.assert_allclose(tiled.state(parameters), dense_state(program, parameters), atol=1e-12)
+    (energy, gradient), (other_energy, other_gradient) = (engine.energy_and_gradient(parameters) for engine in (tiled, whole))
+    assert energy == pytest.approx(other_energy, abs=1e-12)
+    np.testing.assert_allclose(gradient, other_gradient, atol=1e-12)
 
 
 @pytest.mark.parametrize("n", [1, 3, 6])
@@ -170,7 +187,7 @@ def test_a_register_past_the_budget_is_refused_with_the_figure():
     expansion = PauliExpansion(n, np.zeros(1, np.uint64), np.ones(1, np.uint64), np.ones(1))
     empty = np.empty(0, np.uint64)
     program = GateProgram(n, 0, np.empty(0, np.uint8), empty, empty, np.empty(0, np.int64), np.empty(0), 0)
-    with pytest.raises(StudyError, match=r"40 qubits does not fit: it needs 3.28e\+04 GiB of memory and 4 GiB are allowed"):
+    with pytest.raises(StudyError, match=r"40 qubits does not fit: it needs 1.64e\+04 GiB of memory and 4 GiB are allowed"):
         RegisterEngine(expansion, program)
 
 

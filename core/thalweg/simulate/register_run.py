@@ -1,0 +1,79 @@
+"""Runs a plan forwards on a state, and backwards on a state and its adjoint."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.kernels import register as kernels
+from thalweg.simulate.register_passes import Pass, Plan
+from thalweg.watch import Watch
+
+#: Operations times amplitudes between two looks at the watch: about 20 ms.
+PART = 2**25
+
+
+class PlanRunner:
+    """Holds the scratch memory of a plan; not to be used by two threads at a time."""
+
+    def __init__(self, plan: Plan) -> None:
+        self._plan = plan
+        tile = 1 << plan.largest_tile
+        self._scratch = [aligned(tile << plan.unit) for _ in range(2)]
+        self._tables = aligned(plan.table_rows * 2 * tile).reshape(plan.table_rows, 2 * tile)
+        self._made = np.zeros(plan.table_rows, dtype=bool)
+        self._moments = aligned(tile)
+
+    @staticmethod
+    def bytes_needed(plan: Plan) -> int:
+        """What the scratch memory takes."""
+        return (16 * plan.table_rows + 40) << plan.largest_tile
+
+    def forward(self, state: FloatArray, angles: FloatArray, watch: Watch) -> None:
+        """Applies the gates in place."""
+        for part in self._plan.passes:
+            self._run(part, part.operations, (state,), angles, np.empty(angles.size), watch)
+
+    def backward(self, state: FloatArray, adjoint: FloatArray, angles: FloatArray, watch: Watch) -> FloatArray:
+        """Undoes the gates on both; returns dE/d(angle) of each rotation for adjoint = H state, shape of the angles."""
+        gradient = np.zeros(angles.size)
+        for part in reversed(self._plan.passes):
+            self._run(part, np.ascontiguousarray(part.operations[::-1]), (state, adjoint), -angles, gradient, watch)
+        return gradient
+
+    def _run(self, part: Pass, operations: Any, states: tuple[FloatArray, ...], angles: FloatArray, gradient: FloatArray, watch: Watch) -> None:
+        cosine, sine = np.cos(0.5 * angles), np.sin(0.5 * angles)
+        if part.streamed:
+            self._stream(operations[0], states, cosine, sine, gradient, watch)
+            return
+        size = 1 << part.local_bits
+        scratch = states if part.tiles == 1 else tuple(buffer[: size << self._plan.unit] for buffer in self._scratch[: len(states)])
+        work = (self._tables[:, : 2 * size], self._made, self._moments[:size])
+        self._made[:] = False
+        layout = (self._plan.unit, part.fixed, part.row_offsets, part.chunk)
+        for first, last in _parts(part.tiles, part.cost * size):
+            watch.check()
+            kernels.run_tiles(states, scratch, first, last, *layout, operations, part.groups, work, cosine, sine, gradient)
+
+    def _stream(self, row: Any, states: tuple[FloatArray, ...], cosine: Any, sine: Any, gradient: FloatArray, watch: Watch) -> None:
+        _, gate, x, z, _, kappa, _ = row.tolist()
+        for first, last in _parts(states[0].size >> 4, 16):
+            watch.check()
+            gradient[gate] += kappa * kernels.turn_range(states, first, last, x, z, cosine[gate], kappa * sine[gate])
+
+
+def aligned(size: int) -> FloatArray:
+    """Uninitialised doubles that begin on a cache line."""
+    raw = np.empty(8 * size + 64, dtype=np.uint8)
+    start = -raw.ctypes.data % 64
+    return raw[start : start + 8 * size].view(np.float64)
+
+
+def _parts(count: int, cost: int) -> Iterator[tuple[int, int]]:
+    """Ranges of 0:count whose cost, that of one item times their length, stays near PART."""
+    step = max(1, PART // cost)
+    for first in range(0, count, step):
+        yield first, min(count, first + step)
