@@ -21,6 +21,15 @@ def run(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
     run_study(spec_from_data(payload), emit, should_stop)
 
 
+def check(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
+    """Repeats the run whose result is the payload and gives the deviation; None when stopped on the way."""
+    from thalweg.study.repeat import repeat
+    from thalweg.study.result import StudyResult
+
+    repetition = repeat(StudyResult.model_validate(payload), emit, should_stop)
+    return None if repetition is None else repetition.model_dump(mode="json", exclude={"result"})
+
+
 def inspect(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
     """Figures of the study whose settings are the payload."""
     from thalweg.study.figures import inspect as inspect_study
@@ -28,6 +37,20 @@ def inspect(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
 
     watch = Watch(lambda text, fraction: emit(Stage(text=text, fraction=fraction)), should_stop, lambda text: emit(Warned(text=text)))
     return inspect_study(spec_from_data(payload), watch).model_dump(mode="json")
+
+
+def open_file(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
+    """Reads the payload's `path` (coordinates in `unit`): {"session": ...}, or {"system": ..., "notes": [...]}."""
+    from thalweg.storage.files import read_limited
+    from thalweg.storage.session import is_session, parse_session
+    from thalweg.systems.read_file import open_system
+
+    path = Path(payload["path"])
+    content = read_limited(path)
+    if is_session(content):
+        return {"session": parse_session(content, path.name).model_dump(mode="json")}
+    system, notes = open_system(path, payload["unit"])
+    return {"system": system.model_dump(mode="json"), "notes": list(notes)}
 
 
 def draw(payload: Any, emit: Emit, should_stop: ShouldStop) -> str:

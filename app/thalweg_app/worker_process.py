@@ -15,8 +15,8 @@ import traceback
 from collections.abc import Callable
 from typing import Any, TextIO
 
-#: Set before numpy is imported; more threads would take the processor from the window.
-THREAD_SETTINGS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "NUMEXPR_NUM_THREADS", "NUMBA_NUM_THREADS")
+from thalweg_app.threads import cap_threads
+
 NICENESS = 10
 
 
@@ -29,9 +29,7 @@ def protect_output() -> TextIO:
 
 def be_modest() -> None:
     """Low priority and few threads, so that the window stays smooth."""
-    threads = str(max(1, min(4, (os.cpu_count() or 1) - 1)))
-    for name in THREAD_SETTINGS:
-        os.environ.setdefault(name, threads)
+    cap_threads()
     if hasattr(os, "nice"):
         with contextlib.suppress(OSError):
             os.nice(NICENESS)

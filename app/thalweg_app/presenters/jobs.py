@@ -10,7 +10,8 @@ from thalweg.study.events import AnyEvent, Failed
 
 RUN = "thalweg_app.jobs:run"
 INSPECT = "thalweg_app.jobs:inspect"
-OPEN_SYSTEM = "thalweg_app.jobs:open_system"
+CHECK = "thalweg_app.jobs:check"
+OPEN_FILE = "thalweg_app.jobs:open_file"
 DRAW = "thalweg_app.jobs:draw"
 
 

@@ -11,6 +11,7 @@ from thalweg.errors import StudyError
 from thalweg.options import Options
 from thalweg.study.spec import SECTIONS, StudySpec, spec_from_data
 from thalweg.systems import Integrals, Molecule
+from thalweg.systems.elements import find_element
 from thalweg_app.presenters.fields import FieldFacts, fields_of
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.listeners import Listeners
@@ -88,6 +89,38 @@ class SetupEditing:
             return
         typed, errors = _without(draft.typed, path), _without(draft.errors, path)
         self._record(_title(path, draft.spec), replace(draft, spec=spec, typed=typed, errors=errors))
+
+    def edit_atom(self, row: int, column: int, text: str) -> None:
+        """Sets a cell of the table of atoms: column 0 is the element, 1 to 3 are x, y, z. Bad input stays in its cell."""
+        draft, path = self._draft, f"system.atoms.{row}.{column}"
+        atoms = [list(atom) for atom in self.spec.system.atoms]  # type: ignore[union-attr]
+        try:
+            atoms[row][column] = _element(text, path) if column == 0 else parse_number(text, path)
+        except StudyError as error:
+            self._record("change of an atom", replace(draft, typed={**draft.typed, path: text}, errors={**draft.errors, path: error}))
+            return
+        if tuple(atoms[row]) != self.spec.system.atoms[row] or path in draft.errors:  # type: ignore[union-attr]
+            self._take_atoms(atoms, "change of an atom", {path})
+
+    def add_atom(self) -> None:
+        """One more hydrogen, beside the last atom."""
+        atoms = [list(atom) for atom in self.spec.system.atoms]  # type: ignore[union-attr]
+        x, y, z = atoms[-1][1:] if atoms else (0.0, 0.0, -0.74)
+        self._take_atoms([*atoms, ["H", x, y, float(z) + 0.74]], "new atom", set())
+
+    def remove_atom(self, row: int) -> None:
+        atoms = [list(atom) for atom in self.spec.system.atoms]  # type: ignore[union-attr]
+        del atoms[row]
+        gone = {p for p in self._draft.typed if p.startswith("system.atoms.")}
+        self._take_atoms(atoms, "removal of an atom", gone)
+
+    def _take_atoms(self, atoms: list[list[Any]], text: str, settled: set[str]) -> None:
+        draft = self._draft
+        system = self.spec.system.model_copy(update={"atoms": tuple(tuple(atom) for atom in atoms)})
+        typed = {p: v for p, v in draft.typed.items() if p not in settled}
+        errors = {p: e for p, e in draft.errors.items() if p not in settled}
+        spec = draft.spec.model_copy(update={"system": system})
+        self._record(text, replace(draft, spec=spec, typed=typed, errors=errors))
 
     def choose(self, section: str, key: str) -> None:
         """Switches a section to another alternative, which comes back as it was left."""
@@ -169,6 +202,14 @@ def _title(path: str, spec: StudySpec) -> str:
     facts = facts_of(path, spec)
     title = facts.title if facts else path.rsplit(".", 1)[-1].replace("_", " ")
     return f"change of {title[:1].lower() + title[1:] if title[1:2].islower() else title}"
+
+
+def _element(text: str, field: str) -> str:
+    """The symbol of an element given by symbol, name or number."""
+    found = find_element(text.strip())
+    if found is None:
+        raise StudyError(f"'{text.strip()[:20]}' is no element", "no symbol, name or number fits", "Type a symbol such as Li", field)
+    return found.symbol
 
 
 def _has_content(system: Any) -> bool:

@@ -1,0 +1,36 @@
+"""Convergence: the energy falling, and the error against the accuracy asked for."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from PySide6.QtWidgets import QLabel
+
+from thalweg_app.forms import QuietCombo, describe
+from thalweg_app.plots.picture import Picture
+from thalweg_app.presenters.traces import X_TITLES
+from thalweg_app.presenters.workbench import Workbench
+
+
+class ConvergencePicture(Picture):
+    title: ClassVar[str] = "Convergence"
+    about: ClassVar[str] = "Energy and error of the selected run, with the ticked runs laid over it."
+
+    def __init__(self, workbench: Workbench) -> None:
+        super().__init__(workbench)
+        self.axis = QuietCombo()
+        for key, title in X_TITLES.items():
+            self.axis.addItem(title, key)
+        describe(self.axis, "Horizontal axis", "What the iterates are drawn against.")
+        self.axis.currentIndexChanged.connect(lambda _: (self.refresh(), self.view.fit()))
+        label = QLabel("Against")
+        label.setBuddy(self.axis)
+        self.controls.addWidget(label)
+        self.controls.addWidget(self.axis)
+        self.body.addWidget(self.view, 1)
+
+    def refresh(self) -> None:
+        self.view.show_chart(self.workbench.convergence(self.axis.currentData()))
+
+    def refresh_live(self) -> None:
+        self.refresh()

@@ -1,0 +1,39 @@
+"""The answer line: one sentence on the selected run, and what stands beside it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+from thalweg.study.result import StudyResult
+from thalweg_app.presenters import wording
+from thalweg_app.presenters.run_control import CheckOutcome
+
+Kind = Literal["none", "good", "bad", "unclear"]
+KINDS: dict[str, Kind] = {"reached": "good", "outside": "bad", "wrong-symmetry": "bad", "stationary": "bad", "not-converged": "unclear", "no-exact": "unclear"}
+#: A repetition within this many hartree (or couplings) counts as the same answer.
+SAME = 1e-7
+
+
+@dataclass(frozen=True)
+class Answer:
+    kind: Kind
+    sentence: str
+    remarks: tuple[str, ...] = ()
+
+
+def answer_of(number: int, result: StudyResult) -> Answer:
+    return Answer(KINDS.get(result.verdict_kind, "unclear"), f"Run {number}: {result.verdict}.", result.remarks)
+
+
+def answer_of_check(outcome: CheckOutcome) -> Answer:
+    if outcome.deviation is None:
+        return Answer("unclear", f"The check of run {outcome.number} was stopped before it was complete.")
+    same = outcome.deviation <= SAME
+    unit = wording.unit_name(outcome.unit)
+    words = "repeats" if same else "does not repeat"
+    deviation = wording.minus(f"{outcome.deviation:.1e}")
+    return Answer("good" if same else "bad", f"Run {outcome.number} {words}: it deviates by {deviation} {unit} ({outcome.compared}).")
+
+
+NOTHING_YET = Answer("none", "No run yet.")

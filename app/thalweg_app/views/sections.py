@@ -1,0 +1,125 @@
+"""Sections 2 to 4: encoding, trial state and search."""
+
+from __future__ import annotations
+
+from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+
+from thalweg.ansatz import ANSATZE
+from thalweg.encoding import ENCODINGS
+from thalweg.optimize import OPTIMIZERS
+from thalweg.optimize.objective import StopRules
+from thalweg.study.derived import StudyFigures
+from thalweg.study.spec import StudySpec, Target
+from thalweg_app.forms import OptionsForm
+from thalweg_app.presenters import wording
+from thalweg_app.presenters.setup import SetupEditing
+from thalweg_app.presenters.tables import Figure
+from thalweg_app.theme import SPACE
+from thalweg_app.views.alternatives import AlternativeBox
+from thalweg_app.views.figure_grid import FigureGrid
+from thalweg_app.views.fold import Fold
+
+
+class SectionBody(QWidget):
+    """Column with the margins that all sections share."""
+
+    def __init__(self, setup: SetupEditing) -> None:
+        super().__init__()
+        self.setup = setup
+        self.column = QVBoxLayout(self)
+        self.column.setContentsMargins(12, SPACE, 12, 12)
+        self.column.setSpacing(SPACE)
+
+    def folds(self) -> list[Fold]:
+        return list(self.findChildren(Fold))
+
+
+class EncodingSection(SectionBody):
+    def __init__(self, setup: SetupEditing) -> None:
+        super().__init__(setup)
+        self.choice = AlternativeBox(setup, "encoding", "Encoding", ENCODINGS)
+        self.figures = FigureGrid()
+        self._symmetries = QLabel(wordWrap=True)
+        self._symmetries.setAccessibleName("Symmetries found")
+        for part in (self.choice, self.figures, self._symmetries):
+            self.column.addWidget(part)
+
+    def refresh(self) -> None:
+        self.choice.refresh()
+
+    def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
+        self.figures.show_figures([] if figures is None else _encoding_figures(figures), is_fresh)
+        lines = [] if figures is None else list(figures.symmetries)
+        self._symmetries.setVisible(bool(lines))
+        self._symmetries.setText(f"{wording.counted(len(lines), 'symmetry').replace('symmetrys', 'symmetries')} used:\n" + "\n".join(lines))
+        self._symmetries.setProperty("role", "figure" if is_fresh else "stale")
+        self._symmetries.style().unpolish(self._symmetries)
+        self._symmetries.style().polish(self._symmetries)
+
+
+class TrialSection(SectionBody):
+    def __init__(self, setup: SetupEditing) -> None:
+        super().__init__(setup)
+        self.choice = AlternativeBox(setup, "ansatz", "Ansatz", ANSATZE)
+        self.figures = FigureGrid()
+        self._order = QLabel(wordWrap=True)
+        self._order.setProperty("role", "muted")
+        for part in (self.choice, self.figures, self._order):
+            self.column.addWidget(part)
+
+    def refresh(self) -> None:
+        self.choice.refresh()
+
+    def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
+        self.figures.show_figures([] if figures is None else _trial_figures(figures), is_fresh)
+        self._order.setText("" if figures is None or not figures.operator_order else f"Factor order: {figures.operator_order}")
+        self._order.setVisible(bool(self._order.text()) and is_fresh)
+
+
+class SearchSection(SectionBody):
+    def __init__(self, setup: SetupEditing) -> None:
+        super().__init__(setup)
+        self.choice = AlternativeBox(setup, "optimizer", "Optimiser", OPTIMIZERS)
+        self.forms = [
+            OptionsForm(StudySpec, only=("starts", "seed")),
+            OptionsForm(Target, "target"),
+            OptionsForm(StudySpec, only=("exact", "classical", "memory_gib")),
+        ]
+        self.rules = OptionsForm(StopRules, "stop")
+        self.rules_fold = Fold("Stop rules")
+        self.rules_fold.set_content(self.rules)
+        for form in (*self.forms, self.rules):
+            form.edited.connect(setup.edit)
+        for part in (self.choice, *self.forms, self.rules_fold):
+            self.column.addWidget(part)
+
+    def refresh(self) -> None:
+        self.choice.refresh()
+        errors = self.setup.errors
+        for form in (*self.forms, self.rules):
+            form.show_values(self.setup.shown, errors)
+        if any(path.startswith("stop.") for path in errors):
+            self.rules_fold.set_open(True)
+
+    def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
+        """The search has no derived figures."""
+
+
+def _encoding_figures(figures: StudyFigures) -> list[Figure]:
+    unit = wording.unit_name(figures.energy_unit)
+    tapered = figures.qubits != figures.qubits_before_tapering
+    return [
+        Figure("Qubits", f"{figures.qubits_before_tapering} → {figures.qubits}" if tapered else wording.count(figures.qubits), "Before and after tapering."),
+        Figure("Pauli terms", wording.count(figures.terms), f"{figures.terms_before_tapering:,} before tapering."),
+        Figure(f"One-norm / {unit}", f"{figures.one_norm:.4f}", "Sum of |coefficient| without the constant."),
+        Figure("Largest weight", wording.count(figures.largest_weight), "Largest number of qubits that one term acts on."),
+    ]
+
+
+def _trial_figures(figures: StudyFigures) -> list[Figure]:
+    return [
+        Figure("Parameters", wording.count(figures.parameters), "Free parameters of the trial state."),
+        Figure("Factors", wording.count(figures.factors), "Excitation factors or gates; several may share a parameter."),
+        Figure("Two-qubit gates", wording.count(figures.two_qubit_gates), "Of the circuit on the working register, any pair of qubits connected."),
+        Figure("Depth", wording.count(figures.depth), "Layers of gates that can act at the same time."),
+    ]
