@@ -10,7 +10,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, ValidationError
 
-from thalweg.ansatz import ANSATZE, UCCSD, HardwareEfficient
+from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.errors import StudyError
 from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDescent, Momentum, NelderMead
@@ -24,7 +24,7 @@ from thalweg.units import CHEMICAL_ACCURACY
 
 AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="key")]
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
-AnyAnsatz = Annotated[UCCSD | HardwareEfficient, Field(discriminator="key")]
+AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | NumberConserving | HardwareEfficient, Field(discriminator="key")]
 AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
 
 ClassicalMethod = Literal["mp2", "ccsd", "ccsd(t)"]
