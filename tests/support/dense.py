@@ -44,13 +44,13 @@ def sparse_matrix(expansion: PauliExpansion):
 
 
 def lowest_energy(expansion: PauliExpansion) -> float:
-    """The lowest eigenvalue of the whole register."""
+    """The lowest eigenvalue of the whole register of an operator without odd numbers of Y, up to 12 qubits."""
     from scipy.sparse.linalg import eigsh
 
-    matrix = sparse_matrix(expansion)
-    if matrix.shape[0] <= 64:
+    matrix = sparse_matrix(expansion).real
+    if matrix.shape[0] <= 1024:
         return float(np.linalg.eigvalsh(matrix.toarray())[0])
-    return float(eigsh(matrix, k=1, which="SA", tol=1e-13, v0=np.ones(matrix.shape[0]))[0][0])
+    return float(eigsh(matrix, k=1, which="SA", tol=1e-9, v0=np.ones(matrix.shape[0]))[0][0])
 
 
 def gate_state(program: GateProgram, parameters: np.ndarray) -> np.ndarray:

@@ -58,3 +58,19 @@ def from_mean_field(field) -> FermionHamiltonian:
         reference=(filled[0], filled[1]),
         orbital_energies=np.asarray(field.mo_energy),
     )
+
+
+def random_molecule(m: int, n_alpha: int, n_beta: int, irreps: tuple[int, ...] = (), seed: int = 1) -> FermionHamiltonian:
+    """Normal integrals with the symmetries of real ones: 8-fold, and zero where the product of irreps is not 0."""
+    rng = np.random.default_rng(seed)
+    labels = np.array(irreps or (0,) * m, np.int64)
+    h = rng.normal(size=(m, m))
+    g = rng.normal(size=(m, m, m, m))
+    g = g + g.transpose(1, 0, 2, 3)
+    g = g + g.transpose(0, 1, 3, 2)
+    g = g + g.transpose(2, 3, 0, 1)
+    pair = labels[:, None] ^ labels[None, :]
+    h = np.where(pair == 0, h + h.T, 0.0)
+    g = np.where(pair[:, :, None, None] == pair[None, None, :, :], g, 0.0)
+    reference = ((1 << n_alpha) - 1, (1 << n_beta) - 1)
+    return FermionHamiltonian(rng.normal(), h, g, labels, Sector(m, n_alpha, n_beta), reference, np.diag(h).copy())

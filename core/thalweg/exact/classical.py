@@ -25,6 +25,9 @@ def classical_energies(
     remarks: list[str] = []
     if hamiltonian.sector.n_electrons == 0:
         return energies, ("Classical methods need at least one electron.",)
+    if hamiltonian.sector.n_electrons == 1:  # nothing to correlate
+        alone = hamiltonian.core_energy + float(np.linalg.eigvalsh(hamiltonian.one_body)[0])
+        return dict.fromkeys(methods, alone), ()
     watch.stage("Mean field for the classical methods")
     field = _mean_field(hamiltonian, watch)
     if not field.converged:
@@ -44,8 +47,8 @@ class _CoupledCluster:
 
     def __init__(self, field: Any, hamiltonian: FermionHamiltonian, watch: Watch) -> None:
         self._field, self._watch = field, watch
-        sector = hamiltonian.sector
-        self._trivial = sector.n_electrons == 1 or (sector.n_alpha == sector.n_orbitals == sector.n_beta)
+        self._sector = sector = hamiltonian.sector
+        self._trivial = sector.n_alpha == sector.n_orbitals == sector.n_beta
         self._solver: Any = None
 
     def mp2(self) -> tuple[float | None, str]:
@@ -69,8 +72,12 @@ class _CoupledCluster:
         energy, remark = self.ccsd()
         if energy is None or self._trivial:
             return energy, remark
-        solver = self._solved()
-        return energy + float(solver.ccsd_t()), ""
+        sector = self._sector
+        if sector.n_electrons < 3 or 2 * sector.n_orbitals - sector.n_electrons < 3:
+            return energy, ""  # no triple excitation exists
+        if sector.n_orbitals in (sector.n_alpha, sector.n_beta):
+            return None, "CCSD(T) has no figure where one spin has no empty orbital."
+        return energy + float(self._solved().ccsd_t()), ""
 
     @property
     def _closed(self) -> bool:

@@ -7,7 +7,7 @@ from math import comb
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
-from thalweg.circuit.program import ExcitationProgram
+from thalweg.circuit.program import Excitation, ExcitationProgram
 from thalweg.errors import StudyError
 from thalweg.kernels import sector as kernels
 from thalweg.operators.fermion import FermionHamiltonian
@@ -41,14 +41,16 @@ class SectorEngine:
             raise _over_budget(hamiltonian, self._bytes)
         self._product = SectorHamiltonian(hamiltonian) if product is None else product
         self.n_parameters = program.n_parameters
-        self._parameter = np.asarray(program.parameter, np.int64)
-        self._factor = np.asarray(program.factor, float)
+        live = [f for f, e in enumerate(program.excitations) if not _is_null(e)]
+        excitations = [program.excitations[f] for f in live]
+        self._parameter = np.asarray(program.parameter, np.int64)[live]
+        self._factor = np.asarray(program.factor, float)[live]
         symmetric = keeps_point_group(program, hamiltonian.orbital_irreps)
         self._block: SymmetryBlock = self._product.block(self._product.reference_irrep) if symmetric else self._product.whole
         layout = self._block.layout
         self._start = layout.index(*program.reference)
-        alpha, alpha_ids = pair_lists(layout.alpha, [(e.alpha_source, e.alpha_target) for e in program.excitations], rows=True)
-        beta, beta_ids = pair_lists(layout.beta, [(e.beta_source, e.beta_target) for e in program.excitations], rows=False)
+        alpha, alpha_ids = pair_lists(layout.alpha, [(e.alpha_source, e.alpha_target) for e in excitations], rows=True)
+        beta, beta_ids = pair_lists(layout.beta, [(e.beta_source, e.beta_target) for e in excitations], rows=False)
         self._factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
         self._lists = (layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), self._factors)
 
@@ -126,6 +128,11 @@ def keeps_point_group(program: ExcitationProgram, orbital_irreps: IntArray) -> b
         if product:
             return False
     return True
+
+
+def _is_null(e: Excitation) -> bool:
+    """T - T+ vanishes where T only counts electrons."""
+    return e.alpha_source == e.alpha_target and e.beta_source == e.beta_target
 
 
 def _plain(pairs: SpinPairs) -> tuple[IntArray, IntArray, IntArray, FloatArray]:
