@@ -91,7 +91,7 @@ def test_point_group_and_whole_sector_give_the_same_state():
     symmetric_program = uccsd(h)
     symmetric = SectorEngine(h, symmetric_program)
     theta = random_parameters(symmetric_program)
-    kept = {e: t for e, t in zip(symmetric_program.excitations, theta, strict=True)}
+    kept = dict(zip(symmetric_program.excitations, theta, strict=True))
     everywhere = np.array([kept.get(e, 0.0) for e in uccsd(h, point_group=False).excitations])
     assert np.allclose(whole.state(everywhere), symmetric.state(theta), atol=1e-12)
     assert whole.energy(everywhere) == pytest.approx(symmetric.energy(theta), abs=1e-11)
