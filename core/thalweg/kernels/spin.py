@@ -1,0 +1,283 @@
+"""Spin-1/2 states at fixed magnetisation, orbits of basis states under lattice symmetries, and the vector work of Lanczos steps.
+
+A basis state is a mask; bit q = 1 is spin down on site q. States with k bits are ranked by splitting the mask into a low
+part of `bits` bits and a high part (Lin 1990): rank(s) = offset[high] + rank_low[low]. All states with one high part lie side
+by side, ordered by their low part, so that most of H acts within runs that fit the first-level cache.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit, uint64
+
+from thalweg.kernels.bits import count_bits
+
+
+@njit(cache=True, nogil=True)
+def parity_sign(mask):  # type: ignore[no-untyped-def]
+    """+1.0 for an even number of set bits, -1.0 for an odd one."""
+    return 1.0 - 2.0 * float(count_bits(mask) & uint64(1))
+
+
+# ---------------------------------------------------------------- ranked basis
+
+
+@njit(cache=True, nogil=True)
+def rank_words(bits, rank, start):  # type: ignore[no-untyped-def]
+    """For all words of `bits` bits: rank among the words with as many bits set, shape (2^bits,); start[p + 1] counts class p."""
+    start[:] = 0
+    for word in range(1 << bits):
+        p = count_bits(uint64(word))
+        rank[word] = start[p + 1]
+        start[p + 1] += 1
+    for p in range(bits + 1):
+        start[p + 1] += start[p]
+
+
+@njit(cache=True, nogil=True)
+def place_runs(high_bits, bits, down, start, offset):  # type: ignore[no-untyped-def]
+    """offset[high]: rank of the first state with this high part, -1 where there is none. Returns the dimension."""
+    total = 0
+    for high in range(1 << high_bits):
+        p = down - np.int64(count_bits(uint64(high)))
+        if p < 0 or p > bits:
+            offset[high] = -1
+        else:
+            offset[high] = total
+            total += start[p + 1] - start[p]
+    return total
+
+
+@njit(cache=True, nogil=True)
+def fill_states(states, down, bits, offset, words, start):  # type: ignore[no-untyped-def]
+    """All states with `down` bits, ascending. words: the low words sorted by class, class p at start[p]:start[p + 1]."""
+    for high in range(offset.size):
+        if offset[high] < 0:
+            continue
+        p = down - np.int64(count_bits(uint64(high)))
+        for j in range(start[p + 1] - start[p]):
+            states[offset[high] + j] = (uint64(high) << uint64(bits)) | uint64(words[start[p] + j])
+
+
+@njit(cache=True, nogil=True)
+def diagonal_values(out, first, last, states, z, values):  # type: ignore[no-untyped-def]
+    """out[i] = sum_l values[l] (-1)^popcount(z[l] & states[i]) for i in first:last."""
+    for i in range(first, last):
+        total = 0.0
+        for t in range(z.size):
+            total += values[t] * parity_sign(z[t] & states[i])
+        out[i] = total
+
+
+@njit(cache=True, nogil=True)
+def apply_exchange(  # type: ignore[no-untyped-def]
+    v, out, first, last, down, offset, start, diagonal, low_pointer, low_column, low_value, high_x, high_value,
+    cross_high, cross_half, cross_value, cross_base, cross_pointer, cross_from, cross_to,
+):  # fmt: skip
+    """out <- H v for the states whose high part is in first:last. Exchange terms flip x where half of its bits are set.
+
+    low_*: rows of the terms within the low part, one row a low word (sorted by class), columns ranked within the class.
+    high_*: terms within the high part. cross_*: terms in both; for such a term e with c low bits set the pairs of ranks
+    (here, there) of class p are cross_from/to[cross_pointer[cross_base[e] + c, p] : cross_pointer[..., p + 1]].
+    """
+    for high in range(first, last):
+        begin = offset[high]
+        if begin < 0:
+            continue
+        p = down - np.int64(count_bits(uint64(high)))
+        length = start[p + 1] - start[p]
+        own, target, own_diagonal = v[begin : begin + length], out[begin : begin + length], diagonal[begin : begin + length]
+        row = start[p]
+        for j in range(length):
+            total = own_diagonal[j] * own[j]
+            for t in range(low_pointer[row + j], low_pointer[row + j + 1]):
+                total += low_value[t] * own[low_column[t]]
+            target[j] = total
+        for e in range(high_x.size):
+            x = high_x[e]
+            if uint64(2) * count_bits(uint64(high) & x) == count_bits(x):
+                there = offset[uint64(high) ^ x]
+                source, value = v[there : there + length], high_value[e]
+                for j in range(length):
+                    target[j] += value * source[j]
+        for e in range(cross_high.size):
+            low_set = cross_half[e] - np.int64(count_bits(uint64(high) & cross_high[e]))
+            if low_set < 0 or low_set >= cross_base[e + 1] - cross_base[e]:
+                continue
+            there = offset[uint64(high) ^ cross_high[e]]
+            source, value, line = v[there:], cross_value[e], cross_pointer[cross_base[e] + low_set]
+            for t in range(line[p], line[p + 1]):
+                target[cross_from[t]] += value * source[cross_to[t]]
+
+
+@njit(cache=True, nogil=True)
+def raise_spin(v, out, first, last, n_sites, states, bits, offset, rank):  # type: ignore[no-untyped-def]
+    """out <- S+ v on the states first:last of the sector with one spin down less; offset and rank belong to v's sector."""
+    low = (uint64(1) << uint64(bits)) - uint64(1)
+    for i in range(first, last):
+        total = v[0] * 0.0
+        for q in range(n_sites):
+            bit = uint64(1) << uint64(q)
+            if not states[i] & bit:
+                source = states[i] | bit
+                total += v[offset[source >> uint64(bits)] + rank[source & low]]
+        out[i] = total
+
+
+# ---------------------------------------------------------------- orbits under permutations and spin inversion
+
+
+@njit(cache=True, nogil=True)
+def moved(state, tables):  # type: ignore[no-untyped-def]
+    """The permuted mask; tables[b, byte] holds where the bits of byte b go."""
+    result = uint64(0)
+    for b in range(tables.shape[0]):
+        result |= tables[b, (state >> uint64(8 * b)) & uint64(255)]
+    return result
+
+
+@njit(cache=True, nogil=True)
+def rank_state(state, bits, offset, rank):  # type: ignore[no-untyped-def]
+    """Position of a state; without a ranked basis (offset of length 0) the mask itself."""
+    if offset.size == 0:
+        return np.int64(state)
+    low = (uint64(1) << uint64(bits)) - uint64(1)
+    return offset[state >> uint64(bits)] + np.int64(rank[state & low])
+
+
+@njit(cache=True, nogil=True)
+def mark_orbits(  # type: ignore[no-untyped-def]
+    first, last, count, states, tables, flips, all_ones, bits, offset, rank, orbit_of, element_of, representatives, stabilisers
+):
+    """Continues the numbering of orbits over the states first:last, ascending; returns the number of orbits so far.
+
+    orbit_of[i] is -1 before its orbit is met. Of each state t of the orbit of r, element_of holds a g with g r = t. stabilisers[o]
+    gets a bit for each group element (up to 64) that leaves r alone, which later characters are tested against.
+    """
+    for i in range(first, last):
+        if orbit_of[i] >= 0:
+            continue
+        r = states[i] if states.size else uint64(i)
+        representatives[count] = r
+        fixed = uint64(0)
+        for g in range(flips.size):
+            t = moved(r, tables[g])
+            if flips[g]:
+                t ^= all_ones
+            if t == r:
+                fixed |= uint64(1) << uint64(g)
+            place = rank_state(t, bits, offset, rank)
+            if orbit_of[place] < 0:
+                orbit_of[place] = count
+                element_of[place] = g
+        stabilisers[count] = fixed
+        count += 1
+    return count
+
+
+@njit(cache=True, nogil=True)
+def group_value(state, e, pointer, z, values):  # type: ignore[no-untyped-def]
+    """f_e(state) = sum over the strings of x mask e of value (-1)^popcount(z & state)."""
+    total = values[0] * 0.0
+    for t in range(pointer[e], pointer[e + 1]):
+        total += values[t] * parity_sign(z[t] & state)
+    return total
+
+
+@njit(cache=True, nogil=True)
+def count_links(first, last, representatives, x, pointer, z, values, threshold, counts):  # type: ignore[no-untyped-def]
+    """counts[o] = number of x masks that act on representative o."""
+    for o in range(first, last):
+        found = 0
+        for e in range(x.size):
+            if abs(group_value(representatives[o], e, pointer, z, values)) > threshold:
+                found += 1
+        counts[o] = found
+
+
+@njit(cache=True, nogil=True)
+def fill_links(  # type: ignore[no-untyped-def]
+    first, last, representatives, x, pointer, z, values, threshold, bits, offset, rank, orbit_of, element_of,
+    starts, link_orbit, link_element, link_value,
+):  # fmt: skip
+    """For each representative the orbits that H leads to, with the group element of the state met and the matrix element."""
+    for o in range(first, last):
+        position = starts[o]
+        for e in range(x.size):
+            value = group_value(representatives[o], e, pointer, z, values)
+            if abs(value) > threshold:
+                place = rank_state(representatives[o] ^ x[e], bits, offset, rank)
+                link_orbit[position] = orbit_of[place]
+                link_element[position] = element_of[place]
+                link_value[position] = value
+                position += 1
+
+
+@njit(cache=True, nogil=True)
+def block_counts(first, last, kept, starts, link_orbit, number, counts):  # type: ignore[no-untyped-def]
+    """counts[i] = links of the i-th surviving orbit kept[i] that end in a surviving orbit (number >= 0)."""
+    for i in range(first, last):
+        found = 0
+        for t in range(starts[kept[i]], starts[kept[i] + 1]):
+            if number[link_orbit[t]] >= 0:
+                found += 1
+        counts[i] = found
+
+
+@njit(cache=True, nogil=True)
+def block_fill(  # type: ignore[no-untyped-def]
+    first, last, kept, starts, link_orbit, link_element, link_value, number, root, character, row_start, columns, values
+):
+    """Rows of H in one symmetry block: <r|H|r'> = conj(f chi(g)) sqrt(|stab r'| / |stab r|), where g r' is the state met from r."""
+    for i in range(first, last):
+        position = row_start[i]
+        for t in range(starts[kept[i]], starts[kept[i] + 1]):
+            other = number[link_orbit[t]]
+            if other >= 0:
+                columns[position] = other
+                values[position] = np.conj(link_value[t] * character[link_element[t]]) * (root[other] / root[i])
+                position += 1
+
+
+@njit(cache=True, nogil=True)
+def apply_rows(v, out, first, last, diagonal, row_start, columns, values):  # type: ignore[no-untyped-def]
+    """out <- H v on rows first:last of a stored matrix with its diagonal apart."""
+    for i in range(first, last):
+        total = diagonal[i] * v[i]
+        for t in range(row_start[i], row_start[i + 1]):
+            total += values[t] * v[columns[t]]
+        out[i] = total
+
+
+@njit(cache=True, nogil=True)
+def spread_orbits(v, out, first, last, orbit_of, element_of, number, weight, character):  # type: ignore[no-untyped-def]
+    """Amplitudes of a block vector on the states first:last, v_r sqrt(|stab| / |G|) conj(chi(g)) on g r; `out` begins as zeros."""
+    for i in range(first, last):
+        place = number[orbit_of[i]]
+        if place >= 0:
+            out[i] = v[place] * weight[place] * np.conj(character[element_of[i]])
+
+
+# ---------------------------------------------------------------- Lanczos
+
+
+@njit(cache=True, nogil=True, fastmath={"reassoc", "contract", "nsz"})
+def subtract(w, v, alpha):  # type: ignore[no-untyped-def]
+    """w <- w - alpha v; returns |w|^2."""
+    total = 0.0
+    for i in range(w.size):
+        value = w[i] - alpha * v[i]
+        w[i] = value
+        total += value.real * value.real + value.imag * value.imag
+    return total
+
+
+@njit(cache=True, nogil=True, fastmath={"reassoc", "contract", "nsz"})
+def subtract_two(w, v, alpha, u, beta):  # type: ignore[no-untyped-def]
+    """w <- w - alpha v - beta u; returns |w|^2."""
+    total = 0.0
+    for i in range(w.size):
+        value = w[i] - alpha * v[i] - beta * u[i]
+        w[i] = value
+        total += value.real * value.real + value.imag * value.imag
+    return total
