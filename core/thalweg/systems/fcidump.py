@@ -218,20 +218,20 @@ def _rows(body: str, n_orbitals: int) -> tuple[FloatArray, IntArray]:
     if wrong.any():
         row = int(np.argmax(wrong))
         shown = " ".join(f"{v:g}" for v in table[row])
-        raise _error(f"Line {row + 1} after the header, '{shown}', cannot be", f"orbitals run from 1 to {n_orbitals}", "Correct the line or NORB")
+        raise _error(f"The line '{shown}' cannot be", f"values are finite and orbitals run from 1 to {n_orbitals}", "Correct the line or NORB")
     return np.ascontiguousarray(table[:, 0]), indices.astype(np.int64)
 
 
 def _rows_one_by_one(body: str) -> FloatArray:
     """As `_rows`, line by line, to name the line that cannot be read."""
     rows = []
-    for number, line in enumerate(body.split("\n"), start=1):
+    for line in body.split("\n"):
         parts = line.split()
         if not parts:
             continue
         if len(parts) != 5 or not all(_VALUE.fullmatch(part) for part in parts):
             shown = " ".join(parts)[:50]
-            raise _error(f"Line {number} after the header, '{shown}', cannot be read", "it must be a value and four orbitals", "Correct the line")
+            raise _error(f"The line '{shown}' cannot be read", "it must be a value and four orbitals", "Correct the line")
         rows.append([float(part) for part in parts])
     return np.array(rows, dtype=float).reshape(-1, 5)
 
@@ -243,7 +243,7 @@ def _core_and_energies(values: FloatArray, indices: IntArray, n_orbitals: int) -
     if not np.all(ordered & (kinds != 3)):
         row = int(np.argmin(ordered & (kinds != 3)))
         raise _error(
-            f"Line {row + 1} after the header has the orbitals {' '.join(map(str, indices[row].tolist()))}",
+            f"A line names the orbitals {' '.join(map(str, indices[row].tolist()))}",
             "an integral has four, two, one or none, the zeros last",
             "Correct the line",
         )

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from support.molecules import random_hamiltonian
 
@@ -66,6 +66,7 @@ def test_a_core_that_is_unknown_or_not_filled_cannot_be_frozen():
         choose_active_space("frozen-core", CLOSED, ENERGIES, 3)
 
 
+@settings(deadline=None)
 @given(st.text(max_size=30) | st.from_regex(r"[0-9eo,\- ()]{0,12}", fullmatch=True))
 def test_any_text_gives_a_space_or_a_sentence(text):
     try:
