@@ -91,18 +91,18 @@ def _state_rows(result: StudyResult) -> Rows:
     if result.variance is not None:
         rows.append(("Energy variance", f"{significant(result.variance)} {unit}^2"))
     if result.n_electrons is not None:
-        rows.append(("Electrons", f"{result.n_electrons:.6g}"))
+        rows.append(("Electrons", f"{result.n_electrons:.6f} active"))
     if result.s_z is not None:
-        rows.append(("S_z", f"{_without_dust(result.s_z):.6g}"))
+        rows.append(("S_z", _rounded(result.s_z)))
     if result.s_squared is not None:
-        exact = f"  (exact {_without_dust(result.exact_s_squared):.6g})" if result.exact_s_squared is not None else ""
-        rows.append(("S^2", f"{_without_dust(result.s_squared):.6g}{exact}"))
+        exact = f"  (exact {_rounded(result.exact_s_squared)})" if result.exact_s_squared is not None else ""
+        rows.append(("S^2", f"{_rounded(result.s_squared)}{exact}"))
     return rows
 
 
-def _without_dust(value: float) -> float:
-    """Rounding errors around zero read as zero."""
-    return 0.0 if abs(value) < 1e-9 else value
+def _rounded(value: float) -> str:
+    """Six decimals, without a sign on zero."""
+    return f"{round(value, 6) + 0.0:.6f}"
 
 
 def _cost_rows(result: StudyResult) -> Rows:

@@ -90,7 +90,7 @@ def _show_until_done(events: SimpleQueue[AnyEvent | None], display: Display, int
                 return
             display.take(event)
         if interrupts.stop.is_set() and not told:
-            display.say("Stopping with the best so far; the same signal once more ends at once.")
+            display.say("Stopping with the best so far; Ctrl-C once more ends at once.")
             told = True
         if time.monotonic() >= next_tick:
             display.tick()

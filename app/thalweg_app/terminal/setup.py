@@ -11,6 +11,7 @@ from typing import Any, TypeVar
 import click
 
 from thalweg.errors import StudyError
+from thalweg.options import Options
 from thalweg.storage.files import read_limited
 from thalweg.storage.session import is_session, parse_session
 from thalweg.study.spec import SECTIONS, StudySpec, with_setting
@@ -80,7 +81,7 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
         path, sign, value = text.partition("=")
         if not sign:
             raise StudyError(f"--set {text} has no value", "it needs a field and a value", "Write it as --set field=value")
-        spec = with_setting(spec, path.strip(), value.strip())
+        spec = _with_option(spec, path.strip(), value.strip())
     return spec, notes
 
 
@@ -106,22 +107,22 @@ def find_sample(name: str) -> Path | None:
     return next((s.file for s in list_samples() if wanted in (s.name.casefold(), s.file.name.casefold())), None)
 
 
-def _from_file(path: Path, unit: str) -> tuple[StudySpec, tuple[str, ...]]:
+def _from_file(path: Path, unit: str, **fields: str) -> tuple[StudySpec, tuple[str, ...]]:
     if path.suffix.lower() == ".json" and is_session(content := read_limited(path)):
         return _from_session(content, path.name)
     from thalweg.systems.read_file import open_system
 
-    system, notes = open_system(path, unit=unit)
+    system, notes = open_system(path, unit, **fields)
     return StudySpec(system=system), tuple(notes)
 
 
 def _from_session(content: bytes, name: str) -> tuple[StudySpec, tuple[str, ...]]:
     session = parse_session(content, name)
     if session.setup is not None:
-        return session.setup, (f"Set-up of session {name}",)
+        return session.setup, (f"Set-up read from {name}",)
     if session.runs:
-        return session.runs[-1].result.spec, (f"Settings of run {session.runs[-1].number} of session {name}",)
-    raise StudyError(f"Session {name} is empty", "it holds neither a set-up nor a run", "Give a geometry or a session with a set-up")
+        return session.runs[-1].result.spec, (f"Settings of run {session.runs[-1].number} read from {name}",)
+    raise StudyError(f"{name} is an empty session", "it holds neither a set-up nor a run", "Give a geometry or a session with a set-up")
 
 
 def _from_standard_input(unit: str) -> tuple[StudySpec, tuple[str, ...]]:
@@ -131,11 +132,11 @@ def _from_standard_input(unit: str) -> tuple[StudySpec, tuple[str, ...]]:
     if not content.strip():
         raise StudyError("Standard input is empty", "nothing was piped in", "Pipe a geometry in, or give the name of a file")
     if is_session(content):
-        return _from_session(content, "on standard input")
+        return _from_session(content, "standard input")
     with tempfile.TemporaryDirectory() as folder:  # the readers tell the form of a file by its content
         path = Path(folder) / "standard-input"
         path.write_bytes(content)
-        return _from_file(path, unit)
+        return _from_file(path, unit, name="")
 
 
 def _active_space(frozen_core: bool, active: str | None) -> str:
@@ -149,8 +150,9 @@ def _active_space(frozen_core: bool, active: str | None) -> str:
 def _with_option(spec: StudySpec, path: str, value: Any) -> StudySpec:
     """As `with_setting`, with a sentence of its own where the chosen alternative has no such field."""
     section, _, field = path.partition(".")
-    chosen = getattr(spec, section)
-    if field and field not in type(chosen).model_fields:
+    chosen = getattr(spec, section, None)
+    if field and isinstance(chosen, Options) and field not in type(chosen).model_fields:
         fields = ", ".join(name for name in type(chosen).model_fields if name != "key")
-        raise StudyError(f"{chosen.title} has no setting '{field}'", f"it has {fields}", f"Leave the option out or choose another {section}", path)
+        what = f"{chosen.title or section} has no setting '{field}'"
+        raise StudyError(what, f"it has {fields}", f"Leave the option out or choose another {section}", path)
     return with_setting(spec, path, value)
