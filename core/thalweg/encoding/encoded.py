@@ -81,13 +81,12 @@ class EncodedSystem:
     def occupation_label(self, bits: int) -> str:
         """What a basis state of the working register holds.
 
-        Fermions: one sign an orbital, orbital 0 first: `2` pair, `a` or `b` one electron, `0` empty. Spins: `0` or `1` a site, site 0 first.
+        Fermions: the text of `occupation_text`, as for sector states. Spins: `0` or `1` a site, site 0 first.
         """
         whole = self.tapering.restore(np.array([bits], np.uint64))
-        if self.linear is None:
+        if self.linear is None or self.sector is None:
             return "".join("01"[int(whole[0]) >> q & 1] for q in range(self.full.n_qubits))
-        alpha, beta = alpha_beta_masks(int(self.linear.decode(whole)[0]))
-        return occupation_text(alpha, beta, self.full.n_qubits // 2)
+        return occupation_text(*alpha_beta_masks(int(self.linear.decode(whole)[0])), self.sector)
 
     def _place(self, amplitudes: np.ndarray, bits: MaskArray) -> ComplexArray:
         inside = self.tapering.holds(bits)

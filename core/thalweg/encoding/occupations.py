@@ -48,9 +48,11 @@ def order_signs(alpha: MaskArray, beta: MaskArray) -> FloatArray:
     return 1.0 - 2.0 * odd.astype(np.float64)
 
 
-def occupation_text(alpha: int, beta: int, n_orbitals: int) -> str:
-    """One sign an orbital, orbital 0 first: `2` pair, `a` or `b` one electron, `0` empty."""
-    return "".join("0ab2"[(alpha >> p & 1) + 2 * (beta >> p & 1)] for p in range(n_orbitals))
+def occupation_text(alpha: int, beta: int, sector: Sector) -> str:
+    """`22 0ab`: 2 doubly occupied, a alpha, b beta, 0 empty; lowest orbital first, a gap behind the larger electron number."""
+    letters = "".join("0ab2"[(alpha >> p & 1) + 2 * (beta >> p & 1)] for p in range(sector.n_orbitals))
+    gap = max(sector.n_alpha, sector.n_beta)
+    return f"{letters[:gap]} {letters[gap:]}".strip()
 
 
 def orbital_list(modes: int) -> str:

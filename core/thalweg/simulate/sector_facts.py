@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.encoding.occupations import occupation_text
 from thalweg.kernels.sector_density import spin_density
 from thalweg.operators.fermion import Sector
 from thalweg.operators.sector_hamiltonian import SymmetryBlock
@@ -35,13 +36,6 @@ def state_facts(block: SymmetryBlock, sector: Sector, psi: FloatArray, exact_vec
         leading=_leading(matrix, sector, exact),
         natural_occupations=tuple(float(v) for v in np.linalg.eigvalsh(alpha + beta)[::-1]),
     )
-
-
-def occupation_text(alpha: int, beta: int, sector: Sector) -> str:
-    """`22 0ab`: 2 doubly occupied, a alpha, b beta, 0 empty; lowest orbital first, a gap behind the larger electron number."""
-    letters = ["0ab2"[(alpha >> p & 1) + 2 * (beta >> p & 1)] for p in range(sector.n_orbitals)]
-    gap = max(sector.n_alpha, sector.n_beta)
-    return " ".join(part for part in ("".join(letters[:gap]), "".join(letters[gap:])) if part)
 
 
 def _leading(matrix: FloatArray, sector: Sector, exact: FloatArray | None) -> tuple[LeadingState, ...]:

@@ -39,5 +39,7 @@ def test_masks_interleave_and_part_again():
 
 
 def test_texts_name_occupations():
-    assert occupation_text(0b0011, 0b0101, 4) == "2ab0"
+    assert occupation_text(0b0011, 0b0101, Sector(4, 2, 2)) == "2a b0"
+    assert occupation_text(0b11, 0b01, Sector(2, 2, 1)) == "2a"
+    assert occupation_text(0, 0, Sector(2, 0, 0)) == "00"
     assert orbital_list(0b110010) == "0b 2a 2b"
