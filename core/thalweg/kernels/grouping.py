@@ -17,6 +17,23 @@ LETTERS = np.uint64(3)
 
 
 @njit(cache=True, nogil=True)
+def _letters(x: int, z: int, columns: MaskArray, others: MaskArray) -> int:
+    """Writes 3 q + letter of each qubit of the string, and the same for the two letters that it is not; returns the weight."""
+    weight = 0
+    rest = x | z
+    while rest:
+        low = rest & (~rest + ONE)
+        q = bit_count(low - ONE)
+        letter = (x >> q & ONE) + np.uint64(2) * (z >> q & ONE) - ONE
+        columns[weight] = LETTERS * q + letter
+        others[0, weight] = LETTERS * q + (letter + ONE) % LETTERS
+        others[1, weight] = LETTERS * q + (letter + np.uint64(2)) % LETTERS
+        weight += 1
+        rest ^= low
+    return weight
+
+
+@njit(cache=True, nogil=True)
 def place_qubit_wise(x: MaskArray, z: MaskArray, order: IntArray, begin: int, end: int, group: IntArray, clash: np.ndarray, count: int) -> int:
     """Puts each string into the first set whose letters agree with it on every shared qubit.
 
@@ -32,17 +49,7 @@ def place_qubit_wise(x: MaskArray, z: MaskArray, order: IntArray, begin: int, en
     everything = ~np.uint64(0)
     for k in range(begin, end):
         i = np.uint64(order[k])
-        weight = 0
-        rest = x[i] | z[i]
-        while rest:
-            low = rest & (~rest + ONE)
-            q = bit_count(low - ONE)
-            letter = (x[i] >> q & ONE) + np.uint64(2) * (z[i] >> q & ONE) - ONE
-            columns[weight] = LETTERS * q + letter
-            others[0, weight] = LETTERS * q + (letter + ONE) % LETTERS
-            others[1, weight] = LETTERS * q + (letter + np.uint64(2)) % LETTERS
-            weight += 1
-            rest ^= low
+        weight = _letters(x[i], z[i], columns, others)
         word = np.uint64(0)
         while True:
             refused = np.uint64(0)
