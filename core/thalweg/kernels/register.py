@@ -25,12 +25,12 @@ from numba import int64, njit, uint64
 from thalweg.kernels.register_bits import sign
 from thalweg.kernels.register_lanes import copy_vectors, mix_lanes, mix_one, mix_three, multiply_phases, turn
 from thalweg.kernels.register_phases import phase_table
+from thalweg.kernels.register_walsh import walsh_hadamard
 
 MIX_THREE, MIX_ONE, MIX_LANES, TURN, PHASES, FLIP = range(6)
 HADAMARD, NOTHING = -1, -2
 #: (-1)^popcount(lane & z) for every z and lane.
 LANE_SIGNS = np.array([[(-1.0) ** (z & lane).bit_count() for lane in range(8)] for z in range(8)])
-_SUM_AND_DIFFERENCE = (1.0, 1.0, 1.0, -1.0)
 
 
 @njit(cache=True, nogil=True)
@@ -46,55 +46,10 @@ def matrix_of(gate, cosine, sine):  # type: ignore[no-untyped-def]
 @njit(cache=True, nogil=True)
 def turn_range(states, first, last, x, z, cosine, sine):  # type: ignore[no-untyped-def]
     """The rotation with position masks x, z on vector pairs (vectors, where x < 8) first:last; returns <adjoint|B|state>, sign apart."""
-    pattern, angle, lane = LANE_SIGNS[z & 7], (cosine, sine), x & 7
-    if x < 8:
-        masks = (int64(0), z >> 3, int64(0))
-        if lane == 1:
-            return turn(states, first, last, masks, angle, pattern, 1, 0)
-        if lane == 2:
-            return turn(states, first, last, masks, angle, pattern, 2, 0)
-        if lane == 3:
-            return turn(states, first, last, masks, angle, pattern, 3, 0)
-        if lane == 4:
-            return turn(states, first, last, masks, angle, pattern, 4, 0)
-        if lane == 5:
-            return turn(states, first, last, masks, angle, pattern, 5, 0)
-        if lane == 6:
-            return turn(states, first, last, masks, angle, pattern, 6, 0)
-        return turn(states, first, last, masks, angle, pattern, 7, 0)
     top = int64(1)
     while top << 1 <= x >> 3:
         top <<= 1
-    masks = (x >> 3, z >> 3, top)
-    if lane == 0:
-        return turn(states, first, last, masks, angle, pattern, 0, 1)
-    if lane == 1:
-        return turn(states, first, last, masks, angle, pattern, 1, 1)
-    if lane == 2:
-        return turn(states, first, last, masks, angle, pattern, 2, 1)
-    if lane == 3:
-        return turn(states, first, last, masks, angle, pattern, 3, 1)
-    if lane == 4:
-        return turn(states, first, last, masks, angle, pattern, 4, 1)
-    if lane == 5:
-        return turn(states, first, last, masks, angle, pattern, 5, 1)
-    if lane == 6:
-        return turn(states, first, last, masks, angle, pattern, 6, 1)
-    return turn(states, first, last, masks, angle, pattern, 7, 1)
-
-
-@njit(cache=True, nogil=True)
-def sums_and_differences(values, bits):  # type: ignore[no-untyped-def]
-    """Walsh-Hadamard transform of 2^bits doubles in place, bits >= 3."""
-    three = _SUM_AND_DIFFERENCE + _SUM_AND_DIFFERENCE + _SUM_AND_DIFFERENCE
-    mix_lanes((values,), values.size, three, 0)
-    q = 3
-    while q + 3 <= bits:
-        mix_three((values,), values.size, (int64(1) << q, int64(2) << q, int64(4) << q), three)
-        q += 3
-    while q < bits:
-        mix_one((values,), values.size, int64(1) << q, _SUM_AND_DIFFERENCE)
-        q += 1
+    return turn(states, first, last, (x >> 3, z >> 3, top, x & 7), (cosine, sine), LANE_SIGNS[z & 7])
 
 
 @njit(cache=True, nogil=True)
@@ -142,10 +97,7 @@ def apply_phases(states, size, unit, base, number, rotations, groups, work, cosi
         multiply_phases(states, size, table, (real, imaginary), moments, 0)
     if rotations and len(states) == 2:
         term_first, term_local, term_fixed, term_gate = groups[0], groups[1], groups[2], groups[3]
-        bits = 0
-        while 1 << bits < moments.size:
-            bits += 1
-        sums_and_differences(moments, bits)
+        walsh_hadamard(moments)
         for k in range(term_first[number], term_first[number + 1]):
             gradient[term_gate[k]] += sign(uint64(base & term_fixed[k])) * moments[term_local[k]]
 

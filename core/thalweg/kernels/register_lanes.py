@@ -7,6 +7,7 @@ of the rotation; with one array it returns zeros. Indices count doubles; strides
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import Any
 
 from llvmlite import ir
@@ -41,6 +42,13 @@ class _Vectors:
         value = self.builder.load(self._address(pointer, index))
         value.align = 8
         return value
+
+    def load_twice(self, pointer: Any, index: Any) -> Any:
+        """Four doubles, each in two lanes."""
+        half = ir.VectorType(_DOUBLE, LANES // 2)
+        value = self.builder.load(self.builder.bitcast(self.builder.gep(pointer, [index]), half.as_pointer()))
+        value.align = 8
+        return self.builder.shuffle_vector(value, ir.Constant(half, ir.Undefined), ir.Constant(_MASK, [lane >> 1 for lane in range(LANES)]))
 
     def store(self, value: Any, pointer: Any, index: Any) -> None:
         self.builder.store(value, self._address(pointer, index)).align = 8
@@ -88,6 +96,13 @@ class _Vectors:
 
     def loop(self, first: Any, last: Any) -> Any:
         return cgutils.for_range(self.builder, last, start=first, intp=_INT)
+
+    def each_lane(self, lane: Any, condition: Any) -> Iterator[int]:
+        """Code for each value of the lane bits, entered at run time where `condition` holds; shuffles need them as constants."""
+        for value in range(LANES):
+            chosen = self.builder.and_(condition, self.builder.icmp_signed("==", lane, integer(value)))
+            with self.builder.if_then(chosen):
+                yield value
 
     def tuple(self, kind: Any, values: list[Any]) -> Any:
         return self.context.make_tuple(self.builder, kind, values)
@@ -202,40 +217,45 @@ def _by_lane(v: _Vectors, k: int, low: Any, high: Any) -> Any:
 
 
 @intrinsic
-def turn(typingctx: Any, arrays: Any, first: Any, last: Any, masks: Any, angle: Any, pattern: Any, lane: Any, paired: Any) -> Any:
+def turn(typingctx: Any, arrays: Any, first: Any, last: Any, masks: Any, angle: Any, pattern: Any) -> Any:
     """exp(theta/2 B) with B f = sum_i (-1)^popcount(i & z) f[i ^ x] e_i, B^2 = -1.
 
-    masks = (x, z, highest bit of x), all without their three lane bits and counted in vectors; angle = (cos, sin) of theta/2; the pattern
-    holds (-1)^popcount(l & z) for each lane l, and the literal `lane` the lane bits of x. Pairs (literal `paired` 1) or vectors (0, for
-    x within the lanes) first:last are done.
+    masks = (x, z, highest bit of x, lane bits of x): the first three without their lane bits and counted in vectors; angle = (cos, sin)
+    of theta/2; the pattern holds (-1)^popcount(l & z) for each lane l. Vector pairs first:last are done, or vectors where x is 0.
     """
-    if not isinstance(lane, types.IntegerLiteral) or not isinstance(paired, types.IntegerLiteral):
-        return None
 
     def codegen(context: Any, builder: Any, signature: Any, arguments: Any) -> Any:
         v = _Vectors(context, builder)
         pointers = v.pointers(signature.args[0], arguments[0])
-        x, z, top = (builder.extract_value(arguments[3], k) for k in range(3))
+        x, z, top, lane = (builder.extract_value(arguments[3], k) for k in range(4))
         cosine, sine = (v.splat(builder.extract_value(arguments[4], k)) for k in range(2))
         signs = v.load(v.pointer(signature.args[5], arguments[5]), integer(0))
         total = v.accumulator()
-        with v.loop(arguments[1], arguments[2]) as loop:
-            low = v.open_bit(loop.index, top) if paired.literal_value else loop.index
-            vectors = [low, builder.xor(low, x)] if paired.literal_value else [low]
-            factors = [v.times(signs, v.splat(_sign(builder, builder.and_(place, z)))) for place in vectors]
-            places = [builder.shl(place, integer(3)) for place in vectors]
-            groups = [[v.load(pointer, place) for place in places] for pointer in pointers]
-            turned = [[v.times(f, v.exchange(p, lane.literal_value)) for f, p in zip(factors, reversed(group), strict=True)] for group in groups]
-            if len(groups) == 2:
-                for left, right in zip(groups[1], turned[0], strict=True):
-                    v.add_to(total, left, right)
-            for pointer, group, image in zip(pointers, groups, turned, strict=True):
-                for place, own, other in zip(places, group, image, strict=True):
-                    v.store(v.plus(v.times(cosine, own), v.times(sine, other)), pointer, place)
+        inside = builder.icmp_signed("==", x, integer(0))
+        for paired in (False, True):
+            for exchanged in v.each_lane(lane, builder.not_(inside) if paired else inside):
+                with v.loop(arguments[1], arguments[2]) as loop:
+                    low = v.open_bit(loop.index, top) if paired else loop.index
+                    vectors = [low, builder.xor(low, x)] if paired else [low]
+                    factors = [v.times(signs, v.splat(_sign(builder, builder.and_(place, z)))) for place in vectors]
+                    places = [builder.shl(place, integer(3)) for place in vectors]
+                    _turn_places(v, pointers, places, factors, exchanged, (cosine, sine), total)
         return v.sum(builder.load(total))
 
-    three, two = types.UniTuple(types.int64, 3), types.UniTuple(types.float64, 2)
-    return types.float64(arrays, types.int64, types.int64, three, two, pattern, lane, paired), codegen
+    four, two = types.UniTuple(types.int64, 4), types.UniTuple(types.float64, 2)
+    return types.float64(arrays, types.int64, types.int64, four, two, pattern), codegen
+
+
+def _turn_places(v: _Vectors, pointers: list[Any], places: list[Any], factors: list[Any], lane: int, angle: tuple[Any, Any], total: Any) -> None:
+    """The rotation on one vector, or on two that are each other's partners, in every array."""
+    groups = [[v.load(pointer, place) for place in places] for pointer in pointers]
+    turned = [[v.times(f, v.exchange(partner, lane)) for f, partner in zip(factors, reversed(group), strict=True)] for group in groups]
+    if len(groups) == 2:
+        for left, right in zip(groups[1], turned[0], strict=True):
+            v.add_to(total, left, right)
+    for pointer, group, image in zip(pointers, groups, turned, strict=True):
+        for place, own, other in zip(places, group, image, strict=True):
+            v.store(v.plus(v.times(angle[0], own), v.times(angle[1], other)), pointer, place)
 
 
 def _sign(builder: Any, mask: Any) -> Any:
@@ -302,3 +322,39 @@ def copy_vectors(typingctx: Any, source: Any, source_start: Any, target: Any, ta
         return context.get_dummy_value()
 
     return types.void(source, types.int64, target, types.int64, types.int64), codegen
+
+
+@intrinsic
+def row_product(typingctx: Any, left: Any, source: Any, row: Any, place: Any, mask: Any, factor: Any, summing: Any, unit: Any) -> Any:
+    """With p[f] = factor * row[f >> unit] * source[b + (f ^ x)]: adds p[f] to left[a + f], or returns sum_f left[a + f] p[f].
+
+    place = (a, b, number of positions f); mask = (x counted in vectors, lane bits of x). The literal `summing` 1 asks for the sum; with
+    0 the result is 0. Complex amplitudes have the literal `unit` 1; there lane bit 0 stands for a factor -i.
+    """
+    if not isinstance(summing, types.IntegerLiteral) or not isinstance(unit, types.IntegerLiteral):
+        return None
+    is_sum, is_complex = bool(summing.literal_value), bool(unit.literal_value)
+
+    def codegen(context: Any, builder: Any, signature: Any, arguments: Any) -> Any:
+        v = _Vectors(context, builder)
+        target, origin, weights = (v.pointer(signature.args[k], arguments[k]) for k in range(3))
+        own_start, other_start, size = (builder.extract_value(arguments[3], k) for k in range(3))
+        x, lane = (builder.extract_value(arguments[4], k) for k in range(2))
+        plain, total = v.splat(arguments[5]), v.accumulator()
+        turned = v.times(plain, v.constant([1.0, -1.0] * (LANES // 2)))
+        for exchanged in v.each_lane(lane, ir.Constant(ir.IntType(1), 1)):
+            with v.loop(integer(0), builder.lshr(size, integer(3))) as loop:
+                step = builder.shl(loop.index, integer(3))
+                weight = v.load_twice(weights, builder.lshr(step, integer(1))) if is_complex else v.load(weights, step)
+                weight = v.times(weight, turned if is_complex and exchanged & 1 else plain)
+                partner = builder.add(other_start, builder.shl(builder.xor(loop.index, x), integer(3)))
+                product = v.times(weight, v.exchange(v.load(origin, partner), exchanged))
+                own = builder.add(own_start, step)
+                if is_sum:
+                    v.add_to(total, v.load(target, own), product)
+                else:
+                    v.store(v.plus(v.load(target, own), product), target, own)
+        return v.sum(builder.load(total))
+
+    three, two = types.UniTuple(types.int64, 3), types.UniTuple(types.int64, 2)
+    return types.float64(left, source, row, three, two, types.float64, summing, unit), codegen

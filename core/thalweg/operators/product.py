@@ -9,11 +9,14 @@ import numpy as np
 
 from thalweg.arrays import FloatArray, MaskArray
 from thalweg.kernels import register_product as kernels
+from thalweg.kernels.register_walsh import walsh_hadamard
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.watch import SILENT, Watch
 
 #: Qubits of one block: its row of 8 * 2^12 bytes and its amplitudes stay in the second-level cache.
 BLOCK_BITS = 12
+#: Blocks are at least this large: kernels work on eight numbers at a time.
+LEAST_BITS = 3
 #: An x mask with at most this many different high parts of z keeps its rows; others transform their coefficients for each block.
 MAX_ROWS = 6
 #: Bytes that stored rows may take, and that a stored matrix may take.
@@ -26,7 +29,7 @@ STEP = 2**24
 
 
 class ExpansionProduct:
-    """H v and <v|H|v> for register vectors, shape (2^n,), float64 or complex128.
+    """H v and <v|H|v> for register vectors, shape (2^n,), float64 or complex128, contiguous.
 
     A real vector asks for `is_real`, that is for an operator whose strings all have an even number of Y.
 
@@ -40,28 +43,35 @@ class ExpansionProduct:
         self, expansion: PauliExpansion, *, block_bits: int = BLOCK_BITS, row_bytes: int = ROW_BYTES, matrix_bytes: int = MATRIX_BYTES
     ) -> None:
         self.n_qubits = expansion.n_qubits
-        self._bits = min(block_bits, expansion.n_qubits)
+        self._bits = max(LEAST_BITS, min(block_bits, expansion.n_qubits))
         self._tables = _tables(expansion, self._bits, row_bytes)
         self.is_real = not bool(self._tables[1].any())
-        self._matrix = self._stored_matrix(expansion, matrix_bytes)
+        self._matrix = self._stored_matrix(matrix_bytes)
         tables = self._tables if self._matrix is None else self._tables + self._matrix
         self.memory_bytes = sum(int(table.nbytes) for table in tables)
 
     def apply(self, vector: Any, out: Any, watch: Watch = SILENT) -> float:
-        """Writes H v into `out`, which must not overlap v, and returns Re <v|H v>. Both contiguous, of one dtype."""
-        if vector.dtype == np.float64 and not self.is_real:
-            raise TypeError("a real vector needs an operator whose strings all have an even number of Y")
+        """Writes H v into `out`, which must not overlap v, and returns Re <v|H v>. Both of one dtype."""
+        unit = self._unit(vector)
         if self._matrix is not None:
             return self._walk_rows(lambda first, last: kernels.apply_stored(vector, out, first, last, *self._matrix), watch)
-        kernel = kernels.apply_real if vector.dtype == np.float64 else kernels.apply_complex
-        return self._walk_blocks(lambda first, last: kernel(vector, out, first, last, self._bits, *self._tables), watch)
+        own, image = vector.view(np.float64), out.view(np.float64)
+        return self._walk_blocks(lambda first, last: kernels.apply_blocks(own, image, first, last, self._bits, unit, *self._tables), watch)
 
     def expectation(self, vector: Any, watch: Watch = SILENT) -> float:
         """<v|H|v> without a second vector."""
+        unit = self._unit(vector)
         if self._matrix is not None:
             return self._walk_rows(lambda first, last: kernels.expectation_stored(vector, first, last, *self._matrix), watch)
-        complex_vector = vector.astype(np.complex128, copy=False)
-        return self._walk_blocks(lambda first, last: kernels.expectation_complex(complex_vector, first, last, self._bits, *self._tables), watch)
+        own = vector.view(np.float64)
+        return self._walk_blocks(lambda first, last: kernels.expectation_blocks(own, first, last, self._bits, unit, *self._tables), watch)
+
+    def _unit(self, vector: Any) -> int:
+        if vector.dtype == np.complex128:
+            return 1
+        if not self.is_real:
+            raise TypeError("a real vector needs an operator whose strings all have an even number of Y")
+        return 0
 
     def _walk_blocks(self, part: Any, watch: Watch) -> float:
         blocks = 1 << (self.n_qubits - self._bits)
@@ -73,23 +83,22 @@ class ExpansionProduct:
         rows = 1 << self.n_qubits
         return _sum_parts(part, rows, max(1, STEP * rows // max(1, self._matrix[1].size)), watch)
 
-    def _stored_matrix(self, expansion: PauliExpansion, matrix_bytes: int) -> tuple[Any, ...] | None:
-        """(row starts, columns, values) where the matrix is real, sparse and small enough; otherwise None."""
-        entries, size = self._tables[0].size, 1 << self.n_qubits
-        if not self.is_real or self.n_qubits > 32 or entries * size > matrix_bytes:
+    def _stored_matrix(self, matrix_bytes: int) -> tuple[Any, ...] | None:
+        """(row starts, columns, values) where the matrix is sparse and small enough, or the register too small for blocks; else None."""
+        entries, size, small = self._tables[0].size, 1 << self.n_qubits, self.n_qubits < LEAST_BITS
+        if not small and entries * size > matrix_bytes:
             return None
-        tables = (self._tables[0], *self._tables[2:])
-        blocks = size >> self._bits
-        threshold = 1e-15 * float(np.abs(expansion.coefficients).sum())
-        counts = np.zeros(size, dtype=np.int64)
-        kernels.count_stored(0, blocks, self._bits, threshold, counts, *tables)
+        even_tables = (self._tables[0], *self._tables[2:])
+        blocks = max(1, size >> self._bits)
+        counts = np.zeros(max(size, 1 << self._bits), dtype=np.int64)
+        kernels.count_stored(0, blocks, self._bits, counts, *even_tables)
         stored = int(counts.sum())
-        if stored * 12 > matrix_bytes or stored > SPARSE_SHARE * entries * size:
+        if not small and (stored * 12 > matrix_bytes or stored > SPARSE_SHARE * entries * size):
             return None
         pointers = np.concatenate([[0], np.cumsum(counts)])
-        columns, values = np.empty(stored, dtype=np.uint32), np.empty(stored)
-        kernels.fill_stored(0, blocks, self._bits, threshold, pointers, columns, values, *tables)
-        return pointers, columns, values
+        columns, values = np.empty(stored, dtype=np.uint32), np.zeros((stored, 2))
+        kernels.fill_stored(0, blocks, self._bits, pointers, columns, values, *self._tables)
+        return pointers, columns, values[:, 0].copy() if self.is_real else values.view(np.complex128)[:, 0].copy()
 
 
 def product_bytes(expansion: PauliExpansion) -> int:
@@ -149,6 +158,7 @@ def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, 
         _joined(group_row, np.int64),
         _joined(group_value, np.float64),
         np.array(rows).reshape(len(rows), 1 << bits),
+        np.array([1e-15 * np.abs(values).sum()]),
     )
 
 
@@ -164,7 +174,7 @@ def _changes(*keys: Any) -> Any:
 def _row(z_low: MaskArray, values: FloatArray, bits: int) -> FloatArray:
     row = np.zeros(1 << bits)
     row[z_low.astype(np.int64)] = values
-    kernels.walsh_hadamard(row)
+    walsh_hadamard(row)
     return row
 
 

@@ -41,7 +41,7 @@ def random_vector(rng: np.random.Generator, n: int) -> np.ndarray:
 
 @pytest.mark.parametrize("matrix_bytes", [0, 2**20])
 @pytest.mark.parametrize("row_bytes", [0, 2**20])
-@pytest.mark.parametrize("block_bits", [1, 2, 3, 12])
+@pytest.mark.parametrize("block_bits", [3, 4, 12])
 @pytest.mark.parametrize("real", [False, True])
 @pytest.mark.parametrize("n", [1, 2, 4, 6])
 def test_product_and_expectation_agree_with_dense_matrices(n, real, block_bits, row_bytes, matrix_bytes):
