@@ -104,20 +104,26 @@ class _Scan:
             self._tasks.submit((chain[0], chain[1:]), self._scan, self._scan.points[chain[0]], self._start(chain[0], seed))
 
     def _heal(self) -> None:
-        """Reruns block edges and doubtful points from their neighbours, and passes every improvement on to both sides."""
-        edges = [i for a in range(BLOCK, len(self._outcomes), BLOCK) for i in (a - 1, a)]
-        wanted = sorted({*edges, *needs_healing(self._scan, self._curve())})
+        """Reruns block starts and doubtful points from their neighbours, and passes every improvement on to both sides.
+
+        A block's first point started cold: its left neighbour's seed shows whether it lies on the same branch. Where it does, nothing is
+        lower and the pass ends at once.
+        """
+        doubtful = needs_healing(self._scan, self._curve())
+        starts = [(a, a - 1) for a in range(BLOCK, len(self._outcomes), BLOCK)]
+        pairs = {*starts, *((i, n) for i in doubtful for n in (i - 1, i + 1))}
         for round_number in range(HEALING_ROUNDS):
-            pairs = [(i, n) for i in wanted for n in (i - 1, i + 1) if self._seed(n) is not None]
-            if not pairs or self._should_stop():
+            ready = sorted((i, n) for i, n in pairs if self._seed(n) is not None)
+            if not ready or self._should_stop():
                 return
             self._emit(Stage(text="Checking points from both sides", fraction=round_number / HEALING_ROUNDS))
-            self._retried.update(i for i, _ in pairs)
-            for i, n in pairs:
+            self._retried.update(i for i, _ in ready if i in doubtful)
+            for i, n in ready:
                 self._tasks.submit((i, []), self._scan, self._scan.points[i], self._start(i, self._seed(n)))
             found = sorted(self._tasks.results(), key=lambda item: item[0][0])  # in order of the curve, not of arrival
             lowered = {index for (index, _), outcome in found if self._keep(index, outcome)}
-            wanted = sorted({n for i in lowered for n in (i - 1, i + 1)} - lowered)
+            self._retried |= lowered
+            pairs = {(n, i) for i in lowered for n in (i - 1, i + 1) if 0 <= n < len(self._outcomes) and n not in lowered}
 
     def _start(self, index: int, neighbour: PointSeed | None) -> PointSeed | None:
         """The neighbour's parameters with the point's own mean field where the curve's mean fields were followed first."""

@@ -30,7 +30,7 @@ def flagged_points(scan: ScanSpec, outcomes: Sequence[PointOutcome | None], retr
     for index, outcome in enumerate(outcomes):
         flags = [] if outcome is None else _own_flags(outcome)
         flags += [name for name, on in (("jump", index in jumped), ("spin-changed", scan.points[index] in turned)) if on]
-        flags += ["retried"] if index in retried and outcome is not None else []
+        flags += ["retried"] if index in retried and results[index] is not None else []
         points.append(
             CurvePoint(
                 index=index,

@@ -72,5 +72,7 @@ class PointTasks:
 
     def close(self) -> None:
         if self._pool is not None:
-            self._pool.shutdown(wait=False, cancel_futures=True)
+            for future in self._waiting:
+                future.cancel()
+            self._pool.shutdown(wait=False)  # a cluster's executor knows no cancel_futures
             self._pool = None
