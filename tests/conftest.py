@@ -1,0 +1,6 @@
+"""Thread limits for every test process, set before numpy is imported: two test workers with two threads each would fight for the cores."""
+
+import os
+
+for _name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "NUMBA_NUM_THREADS"):
+    os.environ.setdefault(_name, "1")
