@@ -89,9 +89,10 @@ def exact_vectors(problem: Problem, exact: ExactAnswer | None) -> tuple[Any, tup
     """The ground space in the engine's representation, and a remark where the working register does not hold it."""
     if exact is None or exact.vectors is None:
         return None, ()
-    if not isinstance(problem.program, GateProgram) or problem.prepared.fermions is None:
+    if not isinstance(problem.program, GateProgram):
         return exact.vectors, ()
-    vectors = problem.encoded.from_sector(exact.vectors)
+    encoded = problem.encoded
+    vectors = encoded.from_sector(exact.vectors) if problem.prepared.fermions is not None else encoded.from_register(exact.vectors)
     lost = 1.0 - float(np.min(np.sum(np.abs(vectors) ** 2, axis=-1)))
     if lost < LOST_WEIGHT:
         return vectors, ()
