@@ -87,8 +87,5 @@ def _in_pieces(place: Callable[[int, int, int], int], size: int, watch: Watch) -
 
 def _collect(expansion: PauliExpansion, group: IntArray, count: int) -> Groups:
     members, ends = members_of(group, (expansion.x | expansion.z) != 0, count)
-    begin, sets = 0, []
-    for end in ends.tolist():
-        sets.append(members[begin:end])
-        begin = end
-    return tuple(sets)
+    stops = ends.tolist()
+    return tuple(map(members.__getitem__, map(slice, [0, *stops], stops)))

@@ -17,7 +17,7 @@ LETTERS = np.uint64(3)
 
 
 @njit(cache=True, nogil=True)
-def _letters(x: int, z: int, columns: MaskArray, others: MaskArray) -> int:
+def _letters(x: np.uint64, z: np.uint64, columns: MaskArray, others: MaskArray) -> int:
     """Writes 3 q + letter of each qubit of the string, and the same for the two letters that it is not; returns the weight."""
     weight = 0
     rest = x | z
