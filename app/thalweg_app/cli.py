@@ -71,7 +71,7 @@ def main(arguments: list[str] | None = None) -> int:
     except click.ClickException as error:
         return _say(f"{error.format_message()} See `{_help_line(error)}`.", BAD_INPUT)
     except (click.Abort, KeyboardInterrupt):
-        return INTERRUPTED
+        return _say("Stopped before anything was computed.", INTERRUPTED)
     except BrokenPipeError:
         os.dup2(os.open(os.devnull, os.O_WRONLY), 1)  # whoever read the output has gone; the last flush must not fail again
         return INTERRUPTED

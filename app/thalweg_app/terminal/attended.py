@@ -22,7 +22,9 @@ from thalweg.study.events import AnyEvent
 from thalweg_app.terminal.display import Display
 
 T = TypeVar("T")
-Work = Callable[[Callable[[AnyEvent], None], Callable[[], bool]], T]
+Emit = Callable[[AnyEvent], None]
+ShouldStop = Callable[[], bool]
+Work = Callable[[Emit, ShouldStop], T]
 
 #: The shell's convention: 128 plus the number of the signal.
 SIGNAL_STATUS = 128

@@ -4,16 +4,19 @@ from __future__ import annotations
 
 import sys
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
 
 from thalweg.errors import StudyError
 from thalweg.storage.session import Run, load_session
-from thalweg.study.repeat import Repetition, repeat
 from thalweg_app.presenters.wording import significant, unit_name
 from thalweg_app.terminal.answer import aligned
-from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.attended import Emit, ShouldStop, attend
 from thalweg_app.terminal.display import make_display
+
+if TYPE_CHECKING:
+    from thalweg.study.repeat import Repetition
 
 PAST_TOLERANCE = 1
 
@@ -46,8 +49,14 @@ def _check_run(run: Run, tolerance: float, quiet: bool) -> tuple[bool, int]:
     first = run.result
     if not quiet:
         print(f"Run {run.number} of the session: {first.label}", file=sys.stderr)
+
+    def work(emit: Emit, should_stop: ShouldStop) -> Repetition | None:
+        from thalweg.study.repeat import repeat
+
+        return repeat(first, emit, should_stop)
+
     try:
-        again, status = attend(lambda emit, should_stop: repeat(first, emit, should_stop), make_display(first.spec, quiet=quiet))
+        again, status = attend(work, make_display(first.spec, quiet=quiet))
     except StudyError as error:
         click.echo(f"Run {run.number}  {first.label}: cannot be repeated. {error}")
         return False, 0

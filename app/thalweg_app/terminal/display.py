@@ -116,8 +116,9 @@ class LiveDisplay:
     def tick(self) -> None:
         now = estimate(self._live)
         text = now.text if self._latest is None else iterate_text(self._live, self._latest)
-        part = {"total": None} if now.fraction is None else {"total": 1.0, "completed": now.fraction}
-        self._bar.update(self._task, description=text, left="" if now.seconds_left is None else time_left(now.seconds_left), **part)
+        self._bar.tasks[0].total = None if now.fraction is None else 1.0  # the library's `update` cannot take a total back
+        left = "" if now.seconds_left is None else time_left(now.seconds_left)
+        self._bar.update(self._task, description=text, completed=now.fraction or 0.0, left=left)
         self._bar.refresh()
 
     def say(self, text: str) -> None:

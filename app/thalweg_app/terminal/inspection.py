@@ -10,10 +10,11 @@ import click
 
 from thalweg.storage.files import ensure_writable, write_atomically
 from thalweg.storage.plain_json import json_text
+from thalweg.study.derived import StudyFigures
 from thalweg.study.events import Stage, Warned
 from thalweg.watch import Watch
 from thalweg_app.terminal.answer import figures_lines
-from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.attended import Emit, ShouldStop, attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
 from thalweg_app.terminal.solve import STANDARD_OUTPUT
@@ -33,9 +34,10 @@ def inspect(json_file: str | None, quiet: bool, **options: Any) -> int:
         ensure_writable(Path(json_file))
     for note in () if quiet else notes:
         print(note, file=sys.stderr)
-    from thalweg.study.figures import inspect as figures_of
 
-    def work(emit: Any, should_stop: Any) -> Any:
+    def work(emit: Emit, should_stop: ShouldStop) -> StudyFigures:
+        from thalweg.study.figures import inspect as figures_of
+
         return figures_of(spec, Watch(lambda text, part: emit(Stage(text=text, fraction=part)), should_stop, lambda text: emit(Warned(text=text))))
 
     figures, status = attend(work, make_display(spec, quiet=quiet))

@@ -16,7 +16,7 @@ from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 from thalweg_app.plots.printing import draw_chart, picture_format
 from thalweg_app.presenters.traces import convergence, shown_result
-from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.attended import Emit, ShouldStop, attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
 
@@ -40,9 +40,13 @@ def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: 
     _check_targets(figure, json_file)
     for note in () if quiet else notes:
         print(note, file=sys.stderr)
-    from thalweg.study.run import run
 
-    result, status = attend(lambda emit, should_stop: run(spec, emit, should_stop), make_display(spec, quiet=quiet))
+    def work(emit: Emit, should_stop: ShouldStop) -> StudyResult:
+        from thalweg.study.run import run  # loads the numerical libraries, which Ctrl-C may interrupt as well
+
+        return run(spec, emit, should_stop)
+
+    result, status = attend(work, make_display(spec, quiet=quiet))
     if result is None:
         print("Stopped before the first energy: there is nothing to keep.", file=sys.stderr)
         return status
