@@ -6,8 +6,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
-from thalweg.study.events import AnyEvent, Stage, Warned
-from thalweg.watch import Watch
+from thalweg.study.events import AnyEvent, watch_into
 
 Emit = Callable[[AnyEvent], None]
 ShouldStop = Callable[[], bool]
@@ -35,7 +34,7 @@ def inspect(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
     from thalweg.study.figures import inspect as inspect_study
     from thalweg.study.spec import spec_from_data
 
-    watch = Watch(lambda text, fraction: emit(Stage(text=text, fraction=fraction)), should_stop, lambda text: emit(Warned(text=text)))
+    watch = watch_into(emit, should_stop)
     return inspect_study(spec_from_data(payload), watch).model_dump(mode="json")
 
 

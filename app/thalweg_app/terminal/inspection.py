@@ -11,8 +11,7 @@ import click
 from thalweg.storage.files import ensure_writable, write_atomically
 from thalweg.storage.plain_json import json_text
 from thalweg.study.derived import StudyFigures
-from thalweg.study.events import Stage, Warned
-from thalweg.watch import Watch
+from thalweg.study.events import watch_into
 from thalweg_app.terminal.answer import figures_lines
 from thalweg_app.terminal.attended import Emit, ShouldStop, attend
 from thalweg_app.terminal.display import make_display
@@ -38,7 +37,7 @@ def inspect(json_file: str | None, quiet: bool, **options: Any) -> int:
     def work(emit: Emit, should_stop: ShouldStop) -> StudyFigures:
         from thalweg.study.figures import inspect as figures_of
 
-        return figures_of(spec, Watch(lambda text, part: emit(Stage(text=text, fraction=part)), should_stop, lambda text: emit(Warned(text=text))))
+        return figures_of(spec, watch_into(emit, should_stop))
 
     figures, status = attend(work, make_display(spec, quiet=quiet))
     if figures is None:

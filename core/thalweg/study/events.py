@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Annotated, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, TypeAdapter
 
 from thalweg.study.result import StudyResult
 from thalweg.study.scan_result import CurvePoint, ScanResult
+from thalweg.watch import Watch
 
 
 class Event(BaseModel):
@@ -103,3 +105,8 @@ AnyEvent = Annotated[
     Field(discriminator="kind"),
 ]
 EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)
+
+
+def watch_into(emit: Callable[[AnyEvent], None], should_stop: Callable[[], bool]) -> Watch:
+    """A watch whose stages and warnings become events."""
+    return Watch(lambda text, fraction: emit(Stage(text=text, fraction=fraction)), should_stop, lambda text: emit(Warned(text=text)))

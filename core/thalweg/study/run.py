@@ -13,14 +13,13 @@ from thalweg.exact.answer import ExactAnswer
 from thalweg.optimize.objective import CountedObjective, Progress
 from thalweg.simulate.engine import Engine
 from thalweg.study.assemble import assemble
-from thalweg.study.events import AnyEvent, Finished, Iteration, Stage, Started, Warned
+from thalweg.study.events import AnyEvent, Finished, Iteration, Started, Warned, watch_into
 from thalweg.study.figures import warnings_of
 from thalweg.study.outcome import Outcome
 from thalweg.study.point_seed import PointSeed
-from thalweg.study.problem import Problem, exact_answer, make_engine, prepare
+from thalweg.study.problem import Problem, exact_answer, make_engine, prepare, target_error
 from thalweg.study.result import StartRecord, StudyResult, Trace
 from thalweg.study.spec import StudySpec
-from thalweg.watch import Watch
 
 #: Width of the normal displacement, in radians, of every start after the first when the ansatz itself starts at a fixed point.
 DISPLACEMENT = 0.1
@@ -47,7 +46,7 @@ def run_from(
     should_stop: Callable[[], bool] = never,
 ) -> tuple[StudyResult, PointSeed]:
     """As `run`, from a neighbour's seed where there is one; also returns the seed for the next neighbour."""
-    watch = Watch(lambda text, fraction: emit(Stage(text=text, fraction=fraction)), should_stop, lambda text: emit(Warned(text=text)))
+    watch = watch_into(emit, should_stop)
     problem = prepare(spec, watch, seed.mean_field if seed is not None else None)
     for text in warnings_of(problem):
         emit(Warned(text=text))
@@ -112,7 +111,7 @@ class Minimisation:
 
     def _objective(self, report: Callable[[Progress], None]) -> CountedObjective:
         spec = self._problem.spec
-        target = None if self._exact is None else self._exact.energy + spec.target.error
+        target = None if self._exact is None else self._exact.energy + target_error(self._problem, self._exact)
         return CountedObjective(
             self._engine.energy,
             self._engine.energy_and_gradient,
@@ -163,7 +162,7 @@ def _started(problem: Problem, exact: ExactAnswer | None) -> Started:
         reference_name=prepared.reference_name,
         reference_energy=prepared.reference_energy,
         exact_energy=None if exact is None else exact.energy,
-        target_error=spec.target.error,
+        target_error=target_error(problem, exact),
         n_parameters=problem.program.n_parameters,
         n_starts=spec.starts,
     )
