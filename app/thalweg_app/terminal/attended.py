@@ -19,11 +19,10 @@ from typing import TypeVar
 
 from thalweg.errors import Stopped
 from thalweg.study.events import AnyEvent
+from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.terminal.display import Display
 
 T = TypeVar("T")
-Emit = Callable[[AnyEvent], None]
-ShouldStop = Callable[[], bool]
 Work = Callable[[Emit, ShouldStop], T]
 
 #: The shell's convention: 128 plus the number of the signal.

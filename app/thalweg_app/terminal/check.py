@@ -10,9 +10,10 @@ import click
 
 from thalweg.errors import StudyError
 from thalweg.storage.session import Run, load_session
+from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.presenters.wording import significant, unit_name
 from thalweg_app.terminal.answer import aligned
-from thalweg_app.terminal.attended import Emit, ShouldStop, attend
+from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 
 if TYPE_CHECKING:

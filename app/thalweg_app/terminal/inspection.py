@@ -12,8 +12,9 @@ from thalweg.storage.files import ensure_writable, write_atomically
 from thalweg.storage.plain_json import json_text
 from thalweg.study.derived import StudyFigures
 from thalweg.study.events import watch_into
+from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.terminal.answer import figures_lines
-from thalweg_app.terminal.attended import Emit, ShouldStop, attend
+from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
 from thalweg_app.terminal.solve import STANDARD_OUTPUT

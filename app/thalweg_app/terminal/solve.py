@@ -14,9 +14,10 @@ from thalweg.storage.plain_json import json_text
 from thalweg.storage.session import Session, is_session, load_session, save_session
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
+from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.plots.printing import draw_chart, picture_format
 from thalweg_app.presenters.traces import convergence, shown_result
-from thalweg_app.terminal.attended import Emit, ShouldStop, attend
+from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
 
