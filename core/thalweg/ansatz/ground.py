@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from thalweg.encoding.encoded import EncodedSystem
 from thalweg.operators.fermion import FermionHamiltonian
 from thalweg.operators.pauli import PauliExpansion
 
@@ -16,8 +17,13 @@ class Ground:
         fermions: None for spin models.
         qubits: the Hamiltonian on the register that a gate program runs on (tapered where tapering is on).
         reference_bits: the reference state as a basis state of that register.
+        encoded: how operators of the system are written on that register; None where no one asks.
+        reference_kind, reference_pairs: a spin model's reference where it is no basis state, as in `systems.prepared.PreparedSystem`.
     """
 
     fermions: FermionHamiltonian | None
     qubits: PauliExpansion
     reference_bits: int
+    encoded: EncodedSystem | None = None
+    reference_kind: str = ""
+    reference_pairs: tuple[tuple[int, int], ...] = ()

@@ -16,7 +16,7 @@ from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine, StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
 from thalweg.study.outcome import Outcome
-from thalweg.study.problem import Problem
+from thalweg.study.problem import Problem, target_error
 from thalweg.study.result import LeadingWeight, StudyResult
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import constants_record
@@ -70,6 +70,7 @@ def assemble(problem: Problem, exact: ExactAnswer | None, engine: Engine, outcom
         gradient_norm=norm,
         starts=tuple(outcome.starts),
         best_start=outcome.best,
+        growth=outcome.growth[outcome.best],
         final_parameters=_plain(parameters),
         start_parameters=_plain(outcome.start_parameters[outcome.best]),
         parameter_labels=program.labels(),
@@ -127,7 +128,7 @@ def _evidence(
     return Evidence(
         unit=prepared.energy_unit,
         error=None if exact_energy is None else energy - exact_energy,
-        target=problem.spec.target.error,
+        target=target_error(problem, exact),
         reference_error=None if exact_energy is None else prepared.reference_energy - exact_energy,
         stop_reason=outcome.starts[best].stop_reason,
         gradient_norm=norm,

@@ -65,7 +65,7 @@ def program_gates(problem: Problem) -> GateCounts:
 
 def warnings_of(problem: Problem) -> tuple[str, ...]:
     note = problem.encoded.degenerate_note
-    return problem.prepared.warnings + ((note,) if note else ())
+    return problem.prepared.warnings + ((note,) if note else ()) + problem.encoded.remarks
 
 
 def symmetry_texts(encoded: EncodedSystem) -> tuple[str, ...]:

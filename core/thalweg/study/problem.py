@@ -11,7 +11,6 @@ from typing import Any
 from thalweg.ansatz.ground import Ground
 from thalweg.circuit.program import ExcitationProgram, GateProgram, Program
 from thalweg.encoding.encoded import EncodedSystem, encode_fermions, encode_spins
-from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine
 from thalweg.study.spec import StudySpec
@@ -77,7 +76,8 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     watch.stage("Encoding")
     encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared)))[1]
     watch.stage("Building the trial state")
-    ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits)
+    kind, pairs = prepared.reference_kind, prepared.reference_pairs
+    ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
     program = spec.ansatz.build(ground)
     return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
 
@@ -145,10 +145,19 @@ def exact_answer(problem: Problem, watch: Watch = SILENT) -> ExactAnswer | None:
     return answer
 
 
+def target_error(problem: Problem, exact: ExactAnswer | None) -> float:
+    """The largest error that counts as reached, in the energy unit of the system."""
+    prepared = problem.prepared
+    return problem.spec.target.error_in(prepared.energy_unit, prepared.reference_energy if exact is None else exact.energy)
+
+
 def _diagonalise(problem: Problem, watch: Watch) -> ExactAnswer:
     watch.stage("Exact diagonalisation")
     if problem.prepared.fermions is not None:
         from thalweg.exact.determinant import lowest_level
 
         return lowest_level(problem.prepared.fermions, watch=watch, budget_bytes=problem.budget_bytes, sector_hamiltonian=sector_product(problem))
-    raise StudyError("No exact energy", "this kind of system has no exact solver", "Switch the exact energy off", "exact")
+    from thalweg.exact.spin_sector import lowest_level_spins
+
+    assert problem.prepared.spins is not None
+    return lowest_level_spins(problem.prepared.spins, watch=watch, budget_bytes=problem.budget_bytes, translations=problem.prepared.translations)

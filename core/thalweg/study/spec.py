@@ -34,8 +34,23 @@ class Target(Options):
     """What counts as accurate enough."""
 
     error: float = option(
-        CHEMICAL_ACCURACY, "Target error", "Largest error against exact that counts as reached; the default is 1 kcal/mol.", unit="Eh", gt=0
+        CHEMICAL_ACCURACY,
+        "Target error",
+        "Largest error against exact that counts as reached for molecules; 1 kcal/mol by default.",
+        unit="Eh",
+        gt=0,
     )
+    relative: float = option(
+        1e-3,
+        "Relative target",
+        "Largest error that counts as reached for lattice models, as a part of |E|.",
+        gt=0,
+        lt=1,
+    )
+
+    def error_in(self, energy_unit: str, energy: float) -> float:
+        """The largest error that counts as reached, in `energy_unit`; `energy` is the exact one, or the reference where there is none."""
+        return self.error if energy_unit == "hartree" else self.relative * abs(energy)
 
 
 class StudySpec(Options):

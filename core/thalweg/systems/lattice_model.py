@@ -15,7 +15,7 @@ from thalweg.systems.hubbard import Hubbard
 from thalweg.systems.lattice import AnyLattice, Chain
 from thalweg.systems.lattice_graph import LatticeGraph
 from thalweg.systems.pauli_list import PauliList
-from thalweg.systems.prepared import PreparedSystem
+from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
 from thalweg.systems.spin_model import SpinModel, number
 from thalweg.systems.spin_models import J1J2, XXZ, XY, Heisenberg, Ising, Kitaev, RandomCouplings
 from thalweg.systems.spin_reference import ReferenceChoice, choose_reference
@@ -53,7 +53,7 @@ class LatticeModel(Options):
         """The sites that carry a qubit (or an orbital), with bonds, for pictures and tables."""
         return self.lattice.build() if isinstance(self.model, Hubbard) else self.model.graph(self.lattice)
 
-    def prepare(self, watch: Watch, *, budget_bytes: int, neighbour: PreparedSystem | None = None) -> PreparedSystem:
+    def prepare(self, watch: Watch, *, budget_bytes: int, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
         """Builds the Hamiltonian. Raises StudyError for settings that do not fit each other."""
         watch.stage("Building the lattice")
         if isinstance(self.model, Hubbard):
