@@ -13,8 +13,8 @@ from thalweg.kernels.register_walsh import walsh_hadamard
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.watch import SILENT, Watch
 
-#: Qubits of one block: its row of 8 * 2^12 bytes and its amplitudes stay in the second-level cache.
-BLOCK_BITS = 12
+#: Qubits of one block: its row of 8 * 2^11 bytes and its amplitudes stay in the second-level cache.
+BLOCK_BITS = 11
 #: Blocks are at least this large: kernels work on eight numbers at a time.
 LEAST_BITS = 3
 #: An x mask with at most this many different high parts of z keeps its rows; others transform their coefficients for each block.
@@ -56,7 +56,7 @@ class ExpansionProduct:
         if self._matrix is not None:
             return self._walk_rows(lambda first, last: kernels.apply_stored(vector, out, first, last, *self._matrix), watch)
         own, image = vector.view(np.float64), out.view(np.float64)
-        return self._walk_blocks(lambda first, last: kernels.apply_blocks(own, image, first, last, self._bits, unit, *self._tables), watch)
+        return self._walk_blocks(lambda first, last: kernels.apply_blocks(own, image, first, last, self._bits, unit, self._tables), watch)
 
     def expectation(self, vector: Any, watch: Watch = SILENT) -> float:
         """<v|H|v> without a second vector."""
@@ -64,7 +64,7 @@ class ExpansionProduct:
         if self._matrix is not None:
             return self._walk_rows(lambda first, last: kernels.expectation_stored(vector, first, last, *self._matrix), watch)
         own = vector.view(np.float64)
-        return self._walk_blocks(lambda first, last: kernels.expectation_blocks(own, first, last, self._bits, unit, *self._tables), watch)
+        return self._walk_blocks(lambda first, last: kernels.expectation_blocks(own, first, last, self._bits, unit, self._tables), watch)
 
     def _unit(self, vector: Any) -> int:
         if vector.dtype == np.complex128:
@@ -88,16 +88,15 @@ class ExpansionProduct:
         entries, size, small = self._tables[0].size, 1 << self.n_qubits, self.n_qubits < LEAST_BITS
         if not small and entries * size > matrix_bytes:
             return None
-        even_tables = (self._tables[0], *self._tables[2:])
         blocks = max(1, size >> self._bits)
         counts = np.zeros(max(size, 1 << self._bits), dtype=np.int64)
-        kernels.count_stored(0, blocks, self._bits, counts, *even_tables)
+        kernels.count_stored(0, blocks, self._bits, counts, self._tables)
         stored = int(counts.sum())
         if not small and (stored * 12 > matrix_bytes or stored > SPARSE_SHARE * entries * size):
             return None
         pointers = np.concatenate([[0], np.cumsum(counts)])
         columns, values = np.empty(stored, dtype=np.uint32), np.zeros((stored, 2))
-        kernels.fill_stored(0, blocks, self._bits, pointers, columns, values, *self._tables)
+        kernels.fill_stored(0, blocks, self._bits, pointers, columns, values, self._tables)
         return pointers, columns, values[:, 0].copy() if self.is_real else values.view(np.complex128)[:, 0].copy()
 
 
@@ -128,36 +127,36 @@ def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, 
     x, z, odd, values = x[order], z[order], odd[order], values[order]
     begins = _changes(x, odd)
     entry_x, entry_odd = x[begins], odd[begins]
-    bounds = np.append(begins, x.size)
-    firsts, stored = [0], []
+    firsts, kinds = [0], []
     group_z, group_row, group_value = [], [], []
-    rows: list[FloatArray] = []
-    n_groups = 0
-    for first, last in zip(bounds[:-1].tolist(), bounds[1:].tolist(), strict=True):
+    rows: list[FloatArray] = [np.ones(1 << bits)]
+    for first, last in pairwise(np.append(begins, x.size).tolist()):
         parts = np.append(first + _changes(z[first:last] & ~low), last)
-        keep = parts.size - 1 <= MAX_ROWS and (len(rows) + parts.size - 1) * 8 << bits <= row_bytes
-        stored.append(keep)
-        if keep:
-            numbers = np.arange(len(rows), len(rows) + parts.size - 1)
-            rows += [_row(z[a:b] & low, values[a:b], bits) for a, b in pairwise(parts)]
+        count = parts.size - 1
+        if not np.any(z[first:last] & low):
+            kinds.append(kernels.CONSTANT)
+        else:
+            fits = count <= MAX_ROWS and (len(rows) + count) * 8 << bits <= row_bytes
+            kinds.append(kernels.ROWS if fits else kernels.TERMS)
+        if kinds[-1] == kernels.ROWS:
             group_z.append(z[parts[:-1]] & ~low)
-            group_row.append(numbers)
-            group_value.append(np.zeros(numbers.size))
+            group_row.append(np.arange(len(rows), len(rows) + count))
+            group_value.append(np.zeros(count))
+            rows += [_row(z[a:b] & low, values[a:b], bits) for a, b in pairwise(parts)]
         else:
             group_z.append(z[first:last])
             group_row.append(np.zeros(last - first, dtype=np.int64))
             group_value.append(values[first:last])
-        n_groups += group_z[-1].size
-        firsts.append(n_groups)
+        firsts.append(firsts[-1] + group_z[-1].size)
     return (
         entry_x,
         entry_odd,
         np.array(firsts, dtype=np.int64),
-        np.array(stored, dtype=bool),
+        np.array(kinds, dtype=np.int64),
         _joined(group_z, np.uint64),
         _joined(group_row, np.int64),
         _joined(group_value, np.float64),
-        np.array(rows).reshape(len(rows), 1 << bits),
+        np.array(rows),
         np.array([1e-15 * np.abs(values).sum()]),
     )
 
