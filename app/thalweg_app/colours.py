@@ -62,7 +62,7 @@ DARK = Palette(
     good="#7CC79A",
     warning="#E2B55B",
     bad="#F28B82",
-    band="#22402F",
+    band="#21362C",
     grid="#303B45",
 )
 

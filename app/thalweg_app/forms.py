@@ -16,7 +16,7 @@ from thalweg_app.presenters.numbers import number_text
 from thalweg_app.presenters.wording import unit_name
 from thalweg_app.views.fold import Fold
 
-LABEL_WIDTH = 118
+LABEL_WIDTH = 104
 
 
 class TextEntry(QLineEdit):
@@ -113,6 +113,8 @@ class FieldRow:
 
     def _choice(self) -> tuple[QWidget, Callable[[Any], None]]:
         combo = QuietCombo()
+        combo.setMinimumContentsLength(8)
+        combo.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
         for key in self.facts.choices:
             combo.addItem(choice_words(key), key)
         combo.activated.connect(lambda i: self._edited(self.path, combo.itemData(i)))

@@ -98,13 +98,14 @@ def qt_palette(p: Palette) -> QPalette:
 
 
 def style_sheet(p: Palette) -> str:
-    arrow = _arrow_file(p)
+    arrow, check = _mark_file("unfolded", p.muted, p.name), _mark_file("check", p.on_accent, p.name)
     return f"""
     QToolTip {{ background: {p.raised}; color: {p.ink}; border: 1px solid {p.border}; padding: 4px; }}
     QMainWindow::separator {{ width: 1px; height: 1px; background: {p.border}; }}
     QSplitter::handle {{ background: {p.border}; }}
-    QSplitter::handle:horizontal {{ width: 1px; }}
-    QSplitter::handle:vertical {{ height: 1px; }}
+    QSplitter::handle:horizontal {{ width: 5px; background: {p.paper}; border-left: 1px solid {p.border}; }}
+    QSplitter::handle:vertical {{ height: 5px; background: {p.paper}; border-top: 1px solid {p.border}; }}
+    QSplitter::handle:hover {{ border-color: {p.accent}; }}
     QMenuBar {{ background: {p.paper}; border-bottom: 1px solid {p.border}; }}
     QMenuBar::item {{ padding: 4px 9px; background: transparent; }}
     QMenuBar::item:selected {{ background: {p.accent_wash}; }}
@@ -139,7 +140,11 @@ def style_sheet(p: Palette) -> str:
     QToolButton:disabled {{ color: {p.muted}; }}
     QToolButton[role="section"] {{ text-align: left; background: {p.sunken}; border: none; border-radius: 0; padding: 6px 8px; font-weight: 600; }}
     QToolButton[role="fold"] {{ text-align: left; padding: 2px 2px; color: {p.muted}; }}
-    QCheckBox {{ spacing: 6px; }}
+    QCheckBox {{ spacing: 7px; }}
+    QCheckBox::indicator, QTableView::indicator {{ width: 13px; height: 13px; border: 1px solid {p.muted}; border-radius: 3px; background: {p.raised}; }}
+    QCheckBox::indicator:checked, QTableView::indicator:checked {{ background: {p.accent}; border-color: {p.accent}; image: url({check}); }}
+    QCheckBox::indicator:focus {{ border-color: {p.accent}; }}
+    QCheckBox::indicator:disabled {{ border-color: {p.border}; }}
     QCheckBox:focus {{ color: {p.accent}; }}
     QTabWidget::pane {{ border: none; border-top: 1px solid {p.border}; }}
     QTabBar::tab {{ background: transparent; color: {p.muted}; padding: 7px 14px 5px 14px; border: none; border-bottom: 2px solid transparent; }}
@@ -198,12 +203,12 @@ def application_icon() -> QIcon:
     return QIcon(str(data_folder("resources") / "icons" / "thalweg.svg"))
 
 
-def _arrow_file(p: Palette) -> str:
-    """Style sheets take pictures from files only: the arrow in this palette's colour, drawn once into the cache folder."""
+def _mark_file(name: str, colour: str, appearance: str) -> str:
+    """Style sheets take pictures from files only: an icon in one colour, drawn into the cache folder."""
     from PySide6.QtCore import QDir, QStandardPaths
 
     folder = QDir(QStandardPaths.writableLocation(QStandardPaths.StandardLocation.CacheLocation))
     folder.mkpath(".")
-    path = folder.filePath(f"arrow-{p.name}.png")
-    pixmap("unfolded", p.muted, 20, 2.0).save(path)
+    path = folder.filePath(f"{name}-{appearance}.png")
+    pixmap(name, colour, 20, 2.0).save(path)
     return path

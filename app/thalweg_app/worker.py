@@ -6,6 +6,7 @@ import os
 import sys
 from collections import deque
 from dataclasses import dataclass, field
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -144,7 +145,8 @@ class WorkerPool(QObject):
 
     def _hire(self) -> None:
         """Starts one process; the next follows when it is ready, so that two do not warm up against each other."""
-        worker = Worker(self._arguments, self)
+        spare = ["--rehearse"] if self.workers and "--cold" not in self._arguments else []
+        worker = Worker([*self._arguments, *spare], self)
         worker.replied.connect(self._on_reply)
         worker.ended.connect(self._on_ended)
         self.workers.append(worker)
@@ -152,8 +154,8 @@ class WorkerPool(QObject):
     def _assign(self) -> None:
         if self._broken is not None:
             while self._waiting:
-                job, broken = self._waiting.popleft(), self._broken
-                self._finish(job, lambda listener=job.listener: listener.failed(broken))  # type: ignore[misc]
+                job = self._waiting.popleft()
+                self._finish(job, partial(job.listener.failed, self._broken))
         idle = sorted((w for w in self.workers if w.is_idle), key=lambda w: w.last_used)
         while idle and self._waiting:
             worker, job = idle.pop(), self._waiting.popleft()

@@ -123,13 +123,23 @@ def warm_up() -> None:
         "thalweg_app.jobs",
         "thalweg.study.run",
         "thalweg.study.figures",
-        "openfermion",
         "scipy.optimize",
         "scipy.sparse.linalg",
         "pyscf.scf",
     ):
         with contextlib.suppress(ImportError):
             importlib.import_module(name)
+
+
+def rehearse() -> None:
+    """Runs the smallest molecule once, so that compiled code is loaded before it is needed."""
+    from thalweg.errors import StudyError
+    from thalweg.study.run import run
+    from thalweg.study.spec import StudySpec
+    from thalweg.systems import Molecule
+
+    with contextlib.suppress(StudyError):
+        run(StudySpec(system=Molecule(atoms=(("H", 0.0, 0.0, 0.0), ("H", 0.0, 0.0, 0.74)))))
 
 
 def main() -> None:
@@ -141,6 +151,8 @@ def main() -> None:
     listener.start()
     if "--cold" not in sys.argv:
         warm_up()
+    if "--rehearse" in sys.argv:
+        rehearse()
     from thalweg_app.messages import Ready
 
     desk.outbox.message(Ready())

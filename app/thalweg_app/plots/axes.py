@@ -19,10 +19,17 @@ class PlainAxis(pg.AxisItem):  # type: ignore[misc]
     def __init__(self, orientation: str) -> None:
         super().__init__(orientation)
         self.enableAutoSIPrefix(False)
-        self.setStyle(tickLength=-4, maxTickLevel=0)
+        self.setStyle(tickLength=-4, maxTickLevel=1, maxTextLevel=1)
+        self._finest = 1.0
+
+    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802, N803
+        levels: list[tuple[float, list[float]]] = super().tickValues(minVal, maxVal, size)
+        self._finest = min((spacing for spacing, values in levels[:2] if len(values)), default=1.0)
+        return levels
 
     def tickStrings(self, values: Sequence[float], scale: float, spacing: float) -> list[str]:  # noqa: N802 - overrides the library's
-        places = max(0, math.ceil(-math.log10(spacing) - 1e-9)) if spacing > 0 else 0
+        finest = min(spacing, self._finest)  # every label of an axis has the same number of decimals
+        places = max(0, math.ceil(-math.log10(finest) - 1e-9)) if finest > 0 else 0
         if places > 9:
             return [minus(f"{v:.3e}") for v in values]
         return [minus(f"{v:.{places}f}") for v in values]

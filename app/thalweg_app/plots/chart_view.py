@@ -70,7 +70,7 @@ class ChartView(QWidget):
 
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
-        self.graphics.setBackground(palette.raised)
+        self.graphics.setBackground(palette.paper)
         self.show_chart(self._chart)
 
     def fit(self) -> None:
@@ -119,6 +119,7 @@ class ChartView(QWidget):
         for row, (view, panel) in enumerate(zip(self._panels, self._chart.panels, strict=True)):
             self.graphics.addItem(view.item, row=row, col=0)
             self.graphics.ci.layout.setRowStretchFactor(row, round(100 * panel.share))
+            self.graphics.ci.layout.setRowPreferredHeight(row, 1000 * panel.share)
             view.item.getViewBox().sigRangeChangedManually.connect(self._on_manual_range)
             if row:
                 view.item.setXLink(self._panels[0].item)

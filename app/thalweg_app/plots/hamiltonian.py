@@ -32,6 +32,7 @@ class HamiltonianPicture(Picture):
         label.setBuddy(self.filter)
         self.controls.addWidget(label)
         self.controls.addWidget(self.filter)
+        self.log = self._log_switch(False)
         self._about = QLabel(wordWrap=True)
         self._about.setProperty("role", "muted")
         self.table = NumberTable("Pauli terms")
@@ -46,7 +47,7 @@ class HamiltonianPicture(Picture):
 
     def refresh(self) -> None:
         terms, wanted = self.workbench.terms, self.filter.text()
-        self.view.show_chart(terms_chart(terms, wanted))
+        self.view.show_chart(terms_chart(terms, wanted, self.log.isChecked()))
         table = NO_TERMS if terms is None else terms_table(terms, wanted)
         self.table.show_table(table)
         self.table.setVisible(terms is not None)

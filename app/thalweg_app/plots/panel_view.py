@@ -48,6 +48,7 @@ class PanelView:
         self._levels: dict[str, Any] = {}
         self._bars: list[Any] = []
         self._band: Any = None
+        self._floor = 0.0
         self.hair = pg.InfiniteLine(angle=90, movable=False)
         self.hair.setVisible(False)
         self.item.addItem(self.hair, ignoreBounds=True)
@@ -86,7 +87,7 @@ class PanelView:
         if panel.band is not None and heights:
             heights.append(self.height_of(np.array([panel.band.upper])) + (0.35 if self.log else 0.0))
         if panel.bars:
-            heights += [b.values for b in panel.bars] + [np.zeros(1)]
+            heights += [self.height_of(b.values) for b in panel.bars] + [np.array([self._floor])]
         extent = _extent(heights)
         if extent is None:
             return None
@@ -150,16 +151,23 @@ class PanelView:
             self.item.removeItem(bars)
         self._bars = []
         panel = self._panel
+        self._floor = self._bar_floor()
         stacked = all(np.isnan(a.values * b.values).all() for i, a in enumerate(panel.bars) for b in panel.bars[:i])
         width = 0.76 if stacked else 0.76 / max(1, len(panel.bars))
         for i, bars in enumerate(panel.bars):
             style = style_of(bars.role, bars.rank, self._palette)
             shift = 0.0 if stacked else (i - (len(panel.bars) - 1) / 2) * width
-            places = np.flatnonzero(np.isfinite(bars.values))
+            places = np.flatnonzero(np.isfinite(self.height_of(bars.values)))
             brush = QBrush(QColor(style.colour), Qt.BrushStyle.SolidPattern if style.filled else Qt.BrushStyle.BDiagPattern)
-            item = pg.BarGraphItem(x=places + shift, height=bars.values[places], width=width * 0.94, brush=brush, pen=pg.mkPen(style.colour))
+            tops = self.height_of(bars.values[places])
+            item = pg.BarGraphItem(x=places + shift, y0=self._floor, y1=tops, width=width * 0.94, brush=brush, pen=pg.mkPen(style.colour))
             self.item.addItem(item)
             self._bars.append(item)
+
+    def _bar_floor(self) -> float:
+        """Where bars stand: zero, or on a logarithmic axis the decade below the smallest."""
+        extent = _extent(self.height_of(b.values) for b in self._panel.bars) if self.log else None
+        return 0.0 if extent is None else float(np.floor(extent[0] - 0.05))
 
     def _show_band(self) -> None:
         band = self._panel.band
@@ -172,12 +180,8 @@ class PanelView:
         upper = float(self.height_of(np.array([band.upper]))[0])
         lower = upper - 40.0 if band.lower is None else float(self.height_of(np.array([band.lower]))[0])
         wash = pg.LinearRegionItem((lower, upper), orientation="horizontal", movable=False, brush=pg.mkBrush(self._palette.band), pen=pg.mkPen(None))
-        border = pg.InfiniteLine(upper, angle=0, pen=pg.mkPen(self._palette.good, width=1), label=band.text)
-        border.label.setPosition(0.985)
-        border.label.anchors = [(1.0, 1.0), (1.0, 1.0)]
-        border.label.setColor(self._palette.good)
-        border.label.setMovable(False)
-        border.label.updatePosition()
+        inside = {"position": 0.99, "anchors": [(1.0, -0.05), (1.0, -0.05)], "color": self._palette.good, "movable": False}
+        border = pg.InfiniteLine(upper, angle=0, pen=pg.mkPen(self._palette.good, width=1), label=band.text, labelOpts=inside)
         wash.setZValue(-20)
         border.setZValue(4)
         for part in (wash, border):

@@ -8,7 +8,7 @@ from typing import ClassVar
 
 from PySide6.QtCore import QSize, Qt
 from PySide6.QtGui import QGuiApplication, QPixmap
-from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QSizePolicy, QToolButton, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QCheckBox, QFileDialog, QHBoxLayout, QLabel, QSizePolicy, QToolButton, QVBoxLayout, QWidget
 
 from thalweg.errors import StudyError
 from thalweg.storage.files import write_atomically
@@ -106,6 +106,16 @@ class Picture(QWidget):
     def show_read_out(self, text: str) -> None:
         self._read_out.setText(text)
 
+    def _log_switch(self, on: bool) -> QCheckBox:
+        """A switch for a logarithmic axis, among the picture's own controls."""
+        box = QCheckBox("Logarithmic")
+        box.setChecked(on)
+        describe(box, "Logarithmic", "Draws the vertical axis in decades, so that small values can be seen.")
+        box.toggled.connect(lambda _: (self.refresh(), self.view.fit()))
+        self.controls.addSpacing(SPACE)
+        self.controls.addWidget(box)
+        return box
+
     def _head(self) -> QHBoxLayout:
         row = QHBoxLayout()
         row.setSpacing(2)
@@ -147,5 +157,3 @@ class Picture(QWidget):
         dialog.selectFile(f"{self.title.lower()}.{suffix}")
         dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
         return dialog
-
-

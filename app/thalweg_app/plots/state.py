@@ -27,7 +27,9 @@ class StatePicture(Picture):
         self._label = QLabel()
         self._label.setProperty("role", "heading")
         self.controls.addWidget(self._label)
+        self.log = self._log_switch(True)
         self.figures = FigureGrid(4)
+        self.figures.setMaximumWidth(960)
         self.table = NumberTable("Leading weights")
         self.occupations.read_out.connect(self.show_read_out)
         self._lower = QWidget()
@@ -57,7 +59,7 @@ class StatePicture(Picture):
         run = self.workbench.ledger.selected
         result = None if run is None else run.result
         self._label.setText("" if run is None else f"Run {run.number}: {run.result.label}")
-        self.view.show_chart(state_chart(result))
+        self.view.show_chart(state_chart(result, self.log.isChecked()))
         self.occupations.show_chart(occupations_chart(result))
         self.figures.show_figures([] if result is None else state_figures(result))
         self.table.show_table(NOTHING if result is None else state_table(result))

@@ -10,7 +10,14 @@ from thalweg_app.presenters import wording
 from thalweg_app.presenters.run_control import CheckOutcome
 
 Kind = Literal["none", "good", "bad", "unclear"]
-KINDS: dict[str, Kind] = {"reached": "good", "outside": "bad", "wrong-symmetry": "bad", "stationary": "bad", "not-converged": "unclear", "no-exact": "unclear"}
+KINDS: dict[str, Kind] = {
+    "reached": "good",
+    "outside": "bad",
+    "wrong-symmetry": "bad",
+    "stationary": "bad",
+    "not-converged": "unclear",
+    "no-exact": "unclear",
+}
 #: A repetition within this many hartree (or couplings) counts as the same answer.
 SAME = 1e-7
 
@@ -22,8 +29,10 @@ class Answer:
     remarks: tuple[str, ...] = ()
 
 
-def answer_of(number: int, result: StudyResult) -> Answer:
-    return Answer(KINDS.get(result.verdict_kind, "unclear"), f"Run {number}: {result.verdict}.", result.remarks)
+def answer_of(number: int, result: StudyResult, known: tuple[str, ...] = ()) -> Answer:
+    """The verdict with the remarks that do not stand in the set-up already (`known`)."""
+    remarks = tuple(remark for remark in result.remarks if remark not in known)
+    return Answer(KINDS.get(result.verdict_kind, "unclear"), f"Run {number}: {result.verdict}.", remarks)
 
 
 def answer_of_check(outcome: CheckOutcome) -> Answer:

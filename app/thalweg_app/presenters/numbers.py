@@ -31,22 +31,20 @@ def parse_whole(text: str, field: str = "") -> int:
         raise _not_a_number(text, "a whole number such as 20000", field)
     value = parse_number(cleaned, field)
     if value != int(value):
-        raise StudyError(f"'{text.strip()}' is not a whole number", "only whole numbers make sense here", f"Give {int(value)} or {int(value) + 1}", field)
+        raise StudyError(
+            f"'{text.strip()}' is not a whole number", "only whole numbers make sense here", f"Give {int(value)} or {int(value) + 1}", field
+        )
     return int(value)
 
 
 def number_text(value: float | int) -> str:
-    """The shortest text that reads back as the same number, with a decimal point always."""
+    """A number as a field shows it: at most eight significant digits, a decimal point always, an exponent only far from one."""
     if isinstance(value, int):
         return str(value)
-    if value != 0 and not 1e-4 <= abs(value) < 1e6:
-        mantissa, exponent = f"{value:.17e}".split("e")
-        short = repr(value)
-        if "e" in short:
-            mantissa, exponent = short.split("e")
-            return f"{mantissa}e{int(exponent)}"
-        return short
-    return f"{value:g}" if float(f"{value:g}") == value else repr(value)
+    if value == 0 or 1e-4 <= abs(value) < 1e8:
+        return f"{value:.8g}"
+    mantissa, exponent = f"{value:.7e}".split("e")
+    return f"{mantissa.rstrip('0').rstrip('.')}e{int(exponent)}"
 
 
 def _cleaned(text: str) -> str:

@@ -67,7 +67,7 @@ def terms_table(terms: Terms, wanted: str = "") -> Table:
     return Table(header, tuple(rows), (True, False, True, True, True), tuple(keys), about)
 
 
-def terms_chart(terms: Terms | None, wanted: str = "") -> Chart:
+def terms_chart(terms: Terms | None, wanted: str = "", log: bool = False) -> Chart:
     """Bars of |c|; positive and negative coefficients in two colours. The constant is left out: it only shifts the energy."""
     empty = "The Hamiltonian is shown as soon as the system is worked out."
     if terms is None:
@@ -81,7 +81,7 @@ def terms_chart(terms: Terms | None, wanted: str = "") -> Chart:
         Bars("Negative coefficient", np.where(values < 0, -values, np.nan), "overlay"),
     )
     names = tuple(s for s, _ in found)
-    panel = Panel(f"|coefficient| / {wording.unit_name(terms.unit)}", bars=bars, categories=names)
+    panel = Panel(f"|coefficient| / {wording.unit_name(terms.unit)}", bars=bars, categories=names, log=log)
     return Chart("Hamiltonian", "Pauli string", (panel,), empty, f"{len(found)} heaviest terms of {terms.label}")
 
 
@@ -89,7 +89,7 @@ def terms_of_result(result: StudyResult) -> Terms:
     return Terms(result.label, result.energy_unit, result.pauli_terms, result.terms, result.one_norm, result.qubits)
 
 
-def state_chart(result: StudyResult | None) -> Chart:
+def state_chart(result: StudyResult | None, log: bool = False) -> Chart:
     empty = "The state is shown when a run has finished."
     if result is None or not result.leading:
         return Chart("State", "Determinant", (), empty)
@@ -98,7 +98,7 @@ def state_chart(result: StudyResult | None) -> Chart:
     if any(w.exact_weight is not None for w in leading):
         bars.append(Bars("Exact", np.array([np.nan if w.exact_weight is None else w.exact_weight for w in leading]), "exact"))
     name = "Determinant" if result.n_electrons is not None else "Basis state"
-    panel = Panel("Weight", bars=tuple(bars), categories=tuple(w.label for w in leading))
+    panel = Panel("Weight", bars=tuple(bars), categories=tuple(w.label for w in leading), log=log)
     return Chart("State", name, (panel,), empty, f"Leading weights of {result.label}")
 
 
@@ -108,7 +108,7 @@ def occupations_chart(result: StudyResult | None) -> Chart:
         return Chart("Natural occupations", "Natural orbital", (), "Natural occupations exist for molecules and fermion lattices.")
     values = np.array(result.natural_occupations)
     names = tuple(str(i + 1) for i in range(values.size))
-    panel = Panel("Occupation", bars=(Bars("Trial state", values, "variational"),), levels=(Level("2", 2.0, "reference"),), categories=names)
+    panel = Panel("Occupation", bars=(Bars("Trial state", values, "variational"),), levels=(Level("Doubly occupied", 2.0, "reference"),), categories=names)
     return Chart("Natural occupations", "Natural orbital", (panel,), "", f"Natural occupations of {result.label}")
 
 

@@ -22,7 +22,9 @@ from thalweg_app.presenters.traces import Shown, XChoice, convergence, shown_liv
 class Workbench:
     """`answer_changed`: the sentence under the set-up. `pictures_changed`: what is drawn. `told`: a sentence for the status line."""
 
-    def __init__(self, starter: JobStarter, recent: RecentFiles, *, run: str = jobs.RUN, inspect: str = jobs.INSPECT, check: str = jobs.CHECK) -> None:
+    def __init__(
+        self, starter: JobStarter, recent: RecentFiles, *, run: str = jobs.RUN, inspect: str = jobs.INSPECT, check: str = jobs.CHECK
+    ) -> None:
         self.starter = starter
         self.history = History()
         self.setup = SetupEditing(self.history)
@@ -40,6 +42,7 @@ class Workbench:
         self.setup.changed.connect(self._follow_setup)
         self.figures.refused.connect(self.setup.refuse)
         self.figures.changed.connect(self.pictures_changed)
+        self.figures.changed.connect(self.answer_changed)
         self.figures.defect.connect(self.defect)
         self.runs.refused.connect(self.setup.refuse)
         self.runs.finished.connect(self._on_finished)
@@ -58,7 +61,11 @@ class Workbench:
         if self._check is not None:
             return answer_of_check(self._check)
         run = self.ledger.selected
-        return NOTHING_YET if run is None else answer_of(run.number, run.result)
+        if run is None:
+            return NOTHING_YET
+        figures = self.figures.shown if self.figures.is_fresh else None
+        known = figures.warnings if figures is not None and run.result.spec == self.setup.spec else ()
+        return answer_of(run.number, run.result, known)
 
     def run(self) -> None:
         """Runs the set-up as it is, when it can be run."""

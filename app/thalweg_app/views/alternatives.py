@@ -20,6 +20,8 @@ class AlternativeBox(QWidget):
         self._forms: dict[str, OptionsForm] = {}
         self._classes = {key_of(cls): cls for cls in alternatives}
         self.menu = QuietCombo()
+        self.menu.setMinimumContentsLength(8)
+        self.menu.setSizeAdjustPolicy(QuietCombo.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
         for key, cls in self._classes.items():
             self.menu.addItem(cls.title, key)
         describe(self.menu, title, " ".join(f"{cls.title}: {cls.about}" for cls in self._classes.values()))

@@ -97,7 +97,10 @@ class AtomsTable(QWidget):
         self.view.setModel(self.model)
         quiet(self.view)
         self.view.verticalHeader().show()
+        self.view.horizontalHeader().setMinimumSectionSize(36)
+        self.view.horizontalHeader().setStretchLastSection(False)
         self.view.horizontalHeader().setSectionResizeMode(QHeaderView.ResizeMode.Stretch)
+        self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.view.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectItems)
         self.view.setEditTriggers(QAbstractItemView.EditTrigger.AllEditTriggers)
         describe(self.view, "Table of atoms", "Element and coordinates of each atom. Every cell can be edited; Delete removes the atom.")
@@ -119,7 +122,7 @@ class AtomsTable(QWidget):
     def refresh(self) -> None:
         self.model.refresh()
         rows = min(MAX_ROWS_SHOWN, max(1, self.model.rowCount()))
-        self.view.setFixedHeight(rows * 24 + 30)
+        self.view.setFixedHeight(rows * 24 + self.view.horizontalHeader().sizeHint().height() + 2)
 
     def set_palette(self, palette: Palette) -> None:
         self.model.palette = palette

@@ -17,7 +17,7 @@ class FigureGrid(QWidget):
         self._labels: list[tuple[QLabel, QLabel]] = []
         self._grid = QGridLayout(self)
         self._grid.setContentsMargins(0, 0, 0, 0)
-        self._grid.setHorizontalSpacing(10)
+        self._grid.setHorizontalSpacing(6)
         self._grid.setVerticalSpacing(3)
         for column in range(columns):
             self._grid.setColumnStretch(2 * column + 1, 1)
@@ -42,7 +42,7 @@ class FigureGrid(QWidget):
         name.setProperty("role", "muted")
         value.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
         value.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
-        value.setContentsMargins(0, 0, 14 if column < self._columns - 1 else 0, 0)
+        value.setContentsMargins(0, 0, 10 if column < self._columns - 1 else 0, 0)
         self._grid.addWidget(name, row, 2 * column)
         self._grid.addWidget(value, row, 2 * column + 1)
         self._labels.append((name, value))

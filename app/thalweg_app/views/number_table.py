@@ -77,6 +77,7 @@ class NumberTable(QTableView):
         self.setSortingEnabled(True)
         self.horizontalHeader().setSortIndicator(-1, Qt.SortOrder.AscendingOrder)
         quiet(self)
+        self.horizontalHeader().setStretchLastSection(False)
 
     def show_table(self, table: Table) -> None:
         new = table.header != self._model._table.header
@@ -84,6 +85,8 @@ class NumberTable(QTableView):
         self.setAccessibleDescription(table.about)
         if new and table.header:
             self.resizeColumnsToContents()
+            for column in range(len(table.header)):
+                self.setColumnWidth(column, self.columnWidth(column) + 14)
 
     def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802 - Qt's name
         if event.matches(QKeySequence.StandardKey.Copy):

@@ -109,7 +109,11 @@ def _encoding_figures(figures: StudyFigures) -> list[Figure]:
     unit = wording.unit_name(figures.energy_unit)
     tapered = figures.qubits != figures.qubits_before_tapering
     return [
-        Figure("Qubits", f"{figures.qubits_before_tapering} → {figures.qubits}" if tapered else wording.count(figures.qubits), "Before and after tapering."),
+        Figure(
+            "Qubits",
+            f"{figures.qubits_before_tapering} → {figures.qubits}" if tapered else wording.count(figures.qubits),
+            "Before and after tapering.",
+        ),
         Figure("Pauli terms", wording.count(figures.terms), f"{figures.terms_before_tapering:,} before tapering."),
         Figure(f"One-norm / {unit}", f"{figures.one_norm:.4f}", "Sum of |coefficient| without the constant."),
         Figure("Largest weight", wording.count(figures.largest_weight), "Largest number of qubits that one term acts on."),

@@ -15,7 +15,7 @@ from thalweg_app.views.fold import Section
 from thalweg_app.views.sections import EncodingSection, SearchSection, TrialSection
 from thalweg_app.views.system_section import SystemSection
 
-WIDTH = 380
+WIDTH = 388
 _ANSWER_PICTURES = {"good": "reached", "bad": "missed", "unclear": "unclear"}
 
 

@@ -148,14 +148,18 @@ class SystemSection(QWidget):
         return row
 
 
+def _short(name: str) -> str:
+    return {"Hartree-Fock": "E(HF)"}.get(name, name)
+
+
 def _figures(figures: StudyFigures) -> list[Figure]:
     unit = wording.unit_name(figures.energy_unit)
     found = []
     if figures.n_electrons is not None and figures.n_orbitals is not None:
-        found.append(Figure("Active electrons", wording.count(figures.n_electrons), figures.sector))
-        found.append(Figure("Active orbitals", wording.count(figures.n_orbitals), "Spatial orbitals that the study works with."))
+        found.append(Figure("Electrons", wording.count(figures.n_electrons), figures.sector))
+        found.append(Figure("Orbitals", wording.count(figures.n_orbitals), "Spatial orbitals that the study works with."))
     if figures.sector_dimension is not None:
         found.append(Figure("Sector", wording.count(figures.sector_dimension), "Number of determinants with these electrons of each spin."))
     found.append(Figure("Memory", wording.bytes_text(figures.memory_bytes), "Largest amount of memory that a run needs, estimated."))
-    found.append(Figure(f"{figures.reference_name} / {unit}", wording.minus(f"{figures.reference_energy:.6f}"), "Energy of the reference state."))
+    found.append(Figure(f"{_short(figures.reference_name)} / {unit}", wording.minus(f"{figures.reference_energy:.6f}"), "Energy of the reference state."))
     return found
