@@ -11,7 +11,7 @@ from thalweg.errors import Stopped, StudyError
 from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import CountedObjective, StopRules
 from thalweg.study.result import STOP_REASONS
-from thalweg.study.spec import SECTIONS, StudySpec, Target, spec_from_data, with_setting
+from thalweg.study.spec import SECTIONS, DepthLadder, StudySpec, Target, spec_from_data, with_setting
 from thalweg.systems import Molecule
 
 ALTERNATIVES = [pytest.param(section, cls, id=f"{section}-{cls.model_fields['key'].default}") for section, found in SECTIONS.items() for cls in found]
@@ -19,10 +19,11 @@ SETTINGS = [
     *ALTERNATIVES,
     pytest.param("stop", StopRules, id="stop"),
     pytest.param("target", Target, id="target"),
+    pytest.param("ladder", DepthLadder, id="ladder"),
     pytest.param("study", StudySpec, id="study"),
 ]
 #: Fields that are sections of their own, described by their own alternatives.
-SECTION_FIELDS = {*SECTIONS, "stop", "target"}
+SECTION_FIELDS = {*SECTIONS, "stop", "target", "ladder"}
 
 
 def base_spec() -> StudySpec:
@@ -41,7 +42,7 @@ def test_keys_are_unique_lower_case_words_joined_by_hyphens(section):
 
 def test_the_keys_that_the_terminal_promises_are_there():
     assert {"jordan-wigner", "parity", "bravyi-kitaev"} <= set(SECTIONS["encoding"].keys())
-    assert {"uccsd", "hardware-efficient"} <= set(SECTIONS["ansatz"].keys())
+    assert {"uccsd", "uccd", "uccgsd", "puccd", "k-upccgsd", "adaptive", "number-conserving", "hardware-efficient"} <= set(SECTIONS["ansatz"].keys())
     promised = {"l-bfgs-b", "slsqp", "cobyla", "nelder-mead", "gradient-descent", "momentum", "adam"}
     assert promised <= set(SECTIONS["optimizer"].keys())
 

@@ -4,6 +4,7 @@ One whose settings hold a depth names that field in `depth_field` and offers `fr
 parameters that give the state of one layer less, so that a depth ladder can climb.
 """
 
+from thalweg.ansatz.adaptive import Adaptive
 from thalweg.ansatz.coupled_cluster import UCCSD
 from thalweg.ansatz.doubles_coupled_cluster import UCCD
 from thalweg.ansatz.generalised_coupled_cluster import UCCGSD
@@ -15,6 +16,6 @@ from thalweg.ansatz.pair_coupled_cluster import PUCCD
 from thalweg.options import Options
 from thalweg.registry import Alternatives
 
-ANSATZE: Alternatives[Options] = Alternatives("ansatz", [UCCSD, UCCD, UCCGSD, PUCCD, KUpCCGSD, NumberConserving, HardwareEfficient])
+ANSATZE: Alternatives[Options] = Alternatives("ansatz", [UCCSD, UCCD, UCCGSD, PUCCD, KUpCCGSD, Adaptive, NumberConserving, HardwareEfficient])
 
-__all__ = ["ANSATZE", "PUCCD", "UCCD", "UCCGSD", "UCCSD", "Ground", "HardwareEfficient", "KUpCCGSD", "NumberConserving"]
+__all__ = ["ANSATZE", "PUCCD", "UCCD", "UCCGSD", "UCCSD", "Adaptive", "Ground", "HardwareEfficient", "KUpCCGSD", "NumberConserving"]

@@ -69,15 +69,7 @@ def mirror(excitation: Excitation) -> Excitation:
     return Excitation(excitation.beta_source, excitation.beta_target, excitation.alpha_source, excitation.alpha_target)
 
 
-def irrep(excitation: Excitation, labels: list[int]) -> int:
-    """Irrep of the excitation from those of the orbitals; 0 is totally symmetric."""
-    result = 0
-    for p in (*excitation.alpha_source, *excitation.alpha_target, *excitation.beta_source, *excitation.beta_target):
-        result ^= labels[p]
-    return result
-
-
 def totally_symmetric(excitations: Iterable[Excitation], hamiltonian: FermionHamiltonian) -> list[Excitation]:
     """Those that keep the irrep of the state."""
     labels = hamiltonian.orbital_irreps.tolist()
-    return [e for e in excitations if irrep(e, labels) == 0]
+    return [e for e in excitations if e.irrep(labels) == 0]

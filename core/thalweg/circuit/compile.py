@@ -60,6 +60,15 @@ def generator_strings(excitations: tuple[Excitation, ...], linear: LinearEncodin
     return kernels.generator_strings(*arrays, linear.update, linear.flip, linear.parity)
 
 
+def excitation_strings(
+    excitations: tuple[Excitation, ...], linear: LinearEncoding, tapering: Tapering
+) -> tuple[MaskArray, MaskArray, FloatArray, IntArray]:
+    """As `generator_strings` on the working register; excitations that break a removed symmetry have no strings."""
+    x, z, c, owner = generator_strings(excitations, linear)
+    inside = tapering.keeps(x)
+    return _on_register(tapering, x[inside], z[inside], c[inside], owner[inside])
+
+
 def _on_register(
     tapering: Tapering, x: MaskArray, z: MaskArray, c: FloatArray, factor: IntArray
 ) -> tuple[MaskArray, MaskArray, FloatArray, IntArray]:

@@ -6,6 +6,7 @@ angle from one parameter times a fixed number, so that parameters may be shared 
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from enum import IntEnum
 
@@ -32,6 +33,13 @@ class Excitation:
     def rank(self) -> int:
         """1 for a single, 2 for a double excitation."""
         return len(self.alpha_source) + len(self.beta_source)
+
+    def irrep(self, labels: Sequence[int]) -> int:
+        """Irrep of the excitation from those of the orbitals; 0 is totally symmetric."""
+        product = 0
+        for p in (*self.alpha_source, *self.alpha_target, *self.beta_source, *self.beta_target):
+            product ^= labels[p]
+        return product
 
     def label(self) -> str:
         """`2a 3b -> 5a 6b`, orbitals counted from 0 within the active space."""

@@ -13,10 +13,10 @@ from thalweg import __version__
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import GateProgram
 from thalweg.exact.answer import ExactAnswer
-from thalweg.simulate.engine import Engine, StateFacts
+from thalweg.simulate.engine import StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
-from thalweg.study.outcome import Outcome
-from thalweg.study.problem import Problem, target_error
+from thalweg.study.outcome import Outcome, SearchEnd
+from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import LeadingWeight, StudyResult
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import constants_record
@@ -25,17 +25,18 @@ from thalweg.units import constants_record
 LOST_WEIGHT = 1e-6
 
 
-def assemble(problem: Problem, exact: ExactAnswer | None, engine: Engine, outcome: Outcome) -> StudyResult:
-    """The result of a finished or stopped minimisation."""
-    best = outcome.starts[outcome.best]
-    parameters = outcome.best_parameters[outcome.best]
+def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
+    """The result of a finished or stopped search."""
+    best, end = outcome.starts[outcome.best], outcome.ends[outcome.best]
+    problem, parameters = end.problem, end.parameters
+    engine = make_engine(problem)
     energy, gradient = engine.energy_and_gradient(parameters)
     norm = float(np.abs(gradient).max(initial=0.0))
     vectors, remarks = exact_vectors(problem, exact)
     facts = engine.facts(parameters, vectors)
     classical, classical_remarks = _classical(problem)
     two_qubit = program_gates(problem).two_qubit
-    evidence = _evidence(problem, exact, outcome, energy, norm, facts, two_qubit)
+    evidence = _evidence(exact, end, energy, norm, facts, two_qubit)
     verdict = judge(evidence)
     remarks += classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome)
     prepared, encoded, program = problem.prepared, problem.encoded, problem.program
@@ -70,9 +71,9 @@ def assemble(problem: Problem, exact: ExactAnswer | None, engine: Engine, outcom
         gradient_norm=norm,
         starts=tuple(outcome.starts),
         best_start=outcome.best,
-        growth=outcome.growth[outcome.best],
+        growth=end.growth,
         final_parameters=_plain(parameters),
-        start_parameters=_plain(outcome.start_parameters[outcome.best]),
+        start_parameters=_plain(end.start_parameters),
         parameter_labels=program.labels(),
         operator_order=program.order,
         pauli_terms=heaviest_terms(encoded.working),
@@ -119,10 +120,8 @@ def _versions() -> tuple[tuple[str, str], ...]:
     return tuple(found)
 
 
-def _evidence(
-    problem: Problem, exact: ExactAnswer | None, outcome: Outcome, energy: float, norm: float, facts: StateFacts, two_qubit: int | None
-) -> Evidence:
-    prepared, best = problem.prepared, outcome.best
+def _evidence(exact: ExactAnswer | None, end: SearchEnd, energy: float, norm: float, facts: StateFacts, two_qubit: int | None) -> Evidence:
+    problem, prepared = end.problem, end.problem.prepared
     sector = prepared.fermions.sector if prepared.fermions is not None else None
     exact_energy = None if exact is None else exact.energy
     return Evidence(
@@ -130,10 +129,10 @@ def _evidence(
         error=None if exact_energy is None else energy - exact_energy,
         target=target_error(problem, exact),
         reference_error=None if exact_energy is None else prepared.reference_energy - exact_energy,
-        stop_reason=outcome.starts[best].stop_reason,
+        stop_reason=end.reason,
         gradient_norm=norm,
-        start_gradient_norm=outcome.start_gradient_norms[best],
-        lowered=outcome.start_energies[best] - energy,
+        start_gradient_norm=end.start_gradient_norm,
+        lowered=end.start_energy - energy,
         parameters=problem.program.n_parameters,
         two_qubit_gates=two_qubit,
         n_electrons=facts.n_electrons,

@@ -7,7 +7,7 @@ from typing import Annotated, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, TypeAdapter
 
-from thalweg.study.result import StudyResult
+from thalweg.study.result import GrowthStep, StudyResult
 from thalweg.study.scan_result import CurvePoint, ScanResult
 from thalweg.watch import Watch
 
@@ -48,6 +48,15 @@ class Iteration(Event):
     energy: float
     gradient_norm: float | None
     seconds: float
+
+
+class StepTaken(Event):
+    """A trial state has grown by one step, and its parameters have been searched again."""
+
+    kind: Literal["growth-step"] = "growth-step"
+    start: int  # 0-based
+    number: int  # 0 for the reference or the shallowest circuit
+    step: GrowthStep
 
 
 class Warned(Event):
@@ -101,7 +110,7 @@ class ScanFinished(Event):
 
 
 AnyEvent = Annotated[
-    Started | Stage | Iteration | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
+    Started | Stage | Iteration | StepTaken | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
     Field(discriminator="kind"),
 ]
 EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)

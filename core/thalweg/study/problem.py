@@ -136,6 +136,14 @@ def sector_product(problem: Problem) -> Any:
     return _products.get(id(problem.prepared), lambda: (problem.prepared, SectorHamiltonian(fermions)))[1]
 
 
+def register_product(problem: Problem) -> Any:
+    """H applied to states of the working register."""
+    from thalweg.operators.product import ExpansionProduct
+
+    working = problem.encoded.working
+    return _products.get((id(problem.prepared), problem.spec.encoding), lambda: (problem.prepared, ExpansionProduct(working)))[1]
+
+
 def exact_answer(problem: Problem, watch: Watch = SILENT) -> ExactAnswer | None:
     """The exact lowest level in the representation of the sector (fermions) or the register (spins)."""
     if not problem.spec.exact:

@@ -21,10 +21,13 @@ STOP_REASONS: dict[str, str] = {
     "stopped-by-person": "stopped by hand; the best point so far is kept",
     "cut-off": "the calculation was cut off; the lowest energy so far is kept",
     "no-parameters": "the trial state has no parameters",
+    "pool-slope": "no operator of the pool has a slope above the limit",
+    "operators": "the limit on the number of operators was reached",
+    "no-gain": "one layer more no longer lowered the energy",
     "not-finite": "the energy became infinite or not a number",
 }
 #: Reasons that count as an end of the search, as against an interruption.
-CONVERGED = frozenset({"gradient", "energy-change", "converged", "target", "no-parameters"})
+CONVERGED = frozenset({"gradient", "energy-change", "converged", "target", "no-parameters", "pool-slope", "no-gain"})
 
 
 class Record(BaseModel):
@@ -58,6 +61,19 @@ class LeadingWeight(Record):
     label: str
     weight: float
     exact_weight: float | None
+
+
+class GrowthStep(Record):
+    """One step of adaptive growth or of a depth ladder, after its minimisation. The first is the reference or the shallowest circuit."""
+
+    added: tuple[str, ...]  # what this step appended: operators, or the depth in words; empty for the reference
+    parameters: int
+    two_qubit_gates: int | None
+    energy: float
+    error: float | None
+    largest_slope: float | None  # among the operators of the pool, after this step; None without a pool
+    iteration: int  # iterations and evaluations of the whole start when the step ended
+    evaluations: int
 
 
 class StudyResult(Record):
@@ -94,6 +110,7 @@ class StudyResult(Record):
     gradient_norm: float | None
     starts: tuple[StartRecord, ...] = ()
     best_start: int = 0
+    growth: tuple[GrowthStep, ...] = ()  # of the best start
 
     n_electrons: float | None = None
     s_z: float | None = None

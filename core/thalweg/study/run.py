@@ -3,26 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any
 
-import numpy as np
-
+from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import FloatArray
-from thalweg.errors import Stopped
 from thalweg.exact.answer import ExactAnswer
-from thalweg.optimize.objective import CountedObjective, Progress
-from thalweg.simulate.engine import Engine
 from thalweg.study.assemble import assemble
-from thalweg.study.events import AnyEvent, Finished, Iteration, Started, Warned, watch_into
+from thalweg.study.course import Course
+from thalweg.study.depth_ladder import climb
+from thalweg.study.events import AnyEvent, Finished, Started, Warned, watch_into
 from thalweg.study.figures import warnings_of
-from thalweg.study.outcome import Outcome
+from thalweg.study.growth import grow
+from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.point_seed import PointSeed
-from thalweg.study.problem import Problem, exact_answer, make_engine, prepare, target_error
-from thalweg.study.result import StartRecord, StudyResult, Trace
+from thalweg.study.problem import Problem, exact_answer, prepare, target_error
+from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
-
-#: Width of the normal displacement, in radians, of every start after the first when the ansatz itself starts at a fixed point.
-DISPLACEMENT = 0.1
 
 
 def never() -> bool:
@@ -51,107 +46,40 @@ def run_from(
     for text in warnings_of(problem):
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)
-    engine = make_engine(problem, watch)
     emit(_started(problem, exact))
     watch.stage("Minimising")
-    minimisation = Minimisation(problem, engine, exact, emit, should_stop)
-    minimisation.run(None if seed is None else seed.parameters_for(problem.program))
-    result = assemble(problem, exact, engine, minimisation.outcome())
+    initial = None if seed is None else seed.parameters_for(problem.program)
+    result = assemble(exact, _from_every_start(problem, exact, initial, emit, should_stop))
     return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
 
 
-class Minimisation:
-    """Minimises from every start in turn; the lowest counts."""
-
-    def __init__(
-        self, problem: Problem, engine: Engine, exact: ExactAnswer | None, emit: Callable[[AnyEvent], None], should_stop: Callable[[], bool]
-    ) -> None:
-        self._problem, self._engine, self._exact, self._emit, self._should_stop = problem, engine, exact, emit, should_stop
-        self._outcome = Outcome()
-
-    def outcome(self) -> Outcome:
-        return self._outcome
-
-    def run(self, initial: FloatArray | None) -> None:
-        for index in range(self._problem.spec.starts):
-            if index and self._should_stop():
-                break
-            self._one_start(index, initial if index == 0 else None)
-
-    def _one_start(self, index: int, initial: FloatArray | None) -> None:
-        spec = self._problem.spec
-        seed = spec.seed + index
-        rng = np.random.default_rng(seed)
-        start = self._start_parameters(index, initial, rng)
-        columns: list[Progress] = []
-
-        def report(progress: Progress) -> None:
-            columns.append(progress)
-            self._emit(Iteration(start=index, **vars(progress)))
-
-        objective = self._objective(report)
-        reason = self._search(objective, start, rng)
-        out = self._outcome
-        out.starts.append(_record(seed, reason, objective, columns))
-        out.best_parameters.append(objective.best_parameters)
-        out.start_parameters.append(start)
-        out.start_energies.append(columns[0].energy)
-        out.start_gradient_norms.append(columns[0].gradient_norm or 0.0)
-
-    def _search(self, objective: CountedObjective, start: FloatArray, rng: np.random.Generator) -> str:
-        try:
-            objective.begin(start)
-            if objective.n_parameters == 0:
-                return "no-parameters"
-            return self._problem.spec.optimizer.minimise(objective, start, rng)
-        except Stopped as stop:
-            if not np.isfinite(objective.best_energy):
-                raise
-            return stop.reason
-
-    def _objective(self, report: Callable[[Progress], None]) -> CountedObjective:
-        spec = self._problem.spec
-        target = None if self._exact is None else self._exact.energy + target_error(self._problem, self._exact)
-        return CountedObjective(
-            self._engine.energy,
-            self._engine.energy_and_gradient,
-            self._engine.n_parameters,
-            offset=self._problem.prepared.reference_energy,
-            rules=spec.stop,
-            target_energy=target,
-            report=report,
-            should_stop=self._should_stop,
-        )
-
-    def _start_parameters(self, index: int, initial: FloatArray | None, rng: np.random.Generator) -> FloatArray:
-        problem = self._problem
-        if initial is not None and initial.shape == (self._engine.n_parameters,):
-            return initial.copy()
-        ansatz: Any = problem.spec.ansatz  # each one takes the kind of program that it builds
-        start: FloatArray = ansatz.start_parameters(problem.ground, problem.program, rng)
-        if index and ansatz.start in ("zero", "mp2"):  # a fixed point would repeat itself
-            start = start + rng.normal(0.0, DISPLACEMENT, start.size)
-        return start
+def search(course: Course, initial: FloatArray | None) -> SearchEnd:
+    """One start by the way that the settings name: growth, a depth ladder, or one minimisation of a fixed trial state."""
+    spec = course.problem.spec
+    if isinstance(spec.ansatz, Adaptive):
+        return grow(course, spec.ansatz)
+    if spec.ladder.on:
+        return climb(course)
+    descent = course.minimise(course.problem.program, course.first_parameters(initial))
+    return descent.end(descent.reason)
 
 
-def _record(seed: int, reason: str, objective: CountedObjective, columns: list[Progress]) -> StartRecord:
-    trace = Trace(
-        iteration=tuple(p.iteration for p in columns),
-        evaluations=tuple(p.evaluations for p in columns),
-        energy=tuple(p.energy for p in columns),
-        gradient_norm=tuple(p.gradient_norm for p in columns),
-        seconds=tuple(p.seconds for p in columns),
-    )
-    return StartRecord(
-        seed=seed,
-        energy=objective.best_energy,
-        stop_reason=reason,
-        evaluations=objective.evaluations,
-        iterations=objective.iterations,
-        gradient_norm=objective.best_gradient_norm,
-        seconds=objective.seconds,
-        trace=trace,
-    )
+def _from_every_start(
+    problem: Problem,
+    exact: ExactAnswer | None,
+    initial: FloatArray | None,
+    emit: Callable[[AnyEvent], None],
+    should_stop: Callable[[], bool],
+) -> Outcome:
+    outcome = Outcome()
+    for index in range(problem.spec.starts):
+        if index and should_stop():
+            break
+        course = Course(problem, exact, emit, should_stop, index)
+        end = search(course, initial if index == 0 else None)
+        outcome.ends.append(end)
+        outcome.starts.append(course.record(end))
+    return outcome
 
 
 def _started(problem: Problem, exact: ExactAnswer | None) -> Started:

@@ -10,7 +10,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, ValidationError
 
-from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.errors import StudyError
 from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDescent, Momentum, NelderMead
@@ -24,7 +24,7 @@ from thalweg.units import CHEMICAL_ACCURACY
 
 AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="key")]
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
-AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | NumberConserving | HardwareEfficient, Field(discriminator="key")]
+AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | Adaptive | NumberConserving | HardwareEfficient, Field(discriminator="key")]
 AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
 
 ClassicalMethod = Literal["mp2", "ccsd", "ccsd(t)"]
@@ -53,6 +53,13 @@ class Target(Options):
         return self.error if energy_unit == "hartree" else self.relative * abs(energy)
 
 
+class DepthLadder(Options):
+    """A layered trial state with 1, 2, 3 ... layers up to its own setting, each searched from the best of the last."""
+
+    on: bool = option(False, "Depth ladder", "Run 1, 2, 3 ... layers up to the depth of the trial state, each from the best of the last.")
+    least_gain: float = option(1e-6, "Least gain", "Stop climbing when one layer more lowers the energy by less.", unit="Eh", ge=0, advanced=True)
+
+
 class StudySpec(Options):
     """One study. The union members are told apart by their `key`."""
 
@@ -62,6 +69,7 @@ class StudySpec(Options):
     optimizer: AnyOptimizer = LBFGSB()
     stop: StopRules = StopRules()
     target: Target = Target()
+    ladder: DepthLadder = DepthLadder()
     classical: tuple[ClassicalMethod, ...] = option((), "Classical methods", "Reference figures to compute beside the exact one.")
     exact: bool = option(True, "Exact energy", "Diagonalise the Hamiltonian in its sector beside the minimisation.")
     starts: int = option(1, "Starts", "Number of independent starts; the lowest counts.", ge=1, le=1000)

@@ -80,7 +80,8 @@ def _wrong_symmetry(e: Evidence) -> str:
 
 
 def _is_stationary(e: Evidence) -> bool:
-    return e.parameters > 0 and e.start_gradient_norm is not None and e.start_gradient_norm < 1e-7 and e.lowered < 1e-9
+    nothing_grew = e.parameters == 0 and e.stop_reason == "pool-slope"
+    return (e.parameters > 0 or nothing_grew) and e.start_gradient_norm is not None and e.start_gradient_norm < 1e-7 and e.lowered < 1e-9
 
 
 def _target(e: Evidence) -> str:

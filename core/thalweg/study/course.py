@@ -1,0 +1,229 @@
+"""One start of a search: one minimisation or several after each other, counted and reported as one."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.circuit.program import Program
+from thalweg.errors import Stopped
+from thalweg.exact.answer import ExactAnswer
+from thalweg.optimize.objective import CountedObjective, Progress, StopRules
+from thalweg.simulate.engine import Engine
+from thalweg.study.events import AnyEvent, Iteration, StepTaken, watch_into
+from thalweg.study.figures import program_gates
+from thalweg.study.outcome import SearchEnd
+from thalweg.study.problem import Problem, make_engine, target_error
+from thalweg.study.result import GrowthStep, StartRecord, Trace
+
+#: Width of the normal displacement, in radians, of starts that would otherwise repeat themselves.
+DISPLACEMENT = 0.1
+#: Reasons that end everything, not only the minimisation in which they arose.
+FINAL = frozenset({"target", "evaluations", "seconds", "stopped-by-person", "not-finite"})
+
+
+@dataclass(frozen=True)
+class Descent:
+    """One minimisation. `energy` is infinite where it was stopped before its first evaluation."""
+
+    problem: Problem
+    engine: Engine
+    start: FloatArray
+    reason: str
+    energy: float
+    parameters: FloatArray
+    gradient_norm: float | None
+    start_energy: float
+    start_gradient_norm: float
+
+    @property
+    def is_final(self) -> bool:
+        """Whether nothing may follow."""
+        return self.reason in FINAL
+
+    def end(self, reason: str, growth: tuple[GrowthStep, ...] = ()) -> SearchEnd:
+        """The end of a course whose best point this is."""
+        return SearchEnd(
+            self.problem,
+            self.parameters,
+            self.energy,
+            self.gradient_norm,
+            reason,
+            self.start,
+            self.start_energy,
+            self.start_gradient_norm,
+            growth,
+        )
+
+
+class Course:
+    """The minimisations of one start. Iterations, evaluations and seconds run on from one to the next.
+
+    Attributes:
+        problem: the study, with the trial state that it began with.
+        index, seed, rng: of this start.
+        watch: asked by whatever takes long between the minimisations.
+        steps: the growth so far.
+    """
+
+    def __init__(
+        self,
+        problem: Problem,
+        exact: ExactAnswer | None,
+        emit: Callable[[AnyEvent], None],
+        should_stop: Callable[[], bool],
+        index: int,
+    ) -> None:
+        self.problem, self.index, self.watch = problem, index, watch_into(emit, should_stop)
+        self.seed = problem.spec.seed + index
+        self.rng = np.random.default_rng(self.seed)
+        self.steps: list[GrowthStep] = []
+        self.exact_energy = None if exact is None else exact.energy
+        self.target_energy = None if exact is None else exact.energy + target_error(problem, exact)
+        self._emit, self._should_stop = emit, should_stop
+        self._columns: list[Progress] = []
+        self._iterations = self._evaluations = 0
+        self._begun = time.perf_counter()
+
+    def engine(self, program: Program) -> Engine:
+        """The engine for this trial state; StudyError past the memory budget."""
+        return make_engine(replace(self.problem, program=program), self.watch)
+
+    def first_parameters(self, initial: FloatArray | None) -> FloatArray:
+        """`initial` where it fits, otherwise the start of the trial state, displaced where it would repeat that of an earlier start."""
+        if initial is not None and initial.shape == (self.problem.program.n_parameters,):
+            return initial.copy()
+        return self.parameters_of(self.problem.spec.ansatz, self.problem.program)
+
+    def parameters_of(self, ansatz: Any, program: Any) -> FloatArray:
+        """The start of this trial state (each takes the kind of program that it builds), displaced for later starts."""
+        start: FloatArray = ansatz.start_parameters(self.problem.ground, program, self.rng)
+        if self.index and ansatz.start in ("zero", "mp2"):
+            start = self.displaced(start)
+        return start
+
+    def displaced(self, start: FloatArray) -> FloatArray:
+        return start + self.rng.normal(0.0, DISPLACEMENT, start.size)
+
+    def minimise(self, program: Program, start: FloatArray, engine: Engine | None = None) -> Descent:
+        """Searches from `start` by the study's optimiser. Raises Stopped only when there is no point of the whole course to keep."""
+        problem = replace(self.problem, program=program)
+        engine = self.engine(program) if engine is None else engine
+        first: list[Progress] = []
+        objective = self._objective(engine, first)
+        reason = self._search(objective, start)
+        self._iterations += objective.iterations
+        self._evaluations += objective.evaluations
+        begin = first[0] if first else Progress(0, 0, np.inf, None, 0.0)
+        return Descent(
+            problem,
+            engine,
+            start,
+            reason,
+            float(objective.best_energy),
+            objective.best_parameters,
+            objective.best_gradient_norm,
+            begin.energy,
+            begin.gradient_norm or 0.0,
+        )
+
+    def take_step(self, descent: Descent, added: tuple[str, ...], largest_slope: float | None) -> None:
+        """Records and reports what the trial state has grown to."""
+        step = GrowthStep(
+            added=added,
+            parameters=descent.problem.program.n_parameters,
+            two_qubit_gates=program_gates(descent.problem).two_qubit,
+            energy=descent.energy,
+            error=None if self.exact_energy is None else descent.energy - self.exact_energy,
+            largest_slope=largest_slope,
+            iteration=self._iterations,
+            evaluations=self._evaluations,
+        )
+        self.steps.append(step)
+        self._emit(StepTaken(start=self.index, number=len(self.steps) - 1, step=step))
+
+    def reaches_target(self, energy: float) -> bool:
+        return self.target_energy is not None and energy <= self.target_energy
+
+    def record(self, end: SearchEnd) -> StartRecord:
+        """Everything that was reported, and the end."""
+        columns = self._columns
+        trace = Trace(
+            iteration=tuple(p.iteration for p in columns),
+            evaluations=tuple(p.evaluations for p in columns),
+            energy=tuple(p.energy for p in columns),
+            gradient_norm=tuple(p.gradient_norm for p in columns),
+            seconds=tuple(p.seconds for p in columns),
+        )
+        return StartRecord(
+            seed=self.seed,
+            energy=end.energy,
+            stop_reason=end.reason,
+            evaluations=self._evaluations,
+            iterations=self._iterations,
+            gradient_norm=end.gradient_norm,
+            seconds=self._seconds,
+            trace=trace,
+        )
+
+    @property
+    def _seconds(self) -> float:
+        return time.perf_counter() - self._begun
+
+    def _search(self, objective: CountedObjective, start: FloatArray) -> str:
+        try:
+            self._refuse_spent()
+            objective.begin(start)
+            if objective.n_parameters == 0:
+                return "no-parameters"
+            return self.problem.spec.optimizer.minimise(objective, start, self.rng)
+        except Stopped as stop:
+            if not np.isfinite(objective.best_energy) and not self._columns:
+                raise
+            return stop.reason
+
+    def _objective(self, engine: Engine, first: list[Progress]) -> CountedObjective:
+        iterations, evaluations, seconds = self._iterations, self._evaluations, self._seconds
+
+        def report(progress: Progress) -> None:
+            first.append(progress)
+            if progress.iteration == 0 and self._columns:
+                return  # a later minimisation begins where the last one ended
+            moved = replace(
+                progress,
+                iteration=progress.iteration + iterations,
+                evaluations=progress.evaluations + evaluations,
+                seconds=progress.seconds + seconds,
+            )
+            self._columns.append(moved)
+            self._emit(Iteration(start=self.index, **vars(moved)))
+
+        return CountedObjective(
+            engine.energy,
+            engine.energy_and_gradient,
+            engine.n_parameters,
+            offset=self.problem.prepared.reference_energy,
+            rules=self._rules(),
+            target_energy=self.target_energy,
+            report=report,
+            should_stop=self._should_stop,
+        )
+
+    def _rules(self) -> StopRules:
+        """The study's rules, less what the course has spent already."""
+        rules = self.problem.spec.stop
+        evaluations = max(1, rules.evaluations - self._evaluations) if rules.evaluations else 0
+        seconds = max(1e-9, rules.seconds - self._seconds) if rules.seconds else 0.0
+        return rules.model_copy(update={"evaluations": evaluations, "seconds": seconds})
+
+    def _refuse_spent(self) -> None:
+        rules = self.problem.spec.stop
+        if rules.evaluations and self._evaluations >= rules.evaluations:
+            raise Stopped("evaluations")
+        if rules.seconds and self._columns and self._seconds >= rules.seconds:
+            raise Stopped("seconds")

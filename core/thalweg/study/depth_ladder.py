@@ -1,0 +1,80 @@
+"""Depth ladder: a layered trial state with 1, 2, 3 ... layers, each searched from the best of the last."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.circuit.program import Program
+from thalweg.errors import Stopped, StudyError
+from thalweg.study.course import Course, Descent
+from thalweg.study.outcome import SearchEnd
+
+
+def climb(course: Course) -> SearchEnd:
+    """Climbs to the depth of the settings, until the target is reached or one layer more gains less than `ladder.least_gain`.
+
+    Before a step is given up, it is tried once more from a small random displacement, since the shallower state may be a
+    stationary point of the deeper circuit. StudyError where the trial state has no depth.
+    """
+    ansatz: Any = course.problem.spec.ansatz
+    name = depth_field(ansatz)
+    kept: list[Descent] = []
+    reason = ""
+    try:
+        for depth in range(1, getattr(ansatz, name) + 1):
+            course.watch.stage(f"Depth {depth}")
+            descent = _rung(course, ansatz.model_copy(update={name: depth}), kept[-1] if kept else None)
+            if kept and descent.energy > kept[-1].energy - course.problem.spec.ladder.least_gain:
+                reason = descent.reason if descent.is_final else "no-gain"
+                break
+            kept.append(descent)
+            course.take_step(descent, (f"depth {depth}",), None)
+            reason = descent.reason
+            if descent.is_final or course.reaches_target(descent.energy):
+                reason = reason if descent.is_final else "target"
+                break
+    except Stopped as stop:
+        if not kept:
+            raise
+        reason = stop.reason
+    return _end(course, kept, reason)
+
+
+def depth_field(ansatz: Any) -> str:
+    """The field that holds the number of layers; StudyError where there is none."""
+    name: str = getattr(type(ansatz), "depth_field", "")
+    if not name:
+        raise StudyError(
+            f"No depth ladder for {ansatz.title}", "this trial state has no layers", "Choose a layered one, or switch the ladder off", "ladder.on"
+        )
+    return name
+
+
+def _rung(course: Course, ansatz: Any, below: Descent | None) -> Descent:
+    program: Program = ansatz.build(course.problem.ground)
+    if below is None:
+        return course.minimise(program, course.parameters_of(ansatz, program))
+    start: FloatArray = ansatz.from_shallower(below.parameters, program.n_parameters)
+    descent = course.minimise(program, start)
+    if descent.is_final or descent.energy <= below.energy - course.problem.spec.ladder.least_gain:
+        return descent
+    again = course.minimise(program, course.displaced(start), descent.engine)
+    return min(again, descent, key=lambda d: d.energy)
+
+
+def _end(course: Course, kept: list[Descent], reason: str) -> SearchEnd:
+    first, best = kept[0], kept[-1]
+    return SearchEnd(
+        problem=best.problem,
+        parameters=best.parameters,
+        energy=best.energy,
+        gradient_norm=best.gradient_norm,
+        reason=reason,
+        start_parameters=np.array(first.start),
+        start_energy=first.start_energy,
+        start_gradient_norm=first.start_gradient_norm,
+        growth=tuple(course.steps),
+    )
