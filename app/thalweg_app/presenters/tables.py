@@ -108,7 +108,9 @@ def occupations_chart(result: StudyResult | None) -> Chart:
         return Chart("Natural occupations", "Natural orbital", (), "Natural occupations exist for molecules and fermion lattices.")
     values = np.array(result.natural_occupations)
     names = tuple(str(i + 1) for i in range(values.size))
-    panel = Panel("Occupation", bars=(Bars("Trial state", values, "variational"),), levels=(Level("Doubly occupied", 2.0, "reference"),), categories=names)
+    panel = Panel(
+        "Occupation", bars=(Bars("Trial state", values, "variational"),), levels=(Level("Doubly occupied", 2.0, "reference"),), categories=names
+    )
     return Chart("Natural occupations", "Natural orbital", (panel,), "", f"Natural occupations of {result.label}")
 
 

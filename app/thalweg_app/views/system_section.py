@@ -161,5 +161,7 @@ def _figures(figures: StudyFigures) -> list[Figure]:
     if figures.sector_dimension is not None:
         found.append(Figure("Sector", wording.count(figures.sector_dimension), "Number of determinants with these electrons of each spin."))
     found.append(Figure("Memory", wording.bytes_text(figures.memory_bytes), "Largest amount of memory that a run needs, estimated."))
-    found.append(Figure(f"{_short(figures.reference_name)} / {unit}", wording.minus(f"{figures.reference_energy:.6f}"), "Energy of the reference state."))
+    found.append(
+        Figure(f"{_short(figures.reference_name)} / {unit}", wording.minus(f"{figures.reference_energy:.6f}"), "Energy of the reference state.")
+    )
     return found

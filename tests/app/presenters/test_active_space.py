@@ -4,9 +4,7 @@ import studies
 from thalweg_app.presenters.active_space import listing, toggled
 
 
-@pytest.mark.parametrize(
-    ("numbers", "text"), [([2, 3, 5, 6, 7, 8], "2,3,5-8"), ([1], "1"), ([1, 2, 3], "1-3"), ([4, 2], "2,4"), ([1, 2], "1,2")]
-)
+@pytest.mark.parametrize(("numbers", "text"), [([2, 3, 5, 6, 7, 8], "2,3,5-8"), ([1], "1"), ([1, 2, 3], "1-3"), ([4, 2], "2,4"), ([1, 2], "1,2")])
 def test_orbital_lists_are_written_short(numbers, text):
     assert listing(numbers) == text
 

@@ -3,7 +3,9 @@ import pytest
 from thalweg_app.presenters import wording
 
 
-@pytest.mark.parametrize(("value", "text"), [(1.05e-5, "0.0105"), (1.6e-3, "1.6"), (2e-7, "2.00e−4"), (0.0, "0"), (-3.4e-3, "−3.4"), (0.123456, "123")])
+@pytest.mark.parametrize(
+    ("value", "text"), [(1.05e-5, "0.0105"), (1.6e-3, "1.6"), (2e-7, "2.00e−4"), (0.0, "0"), (-3.4e-3, "−3.4"), (0.123456, "123")]
+)
 def test_hartree_differences_are_shown_in_millihartree_with_three_digits(value, text):
     assert wording.difference(value) == text
 
@@ -32,6 +34,8 @@ def test_memory_has_a_fitting_unit(value, text):
     assert wording.bytes_text(value) == text
 
 
-@pytest.mark.parametrize(("seconds", "text"), [(0.2, "about 1 s left"), (42, "about 42 s left"), (300, "about 5 min left"), (9000, "about 2.5 h left")])
+@pytest.mark.parametrize(
+    ("seconds", "text"), [(0.2, "about 1 s left"), (42, "about 42 s left"), (300, "about 5 min left"), (9000, "about 2.5 h left")]
+)
 def test_time_left_is_rounded_like_a_guess(seconds, text):
     assert wording.time_left(seconds) == text

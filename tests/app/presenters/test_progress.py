@@ -1,0 +1,58 @@
+import pytest
+import studies
+
+from thalweg.optimize.objective import StopRules
+from thalweg.study.events import Iteration, Stage
+from thalweg_app.presenters.live import LiveRun
+from thalweg_app.presenters.progress import estimate
+
+
+def live(iterations, **changes):
+    run = LiveRun(studies.study(**changes))
+    run.take([Iteration(start=s, iteration=i, evaluations=i + 1, energy=-1.0, gradient_norm=n, seconds=t) for s, i, n, t in iterations])
+    return run
+
+
+def test_before_the_search_the_stage_is_shown():
+    run = LiveRun(studies.study())
+    run.take([Stage(text="Exact diagonalisation", fraction=0.25)])
+    assert (estimate(run).text, estimate(run).fraction) == ("Exact diagonalisation", 0.25)
+
+
+def test_a_gradient_that_falls_tenfold_a_second_foretells_the_end():
+    run = live([(0, i, 10.0**-i, float(i)) for i in range(5)])  # 1e-4 at 4 s; the limit 1e-6 is two decades away
+    now = estimate(run)
+    assert now.seconds_left == pytest.approx(2.0)
+    assert now.fraction == pytest.approx(4 / 6)
+
+
+def test_a_time_limit_bounds_the_guess():
+    run = live([(0, i, None, float(i)) for i in range(5)], stop=StopRules(seconds=10, evaluations=0))
+    assert estimate(run).seconds_left == pytest.approx(6.0)
+
+
+def test_an_evaluation_limit_bounds_the_guess():
+    run = live([(0, i, None, float(i)) for i in range(5)], stop=StopRules(evaluations=10))
+    assert estimate(run).seconds_left == pytest.approx(4.0)
+
+
+def test_starts_to_come_are_counted():
+    run = live([(0, 0, None, 0.0), (0, 1, None, 8.0), (1, 0, None, 0.0), (1, 1, None, 1.0)], starts=4, stop=StopRules(seconds=10, evaluations=0))
+    assert estimate(run).seconds_left == pytest.approx(9.0 + 2 * 8.0)
+    assert "start 2 of 4" in estimate(run).text
+
+
+def test_nothing_is_said_where_nothing_is_known():
+    run = live([(0, 0, 0.1, 0.0)], stop=StopRules(evaluations=0))
+    assert estimate(run).seconds_left is None
+
+
+def test_a_rising_gradient_gives_no_guess():
+    run = live([(0, i, 0.1 * (i + 1), float(i)) for i in range(6)], stop=StopRules(evaluations=0))
+    assert estimate(run).seconds_left is None
+
+
+def test_stopping_is_said():
+    run = live([(0, 0, 0.1, 0.0)])
+    run.is_stopping = True
+    assert "Stopping" in estimate(run).text
