@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from thalweg.encoding.encoded import EncodedSystem
 from thalweg.operators.fermion import FermionHamiltonian
 from thalweg.operators.pauli import PauliExpansion
+
+if TYPE_CHECKING:  # it needs compiled kernels, which the settings of trial states must not load
+    from thalweg.encoding.encoded import EncodedSystem
 
 
 @dataclass(frozen=True)

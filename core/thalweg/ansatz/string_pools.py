@@ -9,7 +9,6 @@ import numpy as np
 from thalweg.ansatz.excitations import generalised_doubles, generalised_singles
 from thalweg.ansatz.ground import Ground
 from thalweg.arrays import FloatArray, MaskArray
-from thalweg.circuit.compile import excitation_strings
 from thalweg.circuit.program import Excitation, Gate, GateProgram
 from thalweg.errors import StudyError
 from thalweg.operators.pauli import PauliExpansion, pauli_label
@@ -113,6 +112,8 @@ def _distinct(ground: Ground) -> list[Excitation]:
 
 def _strings(ground: Ground, excitations: list[Excitation]) -> tuple[MaskArray, MaskArray, FloatArray, np.ndarray]:
     """x, z, c, owner on the working register of the generators without parity strings."""
+    from thalweg.circuit.compile import excitation_strings
+
     assert ground.encoded is not None
     linear = ground.encoded.linear
     assert linear is not None
