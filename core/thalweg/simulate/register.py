@@ -34,6 +34,7 @@ class RegisterEngine:
         number, s_z, s_squared: observables on the same register; None where they have no meaning.
         label: text of a basis state given as a bit mask; the plain bits, highest qubit first, by default.
         budget_bytes: StudyError when the estimate is above it.
+        product: gives H as a product with vectors where engines share one; asked when first needed.
         watch: asked between parts of every long pass; raises Stopped.
     """
 
@@ -47,6 +48,7 @@ class RegisterEngine:
         s_squared: PauliExpansion | None = None,
         label: Callable[[int], str] | None = None,
         budget_bytes: int = DEFAULT_BUDGET,
+        product: Callable[[], ExpansionProduct] | None = None,
         watch: Watch = SILENT,
         tile_bytes_bits: int = TILE_BYTES_BITS,
     ) -> None:
@@ -54,6 +56,7 @@ class RegisterEngine:
             raise ValueError("program and Hamiltonian act on registers of different sizes")
         self.n_parameters, self.n_qubits, self.watch = program.n_parameters, program.n_qubits, watch
         self._hamiltonian, self._reference, self._observables = hamiltonian, program.reference, (number, s_z, s_squared)
+        self._shared_product = product
         self._label = label or (lambda bits: format(bits, f"0{self.n_qubits}b"))
         self._plan = plan(program, tile_bytes_bits)
         _refuse_above(self.memory_bytes(), budget_bytes, self.n_qubits)
@@ -119,11 +122,13 @@ class RegisterEngine:
     @cached_property
     def _product(self) -> ExpansionProduct:
         """H, or its real part where the amplitudes are real: the rest adds nothing to energy and gradient."""
-        return ExpansionProduct(self._hamiltonian if self._plan.unit else _real_part(self._hamiltonian))
+        if not self._plan.unit and _has_odd_terms(self._hamiltonian):
+            return ExpansionProduct(_real_part(self._hamiltonian))
+        return self._full_product
 
     @cached_property
     def _full_product(self) -> ExpansionProduct:
-        return ExpansionProduct(self._hamiltonian) if not self._plan.unit and _has_odd_terms(self._hamiltonian) else self._product
+        return ExpansionProduct(self._hamiltonian) if self._shared_product is None else self._shared_product()
 
 
 def _odd_terms(expansion: PauliExpansion) -> Any:

@@ -123,6 +123,7 @@ def _register_engine(problem: Problem, program: GateProgram, watch: Watch) -> En
         s_squared=encoded.s_squared,
         label=encoded.occupation_label,
         budget_bytes=problem.budget_bytes,
+        product=lambda: register_product(problem),
         watch=watch,
     )
 
