@@ -10,10 +10,9 @@ import os
 import signal
 import sys
 import threading
-import time
+from collections import deque
 from collections.abc import Callable, Iterator
 from concurrent.futures import ThreadPoolExecutor
-from queue import Empty, SimpleQueue
 from types import FrameType
 from typing import TypeVar
 
@@ -67,13 +66,13 @@ def attend(work: Work[T], display: Display) -> tuple[T | None, int]:
 
     The value is None when the stop came before there was anything to keep. Whatever else the work raises passes on.
     """
-    events: SimpleQueue[AnyEvent | None] = SimpleQueue()
-    interrupts = Interrupts()
+    events: deque[AnyEvent] = deque()
+    done, interrupts = threading.Event(), Interrupts()
     with interrupts.listening(), library_prints_to_stderr(), display, ThreadPoolExecutor(1) as pool:
-        future = pool.submit(work, events.put, interrupts.stop.is_set)
-        future.add_done_callback(lambda _: events.put(None))
+        future = pool.submit(work, events.append, interrupts.stop.is_set)
+        future.add_done_callback(lambda _: done.set())
         try:
-            _show_until_done(events, display, interrupts)
+            _show_until(done, events, display, interrupts)
         finally:
             interrupts.stop.set()  # when showing itself fails, the work ends too
     try:
@@ -82,20 +81,17 @@ def attend(work: Work[T], display: Display) -> tuple[T | None, int]:
         return None, interrupts.status
 
 
-def _show_until_done(events: SimpleQueue[AnyEvent | None], display: Display, interrupts: Interrupts) -> None:
-    told, next_tick = False, 0.0
-    while True:
-        with contextlib.suppress(Empty):
-            event = events.get(timeout=TICK)
-            if event is None:
-                return
-            display.take(event)
+def _show_until(done: threading.Event, events: deque[AnyEvent], display: Display, interrupts: Interrupts) -> None:
+    """Shows what has gathered, some times a second: waking this thread for every event would slow the work down."""
+    told = finished = False
+    while not finished:
+        finished = done.wait(TICK)
+        while events:
+            display.take(events.popleft())
         if interrupts.stop.is_set() and not told:
             display.say("Stopping with the best so far; Ctrl-C once more ends at once.")
             told = True
-        if time.monotonic() >= next_tick:
-            display.tick()
-            next_tick = time.monotonic() + TICK
+        display.tick()
 
 
 @contextlib.contextmanager
