@@ -50,7 +50,8 @@ def thalweg(ctx: click.Context) -> int:
     """Ground-state energy studies of small molecules and spin models with variational quantum circuits.
 
     Without a command the window opens. Exit status: 0 done, 1 past tolerance (check), 2 bad input, 3 a defect of the program,
-    130 stopped by Ctrl-C. The numerical libraries take at most four threads; OMP_NUM_THREADS and the like are obeyed.
+    130 stopped by Ctrl-C. Loops take at most four threads and dense algebra one; OMP_NUM_THREADS, OPENBLAS_NUM_THREADS and
+    the like are obeyed.
     """
     if ctx.invoked_subcommand is not None:
         return 0

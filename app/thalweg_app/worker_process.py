@@ -29,7 +29,7 @@ def protect_output() -> TextIO:
 
 def be_modest() -> None:
     """Low priority and few threads, so that the window stays smooth."""
-    cap_threads()
+    cap_threads(spared=1)
     if hasattr(os, "nice"):
         with contextlib.suppress(OSError):
             os.nice(NICENESS)

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import os
 
+import pytest
+
 from thalweg_app import threads, user_folders
 from thalweg_app.user_folders import log_defect, state_folder
 
@@ -54,11 +56,13 @@ def test_a_folder_that_cannot_be_made_is_replaced_by_a_temporary_one(tmp_path, m
     assert state_folder().is_dir()
 
 
-def test_threads_are_capped_and_a_setting_of_the_person_stays(monkeypatch):
-    for name in threads.VARIABLES:
+@pytest.mark.parametrize(("cores", "spared", "loops"), [(64, 0, "4"), (3, 0, "3"), (3, 1, "2"), (1, 1, "1")])
+def test_threads_are_capped_and_a_setting_of_the_person_stays(monkeypatch, cores, spared, loops):
+    for name in (*threads.LOOPS, *threads.ALGEBRA):
         monkeypatch.delenv(name, raising=False)
-    monkeypatch.setenv("OMP_NUM_THREADS", "7")
-    monkeypatch.setattr(threads, "usable_cores", lambda: 64)
-    threads.cap_threads()
-    assert os.environ["OMP_NUM_THREADS"] == "7"
-    assert os.environ["OPENBLAS_NUM_THREADS"] == str(threads.MOST)
+    monkeypatch.setenv("MKL_NUM_THREADS", "7")
+    monkeypatch.setattr(threads, "usable_cores", lambda: cores)
+    threads.cap_threads(spared)
+    assert os.environ["OMP_NUM_THREADS"] == loops
+    assert os.environ["OPENBLAS_NUM_THREADS"] == "1"
+    assert os.environ["MKL_NUM_THREADS"] == "7"
