@@ -18,6 +18,9 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
 
+#: Groups whose labels do not compose by xor -> the Abelian subgroup that is used instead.
+_ABELIAN = {"SO3": "D2h", "Dooh": "D2h", "Coov": "C2v"}
+
 
 def count_functions(symbols: Sequence[str], basis: str, cartesian: bool) -> int:
     """Number of basis functions, before anything is computed. Raises StudyError for an unknown basis or missing PySCF."""
@@ -52,18 +55,34 @@ def build_mole(
 
 
 def _built(mole: Any, point_group: bool) -> Any:
-    """Works out basis and point group; a geometry whose group PySCF cannot work out is left without one."""
+    """Works out basis and point group; a geometry whose group PySCF cannot work out is left without one.
+
+    The labels of atoms and linear molecules do not compose by xor, and PySCF gives both components of a degenerate shell one shape
+    there, which no unevenly filled shell has: such molecules are built in an Abelian group, at once where the geometry shows it.
+    """
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         try:
-            mole.build(dump_input=False, parse_arg=False, symmetry=point_group)
-            # The labels of atoms and linear molecules do not compose by xor, and PySCF gives both components of a degenerate
-            # shell one shape there, which no unevenly filled shell has.
-            if abelian := {"SO3": "D2h", "Dooh": "D2h", "Coov": "C2v"}.get(mole.groupname if point_group else ""):
-                mole.build(dump_input=False, parse_arg=False, symmetry=abelian)
+            foreseen = _abelian_of_line(mole) if point_group else ""
+            mole.build(dump_input=False, parse_arg=False, symmetry=foreseen or point_group)
+            if point_group and (abelian := _ABELIAN.get(mole.topgroup, "")) != foreseen:
+                mole.build(dump_input=False, parse_arg=False, symmetry=abelian or True)
         except pyscf_module("lib.exceptions").PointGroupSymmetryError:
             mole.build(dump_input=False, parse_arg=False, symmetry=False)
     return mole
+
+
+def _abelian_of_line(mole: Any) -> str:
+    """The Abelian group of an atom or a linear molecule, as far as its geometry tells; empty for any other."""
+    places = np.array([xyz for _, xyz in mole.atom])
+    steps = places - places[0]
+    axis = steps[int(np.argmax(np.linalg.norm(steps, axis=1)))]
+    if np.linalg.norm(np.cross(steps, axis)) > 1e-9:
+        return ""
+    along = np.argsort(places @ axis, kind="stable") if axis.any() else np.arange(1)
+    symbols, heights = [mole.atom[i][0] for i in along], (places @ axis)[along]
+    even = symbols == symbols[::-1] and np.allclose(np.diff(heights), np.diff(heights)[::-1], rtol=0, atol=1e-9)
+    return "D2h" if even else "C2v"
 
 
 def with_turned_axes(mole: Any) -> Any | None:

@@ -47,6 +47,8 @@ def solve(mole: Any, watch: Watch, seed: FloatArray | None = None) -> MeanField:
     with lib.with_omp_threads(1), warnings.catch_warnings():
         warnings.simplefilter("ignore")
         solver = _first_solution(mole, progress, seed)
+        if _is_stable_at_once(solver, progress):
+            return settled(solver, "stable", progress.iterations, tuple(progress.remarks))
         stability = _make_stable(solver, progress)
         solver = _checked_for_broken_symmetry(solver, progress)
         return settled(solver, stability, progress.iterations, tuple(progress.remarks))
@@ -107,6 +109,12 @@ def _lowest_rotation(solver: Any, with_symmetry: bool) -> FloatArray | None:
     except (ZeroDivisionError, RuntimeError, np.linalg.LinAlgError):
         return None  # raised when symmetry leaves no rotation to look at
     return None if stable else orbitals
+
+
+def _is_stable_at_once(solver: Any, progress: _Progress) -> bool:
+    """Whether one look at all rotations, those outside the point group included, finds no instability: then there is nothing to follow."""
+    progress.watch.check()
+    return bool(solver.mol.symmetry) and _has_rotations(solver) and _lowest_rotation(solver, with_symmetry=False) is None
 
 
 def _make_stable(solver: Any, progress: _Progress) -> str:
