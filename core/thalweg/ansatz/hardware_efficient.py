@@ -8,12 +8,10 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.ansatz.ground import Ground
+from thalweg.ansatz.starts import PLAIN_START_HELP, PlainStart, start_angles
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import Gate, GateProgram
 from thalweg.options import Options, option
-
-#: Width in radians of the `small-random` start.
-SMALL_WIDTH = 0.1
 
 _Row = tuple[Gate, int, int, int, float]  # kind, x, z, parameter, factor
 
@@ -23,14 +21,13 @@ class HardwareEfficient(Options):
 
     title: ClassVar[str] = "Hardware-efficient layers"
     about: ClassVar[str] = "Short circuits; need not keep particle number or spin, and gradients vanish for deep ones (McClean et al. 2018)."
+    depth_field: ClassVar[str] = "depth"
 
     key: Literal["hardware-efficient"] = "hardware-efficient"
     depth: int = option(3, "Depth", "Number of entangling layers.", ge=1, le=200)
     rotations: Literal["ry", "ry-rz"] = option("ry", "Rotations", "Rotation gates on every qubit in each layer.")
     entangler: Literal["line", "ring", "all-pairs"] = option("line", "Entangler", "Which pairs of qubits the controlled-Z gates of a layer join.")
-    start: Literal["zero", "small-random", "uniform-random"] = option(
-        "small-random", "Start", "Zero angles, normal angles of width 0.1, or uniform angles over the whole circle."
-    )
+    start: PlainStart = option("small-random", "Start", PLAIN_START_HELP)
 
     def build(self, ground: Ground) -> GateProgram:
         """Rotations on every qubit before the first and after each entangling layer, each with its own parameter.
@@ -61,11 +58,11 @@ class HardwareEfficient(Options):
 
     def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
         """Angles in radians, shape (K,)."""
-        if self.start == "zero":
-            return np.zeros(program.n_parameters)
-        if self.start == "small-random":
-            return rng.normal(0.0, SMALL_WIDTH, program.n_parameters)
-        return rng.uniform(-np.pi, np.pi, program.n_parameters)
+        return start_angles(self.start, program.n_parameters, rng)
+
+    def from_shallower(self, parameters: FloatArray, n_parameters: int) -> FloatArray:
+        """Parameters that give the state of fewer layers up to its sign: the new ones act first, where CZ leaves the reference alone."""
+        return np.concatenate([np.zeros(n_parameters - parameters.size), parameters])
 
     def _rotation_layer(self, n: int, layer: int, rows: list[_Row], labels: list[str]) -> None:
         where = f"after entangling layer {layer}" if layer else "before the first entangling layer"

@@ -27,6 +27,9 @@ class KUpCCGSD(SpinOrbitalProduct):
     k: int = option(2, "Layers k", "Number of layers, each with amplitudes of its own.", ge=1, le=50)
     order: SinglesOrder = option("doubles-first", "Factor order", ORDER_HELP)
     spin_tied: bool = option(True, "Spin-tied amplitudes", "Give mirror-image alpha and beta excitations one shared amplitude.")
+    point_group: bool = option(
+        False, "Point group", "Keep only totally symmetric excitations: fewer, but those of other irreps are needed to build most doubles."
+    )
     start: Start = option("small-random", "Start", START_HELP)
 
     def layers(self) -> int:

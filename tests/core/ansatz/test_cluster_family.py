@@ -117,8 +117,8 @@ def test_counts_follow_from_the_definitions(m):
     pairs = m * (m - 1) // 2
     same, mixed = pairs * (pairs - 1) // 2, m**2 * (m**2 - 1) // 2
     assert UCCGSD(point_group=False).build(base).n_parameters == 2 * pairs + 2 * same + mixed
-    assert KUpCCGSD(k=3, point_group=False).build(base).n_parameters == 3 * 2 * pairs
-    assert KUpCCGSD(k=3, spin_tied=False, point_group=False).build(base).n_parameters == 3 * 3 * pairs
+    assert KUpCCGSD(k=3).build(base).n_parameters == 3 * 2 * pairs
+    assert KUpCCGSD(k=3, spin_tied=False).build(base).n_parameters == 3 * 3 * pairs
     assert PUCCD().build(base).n_parameters == m - 2
     assert NumberConserving(depth=4).build(base).n_parameters == 4 * 2 * (m - 1)
 
