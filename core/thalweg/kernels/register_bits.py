@@ -20,7 +20,7 @@ def popcount(typingctx: Any, mask: Any) -> Any:
     return types.int64(mask), codegen
 
 
-@njit(cache=True, nogil=True, inline="always")
-def sign(mask: int) -> float:
-    """(-1)^(number of set bits of a uint64 mask)."""
+@njit(cache=True, nogil=True)
+def sign(mask):  # type: ignore[no-untyped-def]
+    """(-1)^(number of set bits of a 64-bit mask)."""
     return 1.0 - 2.0 * (popcount(mask) & 1)

@@ -9,7 +9,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray, MaskArray
 from thalweg.kernels import register_product as kernels
-from thalweg.kernels.register_walsh import walsh_hadamard
+from thalweg.kernels.register_rows import walsh_hadamard
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.watch import SILENT, Watch
 
@@ -45,7 +45,7 @@ class ExpansionProduct:
         self.n_qubits = expansion.n_qubits
         self._bits = max(LEAST_BITS, min(block_bits, expansion.n_qubits))
         self._tables = _tables(expansion, self._bits, row_bytes)
-        self.is_real = not bool(self._tables[1].any())
+        self.is_real = not bool(self._tables[0][:, 1].any())
         self._matrix = self._stored_matrix(matrix_bytes)
         tables = self._tables if self._matrix is None else self._tables + self._matrix
         self.memory_bytes = sum(int(table.nbytes) for table in tables)
@@ -75,7 +75,7 @@ class ExpansionProduct:
 
     def _walk_blocks(self, part: Any, watch: Watch) -> float:
         blocks = 1 << (self.n_qubits - self._bits)
-        step = max(1, STEP // max(1, self._tables[0].size << self._bits))
+        step = max(1, STEP // max(1, len(self._tables[0]) << self._bits))
         return _sum_parts(part, blocks, step, watch)
 
     def _walk_rows(self, part: Any, watch: Watch) -> float:
@@ -85,7 +85,7 @@ class ExpansionProduct:
 
     def _stored_matrix(self, matrix_bytes: int) -> tuple[Any, ...] | None:
         """(row starts, columns, values) where the matrix is sparse and small enough, or the register too small for blocks; else None."""
-        entries, size, small = self._tables[0].size, 1 << self.n_qubits, self.n_qubits < LEAST_BITS
+        entries, size, small = len(self._tables[0]), 1 << self.n_qubits, self.n_qubits < LEAST_BITS
         if not small and entries * size > matrix_bytes:
             return None
         blocks = max(1, size >> self._bits)
@@ -96,7 +96,7 @@ class ExpansionProduct:
             return None
         pointers = np.concatenate([[0], np.cumsum(counts)])
         columns, values = np.empty(stored, dtype=np.uint32), np.zeros((stored, 2))
-        kernels.fill_stored(0, blocks, self._bits, pointers, columns, values, self._tables)
+        kernels.fill_stored(0, blocks, self._bits, pointers[:-1].copy(), columns, values, self._tables)
         return pointers, columns, values[:, 0].copy() if self.is_real else values.view(np.complex128)[:, 0].copy()
 
 
@@ -126,19 +126,18 @@ def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, 
     order = np.lexsort((z & low, z & ~low, odd, x))
     x, z, odd, values = x[order], z[order], odd[order], values[order]
     begins = _changes(x, odd)
-    entry_x, entry_odd = x[begins], odd[begins]
-    firsts, kinds = [0], []
+    entries: list[tuple[int, ...]] = []
     group_z, group_row, group_value = [], [], []
     rows: list[FloatArray] = [np.ones(1 << bits)]
+    n_groups = 0
     for first, last in pairwise(np.append(begins, x.size).tolist()):
         parts = np.append(first + _changes(z[first:last] & ~low), last)
         count = parts.size - 1
         if not np.any(z[first:last] & low):
-            kinds.append(kernels.CONSTANT)
+            kind = kernels.CONSTANT
         else:
-            fits = count <= MAX_ROWS and (len(rows) + count) * 8 << bits <= row_bytes
-            kinds.append(kernels.ROWS if fits else kernels.TERMS)
-        if kinds[-1] == kernels.ROWS:
+            kind = kernels.ROWS if count <= MAX_ROWS and (len(rows) + count) * 8 << bits <= row_bytes else kernels.TERMS
+        if kind == kernels.ROWS:
             group_z.append(z[parts[:-1]] & ~low)
             group_row.append(np.arange(len(rows), len(rows) + count))
             group_value.append(np.zeros(count))
@@ -147,18 +146,11 @@ def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, 
             group_z.append(z[first:last])
             group_row.append(np.zeros(last - first, dtype=np.int64))
             group_value.append(values[first:last])
-        firsts.append(firsts[-1] + group_z[-1].size)
-    return (
-        entry_x,
-        entry_odd,
-        np.array(firsts, dtype=np.int64),
-        np.array(kinds, dtype=np.int64),
-        _joined(group_z, np.uint64),
-        _joined(group_row, np.int64),
-        _joined(group_value, np.float64),
-        np.array(rows),
-        np.array([1e-15 * np.abs(values).sum()]),
-    )
+        entries.append((int(x[first]), int(odd[first]), n_groups, n_groups + group_z[-1].size, kind))
+        n_groups += group_z[-1].size
+    groups = np.stack([_joined(group_z, np.int64), _joined(group_row, np.int64)], axis=1)
+    least = np.array([1e-15 * np.abs(values).sum()])
+    return np.array(entries, dtype=np.int64).reshape(-1, 5), groups, _joined(group_value, np.float64), np.array(rows), least
 
 
 def _changes(*keys: Any) -> Any:

@@ -7,10 +7,11 @@ from typing import Any
 
 import numpy as np
 
+from thalweg.arrays import IntArray
 from thalweg.circuit.program import GateProgram
 from thalweg.kernels import register as kernels
 from thalweg.kernels.register_phases import KEPT_KEYS
-from thalweg.simulate.register_plan import Rotations, Step, fused_steps, is_real, needs_whole_register, passes
+from thalweg.simulate.register_plan import NOTHING, Rotations, Step, fused_steps, is_real, needs_whole_register, passes
 
 COLUMNS = 7
 #: The lowest qubits are local in every tile, so that memory is read in whole cache lines.
@@ -26,7 +27,7 @@ class Pass:
     Attributes:
         tiles: number of tiles.
         local_bits: t.
-        fixed, row_offsets, chunk, operations, groups: see `kernels.register` and `kernels.register_phases`.
+        fixed, offsets, chunk, operations, groups: see `kernels.register` and `kernels.register_phases`.
         table_rows: rows of 2^t complex numbers that the diagonal groups need.
         cost: operations on the whole register, to judge how long a part of the pass takes.
         streamed: a single rotation that is done along the whole register instead of by tiles.
@@ -35,7 +36,7 @@ class Pass:
     tiles: int
     local_bits: int
     fixed: Any
-    row_offsets: Any
+    offsets: Any
     chunk: int
     operations: Any
     groups: tuple[Any, ...]
@@ -88,7 +89,7 @@ def _pass(steps: list[Step], local: list[int], n: int, unit: int, streamed: bool
     for step in steps:
         operations.add(step)
     operations.flush()
-    rows = np.array(operations.rows, dtype=np.int64).reshape(len(operations.rows), COLUMNS)
+    rows = _matrix(operations.rows, COLUMNS)
     groups, table_rows = _phase_groups([step for step in steps if step.kind == "phases"], local, fixed)
     return Pass(1 << len(fixed), len(local), np.array(fixed, np.int64), offsets, 1 << low + unit, rows, groups, table_rows, 2 + len(rows), streamed)
 
@@ -119,10 +120,10 @@ class _Operations:
         lanes = {bit: gate for bit, gate in by_bit.items() if bit < 3}
         wide = [(gate, bit) for bit, gate in by_bit.items() if bit >= 3]
         if lanes:
-            self._row(kernels.MIX_LANES, *(lanes.get(bit, kernels.NOTHING) for bit in range(3)))
+            self._row(kernels.MIX_LANES, *(lanes.get(bit, NOTHING) for bit in range(3)), int(0 not in lanes))
         if len(wide) % 3 == 2:
             spare = [bit for bit in range(3, len(self._local) + self._unit) if bit not in by_bit]
-            wide = sorted([*wide, *((kernels.NOTHING, bit) for bit in spare[:1])], key=lambda entry: entry[1])  # the kernel takes ascending bits
+            wide = sorted([*wide, *((NOTHING, bit) for bit in spare[:1])], key=lambda entry: entry[1])  # the kernel takes ascending bits
         while len(wide) >= 3:
             (a, p), (b, q), (c, r) = wide[:3]
             self._row(kernels.MIX_THREE, a, b, c, p, q, r)
@@ -157,26 +158,23 @@ def compressed(mask: int, local: list[int]) -> int:
 
 def _phase_groups(groups: list[Step], local: list[int], fixed: list[int]) -> tuple[tuple[Any, ...], int]:
     """The tuple that `kernels.register_phases` describes, and the table rows needed."""
-    outside = sum(1 << q for q in fixed)
-    terms, pairs, keys, tables = [], [], [], [0]
+    outside, lasting = sum(1 << q for q in fixed), int(bool(fixed))
+    terms: list[tuple[int, int, int]] = []
+    pairs: list[tuple[int, int]] = []
+    keys: list[int] = []
+    index, rows = [], 0
     for step in groups:
-        own = sorted((compressed(z, local), z & outside, gate) for z, gate in step.terms)
-        double = sorted((compressed(pair, local), pair & outside) for pair in step.pairs)
-        joining = sorted({f for inner, f, *_ in [*own, *double] if inner and f})
-        terms.append(own)
-        pairs.append(double)
-        keys.append([(key,) for key in joining])
-        kept = 0 if not joining else 1 << len(joining) if len(joining) <= KEPT_KEYS else 1
-        tables.append(tables[-1] + 1 + kept)
-    lasting = int(bool(fixed))
-    if not lasting:  # every table serves once: all groups share the first row
-        tables = [0] * len(tables)
-    rows = tables[-1] if lasting else int(bool(groups))
-    return (*_columns(terms, 3), *_columns(pairs, 2), *_columns(keys, 1), np.array(tables, np.int64), np.array([lasting], np.int64)), rows
+        starts = len(terms), len(pairs), len(keys)
+        terms += sorted((compressed(z, local), z & outside, gate) for z, gate in step.terms)
+        pairs += sorted((compressed(pair, local), pair & outside) for pair in step.pairs)
+        joining = {row[1] for row in (*terms[starts[0] :], *pairs[starts[1] :]) if row[0] and row[1]}
+        keys += sorted(joining)
+        index.append((starts[0], len(terms), starts[1], len(pairs), starts[2], len(keys), rows, lasting))
+        if lasting:  # otherwise every table serves once, and all groups share the first row
+            rows += 1 + (0 if not joining else 1 << len(joining) if len(joining) <= KEPT_KEYS else 1)
+    columns = (_matrix(index, 8), _matrix(terms, 3), _matrix(pairs, 2), np.array(keys, dtype=np.int64))
+    return columns, rows if lasting else int(bool(groups))
 
 
-def _columns(lists: list[Any], width: int) -> tuple[Any, ...]:
-    """(starts of each list, column 0, column 1, ...) as int64 arrays."""
-    starts = np.cumsum([0, *(len(part) for part in lists)]).astype(np.int64)
-    rows = np.array([row for part in lists for row in part], dtype=np.int64).reshape(-1, width)
-    return (starts, *(np.ascontiguousarray(rows[:, k]) for k in range(width)))
+def _matrix(rows: list[Any], columns: int) -> IntArray:
+    return np.array(rows, dtype=np.int64).reshape(-1, columns)

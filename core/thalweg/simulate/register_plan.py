@@ -12,8 +12,9 @@ import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Gate, GateProgram
-from thalweg.kernels.register import HADAMARD
 
+#: Gates that are no rotations, and the first rotation: rows of `Rotations.entries`.
+NOTHING, HADAMARD, FIRST = range(3)
 #: How far back a diagonal gate looks for a group to join.
 WINDOW = 256
 
@@ -25,7 +26,7 @@ class Step:
     Attributes:
         kind: `mix` (Y rotation or Hadamard on one qubit), `turn` (any other rotation with flips), `flip` (CNOT), `phases`.
         flips, support: qubits whose bits change, and all qubits acted on.
-        gate: number of the rotation in the plan, or HADAMARD.
+        gate: row of the rotation in `Rotations.entries`, or HADAMARD.
         z: z mask of a rotation; the target of a CNOT is in `flips`.
         terms: of `phases`: (z mask, gate number); fixed: z mask -> angle of rotations without parameter; pairs: controlled-Z masks.
     """
@@ -46,7 +47,7 @@ class Step:
 
 @dataclass(frozen=True)
 class Rotations:
-    """Where the angle of rotation g comes from: factor[g] * theta[parameter[g]], or factor[g] itself for parameter -1."""
+    """Where the angle of each rotation comes from: factor * theta[parameter], or factor itself for parameter -1; shapes (R,)."""
 
     parameter: IntArray
     factor: FloatArray
@@ -55,6 +56,16 @@ class Rotations:
         if not np.any(self.parameter >= 0):
             return self.factor
         return np.where(self.parameter < 0, 1.0, np.asarray(parameters, dtype=np.float64)[self.parameter]) * self.factor
+
+    def entries(self, angles: FloatArray) -> FloatArray:
+        """2 x 2 matrices, row by row, for the kernels: NOTHING, HADAMARD, then (cos, -sin, sin, cos) of half of each angle."""
+        rows = np.empty((FIRST + angles.size, 4))
+        rows[FIRST:, 0] = rows[FIRST:, 3] = np.cos(0.5 * angles)
+        rows[FIRST:, 2] = np.sin(0.5 * angles)
+        rows[FIRST:, 1] = -rows[FIRST:, 2]
+        rows[NOTHING] = 1.0, 0.0, 0.0, 1.0
+        rows[HADAMARD] = np.array([1.0, 1.0, 1.0, -1.0]) * 0.5**0.5
+        return rows
 
     def gradient(self, by_rotation: FloatArray, n_parameters: int) -> FloatArray:
         """Sums the derivatives by angle into derivatives by parameter, shape (K,)."""
@@ -132,7 +143,7 @@ class _Fusion:
     def _gate(self, parameter: int, factor: float) -> int:
         self._parameter.append(parameter)
         self._factor.append(factor)
-        return len(self._parameter) - 1
+        return FIRST + len(self._parameter) - 1
 
 
 def _passes(single: Step, step: Step) -> bool:

@@ -9,7 +9,9 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.kernels import register as kernels
+from thalweg.kernels.register_phases import empty_row
 from thalweg.simulate.register_passes import Pass, Plan
+from thalweg.simulate.register_plan import FIRST
 from thalweg.watch import Watch
 
 #: Operations times amplitudes between two looks at the watch: about 20 ms.
@@ -23,9 +25,10 @@ class PlanRunner:
         self._plan = plan
         tile = 1 << plan.largest_tile
         self._scratch = [aligned(tile << plan.unit) for _ in range(2)]
-        self._tables = aligned(plan.table_rows * 2 * tile).reshape(plan.table_rows, 2 * tile)
+        self._tables = aligned(plan.table_rows * 2 * tile)
         self._made = np.zeros(plan.table_rows, dtype=bool)
         self._moments = aligned(tile)
+        self._row = empty_row()
 
     @staticmethod
     def bytes_needed(plan: Plan) -> int:
@@ -34,35 +37,33 @@ class PlanRunner:
 
     def forward(self, state: FloatArray, angles: FloatArray, watch: Watch) -> None:
         """Applies the gates in place."""
+        entries = self._plan.rotations.entries(angles)
         for part in self._plan.passes:
-            self._run(part, part.operations, (state,), angles, np.empty(angles.size), watch)
+            self._run(part, part.operations, (state, state), 0, entries, np.empty(len(entries)), watch)
 
     def backward(self, state: FloatArray, adjoint: FloatArray, angles: FloatArray, watch: Watch) -> FloatArray:
         """Undoes the gates on both; returns dE/d(angle) of each rotation for adjoint = H state, shape of the angles."""
-        gradient = np.zeros(angles.size)
+        entries = self._plan.rotations.entries(-angles)
+        gradient = np.zeros(len(entries))
         for part in reversed(self._plan.passes):
-            self._run(part, np.ascontiguousarray(part.operations[::-1]), (state, adjoint), -angles, gradient, watch)
-        return gradient
+            self._run(part, np.ascontiguousarray(part.operations[::-1]), (state, adjoint), 1, entries, gradient, watch)
+        return gradient[FIRST:]
 
-    def _run(self, part: Pass, operations: Any, states: tuple[FloatArray, ...], angles: FloatArray, gradient: FloatArray, watch: Watch) -> None:
-        cosine, sine = np.cos(0.5 * angles), np.sin(0.5 * angles)
+    def _run(self, part: Pass, operations: Any, states: Any, both: int, entries: FloatArray, gradient: FloatArray, watch: Watch) -> None:
         if part.streamed:
-            self._stream(operations[0], states, cosine, sine, gradient, watch)
+            for first, last in _parts(states[0].size >> 4, 16):
+                watch.check()
+                kernels.turn_parts(states, both, first, last, operations[0], entries, gradient)
             return
-        size = 1 << part.local_bits
-        scratch = states if part.tiles == 1 else tuple(buffer[: size << self._plan.unit] for buffer in self._scratch[: len(states)])
-        work = (self._tables[:, : 2 * size], self._made, self._moments[:size])
+        size, unit = 1 << part.local_bits, self._plan.unit
+        scratch = states if part.tiles == 1 else tuple(buffer[: size << unit] for buffer in self._scratch)
+        tables = self._tables[: part.table_rows * 2 * size].reshape(part.table_rows, 2 * size)
+        work = (tables, self._made, self._moments[:size], self._row)
         self._made[:] = False
-        layout = (self._plan.unit, part.fixed, part.row_offsets, part.chunk)
+        layout = (unit, part.fixed, part.offsets, part.chunk)
         for first, last in _parts(part.tiles, part.cost * size):
             watch.check()
-            kernels.run_tiles(states, scratch, first, last, *layout, operations, part.groups, work, cosine, sine, gradient)
-
-    def _stream(self, row: Any, states: tuple[FloatArray, ...], cosine: Any, sine: Any, gradient: FloatArray, watch: Watch) -> None:
-        _, gate, x, z, _, kappa, _ = row.tolist()
-        for first, last in _parts(states[0].size >> 4, 16):
-            watch.check()
-            gradient[gate] += kappa * kernels.turn_range(states, first, last, x, z, cosine[gate], kappa * sine[gate])
+            kernels.run_tiles(states, scratch, both, first, last, *layout, operations, part.groups, work, entries, gradient)
 
 
 def aligned(size: int) -> FloatArray:
