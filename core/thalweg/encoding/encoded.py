@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
 from thalweg.arrays import ComplexArray, FloatArray, MaskArray
 from thalweg.encoding.linear import (
+    ONE,
     LinearEncoding,
     linear_encoding,
     map_hamiltonian,
@@ -102,26 +104,58 @@ def encode_fermions(hamiltonian: FermionHamiltonian, settings: EncodingSettings)
     """
     linear = linear_encoding(settings, 2 * hamiltonian.n_orbitals)
     full = map_hamiltonian(hamiltonian, linear, settings.cut)
-    alpha, beta = (np.array([mask], np.uint64) for mask in hamiltonian.reference)
-    occupied = interleave(alpha) | interleave(beta) << np.uint64(1)
-    reference = int(linear.encode(occupied)[0])
-    tapering, symmetries = _nothing_removed(full.n_qubits)
-    if settings.taper:
-        tapering, symmetries = _fermion_symmetries(hamiltonian, linear, full, reference)
-    working = tapering.expansion(full)
+    flips = full.x[np.diff(full.x, prepend=full.x[:1] ^ ONE) != 0]  # terms are sorted by x
+    irreps = tuple(hamiltonian.orbital_irreps.tolist())
+    frame = _frame(linear, settings.taper, hamiltonian.reference, irreps, hamiltonian.irrep_names, flips.tobytes())
+    working = frame.tapering.expansion(full)
     assert working is not None
     return EncodedSystem(
         full,
         working,
-        symmetries,
-        tapering,
-        int(tapering.strip(np.array([reference], np.uint64))[0]),
-        number=tapering.expansion(number_operator(linear)),
-        s_z=tapering.expansion(s_z_operator(linear)),
-        s_squared=tapering.expansion(s_squared_operator(linear)),
+        frame.symmetries,
+        frame.tapering,
+        frame.reference_bits,
+        number=frame.number,
+        s_z=frame.s_z,
+        s_squared=frame.s_squared,
         degenerate_note=DEGENERATE_NOTE if hamiltonian.orbitals_are_degenerate() else "",
         linear=linear,
         sector=hamiltonian.sector,
+    )
+
+
+@dataclass(frozen=True)
+class _Frame:
+    """What an encoding of electrons owes to the structure of the Hamiltonian alone, not to its coefficients."""
+
+    tapering: Tapering
+    symmetries: tuple[Symmetry, ...]
+    reference_bits: int
+    number: PauliExpansion | None
+    s_z: PauliExpansion | None
+    s_squared: PauliExpansion | None
+
+
+@lru_cache(maxsize=8)  # the points of a scan share their structure
+def _frame(
+    linear: LinearEncoding, taper: bool, reference: tuple[int, int], irreps: tuple[int, ...], irrep_names: tuple[str, ...], flips: bytes
+) -> _Frame:
+    """`flips`: the x masks of all terms, each once."""
+    alpha, beta = (np.array([mask], np.uint64) for mask in reference)
+    occupied = interleave(alpha) | interleave(beta) << ONE
+    full_bits = int(linear.encode(occupied)[0])
+    tapering, symmetries = _nothing_removed(linear.n_qubits)
+    if taper:
+        x = np.frombuffer(flips, np.uint64).copy()
+        space = commuting_z_masks(PauliExpansion(linear.n_qubits, x, np.zeros_like(x), np.ones(x.size)))
+        tapering, symmetries = _fermion_symmetries(linear, space, irreps, irrep_names, full_bits)
+    return _Frame(
+        tapering,
+        symmetries,
+        int(tapering.strip(np.array([full_bits], np.uint64))[0]),
+        number=tapering.expansion(number_operator(linear)),
+        s_z=tapering.expansion(s_z_operator(linear)),
+        s_squared=tapering.expansion(s_squared_operator(linear)),
     )
 
 
@@ -156,21 +190,19 @@ def _nothing_removed(n_qubits: int) -> tuple[Tapering, tuple[Symmetry, ...]]:
 
 
 def _fermion_symmetries(
-    hamiltonian: FermionHamiltonian, linear: LinearEncoding, full: PauliExpansion, reference: int
+    linear: LinearEncoding, space: list[int], irreps: tuple[int, ...], irrep_names: tuple[str, ...], reference: int
 ) -> tuple[Tapering, tuple[Symmetry, ...]]:
     """Parities that have a meaning come first: alpha electrons, beta electrons, electrons in orbitals of some irreps, then the rest."""
-    m = hamiltonian.n_orbitals
-    space = commuting_z_masks(full)
-    every = (1 << m) - 1
+    every = (1 << len(irreps)) - 1
     named = [(_spin_orbitals(every, 0), "parity of the alpha electrons"), (_spin_orbitals(0, every), "parity of the beta electrons")]
-    for bit in range(int(hamiltonian.orbital_irreps.max(initial=0)).bit_length()):
-        odd = sum(1 << p for p, irrep in enumerate(hamiltonian.orbital_irreps) if int(irrep) >> bit & 1)
+    for bit in range(max(irreps, default=0).bit_length()):
+        odd = sum(1 << p for p, irrep in enumerate(irreps) if irrep >> bit & 1)
         if odd:
-            named.append((_spin_orbitals(odd, odd), f"parity of the electrons in {_irrep_text(hamiltonian, bit)}"))
+            named.append((_spin_orbitals(odd, odd), f"parity of the electrons in {_irrep_text(irreps, irrep_names, bit)}"))
     named += [(modes, _modes_text(modes)) for modes in lightest([linear.modes_of(mask) for mask in space])]
     text = {linear.z_mask(modes): label for modes, label in reversed(named)}
     masks = independent([linear.z_mask(modes) for modes, _ in named], space)
-    tapering = taper_by(full.n_qubits, masks, reference)
+    tapering = taper_by(linear.n_qubits, masks, reference)
     return tapering, _named([(mask, text[mask]) for mask in masks], tapering, reference)
 
 
@@ -191,13 +223,12 @@ def _spin_orbitals(alpha: int, beta: int) -> int:
     return int(masks[0] | masks[1] << np.uint64(1))
 
 
-def _irrep_text(hamiltonian: FermionHamiltonian, bit: int) -> str:
+def _irrep_text(irreps: tuple[int, ...], names: tuple[str, ...], bit: int) -> str:
     """`B1 and B2 orbitals`, or orbital numbers where the irreps have no names."""
-    labels = sorted({int(irrep) for irrep in hamiltonian.orbital_irreps if int(irrep) >> bit & 1})
-    names = hamiltonian.irrep_names
+    labels = sorted({irrep for irrep in irreps if irrep >> bit & 1})
     if names and labels[-1] < len(names):
         return " and ".join(names[label] for label in labels) + " orbitals"
-    return "orbitals " + _counted(sum(1 << p for p, irrep in enumerate(hamiltonian.orbital_irreps) if int(irrep) >> bit & 1))
+    return "orbitals " + _counted(sum(1 << p for p, irrep in enumerate(irreps) if irrep >> bit & 1))
 
 
 def _counted(mask: int) -> str:

@@ -17,7 +17,7 @@ from thalweg.operators.pauli import MAX_QUBITS, PauliExpansion, collect_terms
 ONE = np.uint64(1)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)  # one object for each encoding and size, so that identity is equality
 class LinearEncoding:
     """b = A n over GF(2) on n qubits, as masks (see `thalweg.kernels.pauli` for the formulas).
 

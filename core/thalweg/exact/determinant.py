@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import heapq
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -114,7 +116,7 @@ class _Search:
         self._look(wanted)
         while True:
             self._converge(wanted, count)
-            groups, ceiling = self._groups()
+            groups, ceiling = self._groups(count + 1)
             complete = [g for g in groups if g[0][0] < ceiling - SAME_LEVEL][:count]
             exhausted = np.isinf(ceiling)
             if exhausted or (len(complete) == count and len(groups) > count):
@@ -146,7 +148,7 @@ class _Search:
     def _converge(self, wanted: int, count: int) -> None:
         """Converges `wanted` states in each irrep, in ascending order, until the rest lies above the levels wanted."""
         for found in sorted(self._found, key=lambda f: float(f.pairs.values[0])):
-            groups, _ = self._groups()
+            groups, _ = self._groups(count + 1)
             bound = float(found.pairs.values[0] - found.pairs.residuals[0])
             if len(groups) > count and bound > groups[count][0][0] + SAME_LEVEL:
                 continue
@@ -159,23 +161,28 @@ class _Search:
             found.pairs = lowest_pairs(found.block.apply, found.block.diagonal, start, states, CONVERGED, self._watch)
             found.complete = True
 
-    def _groups(self) -> tuple[list[list[tuple[float, int, int]]], float]:
-        """Levels among the converged states, ascending, each a list of (energy, index of irrep, index of state); and a ceiling.
+    def _groups(self, limit: int) -> tuple[list[list[tuple[float, int, int]]], float]:
+        """The lowest `limit` levels among the converged states, ascending, each a list of (energy, index of irrep, index of state); and a ceiling.
 
         Above the ceiling some irrep has states that were not worked out; a level at the ceiling may have more of them.
         """
-        states = sorted((float(v), i, k) for i, f in enumerate(self._found) if f.complete for k, v in enumerate(f.pairs.values))
         partial = [f for f in self._found if f.complete and len(f.pairs.values) < f.block.layout.size]
         ceiling = min((float(f.pairs.values[-1]) for f in partial), default=np.inf)
         groups: list[list[tuple[float, int, int]]] = []
-        for state in states:
+        for state in heapq.merge(*(self._states(i) for i, f in enumerate(self._found) if f.complete)):
             if state[0] > ceiling + SAME_LEVEL:
                 break
             if groups and state[0] - groups[-1][0][0] < SAME_LEVEL:
                 groups[-1].append(state)
+            elif len(groups) == limit:
+                break
             else:
                 groups.append([state])
         return groups, ceiling
+
+    def _states(self, index: int) -> Iterator[tuple[float, int, int]]:
+        """(energy, index of irrep, index of state) of one irrep, ascending."""
+        return ((float(value), index, k) for k, value in enumerate(self._found[index].pairs.values))
 
     def _level(self, group: list[tuple[float, int, int]]) -> Level:
         vectors, squares, residuals = [], [], []

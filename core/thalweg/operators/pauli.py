@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
@@ -55,6 +56,7 @@ class PauliExpansion:
             yield pauli_label(x, z)
 
 
+@lru_cache(maxsize=1 << 14)  # the points of a scan list the same strings
 def pauli_label(x: int, z: int) -> str:
     """`X0 Z1 Y3` for the string with these masks; `I` for the identity."""
     support = x | z

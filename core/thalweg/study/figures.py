@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 from thalweg.circuit.compile import excitation_gates
-from thalweg.circuit.program import ExcitationProgram, GateProgram
+from thalweg.circuit.program import GateProgram
 from thalweg.cost.gates import GateCounts, gate_counts
 from thalweg.encoding.encoded import EncodedSystem
 from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
-from thalweg.study.problem import Problem, make_engine, prepare
+from thalweg.study.problem import Problem, Recent, make_engine, prepare
 from thalweg.study.spec import StudySpec
 from thalweg.watch import SILENT, Watch
 
 #: How many Pauli terms a result lists; the session keeps the settings that give all of them.
 MAX_LISTED_TERMS = 200
+
+_gates = Recent(8)
 
 
 def inspect(spec: StudySpec, watch: Watch = SILENT) -> StudyFigures:
@@ -57,10 +59,13 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
 
 def program_gates(problem: Problem) -> GateCounts:
     """Gates of the trial state on the working register."""
-    program = problem.program
-    circuit = excitation_gates(program, problem.encoded) if isinstance(program, ExcitationProgram) else program
-    assert isinstance(circuit, GateProgram)
-    return gate_counts(circuit)
+    program, encoded = problem.program, problem.encoded
+    if isinstance(program, GateProgram):
+        return gate_counts(program)
+    # Counts depend on the structure alone, which the points of a scan share.
+    key = (program.excitations, program.reference, program.parameter.tobytes(), program.factor.tobytes(), encoded.linear, encoded.tapering)
+    counts: GateCounts = _gates.get(key, lambda: gate_counts(excitation_gates(program, encoded)))
+    return counts
 
 
 def warnings_of(problem: Problem) -> tuple[str, ...]:

@@ -44,7 +44,7 @@ class Problem:
         return int(self.spec.memory_gib * GIB)
 
 
-class _Recent:
+class Recent:
     """The last few results of a pure function, so that an edit of one section does not repeat the others.
 
     Where a prepared system is the input its identity is the key; the kept value holds the system, so that the identity stays its own.
@@ -63,7 +63,7 @@ class _Recent:
         return self._kept[key]
 
 
-_systems, _encodings, _products, _answers = _Recent(4), _Recent(4), _Recent(2), _Recent(4)
+_systems, _encodings, _products, _answers, _engines = Recent(4), Recent(4), Recent(2), Recent(4), Recent(1)
 
 
 def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> Problem:
@@ -101,7 +101,14 @@ def _encode(spec: StudySpec, prepared: PreparedSystem) -> EncodedSystem:
 
 
 def make_engine(problem: Problem, watch: Watch = SILENT) -> Engine:
-    """The engine that fits the program; StudyError when it would not fit the memory budget."""
+    """The engine that fits the program, the last one where it is asked for again; StudyError when it would not fit the memory budget."""
+    prepared, program = problem.prepared, problem.program
+    key = (id(prepared), id(program), problem.spec.encoding, problem.budget_bytes)
+    engine: Engine = _engines.get(key, lambda: (prepared, program, _new_engine(problem, watch)))[2]
+    return engine
+
+
+def _new_engine(problem: Problem, watch: Watch) -> Engine:
     program = problem.program
     if isinstance(program, ExcitationProgram):
         from thalweg.simulate.sector import SectorEngine

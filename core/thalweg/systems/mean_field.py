@@ -68,6 +68,8 @@ def _new_solver(mole: Any, progress: _Progress) -> Any:
     solver.verbose, solver.chkfile = 0, None
     solver.max_cycle, solver.conv_tol, solver.conv_tol_grad = _MAX_CYCLES, _CONVERGED_ENERGY, _CONVERGED_GRADIENT
     solver.callback = progress.step
+    one_body, overlap = solver.get_hcore(), solver.get_ovlp()
+    solver.get_hcore, solver.get_ovlp = lambda *_: one_body, lambda *_: overlap  # PySCF works them out anew at every call
     return solver
 
 
