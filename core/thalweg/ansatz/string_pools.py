@@ -86,17 +86,15 @@ def hamiltonian_terms(ground: Ground) -> StringPool:
     h = ground.qubits
     keep = (h.x | h.z) != 0
     x, z = h.x[keep], h.z[keep]
-    found_x, found_z = [x], [z]
+    found = x, z
     for a, b in zip(x, z, strict=True):
         clash = ((np.bitwise_count(x & b) + np.bitwise_count(z & a)) & 1).astype(bool)
-        found_x.append(x[clash] ^ a)
-        found_z.append(z[clash] ^ b)
-        if sum(part.size for part in found_x) > 100 * MAX_POOL:
+        found = np.concatenate([found[0], x[clash] ^ a]), np.concatenate([found[1], z[clash] ^ b])
+        if found[0].size > MAX_POOL:
+            found = _once(*found)
+        if found[0].size > MAX_POOL:
             raise _too_large(h)
-    pool = _single_strings(np.concatenate(found_x), np.concatenate(found_z))
-    if len(pool) > MAX_POOL:
-        raise _too_large(h)
-    return pool
+    return _single_strings(*found)
 
 
 def _distinct(ground: Ground) -> list[Excitation]:
@@ -122,10 +120,18 @@ def _strings(ground: Ground, excitations: list[Excitation]) -> tuple[MaskArray, 
 
 
 def _single_strings(x: MaskArray, z: MaskArray) -> StringPool:
-    pairs = np.unique(np.stack([x, z], axis=1), axis=0)
-    x, z = np.ascontiguousarray(pairs[:, 0]), np.ascontiguousarray(pairs[:, 1])
-    labels = tuple(pauli_label(int(a), int(b)) for a, b in pairs)
+    x, z = _once(x, z)
+    labels = tuple(pauli_label(a, b) for a, b in zip(x.tolist(), z.tolist(), strict=True))
     return StringPool(labels, x, z, np.ones(x.size), np.arange(x.size))
+
+
+def _once(x: MaskArray, z: MaskArray) -> tuple[MaskArray, MaskArray]:
+    """Each pair of masks once, ascending by x, then z."""
+    order = np.lexsort((z, x))
+    x, z = x[order], z[order]
+    first = np.ones(x.size, bool)
+    first[1:] = (x[1:] != x[:-1]) | (z[1:] != z[:-1])
+    return x[first], z[first]
 
 
 def _too_large(hamiltonian: PauliExpansion) -> StudyError:
