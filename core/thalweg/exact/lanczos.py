@@ -20,11 +20,16 @@ from thalweg.watch import Watch
 #: Writes H v into `out`; looks at the watch where that takes long.
 Apply = Callable[[Any, Any], None]
 
+#: Told an energy and its residual: whether the search may end there.
+Enough = Callable[[float, float], bool]
+
 #: Steps between two looks at the tridiagonal matrix.
 TEST_EVERY = 4
 #: Steps after which a search starts again from the best state so far.
 CHAIN_STEPS = 300
 RESTARTS = 20
+#: The estimate of a residual is multiplied by this before it is judged.
+MARGIN = 3.0
 #: Below this many states the whole matrix is diagonalised.
 DENSE_STATES = 160
 
@@ -38,7 +43,7 @@ class Level:
         vector: unit vector, shape (dimension,).
         residual: |H v - E v|, from the definition.
         steps: applications of H that were spent.
-        converged: whether the residual is within the tolerance asked for.
+        converged: whether the search ended because the state was good enough.
     """
 
     energy: float
@@ -48,13 +53,13 @@ class Level:
     converged: bool = True
 
 
-def lowest_state(apply: Apply, start: Any, *, tolerance: float, watch: Watch, found: Sequence[Any] = (), room: int = CHAIN_STEPS) -> Level:
+def lowest_state(apply: Apply, start: Any, *, is_enough: Enough, watch: Watch, found: Sequence[Any] = (), room: int = CHAIN_STEPS) -> Level:
     """The lowest eigenstate orthogonal to the unit vectors `found`.
 
     Args:
         apply: H as an action on vectors of the dtype of `start`.
         start: shape (dimension,); must not be orthogonal to the state looked for.
-        tolerance: largest |H v - E v| that counts as converged, in the unit of H.
+        is_enough: told an energy and its residual |H v - E v|, says whether the search may end there.
         found: states to stay orthogonal to.
         room: how many vectors of the chain may be kept; later ones are made again for the state.
 
@@ -65,11 +70,11 @@ def lowest_state(apply: Apply, start: Any, *, tolerance: float, watch: Watch, fo
     level = Level(np.inf, vector, np.inf, 0, False)
     for _ in range(RESTARTS):
         chain = _Chain(apply, found, watch, room)
-        chain.grow(level.vector, 0.3 * tolerance)
+        chain.grow(level.vector, is_enough)
         vector = _unit(_projected(chain.lowest_vector(), found))
         energy, residual = rayleigh(apply, vector, found)
         steps += chain.spent + 1
-        level = Level(energy, vector, residual, steps, residual <= tolerance)
+        level = Level(energy, vector, residual, steps, is_enough(energy, residual))
         if level.converged:
             break
     return level
@@ -117,19 +122,20 @@ class _Chain:
         self.spent = 0
         self._weights = np.ones(1)
 
-    def grow(self, start: Any, tolerance: float) -> None:
-        """Runs until the estimated residual |beta_m s_m| of the lowest state is below the tolerance, or the chain ends."""
-        previous, vector, beta = None, start, 0.0
+    def grow(self, start: Any, is_enough: Enough) -> None:
+        """Runs until the estimated residual |beta_m s_m| of the lowest state is small enough (with a margin), or the chain ends."""
+        previous, vector, beta, size = None, start, 0.0, 0.0
         limit = min(CHAIN_STEPS, start.size - len(self._found))
         while True:
             following, alpha, beta = self._step(previous, vector, beta)
             if len(self._kept) < self._room:
                 self._kept.append(vector)
             self._alpha.append(alpha)
-            done = len(self._alpha) >= limit or beta <= 1e-14 * max(abs(alpha), 1e-300) or beta < 0.01 * tolerance
+            size = max(size, abs(alpha), beta)
+            done = len(self._alpha) >= limit or beta <= 1e-13 * size
             if done or len(self._alpha) % TEST_EVERY == 0:
-                self._weights = self._lowest_weights()
-                done = done or beta * abs(self._weights[-1]) < tolerance
+                energy, self._weights = self._lowest_ritz()
+                done = done or is_enough(energy, MARGIN * beta * abs(float(self._weights[-1])))
             if done:
                 return
             self._beta.append(beta)
@@ -151,13 +157,15 @@ class _Chain:
             image *= 1.0 / norm
         return image, alpha, norm
 
-    def _lowest_weights(self) -> Any:
+    def _lowest_ritz(self) -> tuple[float, Any]:
+        """Lowest eigenvalue and eigenvector of the tridiagonal matrix."""
         from scipy.linalg import eigh_tridiagonal
 
         if len(self._alpha) == 1:
-            return np.ones(1)
-        _, weights = eigh_tridiagonal(np.array(self._alpha), np.array(self._beta[: len(self._alpha) - 1]), select="i", select_range=(0, 0))
-        return weights[:, 0]
+            return self._alpha[0], np.ones(1)
+        off_diagonal = np.array(self._beta[: len(self._alpha) - 1])
+        energies, weights = eigh_tridiagonal(np.array(self._alpha), off_diagonal, select="i", select_range=(0, 0))
+        return float(energies[0]), weights[:, 0]
 
     def lowest_vector(self) -> Any:
         """sum_j s_j v_j; vectors beyond the room are made again by the same arithmetic."""

@@ -172,7 +172,7 @@ class OrbitBlock:
         return row_start, columns, values
 
     def apply(self, vector: Any, out: Any) -> None:
-        in_steps(self.dimension, self._watch, lambda a, b: kernels.apply_rows(vector, out, a, b, self._diagonal, *self._rows), STEP // 2)
+        in_steps(self.dimension, self._watch, lambda a, b: kernels.apply_rows(vector, out, a, b, self._diagonal, *self._rows), STEP // 8)
 
     def expand(self, vector: Any) -> Any:
         t = self._tables

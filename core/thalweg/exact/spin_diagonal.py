@@ -9,7 +9,6 @@ import numpy as np
 from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.exact.spin_blocks import refuse_beyond
-from thalweg.kernels.register_product import walsh_hadamard
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.watch import Watch
 
@@ -66,10 +65,21 @@ def _blocks(expansion: PauliExpansion, down: int | None, watch: Watch) -> Any:
         sign = np.where(np.bitwise_count(expansion.z & np.uint64(base)) % 2 == 1, -1.0, 1.0)
         energies = np.zeros(1 << bits)
         np.add.at(energies, (expansion.z & low).astype(np.int64), sign * expansion.coefficients)
-        walsh_hadamard(energies)
+        _sum_signs(energies)
         if down is not None:
             energies[weight + high.bit_count() != down] = np.inf
         yield base, energies
+
+
+def _sum_signs(values: Any) -> None:
+    """In place: values[s] <- sum_z (-1)^popcount(s & z) values[z] (Walsh-Hadamard transform); length a power of two."""
+    half = 1
+    while half < values.size:
+        pairs = values.reshape(-1, 2, half)
+        total = pairs[:, 0] + pairs[:, 1]
+        np.subtract(pairs[:, 0], pairs[:, 1], out=pairs[:, 1])
+        pairs[:, 0] = total
+        half *= 2
 
 
 def _unit_vectors(listed: Any, count: int, n: int, budget_bytes: int) -> tuple[Any | None, str]:

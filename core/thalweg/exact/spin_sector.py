@@ -10,7 +10,7 @@ import numpy as np
 
 from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
-from thalweg.exact.lanczos import DENSE_STATES, Level, dense_levels, lowest_state, random_start
+from thalweg.exact.lanczos import DENSE_STATES, Enough, Level, dense_levels, lowest_state, random_start
 from thalweg.exact.spin_basis import SortedStrings, SpinBasis, basis_of, sector_size, sorted_strings
 from thalweg.exact.spin_blocks import Block, OrbitBlock, RegisterBlock, RunsBlock, constant_exchange, orbit_tables, refuse_beyond
 from thalweg.exact.spin_diagonal import lowest_basis_states
@@ -21,9 +21,14 @@ from thalweg.operators.pauli import PauliExpansion
 from thalweg.operators.product import product_bytes
 from thalweg.watch import Watch
 
-#: Relative to the sum of |coefficients|: the residual that counts as converged, and the distance within which levels are one.
+#: Relative to the sum of |coefficients|: the residual that counts as converged.
 RESIDUAL = 1e-10
+#: The same for a level that is already known to lie above the lowest one: its energy errs by about the square of this.
+RESIDUAL_ABOVE = 1e-7
+#: Relative to the same sum: the distance within which levels are one.
 SAME_LEVEL = 1e-9
+#: An energy is taken to be at most this many residuals from the level.
+DISTANCE = 10.0
 #: Copies of a level looked for in one block.
 MAX_COPIES = 40
 #: Bytes that each basis state takes in the tables of a sector.
@@ -182,6 +187,17 @@ class _Search:
         above = [found.energy for found in self.levels if found.block is None]
         return min(above) - self.best if above else None
 
+    def _judge(self, lowest: float) -> Enough:
+        """A level above the lowest need not be sharp, and one above the first excited level need not be known at all."""
+        first_above = min((found.energy for found in self.levels if found.energy > lowest + self.same), default=np.inf)
+
+        def is_enough(energy: float, residual: float) -> bool:
+            bound = energy - DISTANCE * residual
+            above = bound > lowest + self.same and residual <= RESIDUAL_ABOVE * self.scale
+            return residual <= RESIDUAL * self.scale or above or bound > max(first_above, lowest + self.same)
+
+        return is_enough
+
     def _dense(self, block: Block) -> list[Level]:
         levels = dense_levels(block.apply, block.dimension, block.dtype, self.watch)
         lowest = min(self.best, levels[0].energy)
@@ -190,16 +206,15 @@ class _Search:
 
     def _searched(self, block: Block) -> list[Level]:
         found: list[Level] = []
-        lowest = self.best
         while len(found) < block.dimension:
             room = int(0.5 * self.budget_bytes / (block.dimension * block.dtype.itemsize)) - WORKING_VECTORS - len(found)
             start = random_start(block.dimension, block.dtype, seed=1 + len(found))
             vectors = [level.vector for level in found]
-            level = lowest_state(block.apply, start, tolerance=RESIDUAL * self.scale, watch=self.watch, found=vectors, room=room)
+            enough = self._judge(min([self.best, *(level.energy for level in found)]))
+            level = lowest_state(block.apply, start, is_enough=enough, watch=self.watch, found=vectors, room=room)
             found.append(level)
-            if level.energy > lowest + self.same:
+            if level.energy > min([self.best, *(level.energy for level in found)]) + self.same:
                 break
-            lowest = min(lowest, level.energy)
             if len(found) > MAX_COPIES:
                 self.has_more = True
                 break
