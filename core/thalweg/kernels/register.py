@@ -19,12 +19,10 @@ Operations are int64 rows; the first column is the kind. Gates are numbers of ro
 
 from __future__ import annotations
 
-from numba import njit
+from numba import int64, njit
 
-from thalweg.kernels.register_bits import sign
 from thalweg.kernels.register_lanes import copy_vectors, mix_lanes, mix_one, mix_three, multiply_phases, turn
-from thalweg.kernels.register_phases import phase_table
-from thalweg.kernels.register_rows import walsh_hadamard
+from thalweg.kernels.register_phases import phase_slopes, phase_table
 
 MIX_THREE, MIX_ONE, MIX_LANES, TURN, PHASES, FLIP = range(6)
 
@@ -44,34 +42,6 @@ def turn_parts(states, both, first, last, op, entries, gradient):  # type: ignor
 
 
 @njit(cache=True, nogil=True)
-def run_operations(states, both, unit, size, base, operations, groups, work, entries, gradient):  # type: ignore[no-untyped-def]
-    """All operations of a pass on the tile with this base state."""
-    for n in range(operations.shape[0]):
-        op = operations[n]
-        kind = op[0]
-        if kind == MIX_THREE:
-            mix_three(states, both, size, op, entries, gradient)
-        elif kind == MIX_ONE:
-            mix_one(states, both, size, op, entries, gradient)
-        elif kind == MIX_LANES:
-            mix_lanes(states, both, size, op, entries, gradient)
-        elif kind == TURN:
-            turn(states, both, (0, size >> 3 if op[2] < 8 else size >> 4), base, op, entries, gradient)
-        elif kind == PHASES:
-            row, real, imaginary = phase_table(base, op[1], groups, work, entries)
-            moments = work[2]
-            multiply_phases(states, both, size, unit, work[0][row], (real, imaginary), moments)
-            if both == 1 and op[2] == 1:
-                walsh_hadamard(moments)
-                terms = groups[1]
-                for k in range(groups[0][op[1], 0], groups[0][op[1], 1]):
-                    gradient[terms[k, 2]] += sign(base & terms[k, 1]) * moments[terms[k, 0]]
-        elif base & op[3] == op[3]:
-            for k in range(both + 1):
-                flip(states[k], size, op[1], op[2])
-
-
-@njit(cache=True, nogil=True)
 def run_tiles(  # type: ignore[no-untyped-def]
     states, scratch, both, first, last, unit, fixed, offsets, chunk, operations, groups, work, entries, gradient
 ):
@@ -79,17 +49,35 @@ def run_tiles(  # type: ignore[no-untyped-def]
 
     states: two arrays of 2^n amplitudes; scratch: two of 2^t, or the states themselves where all qubits are local.
     fixed: positions of the n - t fixed qubits; offsets: where in a state the rows of `chunk` positions of a tile lie.
+    One function, because each compiled function that contains another is optimised with it once more.
     """
-    size = offsets.size * chunk
+    size, moments = offsets.size * chunk, work[2]
     for tile in range(first, last):
-        base = 0
+        base = int64(0)
         for k in range(fixed.size):
             base |= (tile >> k & 1) << fixed[k]
         if fixed.size > 0:
             for k in range(both + 1):
                 for row in range(offsets.size):
                     copy_vectors(states[k], (base << unit) + offsets[row], scratch[k], row * chunk, chunk)
-        run_operations(scratch, both, unit, size, base, operations, groups, work, entries, gradient)
+        for n in range(operations.shape[0]):
+            op = operations[n]
+            if op[0] == MIX_THREE:
+                mix_three(scratch, both, size, op, entries, gradient)
+            elif op[0] == MIX_ONE:
+                mix_one(scratch, both, size, op, entries, gradient)
+            elif op[0] == MIX_LANES:
+                mix_lanes(scratch, both, size, op, entries, gradient)
+            elif op[0] == TURN:
+                turn(scratch, both, (0, size >> 3 if op[2] < 8 else size >> 4), base, op, entries, gradient)
+            elif op[0] == PHASES:
+                place, real, imaginary = phase_table(base, op[1], groups, work, entries)
+                multiply_phases(scratch, both, size, unit, work[0][place], (real, imaginary), moments)
+                if both == 1 and op[2] == 1:
+                    phase_slopes(base, groups[0][op[1]], groups[1], moments, gradient)
+            elif base & op[3] == op[3]:
+                for k in range(both + 1):
+                    flip(scratch[k], size, op[1], op[2])
         if fixed.size > 0:
             for k in range(both + 1):
                 for row in range(offsets.size):

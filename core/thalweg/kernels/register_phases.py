@@ -20,6 +20,7 @@ from numba import njit
 
 from thalweg.kernels.register_bits import sign
 from thalweg.kernels.register_lanes import copy_vectors, multiply_phases, turn
+from thalweg.kernels.register_rows import walsh_hadamard
 
 #: Up to this many keys a group keeps a table for each of their values; row 0 of the group is the table of local gates.
 KEPT_KEYS = 3
@@ -94,6 +95,14 @@ def fill_table(table, joining, base, index, groups, op, entries):  # type: ignor
             return
         copy_vectors(table, 0, table, 2 * entry, 2 * entry)
         entry *= 2
+
+
+@njit(cache=True, nogil=True)
+def phase_slopes(base, index, terms, moments, gradient):  # type: ignore[no-untyped-def]
+    """Adds the derivatives of the rotations of a group, from Im(conj(adjoint) state) of each amplitude, which is overwritten."""
+    walsh_hadamard(moments)
+    for k in range(index[0], index[1]):
+        gradient[terms[k, 2]] += sign(base & terms[k, 1]) * moments[terms[k, 0]]
 
 
 def empty_row() -> np.ndarray:
