@@ -16,11 +16,11 @@ PACKAGES = {"thalweg": TOP / "core" / "thalweg", "thalweg_app": TOP / "app" / "t
 #: From the ground up. Names on one floor do not import each other.
 FLOORS = (
     {"thalweg", "thalweg.errors", "thalweg.units", "thalweg.arrays", "thalweg.options", "thalweg.paths"},
-    {"thalweg.registry", "thalweg.watch", "thalweg.kernels"},
+    {"thalweg.registry", "thalweg.watch", "thalweg.estimate", "thalweg.kernels"},
     {"thalweg.operators"},
     {"thalweg.systems", "thalweg.encoding"},
     {"thalweg.circuit"},
-    {"thalweg.ansatz", "thalweg.simulate", "thalweg.exact", "thalweg.optimize", "thalweg.cost"},
+    {"thalweg.ansatz", "thalweg.simulate", "thalweg.exact", "thalweg.evaluate", "thalweg.optimize", "thalweg.cost"},
     {"thalweg.study"},
     {"thalweg.storage"},
     {

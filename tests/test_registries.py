@@ -6,6 +6,7 @@ import json
 
 import numpy as np
 import pytest
+from support.sources import PlainSource
 
 from thalweg.errors import Stopped, StudyError
 from thalweg.optimize import OPTIMIZERS
@@ -145,9 +146,7 @@ class Account:
 
     def make(self, n: int) -> CountedObjective:
         self.objective = CountedObjective(
-            lambda x: self._call(x)[0],
-            self._call,
-            n,
+            PlainSource(self._call, n),
             offset=OFFSET,
             rules=self._rules,
             target_energy=None,

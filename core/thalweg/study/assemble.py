@@ -12,6 +12,7 @@ import numpy as np
 from thalweg import __version__
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import GateProgram
+from thalweg.evaluate import Shots
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
@@ -63,7 +64,11 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
         parameters=program.n_parameters,
         two_qubit_gates=two_qubit,
         sector_dimension=sector.dimension if sector else None,
+        measured_energy=end.energy if isinstance(problem.spec.evaluation, Shots) else None,
+        standard_error=end.standard_error,
         evaluations=sum(s.evaluations for s in outcome.starts),
+        circuits=sum(s.circuits for s in outcome.starts),
+        shots=sum(s.shots for s in outcome.starts),
         iterations=sum(s.iterations for s in outcome.starts),
         seconds=sum(s.seconds for s in outcome.starts),
         preparation_seconds=problem.seconds,
@@ -141,6 +146,8 @@ def _evidence(exact: ExactAnswer | None, end: SearchEnd, energy: float, norm: fl
         expected_s_z=sector.s_z if sector else None,
         s_squared=facts.s_squared,
         exact_s_squared=None if exact is None else exact.s_squared,
+        standard_error=end.standard_error,
+        measured_error=end.energy - exact_energy if exact_energy is not None and isinstance(problem.spec.evaluation, Shots) else None,
     )
 
 

@@ -12,6 +12,7 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import Program
 from thalweg.errors import Stopped
+from thalweg.estimate import FREE
 from thalweg.exact.answer import ExactAnswer
 from thalweg.optimize.objective import CountedObjective, Progress, StopRules
 from thalweg.simulate.engine import Engine
@@ -20,11 +21,14 @@ from thalweg.study.figures import program_gates
 from thalweg.study.outcome import SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import GrowthStep, StartRecord, Trace
+from thalweg.study.simulator import search_source
 
 #: Width of the normal displacement, in radians, of starts that would otherwise repeat themselves.
 DISPLACEMENT = 0.1
+#: Second word of the seed of drawn bit strings, so that they are independent of every other choice.
+SAMPLING = 1
 #: Reasons that end everything, not only the minimisation in which they arose.
-FINAL = frozenset({"target", "evaluations", "seconds", "stopped-by-person", "not-finite"})
+FINAL = frozenset({"target", "evaluations", "shots", "seconds", "stopped-by-person", "not-finite"})
 
 
 @dataclass(frozen=True)
@@ -40,6 +44,7 @@ class Descent:
     gradient_norm: float | None
     start_energy: float
     start_gradient_norm: float
+    standard_error: float | None
 
     @property
     def is_final(self) -> bool:
@@ -58,6 +63,7 @@ class Descent:
             self.start_energy,
             self.start_gradient_norm,
             growth,
+            self.standard_error,
         )
 
 
@@ -87,7 +93,8 @@ class Course:
         self.target_energy = None if exact is None else exact.energy + target_error(problem, exact)
         self._emit, self._should_stop = emit, should_stop
         self._columns: list[Progress] = []
-        self._iterations = self._evaluations = 0
+        self._iterations, self._spent = 0, FREE
+        self._draws = np.random.default_rng([self.seed, SAMPLING])
         self._begun = time.perf_counter()
 
     def engine(self, program: Program) -> Engine:
@@ -115,10 +122,12 @@ class Course:
         problem = replace(self.problem, program=program)
         engine = self.engine(program) if engine is None else engine
         first: list[Progress] = []
-        objective = self._objective(engine, first)
+        objective = self._objective(problem, engine, first)
         reason = self._search(objective, start)
+        if np.isfinite(objective.best_energy):
+            objective.conclude()
         self._iterations += objective.iterations
-        self._evaluations += objective.evaluations
+        self._spent += objective.spent
         begin = first[0] if first else Progress(0, 0, np.inf, None, 0.0)
         return Descent(
             problem,
@@ -130,6 +139,7 @@ class Course:
             objective.best_gradient_norm,
             begin.energy,
             begin.gradient_norm or 0.0,
+            objective.best_standard_error,
         )
 
     def take_step(self, descent: Descent, added: tuple[str, ...], largest_slope: float | None) -> None:
@@ -142,7 +152,7 @@ class Course:
             error=None if self.exact_energy is None else descent.energy - self.exact_energy,
             largest_slope=largest_slope,
             iteration=self._iterations,
-            evaluations=self._evaluations,
+            evaluations=self._spent.evaluations,
         )
         self.steps.append(step)
         self._emit(StepTaken(start=self.index, number=len(self.steps) - 1, step=step))
@@ -159,16 +169,23 @@ class Course:
             energy=tuple(p.energy for p in columns),
             gradient_norm=tuple(p.gradient_norm for p in columns),
             seconds=tuple(p.seconds for p in columns),
+            circuits=tuple(p.circuits for p in columns),
+            shots=tuple(p.shots for p in columns),
+            standard_error=tuple(p.standard_error for p in columns),
+            noiseless=tuple(p.noiseless for p in columns),
         )
         return StartRecord(
             seed=self.seed,
             energy=end.energy,
             stop_reason=end.reason,
-            evaluations=self._evaluations,
+            evaluations=self._spent.evaluations,
             iterations=self._iterations,
             gradient_norm=end.gradient_norm,
             seconds=self._seconds,
             trace=trace,
+            circuits=self._spent.circuits,
+            shots=self._spent.shots,
+            standard_error=end.standard_error,
         )
 
     @property
@@ -187,8 +204,9 @@ class Course:
                 raise
             return stop.reason
 
-    def _objective(self, engine: Engine, first: list[Progress]) -> CountedObjective:
-        iterations, evaluations, seconds = self._iterations, self._evaluations, self._seconds
+    def _objective(self, problem: Problem, engine: Engine, first: list[Progress]) -> CountedObjective:
+        iterations, spent, seconds = self._iterations, self._spent, self._seconds
+        source = search_source(problem, engine, self._draws, self.watch)
 
         def report(progress: Progress) -> None:
             first.append(progress)
@@ -197,16 +215,16 @@ class Course:
             moved = replace(
                 progress,
                 iteration=progress.iteration + iterations,
-                evaluations=progress.evaluations + evaluations,
+                evaluations=progress.evaluations + spent.evaluations,
+                circuits=progress.circuits + spent.circuits,
+                shots=progress.shots + spent.shots,
                 seconds=progress.seconds + seconds,
             )
             self._columns.append(moved)
             self._emit(Iteration(start=self.index, **vars(moved)))
 
         return CountedObjective(
-            engine.energy,
-            engine.energy_and_gradient,
-            engine.n_parameters,
+            source,
             offset=self.problem.prepared.reference_energy,
             rules=self._rules(),
             target_energy=self.target_energy,
@@ -217,13 +235,16 @@ class Course:
     def _rules(self) -> StopRules:
         """The study's rules, less what the course has spent already."""
         rules = self.problem.spec.stop
-        evaluations = max(1, rules.evaluations - self._evaluations) if rules.evaluations else 0
+        evaluations = max(1, rules.evaluations - self._spent.evaluations) if rules.evaluations else 0
+        shots = max(1, rules.shots - self._spent.shots) if rules.shots else 0
         seconds = max(1e-9, rules.seconds - self._seconds) if rules.seconds else 0.0
-        return rules.model_copy(update={"evaluations": evaluations, "seconds": seconds})
+        return rules.model_copy(update={"evaluations": evaluations, "shots": shots, "seconds": seconds})
 
     def _refuse_spent(self) -> None:
         rules = self.problem.spec.stop
-        if rules.evaluations and self._evaluations >= rules.evaluations:
+        if rules.evaluations and self._spent.evaluations >= rules.evaluations:
             raise Stopped("evaluations")
+        if rules.shots and self._spent.shots >= rules.shots:
+            raise Stopped("shots")
         if rules.seconds and self._columns and self._seconds >= rules.seconds:
             raise Stopped("seconds")

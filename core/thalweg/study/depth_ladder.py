@@ -77,4 +77,5 @@ def _end(course: Course, kept: list[Descent], reason: str) -> SearchEnd:
         start_energy=first.start_energy,
         start_gradient_norm=first.start_gradient_norm,
         growth=tuple(course.steps),
+        standard_error=best.standard_error,
     )

@@ -39,7 +39,7 @@ class Stage(Event):
 
 
 class Iteration(Event):
-    """One iterate of one start."""
+    """One iterate of one start; see `optimize.objective.Progress`."""
 
     kind: Literal["iteration"] = "iteration"
     start: int  # 0-based
@@ -48,6 +48,10 @@ class Iteration(Event):
     energy: float
     gradient_norm: float | None
     seconds: float
+    circuits: int = 0
+    shots: int = 0
+    standard_error: float | None = None
+    noiseless: float | None = None
 
 
 class StepTaken(Event):

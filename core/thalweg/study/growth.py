@@ -44,6 +44,7 @@ def grow(course: Course, ansatz: Adaptive) -> SearchEnd:
         start_energy=first.start_energy,
         start_gradient_norm=growing.first_slope,
         growth=tuple(course.steps),
+        standard_error=best.standard_error,
     )
 
 

@@ -20,6 +20,7 @@ class SearchEnd:
         parameters: the best of that trial state, shape (K,).
         energy, gradient_norm: there; the norm is None where no gradient was worked out.
         reason: a key of STOP_REASONS.
+        standard_error: of a sampled energy, or the one that shots would have; None where there is none.
         start_parameters, start_energy, start_gradient_norm: where it began; the largest slope of the pool counts as a gradient.
         growth: the steps of a trial state that grew.
     """
@@ -33,6 +34,7 @@ class SearchEnd:
     start_energy: float
     start_gradient_norm: float
     growth: tuple[GrowthStep, ...] = ()
+    standard_error: float | None = None
 
 
 @dataclass

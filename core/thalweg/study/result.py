@@ -17,6 +17,7 @@ STOP_REASONS: dict[str, str] = {
     "iterations": "the iteration limit was reached",
     "evaluations": "the evaluation limit was reached",
     "seconds": "the time limit was reached",
+    "shots": "the shot limit was reached",
     "line-search": "the line search found no lower point",
     "stopped-by-person": "stopped by hand; the best point so far is kept",
     "cut-off": "the calculation was cut off; the lowest energy so far is kept",
@@ -35,17 +36,29 @@ class Record(BaseModel):
 
 
 class Trace(Record):
-    """The iterates of one start, columns of equal length. gradient_norm may hold None."""
+    """The iterates of one start, columns of equal length; the last four are empty in results from before they were counted.
+
+    Attributes:
+        energy: measured where the optimiser measured it, otherwise that of the simulation.
+        gradient_norm: None where no gradient was worked out.
+        circuits, shots: totals so far, as a device would count them.
+        standard_error: of a measured energy; None where the energy is exact.
+        noiseless: the energy of the simulation beside sampled ones; None where `energy` is exact by itself.
+    """
 
     iteration: tuple[int, ...] = ()
     evaluations: tuple[int, ...] = ()
     energy: tuple[float, ...] = ()
     gradient_norm: tuple[float | None, ...] = ()
     seconds: tuple[float, ...] = ()
+    circuits: tuple[int, ...] = ()
+    shots: tuple[int, ...] = ()
+    standard_error: tuple[float | None, ...] = ()
+    noiseless: tuple[float | None, ...] = ()
 
 
 class StartRecord(Record):
-    """One start of the minimisation."""
+    """One start of the minimisation. A sampled energy is measured afresh at the end, so that no choice has favoured it."""
 
     seed: int
     energy: float
@@ -55,6 +68,9 @@ class StartRecord(Record):
     gradient_norm: float | None
     seconds: float
     trace: Trace
+    circuits: int = 0
+    shots: int = 0
+    standard_error: float | None = None
 
 
 class LeadingWeight(Record):
@@ -77,7 +93,11 @@ class GrowthStep(Record):
 
 
 class StudyResult(Record):
-    """All energies in `energy_unit`, core energy included. None: the figure does not exist for this study."""
+    """All energies in `energy_unit`, core energy included. None: the figure does not exist for this study.
+
+    `energy` and everything drawn from it is that of the simulated state, without noise; `measured_energy` with its
+    `standard_error` is what the shots gave. With exact evaluation `standard_error`, where there is one, is what shots would have.
+    """
 
     label: str
     energy_unit: str
@@ -89,7 +109,7 @@ class StudyResult(Record):
     target_error: float
     reached_target: bool
     verdict: str
-    verdict_kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | no-exact
+    verdict_kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | uncertain | no-exact
     remarks: tuple[str, ...] = ()
     classical: dict[str, float | None] = {}
 
@@ -102,7 +122,12 @@ class StudyResult(Record):
     two_qubit_gates: int | None = None
     sector_dimension: int | None = None
 
+    measured_energy: float | None = None
+    standard_error: float | None = None
+
     evaluations: int
+    circuits: int = 0
+    shots: int = 0
     iterations: int
     seconds: float
     preparation_seconds: float

@@ -13,6 +13,7 @@ from pydantic import Field, ValidationError
 from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.errors import StudyError
+from thalweg.evaluate import EVALUATIONS, Exact, ExactWithError, Shots
 from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDescent, Momentum, NelderMead
 from thalweg.optimize.objective import StopRules
 from thalweg.options import Options, option
@@ -26,6 +27,8 @@ AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
 AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | Adaptive | NumberConserving | HardwareEfficient, Field(discriminator="key")]
 AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
+
+AnyEvaluation = Annotated[Exact | Shots | ExactWithError, Field(discriminator="key")]
 
 ClassicalMethod = Literal["mp2", "ccsd", "ccsd(t)"]
 
@@ -67,6 +70,7 @@ class StudySpec(Options):
     encoding: AnyEncoding = JordanWigner()
     ansatz: AnyAnsatz = UCCSD()
     optimizer: AnyOptimizer = LBFGSB()
+    evaluation: AnyEvaluation = Exact()
     stop: StopRules = StopRules()
     target: Target = Target()
     ladder: DepthLadder = DepthLadder()
@@ -78,7 +82,13 @@ class StudySpec(Options):
 
 
 #: Section of the spec -> its alternatives, for forms, the terminal and contract tests.
-SECTIONS: dict[str, Alternatives[Any]] = {"system": SYSTEMS, "encoding": ENCODINGS, "ansatz": ANSATZE, "optimizer": OPTIMIZERS}
+SECTIONS: dict[str, Alternatives[Any]] = {
+    "system": SYSTEMS,
+    "encoding": ENCODINGS,
+    "ansatz": ANSATZE,
+    "optimizer": OPTIMIZERS,
+    "evaluation": EVALUATIONS,
+}
 #: Every field of the spec, at any depth, that holds one of several alternatives.
 UNIONS: dict[str, Alternatives[Any]] = SECTIONS | {"lattice": LATTICES, "model": MODELS}
 

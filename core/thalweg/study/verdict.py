@@ -31,30 +31,37 @@ class Evidence:
     expected_s_z: float | None
     s_squared: float | None
     exact_s_squared: float | None
+    standard_error: float | None = None  # of the measured energy, or what shots would have; None with exact evaluation
+    measured_error: float | None = None  # measured minus exact energy; `error` is that of the simulated state
 
 
 @dataclass(frozen=True)
 class Verdict:
-    kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | no-exact
+    kind: str  # reached | outside | stationary | wrong-symmetry | not-converged | uncertain | no-exact
     sentence: str
     reached: bool
 
 
 def judge(evidence: Evidence) -> Verdict:
-    """The first of these that applies: no exact energy, wrong sector, stationary start, reached, not converged, outside."""
+    """The first of these that applies: no exact energy, wrong sector, uncertain, reached, stationary start, not converged, outside.
+
+    Uncertain: the state is accurate enough, but an error bar of two standard errors is wider than the target, so that the shots cannot show it.
+    """
     if evidence.error is None:
         return Verdict("no-exact", f"No exact energy to compare with; the search ended because {STOP_REASONS[evidence.stop_reason]}", False)
     wrong = _wrong_symmetry(evidence)
     if wrong:
         return Verdict("wrong-symmetry", wrong, False)
     above = f"{amount(evidence.error, evidence.unit)} above exact"
+    if evidence.error <= evidence.target and _bar(evidence) > evidence.target:
+        return Verdict("uncertain", f"Not shown by the shots: {_bar_text(evidence)} is wider than {_target(evidence)}; without noise {above}", False)
     if evidence.error <= evidence.target:
-        return Verdict("reached", f"Reaches {_target(evidence)}: {above} with {_cost(evidence)}{_interrupted(evidence)}", True)
+        return Verdict("reached", f"Reaches {_target(evidence)}: {above} with {_cost(evidence)}{_interrupted(evidence)}{_shots(evidence)}", True)
     if _is_stationary(evidence):
         return Verdict("stationary", f"Stationary start: every gradient vanishes at a point {above}; choose another start or trial state", False)
     if evidence.stop_reason not in CONVERGED:
-        return Verdict("not-converged", f"Not converged: {above} when {STOP_REASONS[evidence.stop_reason]}", False)
-    return Verdict("outside", f"Outside {_target(evidence)}: {above} with {_cost(evidence)}", False)
+        return Verdict("not-converged", f"Not converged: {above} when {STOP_REASONS[evidence.stop_reason]}{_shots(evidence)}", False)
+    return Verdict("outside", f"Outside {_target(evidence)}: {above} with {_cost(evidence)}{_shots(evidence)}", False)
 
 
 def amount(value: float, unit: str) -> str:
@@ -95,6 +102,24 @@ def _target(e: Evidence) -> str:
 def _cost(e: Evidence) -> str:
     parameters = f"{e.parameters:,} parameter{'' if e.parameters == 1 else 's'}"
     return parameters if e.two_qubit_gates is None else f"{parameters}; {e.two_qubit_gates:,} two-qubit gates"
+
+
+def _bar(e: Evidence) -> float:
+    """Half the width of the error bar: two standard errors, which 95 of 100 measurements keep."""
+    return 2.0 * (e.standard_error or 0.0)
+
+
+def _bar_text(e: Evidence) -> str:
+    return f"the error bar of {amount(_bar(e), e.unit)} (two standard errors)"
+
+
+def _shots(e: Evidence) -> str:
+    if e.standard_error is None:
+        return ""
+    if e.measured_error is None:
+        return f"; shots would have an error bar of {amount(_bar(e), e.unit)} (two standard errors)"
+    where = f"{amount(abs(e.measured_error), e.unit)} {'above' if e.measured_error >= 0 else 'below'}"
+    return f"; measured {where} exact, with an error bar of {amount(_bar(e), e.unit)} (two standard errors)"
 
 
 def _interrupted(e: Evidence) -> str:

@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+from support.sources import NoisySource, PlainSource
 
 from thalweg.errors import Stopped
 from thalweg.optimize.objective import CountedObjective, StopRules
@@ -16,9 +17,7 @@ def bowl(x):
 def make(rules=None, *, should_stop=lambda: False, target=None, energy=bowl):
     reports = []
     objective = CountedObjective(
-        energy,
-        lambda x: (energy(x), 2 * x),
-        2,
+        PlainSource(lambda x: (energy(x), 2 * x), 2),
         offset=OFFSET,
         rules=rules or StopRules(gradient=0),
         target_energy=target,
@@ -99,3 +98,77 @@ def test_an_iterate_other_than_the_last_point_is_reported_with_its_own_energy():
     objective.iterate(np.array([0.5, 0.0]))
     assert reports[-1].energy == OFFSET + 0.25
     assert reports[-1].gradient_norm == 1.0
+
+
+def noisy(rules=None, *, error=0.01, target=None):
+    reports = []
+    source = NoisySource(lambda x: (bowl(x), 2 * x), 2, error)
+    rules = rules or StopRules(gradient=0)
+    return CountedObjective(source, offset=OFFSET, rules=rules, target_energy=target, report=reports.append, should_stop=lambda: False), reports
+
+
+def test_under_noise_the_start_is_judged_by_the_simulation_and_costs_nothing():
+    objective, reports = noisy()
+    objective.begin(np.array([1.0, 1.0]))
+    assert (reports[0].energy, reports[0].gradient_norm, reports[0].standard_error) == (OFFSET + 2.0, 2.0, None)
+    assert (objective.spent.evaluations, objective.spent.shots) == (0, 0)
+
+
+def test_under_noise_every_evaluation_circuit_and_shot_is_counted():
+    objective, reports = noisy()
+    objective.value(np.zeros(2))
+    objective.value_and_gradient(np.ones(2))
+    objective.iterate(np.ones(2))
+    assert (objective.spent.evaluations, objective.spent.circuits, objective.spent.shots) == (6, 6, 600)
+    assert (reports[-1].evaluations, reports[-1].circuits, reports[-1].shots) == (6, 6, 600)
+    assert reports[-1].standard_error == 0.01
+    assert reports[-1].noiseless == OFFSET + 2.0
+    assert reports[-1].energy != reports[-1].noiseless
+
+
+def test_under_noise_the_answer_is_the_last_iterate_measured_afresh_and_not_a_lucky_low_value():
+    objective, _ = noisy(error=5.0)
+    objective.begin(np.array([1.0, 0.0]))
+    seen = [objective.value(np.array([0.1 * i, 0.0])) + OFFSET for i in range(20)]
+    objective.iterate(np.array([1.9, 0.0]))
+    before = objective.spent.shots
+    objective.conclude()
+    assert objective.best_parameters.tolist() == [1.9, 0.0]
+    assert objective.best_energy not in seen
+    assert objective.spent.shots == before + 100
+    assert objective.best_standard_error == 5.0
+
+
+def test_an_accepted_point_that_was_not_measured_is_reported_without_noise_and_without_error_bar():
+    objective, reports = noisy()
+    objective.value(np.zeros(2))
+    objective.iterate(np.array([1.0, 0.0]))
+    assert (reports[-1].energy, reports[-1].standard_error, reports[-1].noiseless) == (OFFSET + 1.0, None, OFFSET + 1.0)
+    assert objective.spent.shots == 100
+
+
+@pytest.mark.parametrize(("error", "stops"), [(0.001, True), (0.1, False)])
+def test_the_target_counts_as_reached_only_where_the_error_bar_lies_below_it(error, stops):
+    objective, _ = noisy(StopRules(gradient=0, at_target=True), error=error, target=OFFSET + 0.1)
+    objective.value(np.zeros(2))
+    if stops:
+        with pytest.raises(Stopped, match="target"):
+            objective.iterate(np.zeros(2))
+    else:
+        objective.iterate(np.zeros(2))
+
+
+def test_a_gradient_within_its_noise_does_not_stop_the_search():
+    objective, _ = noisy(StopRules(gradient=0.05), error=0.03)
+    objective.value_and_gradient(np.zeros(2))
+    objective.iterate(np.zeros(2))
+    assert objective.iterations == 1
+
+
+def test_the_shot_limit_stops_the_search():
+    objective, _ = noisy(StopRules(gradient=0, shots=250))
+    for k in range(3):
+        objective.value(np.array([float(k), 0.0]))
+    with pytest.raises(Stopped, match="shots"):
+        objective.value(np.array([9.0, 0.0]))
+    assert objective.spent.shots == 300

@@ -1,0 +1,95 @@
+"""The base of every way to evaluate, and of what it makes."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Literal
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
+from thalweg.estimate import AXES, HARMONICS, METRIC, Cost, Estimate, Slopes
+from thalweg.evaluate.shift import SHIFT_RULES
+from thalweg.evaluate.simulator import Simulator
+from thalweg.options import Options
+
+GradientSource = Literal["adjoint", "shift-rule"]
+GRADIENT_HELP = "Adjoint: one backward sweep of the simulation, not counted. Shift rule: energies at shifted angles, counted as on a device."
+Allocation = Literal["uniform", "by-weight", "by-variance"]
+ALLOCATION_HELP = "How the sets share the shots: equally, by their sums of |c|, or by the spread of their outcomes, which a tenth of the shots find."
+
+
+class EvaluationSettings(Options):
+    """A way to evaluate is its settings plus `offers` and `source`."""
+
+    def offers(self, structure: Structure) -> frozenset[str]:
+        """What an optimiser gets beside values and gradients, known before the run."""
+        return _of_program(structure) | {METRIC}
+
+    def source(self, simulator: Simulator, rng: np.random.Generator) -> Source:
+        """What a search draws its numbers from. `rng`: of the sampling alone. StudyError where the settings do not fit."""
+        raise AssertionError(f"{type(self).__name__} defines no source")
+
+
+class Source:
+    """Numbers for one search; see `optimize.objective.EnergySource`.
+
+    Attributes:
+        n_parameters: K.
+        structure: what is known of the energy from the program alone.
+        is_sampled: whether energies carry statistical noise.
+        begins_by_simulation: whether the start is judged by the simulation alone, as gradients cost shots or evaluations.
+    """
+
+    is_sampled = False
+    begins_by_simulation = False
+
+    def __init__(self, simulator: Simulator) -> None:
+        self.simulator = simulator
+        self.structure = simulator.structure
+        self.n_parameters = simulator.angles.n_parameters
+
+    def energy(self, parameters: FloatArray) -> Estimate:
+        raise AssertionError(f"{type(self).__name__} gives no energy")
+
+    def energy_and_gradient(self, parameters: FloatArray) -> tuple[Estimate, Slopes]:
+        raise AssertionError(f"{type(self).__name__} gives no gradient")
+
+    def exact_energy(self, parameters: FloatArray) -> float:
+        """Without noise, and counted nowhere."""
+        return self.simulator.energy(parameters)
+
+    def exact_energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
+        """Without noise, and counted nowhere."""
+        return self.simulator.energy_and_gradient(parameters)
+
+    def metric(self, parameters: FloatArray) -> FloatArray:
+        return self.simulator.metric(parameters)
+
+    def sampled_gradient(self, parameters: FloatArray, shots: FloatArray, *, random_terms: bool) -> Slopes:
+        raise AssertionError("this evaluation draws no shots")
+
+    def _shifted(self, parameters: FloatArray, measure: Callable[[FloatArray, int], Estimate]) -> Slopes:
+        """The gradient from energies at shifted angles; `measure` takes the angles and the parameter that they belong to."""
+        map_, angles = self.simulator.angles, self.simulator.angles.of(parameters)
+        by_parameter, variance = np.zeros(self.n_parameters), np.zeros(self.n_parameters)
+        shots, cost, is_exact = np.zeros(self.n_parameters), Cost(0), True
+        for a, (k, factor, highest) in enumerate(zip(map_.parameter.tolist(), map_.factor.tolist(), map_.highest.tolist(), strict=True)):
+            rule = SHIFT_RULES[highest]
+            for shift, weight in zip(rule.shifts, rule.weights, strict=True):
+                for sign in (1.0, -1.0):
+                    shifted = angles.copy()
+                    shifted[a] += sign * shift
+                    estimate = measure(shifted, k)
+                    by_parameter[k] += sign * weight * factor * estimate.energy
+                    if estimate.standard_error is not None:
+                        variance[k] += (weight * factor * estimate.standard_error) ** 2
+                        is_exact = False
+                    cost += estimate.cost
+                    shots[k] += estimate.cost.shots
+        return Slopes(by_parameter, None if is_exact else variance, cost, shots)
+
+
+def _of_program(structure: Structure) -> frozenset[str]:
+    return frozenset([HARMONICS] * structure.has_harmonics + [AXES] * bool(structure.triples))

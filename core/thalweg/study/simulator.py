@@ -1,0 +1,134 @@
+"""A study's engine as what evaluations ask for: shifted angles, drawn bit strings, the metric."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+
+from thalweg.arrays import ComplexArray, FloatArray, IntArray
+from thalweg.circuit.angles import Angles, angles_of, one_parameter_an_angle
+from thalweg.circuit.program import ExcitationProgram
+from thalweg.circuit.structure import Structure, structure_of
+from thalweg.encoding.encoded import EncodedSystem
+from thalweg.encoding.symmetry import Tapering
+from thalweg.errors import StudyError
+from thalweg.evaluate.settings import Source
+from thalweg.evaluate.simulator import SetSums
+from thalweg.optimize.settings import refuse_unless_offered
+from thalweg.simulate.engine import Engine
+from thalweg.study.problem import Problem, make_engine
+from thalweg.watch import SILENT, Watch
+
+
+class StudySimulator:
+    """See `evaluate.simulator.Simulator`. Everything beyond energy and gradient is prepared when it is first asked for."""
+
+    def __init__(self, problem: Problem, engine: Engine, watch: Watch = SILENT) -> None:
+        self._problem, self._engine, self._watch = problem, engine, watch
+
+    @cached_property
+    def angles(self) -> Angles:
+        return angles_of(self._problem.program)
+
+    @cached_property
+    def structure(self) -> Structure:
+        return structure_of(self._problem.program, self._problem.encoded.working.one_norm)
+
+    @property
+    def set_weights(self) -> FloatArray:
+        weights: FloatArray = self._sets.weights
+        return weights
+
+    @property
+    def constant(self) -> float:
+        return float(self._sets.constant)
+
+    def energy(self, parameters: FloatArray) -> float:
+        return self._engine.energy(parameters)
+
+    def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
+        return self._engine.energy_and_gradient(parameters)
+
+    def energy_at(self, angles: FloatArray) -> float:
+        return self._by_angle.energy(self._settings_of(angles))
+
+    def sample(self, angles: FloatArray, shots: IntArray, rng: np.random.Generator) -> SetSums:
+        sums = self._sets.sample(self._register_state(angles), shots, rng)
+        return SetSums(shots, sums[:, 0], sums[:, 1])
+
+    def set_variances(self, angles: FloatArray) -> FloatArray:
+        variances: FloatArray = self._sets.moments(self._register_state(angles))[1]
+        return variances
+
+    def metric(self, parameters: FloatArray) -> FloatArray:
+        from thalweg.simulate.metric import metric_tensor
+
+        return metric_tensor(self._problem.program, parameters, budget_bytes=self._problem.budget_bytes)
+
+    @cached_property
+    def _is_plain(self) -> bool:
+        """Whether every parameter turns one gate, so that shifting it shifts that gate alone."""
+        once = np.bincount(self.angles.parameter, minlength=self.angles.n_parameters)
+        return bool(np.all(once == 1) and np.all(self.angles.factor != 0))
+
+    @cached_property
+    def _by_angle(self) -> Engine:
+        """The engine of the same circuit with a parameter for every angle."""
+        if self._is_plain:
+            return self._engine
+        return make_engine(replace(self._problem, program=one_parameter_an_angle(self._problem.program)), self._watch)
+
+    def _settings_of(self, angles: FloatArray) -> FloatArray:
+        if not self._is_plain:
+            return angles
+        settings = np.empty_like(angles)
+        settings[self.angles.parameter] = angles / self.angles.factor
+        return settings
+
+    def _register_state(self, angles: FloatArray) -> ComplexArray:
+        state = self._by_angle.state(self._settings_of(angles))
+        if isinstance(self._problem.program, ExcitationProgram):
+            return self._register.from_sector(state[None])[0]
+        register_state: ComplexArray = state
+        return register_state
+
+    @cached_property
+    def _register(self) -> EncodedSystem:
+        """The register that is measured: the full one where an excitation leaves the tapered sector, as for gates."""
+        encoded, program = self._problem.encoded, self._problem.program
+        if isinstance(program, ExcitationProgram) and encoded.symmetries:
+            from thalweg.circuit.compile import generator_strings
+
+            assert encoded.linear is not None
+            if not encoded.tapering.keeps(generator_strings(program.excitations, encoded.linear)[0]).all():
+                encoded = replace(encoded, working=encoded.full, tapering=Tapering(encoded.full.n_qubits), symmetries=())
+        return encoded
+
+    @cached_property
+    def _sets(self) -> Any:
+        expansion = self._register.working
+        needed = 64 << expansion.n_qubits
+        if needed > self._problem.budget_bytes:
+            raise StudyError(
+                f"A register of {expansion.n_qubits} qubits cannot be measured",
+                f"drawing bit strings needs {needed / 2**30:.3g} GiB of memory and {self._problem.spec.memory_gib:.3g} GiB are allowed",
+                "Allow more memory, or evaluate exactly",
+                "memory_gib",
+            )
+        from thalweg.cost.groups import qubit_wise_groups
+        from thalweg.simulate.shots import MeasuredSets
+
+        if getattr(self._problem.spec.evaluation, "sets", "qubit-wise") == "single-terms":
+            return MeasuredSets(expansion, tuple(np.flatnonzero((expansion.x | expansion.z) != 0)[:, None]))
+        return MeasuredSets(expansion, qubit_wise_groups(expansion, largest_first=True, watch=self._watch))  # this order needs fewer shots
+
+
+def search_source(problem: Problem, engine: Engine, rng: np.random.Generator, watch: Watch = SILENT) -> Source:
+    """Where a search by the study's optimiser draws its numbers from; StudyError where that optimiser needs more than is offered."""
+    simulator = StudySimulator(problem, engine, watch)
+    evaluation = problem.spec.evaluation
+    refuse_unless_offered(problem.spec.optimizer, evaluation.offers(simulator.structure), evaluation.title)
+    return evaluation.source(simulator, rng)
