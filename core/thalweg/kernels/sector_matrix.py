@@ -139,50 +139,6 @@ def multiply_rows(pointer: np.ndarray, column: np.ndarray, value: np.ndarray, ve
     """out = H vector for the sparse matrix by rows."""
     for i in range(out.size):
         total = 0.0
-        for k in range(pointer[i], pointer[i + 1]):
+        for k in range(np.uint64(pointer[i]), np.uint64(pointer[i + 1])):  # signed counters would block vectorisation
             total += value[k] * vector[column[k]]
         out[i] = total
-
-
-@njit(cache=True, nogil=True)
-def add_cross_term(
-    vector: np.ndarray,
-    out: np.ndarray,
-    row_start: np.ndarray,
-    row_irrep: np.ndarray,
-    beta_first: np.ndarray,
-    irrep: int,
-    alpha: Any,
-    beta: Any,
-    eri: np.ndarray,
-) -> None:
-    """out += sum (pq|rs) E^alpha_pq E^beta_rs vector without a matrix, one determinant at a time.
-
-    `alpha`, `beta`: (strings, singles) of each spin.
-    """
-    alpha_strings, (a_first, a_end, a_pq, a_sign, _) = alpha
-    beta_strings, (b_first, b_end, b_pq, b_sign, _) = beta
-    m = int(np.sqrt(eri.shape[0]))
-    n_irreps = a_first.shape[1] - 1
-    for a in range(row_start.size):
-        k = row_irrep[a] ^ irrep
-        begin = beta_first[k]
-        for b in range(begin, beta_first[k + 1]):
-            row = row_start[a] + b - begin
-            total = 0.0
-            for p in range(m):
-                if (alpha_strings[a] >> np.uint64(p)) & np.uint64(1):
-                    total += _mean(eri, p * (m + 1), beta_strings[b], m) * vector[row]
-            for x in range(a_first[a, 1]):
-                field = a_sign[a, x] * _mean(eri, a_pq[a, x], beta_strings[b], m)
-                total += field * vector[row_start[a_end[a, x]] + b - begin]
-            for y in range(b_first[b, 1]):
-                field = b_sign[b, y] * _mean(eri, b_pq[b, y], alpha_strings[a], m)
-                total += field * vector[row_start[a] + b_end[b, y] - begin]
-            for g in range(n_irreps):
-                other = beta_first[k ^ g]
-                for x in range(a_first[a, g], a_first[a, g + 1]):
-                    base = row_start[a_end[a, x]] - other
-                    for y in range(b_first[b, g], b_first[b, g + 1]):
-                        total += a_sign[a, x] * b_sign[b, y] * eri[a_pq[a, x], b_pq[b, y]] * vector[base + b_end[b, y]]
-            out[row] += total

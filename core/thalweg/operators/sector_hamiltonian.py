@@ -15,12 +15,15 @@ import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.kernels import sector_matrix as matrix_kernels
+from thalweg.kernels import sector_product as product_kernels
 from thalweg.kernels import spin_strings
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.sector_layout import SectorLayout, StringSpace, sector_layout, sector_spaces
 
 #: Largest block, in determinants, that becomes a sparse matrix.
 SPARSE_LIMIT = 10_000
+#: Multiplications in one kernel call.
+WORK_PER_CALL = 4e8
 
 
 @dataclass(frozen=True)
@@ -31,6 +34,18 @@ class SpinPart:
     diagonal: FloatArray
     singles: tuple[Any, ...]
     doubles: tuple[Any, ...]
+
+    @cached_property
+    def pairs(self) -> tuple[Any, ...]:
+        """Row pairs of E_pq + E_qp, as `sector_product.row_pairs_of` gives them."""
+        first, end, pq, sign, _ = self.singles
+        return product_kernels.row_pairs_of(self.space.strings, self.space.first, first, end, pq, sign, self.space.n_orbitals)
+
+    @cached_property
+    def lists(self) -> tuple[Any, ...]:
+        """Elements of sum_rs v_rs E_rs, as `sector_product.column_lists_of` gives them."""
+        first, end, pq, sign, _ = self.singles
+        return product_kernels.column_lists_of(self.space.first, self.space.local, first, end, pq, sign)
 
     @cached_property
     def dense(self) -> tuple[FloatArray, ...]:
@@ -120,9 +135,46 @@ class SymmetryBlock:
             if target.size:
                 np.matmul(self._alpha.dense[h], block, out=target)
                 target += block @ self._beta.dense[h ^ layout.irrep]
-        parts = [(part.space.strings, part.singles) for part in (self._alpha, self._beta)]
-        matrix_kernels.add_cross_term(vector, out, *self._rows, *parts, self._eri)
+        pairs = self._pair_integrals.shape[0]
+        for first in range(0, pairs, self._pairs_per_call):
+            last = min(first + self._pairs_per_call, pairs)
+            product_kernels.add_pairs(vector, out, first, last, *self._cross)
         return out
+
+    @cached_property
+    def _cross(self) -> tuple[Any, ...]:
+        """What `add_pairs` takes behind the pair range."""
+        layout = self.layout
+        columns = layout.beta
+        return (
+            self._pair_irreps,
+            layout.irrep,
+            layout.row_start,
+            *self._alpha.pairs,
+            columns.strings,
+            columns.first,
+            *self._beta.lists,
+            self._pair_integrals,
+        )
+
+    @cached_property
+    def _pair_integrals(self) -> FloatArray:
+        """(pq|rs) for p >= q, shape (M (M + 1) / 2, M M)."""
+        p, q = np.tril_indices(self.layout.alpha.n_orbitals)
+        return np.ascontiguousarray(self._eri[p * self.layout.alpha.n_orbitals + q])
+
+    @cached_property
+    def _pair_irreps(self) -> IntArray:
+        p, q = np.tril_indices(self.layout.alpha.n_orbitals)
+        labels = self.layout.alpha.orbital_irreps
+        return labels[p] ^ labels[q]
+
+    @cached_property
+    def _pairs_per_call(self) -> int:
+        """Pairs p >= q in one kernel call, so that a stop is heard in time."""
+        n, m = self.layout.beta.n_electrons, self.layout.beta.n_orbitals
+        work = self.layout.size * (n * (m - n) + 1) / 2
+        return max(1, int(WORK_PER_CALL / max(work, 1.0)))
 
     @cached_property
     def _rows(self) -> tuple[IntArray, IntArray, IntArray, int]:

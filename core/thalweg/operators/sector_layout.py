@@ -67,20 +67,40 @@ class StringSpace:
         return table
 
 
-def string_space(n_orbitals: int, n_electrons: int, orbital_irreps: IntArray) -> StringSpace:
-    """All strings of `n_electrons` on `n_orbitals`, sorted by irrep."""
+def string_space(n_orbitals: int, n_electrons: int, orbital_irreps: IntArray, last: int = -1) -> StringSpace:
+    """All strings of `n_electrons` on `n_orbitals`, sorted by irrep, then ascending.
+
+    With `last`, that orbital counts as the highest in the order of the strings; phases then go with `reordering_phases`.
+    """
     size = int(binomials(n_orbitals)[n_orbitals, n_electrons])
     ascending = np.zeros(size, dtype=np.uint64)
     fill_strings(ascending, n_electrons)
     irreps = np.zeros(size, dtype=np.int64)
     for p, label in enumerate(orbital_irreps.tolist()):
         irreps ^= np.where((ascending >> np.uint64(p)) & np.uint64(1), label, 0)
-    rank = np.argsort(irreps, kind="stable")
+    rank = np.lexsort((_with_last(ascending, last, n_orbitals), irreps))
     inverse = np.empty(size, dtype=np.int64)
     inverse[rank] = np.arange(size)
     n_irreps = 1 << int(np.max(orbital_irreps, initial=0)).bit_length()
     first = np.concatenate([[0], np.cumsum(np.bincount(irreps, minlength=n_irreps))]).astype(np.int64)
     return StringSpace(n_orbitals, n_electrons, ascending[rank], rank, inverse, first, np.asarray(orbital_irreps, np.int64))
+
+
+def reordering_phases(space: StringSpace, last: int) -> FloatArray:
+    """Sign of each string when orbital `last` is moved behind all higher ones, shape (N,)."""
+    if last < 0:
+        return np.ones(space.size)
+    above = np.bitwise_count(space.strings >> np.uint64(last + 1)).astype(np.int64)
+    holds = (space.strings >> np.uint64(last)) & np.uint64(1)
+    return np.where((holds == 1) & (above % 2 == 1), -1.0, 1.0)
+
+
+def _with_last(masks: MaskArray, last: int, n_orbitals: int) -> MaskArray:
+    """Masks with bit `last` moved to the top and the bits above it moved down by one."""
+    if last < 0:
+        return masks
+    low = masks & np.uint64((1 << last) - 1)
+    return low | (masks >> np.uint64(last + 1) << np.uint64(last)) | (masks >> np.uint64(last) & np.uint64(1)) << np.uint64(n_orbitals - 1)
 
 
 @dataclass(frozen=True)

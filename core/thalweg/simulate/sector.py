@@ -9,14 +9,19 @@ import numpy as np
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation, ExcitationProgram
 from thalweg.errors import StudyError
-from thalweg.kernels import sector as kernels
 from thalweg.operators.fermion import FermionHamiltonian
 from thalweg.operators.sector_hamiltonian import SectorHamiltonian, SymmetryBlock, estimated_bytes, group_order
 from thalweg.simulate.engine import StateFacts
 from thalweg.simulate.sector_facts import state_facts
-from thalweg.simulate.sector_pairs import OneSpin, SpinPairs, pair_lists
+from thalweg.simulate.sector_pairs import OneSpin
+from thalweg.simulate.sector_runner import SectorRunner
+from thalweg.simulate.sector_small import SmallRunner
+from thalweg.watch import SILENT, Watch
 
 __all__ = ["SectorEngine", "SectorHamiltonian"]
+
+#: Amplitudes times factors up to which one kernel call for the whole program is fastest.
+SMALL_WORK = 300_000
 
 
 class SectorEngine:
@@ -33,9 +38,10 @@ class SectorEngine:
         product: SectorHamiltonian | None = None,
         *,
         budget_bytes: int | None = None,
+        watch: Watch = SILENT,
     ) -> None:
         """`product` shares H between engines; StudyError where the estimate is past `budget_bytes`."""
-        self._hamiltonian, self._program = hamiltonian, program
+        self._hamiltonian, self._program, self._watch = hamiltonian, program, watch
         self._bytes = engine_bytes(hamiltonian, program)
         if budget_bytes is not None and self._bytes > budget_bytes:
             raise _over_budget(hamiltonian, self._bytes)
@@ -48,33 +54,28 @@ class SectorEngine:
         symmetric = keeps_point_group(program, hamiltonian.orbital_irreps)
         self._block: SymmetryBlock = self._product.block(self._product.reference_irrep) if symmetric else self._product.whole
         layout = self._block.layout
-        self._start = layout.index(*program.reference)
-        alpha, alpha_ids = pair_lists(layout.alpha, [(e.alpha_source, e.alpha_target) for e in excitations], rows=True)
-        beta, beta_ids = pair_lists(layout.beta, [(e.beta_source, e.beta_target) for e in excitations], rows=False)
-        self._factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
-        self._lists = (layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), self._factors)
+        small = layout.size * len(excitations) <= SMALL_WORK
+        self._runner = SmallRunner(excitations, layout) if small else SectorRunner(excitations, layout)
 
     def energy(self, parameters: FloatArray) -> float:
-        psi = self._run(parameters)
+        psi = self._forward(parameters)
         return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi))
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         angles = self._angles(parameters)
-        psi = self._forward(angles)
+        psi = self._runner.forward(self._program.reference, angles, self._watch)
         dual = self._block.apply(psi)
         energy = self._hamiltonian.core_energy + float(psi @ dual)
-        slopes = np.empty(angles.size)
-        kernels.sweep_back(psi, dual, *self._lists, angles, slopes)
+        slopes = self._runner.backward(psi, dual, angles, self._watch)
         gradient = np.bincount(self._parameter, weights=slopes * self._factor, minlength=self.n_parameters)
         return energy, gradient.astype(float)
 
     def state(self, parameters: FloatArray) -> FloatArray:
         """Amplitudes (alpha, beta), strings ascending."""
-        return self._block.layout.to_matrix(self._run(parameters))
+        return self._block.layout.to_matrix(self._forward(parameters))
 
     def facts(self, parameters: FloatArray, exact_vectors: FloatArray | None) -> StateFacts:
-        psi = self._run(parameters)
-        return state_facts(self._block, self._program.sector, psi, exact_vectors)
+        return state_facts(self._block, self._program.sector, self._forward(parameters).copy(), exact_vectors)
 
     def memory_bytes(self) -> int:
         return self._bytes
@@ -82,14 +83,8 @@ class SectorEngine:
     def _angles(self, parameters: FloatArray) -> FloatArray:
         return self._factor * np.asarray(parameters, float)[self._parameter]
 
-    def _run(self, parameters: FloatArray) -> FloatArray:
-        return self._forward(self._angles(parameters))
-
-    def _forward(self, angles: FloatArray) -> FloatArray:
-        psi = np.zeros(self._block.layout.size)
-        psi[self._start] = 1.0
-        kernels.rotate_all(psi, *self._lists, angles)
-        return psi
+    def _forward(self, parameters: FloatArray) -> FloatArray:
+        return self._runner.forward(self._program.reference, self._angles(parameters), self._watch)
 
 
 def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) -> int:
@@ -100,7 +95,7 @@ def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) ->
     alpha = {(e.alpha_source, e.alpha_target) for e in program.excitations}
     beta = {(e.beta_source, e.beta_target) for e in program.excitations}
     pairs = _pair_count(sector.n_orbitals, sector.n_alpha, alpha) + _pair_count(sector.n_orbitals, sector.n_beta, beta)
-    return estimated_bytes(sector, order, blocks=1) + 24 * pairs + 4 * 8 * sector.dimension // order
+    return estimated_bytes(sector, order, blocks=1) + 24 * pairs + 7 * 8 * sector.dimension // order
 
 
 def _pair_count(n_orbitals: int, n_electrons: int, excitations: set[OneSpin]) -> int:
@@ -133,7 +128,3 @@ def keeps_point_group(program: ExcitationProgram, orbital_irreps: IntArray) -> b
 def _is_null(e: Excitation) -> bool:
     """T - T+ vanishes where T only counts electrons."""
     return e.alpha_source == e.alpha_target and e.beta_source == e.beta_target
-
-
-def _plain(pairs: SpinPairs) -> tuple[IntArray, IntArray, IntArray, FloatArray]:
-    return pairs.first, pairs.start, pairs.end, pairs.sign

@@ -7,9 +7,11 @@ from dataclasses import dataclass
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
+from thalweg.circuit.program import Excitation
 from thalweg.kernels.bits import excitation_pairs
 from thalweg.operators.sector_layout import StringSpace
 
+#: (source, target) orbitals of one spin.
 OneSpin = tuple[tuple[int, ...], tuple[int, ...]]
 
 
@@ -29,8 +31,11 @@ class SpinPairs:
     sign: FloatArray
 
 
-def pair_lists(space: StringSpace, excitations: list[OneSpin], *, rows: bool) -> tuple[SpinPairs, IntArray]:
-    """The pairs of each different excitation, and which of them each of the given excitations is, shape (F,)."""
+def pair_lists(space: StringSpace, excitations: list[OneSpin], *, rows: bool, phase: FloatArray | None = None) -> tuple[SpinPairs, IntArray]:
+    """The pairs of each different excitation, and which of them each of the given excitations is, shape (F,).
+
+    phase: sign of each string against the natural order of orbitals, shape (N,); None where it is 1.
+    """
     known: dict[OneSpin, int] = {}
     which = np.array([known.setdefault(e, len(known)) for e in excitations], dtype=np.int64)
     firsts, starts, ends, signs = [], [], [], []
@@ -40,13 +45,18 @@ def pair_lists(space: StringSpace, excitations: list[OneSpin], *, rows: bool) ->
         firsts.append(total + np.searchsorted(start, space.first))  # strings are sorted by irrep
         starts.append(start)
         ends.append(end)
-        signs.append(sign)
+        signs.append(sign if phase is None else sign * phase[start] * phase[end])
         total += start.size
     start, end = _joined(starts, np.int64), _joined(ends, np.int64)
     if not rows:
         start, end = space.local[start], space.local[end]
     first = np.array(firsts, dtype=np.int64).reshape(len(known), space.first.size)
     return SpinPairs(first, start, end, _joined(signs, np.float64)), which
+
+
+def one_spin(e: Excitation, alpha: bool) -> OneSpin:
+    """What an excitation does to one spin."""
+    return (e.alpha_source, e.alpha_target) if alpha else (e.beta_source, e.beta_target)
 
 
 def _array(orbitals: tuple[int, ...]) -> IntArray:

@@ -1,0 +1,40 @@
+"""Runs an excitation program on a small sector: one kernel call for the whole program, one string pair after another."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from thalweg.arrays import FloatArray
+from thalweg.circuit.program import Excitation
+from thalweg.kernels import sector as kernels
+from thalweg.operators.sector_layout import SectorLayout
+from thalweg.simulate.sector_pairs import SpinPairs, one_spin, pair_lists
+from thalweg.watch import SILENT, Watch
+
+
+class SmallRunner:
+    """One program on one block of amplitudes, in program order."""
+
+    def __init__(self, excitations: list[Excitation], layout: SectorLayout) -> None:
+        self._layout = layout
+        alpha, alpha_ids = pair_lists(layout.alpha, [one_spin(e, True) for e in excitations], rows=True)
+        beta, beta_ids = pair_lists(layout.beta, [one_spin(e, False) for e in excitations], rows=False)
+        factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
+        self._lists = (layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), factors)
+
+    def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
+        """The state from the determinant with these (alpha, beta) masks."""
+        psi = np.zeros(self._layout.size)
+        psi[self._layout.index(*start)] = 1.0
+        kernels.rotate_all(psi, *self._lists, angles)
+        return psi
+
+    def backward(self, psi: FloatArray, dual: FloatArray, angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
+        """2 <dual|A_f|psi> of each factor with the later ones undone, shape (F,); psi and dual are used up."""
+        slopes = np.empty(angles.size)
+        kernels.sweep_back(psi, dual, *self._lists, angles, slopes)
+        return slopes
+
+
+def _plain(pairs: SpinPairs) -> tuple[np.ndarray, ...]:
+    return pairs.first, pairs.start, pairs.end, pairs.sign
