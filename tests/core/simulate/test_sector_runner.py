@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from support.hamiltonians import random_molecule
@@ -89,7 +91,7 @@ def test_factors_run_in_program_order_up_to_commuting_neighbours():
     plan = stretches(excitations, layout.alpha, layout.beta, layout.irrep)
     order = [f for stretch in plan for f in stretch.factors]
     assert sorted(order) == list(range(len(excitations)))
-    for early, late in zip(order, order[1:], strict=False):
+    for early, late in pairwise(order):
         if early > late:  # only an alpha-only and a beta-only factor may change places
             kinds = {bool(excitations[f].alpha_source) for f in (early, late)}
             assert kinds == {True, False}
