@@ -10,7 +10,7 @@ and fixed qubits. The last depends on the tile only through some parities ("keys
     terms (T, 3): rotations by local mask (tile bits), fixed mask (register bits), gate; each group sorted by local mask
     pairs (P, 2): controlled Z by local and fixed mask, two bits in all; each group sorted by local mask
     keys (Q,): masks of base states whose parities the joining table depends on
-`work` is (tables (rows, 2 * 2^t) as interleaved complex, made (rows,) bool, moments (2^t,), scratch row of operations (7,)).
+`work` is (tables (rows, 2 * 2^t) as interleaved complex, made (rows,) bool, moments (2^t,), `table_scratch()`).
 """
 
 from __future__ import annotations
@@ -51,46 +51,63 @@ def phase_table(base, number, groups, work, entries):  # type: ignore[no-untyped
 
 
 @njit(cache=True, nogil=True)
-def common_factor(base, index, groups, entries):  # type: ignore[no-untyped-def]
-    """The product of the gates that act on fixed qubits alone."""
-    terms, pairs = groups[1], groups[2]
-    real, imaginary = 1.0, 0.0
-    for k in range(index[0], index[1]):
-        if terms[k, 0] != 0:
-            break
-        cosine, sine = entries[terms[k, 2], 0], sign(base & terms[k, 1]) * entries[terms[k, 2], 2]
-        real, imaginary = real * cosine + imaginary * sine, imaginary * cosine - real * sine
-    for k in range(index[2], index[3]):
-        if pairs[k, 0] != 0:
-            break
-        if base & pairs[k, 1] == pairs[k, 1]:
-            real, imaginary = -real, -imaginary
-    return real, imaginary
+def product_of_terms(base, first, last, local, joining, terms, entries):  # type: ignore[no-untyped-def]
+    """(end, cosine, sine): terms first:end have this local mask; those wanted multiply to exp(-i angle/2 s), s = (-1)^popcount(j & local)."""
+    cosine, sine = 1.0, 0.0
+    while first < last and terms[first, 0] == local:
+        if local == 0 or (terms[first, 1] != 0) == joining:
+            gate = terms[first, 2]
+            c, s = entries[gate, 0], sign(base & terms[first, 1]) * entries[gate, 2]
+            cosine, sine = cosine * c - sine * s, sine * c + cosine * s
+        first += 1
+    return first, cosine, sine
 
 
 @njit(cache=True, nogil=True)
-def fill_table(table, joining, base, index, groups, op, entries):  # type: ignore[no-untyped-def]
+def parity_of_pairs(base, first, last, local, joining, pairs):  # type: ignore[no-untyped-def]
+    """(end, parity): pairs first:end have this local mask; the parity counts those wanted whose fixed qubits are all 1."""
+    parity = 0
+    while first < last and pairs[first, 0] == local:
+        fixed = pairs[first, 1]
+        if (local == 0 or (fixed != 0) == joining) and base & fixed == fixed:
+            parity ^= 1
+        first += 1
+    return first, parity
+
+
+@njit(cache=True, nogil=True)
+def common_factor(base, index, groups, entries):  # type: ignore[no-untyped-def]
+    """The product of the gates that act on fixed qubits alone."""
+    _, cosine, sine = product_of_terms(base, index[0], index[1], 0, 0, groups[1], entries)
+    _, parity = parity_of_pairs(base, index[2], index[3], 0, 0, groups[2])
+    side = 1.0 - 2.0 * parity
+    return side * cosine, -side * sine
+
+
+@njit(cache=True, nogil=True)
+def fill_table(table, joining, base, index, groups, scratch, entries):  # type: ignore[no-untyped-def]
     """The table of the gates that are all local (or, `joining` 1, those joining local and fixed qubits), doubled bit by bit.
 
     A gate whose highest local bit is q acts when the table has reached q, so that most gates act on short tables.
     """
-    terms, pairs = groups[1], groups[2]
+    op, own = scratch
     term, pair, entry = index[0], index[2], 8
     for j in range(16):
         table[j] = 1.0 - (j & 1)
     while True:
-        while term < index[1] and terms[term, 0] < entry:
-            if terms[term, 0] != 0 and (terms[term, 1] != 0) == joining:  # -i Z: positions exchange real and imaginary parts
-                op[1], op[2], op[3], op[4], op[5] = terms[term, 2], 1, 2 * terms[term, 0] + 1, terms[term, 1], 1
-                turn((table, table), 0, (0, entry >> 2), base, op, entries, table)
-            term += 1
-        while pair < index[3] and pairs[pair, 0] < entry:
-            local, fixed = pairs[pair, 0], pairs[pair, 1]
-            if local != 0 and (fixed != 0) == joining and base & fixed == fixed:
-                for j in range(2 * entry):
+        while term < index[1] and groups[1][term, 0] < entry:
+            local = groups[1][term, 0]
+            term, own[0, 0], own[0, 2] = product_of_terms(base, term, index[1], local, joining, groups[1], entries)
+            if local != 0 and (own[0, 2] != 0.0 or own[0, 0] != 1.0):
+                op[3] = 2 * local + 1
+                turn((table, table), 0, (0, entry >> 2), 0, op, own, table)
+        while pair < index[3] and groups[2][pair, 0] < entry:
+            local = groups[2][pair, 0]
+            pair, parity = parity_of_pairs(base, pair, index[3], local, joining, groups[2])
+            if local != 0 and parity == 1:
+                for j in range(2 * (local & -local), 2 * entry):
                     if (j >> 1) & local == local:
                         table[j] = -table[j]
-            pair += 1
         if 2 * entry >= table.size:
             return
         copy_vectors(table, 0, table, 2 * entry, 2 * entry)
@@ -105,6 +122,6 @@ def phase_slopes(base, index, terms, moments, gradient):  # type: ignore[no-unty
         gradient[terms[k, 2]] += sign(base & terms[k, 1]) * moments[terms[k, 0]]
 
 
-def empty_row() -> np.ndarray:
-    """A row of operations for `work`."""
-    return np.zeros(7, dtype=np.int64)
+def table_scratch() -> tuple[np.ndarray, np.ndarray]:
+    """The scratch part of `work`: a rotation with -i Z, whose positions exchange real and imaginary parts, and its matrix."""
+    return np.array([0, 0, 1, 0, 0, 1, 0], dtype=np.int64), np.zeros((1, 4))

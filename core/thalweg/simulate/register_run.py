@@ -9,7 +9,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.kernels import register as kernels
-from thalweg.kernels.register_phases import empty_row
+from thalweg.kernels.register_phases import table_scratch
 from thalweg.simulate.register_passes import Pass, Plan
 from thalweg.simulate.register_plan import FIRST
 from thalweg.watch import Watch
@@ -28,7 +28,7 @@ class PlanRunner:
         self._tables = aligned(plan.table_rows * 2 * tile)
         self._made = np.zeros(plan.table_rows, dtype=bool)
         self._moments = aligned(tile)
-        self._row = empty_row()
+        self._table_scratch = table_scratch()
 
     @staticmethod
     def bytes_needed(plan: Plan) -> int:
@@ -58,7 +58,7 @@ class PlanRunner:
         size, unit = 1 << part.local_bits, self._plan.unit
         scratch = states if part.tiles == 1 else tuple(buffer[: size << unit] for buffer in self._scratch)
         tables = self._tables[: part.table_rows * 2 * size].reshape(part.table_rows, 2 * size)
-        work = (tables, self._made, self._moments[:size], self._row)
+        work = (tables, self._made, self._moments[:size], self._table_scratch)
         self._made[:] = False
         layout = (unit, part.fixed, part.offsets, part.chunk)
         for first, last in _parts(part.tiles, part.cost * size):
