@@ -83,7 +83,7 @@ class SearchSection(SectionBody):
         self.forms = [
             OptionsForm(StudySpec, only=("starts", "seed")),
             OptionsForm(Target, "target"),
-            OptionsForm(StudySpec, only=("exact", "classical", "memory_gib")),
+            OptionsForm(StudySpec, only=("exact", "exact_spin", "classical", "memory_gib")),
         ]
         self.rules = OptionsForm(StopRules, "stop")
         self.rules_fold = Fold("Stop rules")

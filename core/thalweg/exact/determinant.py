@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import heapq
+import itertools
 from collections.abc import Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -13,7 +14,7 @@ from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.exact.davidson import Eigenpairs, lowest_pairs
 from thalweg.kernels.spin_strings import small_matrix
-from thalweg.operators.fermion import FermionHamiltonian
+from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.sector_hamiltonian import SectorHamiltonian, SymmetryBlock
 from thalweg.operators.spin_square import s_squared
 from thalweg.watch import SILENT, Watch
@@ -24,6 +25,10 @@ DENSE_LIMIT = 400
 ROUGH, CONVERGED = 3e-2, 1e-7
 #: Levels closer than this are one level, Eh.
 SAME_LEVEL = 1e-7
+#: <S^2> nearer than this is the same spin.
+SAME_SPIN = 0.05
+#: Levels that are worked out at most in the search for one of a given spin.
+MOST_LEVELS = 64
 #: Determinants of lowest energy from which Davidson's guesses are made.
 GUESS_SPACE = 200
 
@@ -59,15 +64,25 @@ class _Found:
 
 
 def lowest_level(
-    hamiltonian: FermionHamiltonian, *, watch: Watch = SILENT, budget_bytes: int, sector_hamiltonian: SectorHamiltonian | None = None
+    hamiltonian: FermionHamiltonian,
+    *,
+    watch: Watch = SILENT,
+    budget_bytes: int,
+    sector_hamiltonian: SectorHamiltonian | None = None,
+    fixed_spin: bool = False,
 ) -> ExactAnswer:
     """The lowest level of the (N_alpha, N_beta) sector, its degeneracy and the gap to the next.
 
-    Raises StudyError when the work would not fit the memory budget, Stopped when asked to stop.
+    With `fixed_spin` the lowest with S = |S_z| instead, the multiplicity that the sector was asked for; the gap is then that to the next
+    level of this spin, None where that lies beyond the levels worked out.
+    Raises StudyError when the work would not fit the memory budget or no state of the spin is found, Stopped when asked to stop.
     """
     search = _Search(hamiltonian, watch, budget_bytes, sector_hamiltonian)
-    (ground,), following = search.levels(1)
-    remarks = _remarks(hamiltonian, search.product, ground)
+    if fixed_spin:
+        ground, following, remarks = _lowest_of_spin(search, hamiltonian.sector)
+    else:
+        (ground,), following = search.levels(1)
+        remarks = _remarks(hamiltonian, search.product, ground)
     if ground.residual > CONVERGED:
         remarks += (f"The exact level is converged only to a residual of {ground.residual:.1e} Eh.",)
     return ExactAnswer(
@@ -80,6 +95,38 @@ def lowest_level(
         residual=ground.residual,
         remarks=remarks,
     )
+
+
+def _lowest_of_spin(search: _Search, sector: Sector) -> tuple[Level, float | None, tuple[str, ...]]:
+    """The lowest level with S = |S_z|, the energy of the next one of this spin, and a remark where other spins lie lower."""
+    spin = abs(sector.s_z)
+    wanted, count = spin * (spin + 1.0), 2
+    while True:
+        levels, _ = search.levels(count)
+        pure = [part for part in (_of_spin(level, wanted) for level in levels) if part is not None]
+        if pure:
+            break
+        if len(levels) < count or count >= MOST_LEVELS:
+            name = spin_name(wanted)
+            raise StudyError(
+                f"No {name} was found", f"none of the {len(levels)} lowest levels is one", "Let the spin of the exact state be `any`", "exact_spin"
+            )
+        count *= 2
+    lower = pure[0].energy - levels[0].energy
+    remarks = ()
+    if lower > SAME_LEVEL:
+        found = levels[0].s_squared[0]
+        remarks = (f"The exact state is the lowest {spin_name(wanted)}; a {spin_name(found)}, S^2 = {found:.2f}, lies {1e3 * lower:.3g} mEh lower.",)
+    return pure[0], pure[1].energy if len(pure) > 1 else None, remarks
+
+
+def _of_spin(level: Level, wanted: float) -> Level | None:
+    """The states of the level with this <S^2>; None where there are none."""
+    kept = [k for k, square in enumerate(level.s_squared) if abs(square - wanted) < SAME_SPIN]
+    if not kept:
+        return None
+    irreps, squares = tuple(level.irreps[k] for k in kept), tuple(level.s_squared[k] for k in kept)
+    return replace(level, irreps=irreps, vectors=level.vectors[kept], s_squared=squares)
 
 
 def lowest_levels(
@@ -113,7 +160,8 @@ class _Search:
     def levels(self, count: int) -> tuple[tuple[Level, ...], float | None]:
         """The lowest levels with all their states, and the energy of the one after them (None where there is none)."""
         wanted = count + 1
-        self._look(wanted)
+        if not self._found:
+            self._look(wanted)
         while True:
             self._converge(wanted, count)
             groups, ceiling = self._groups(count + 1)
@@ -185,15 +233,31 @@ class _Search:
         return ((float(value), index, k) for k, value in enumerate(self._found[index].pairs.values))
 
     def _level(self, group: list[tuple[float, int, int]]) -> Level:
-        vectors, squares, residuals = [], [], []
-        for _, i, k in group:
+        vectors: list[FloatArray] = []
+        irreps, squares, residuals = [], [], []
+        for i in sorted({i for _, i, _ in group}):
             found = self._found[i]
-            flat = np.ascontiguousarray(found.pairs.vectors[k])
-            vectors.append(found.block.layout.to_matrix(flat))
-            squares.append(s_squared(found.block, self._hamiltonian.sector, flat))
-            residuals.append(float(found.pairs.residuals[k]))
-        irreps = tuple(self._found[i].irrep for _, i, _ in group)
-        return Level(group[0][0] + self._hamiltonian.core_energy, irreps, np.stack(vectors), tuple(squares), max(residuals))
+            members = [k for _, j, k in group if j == i]
+            states, s_squares = _pure_spins(found.block, self._hamiltonian.sector, found.pairs.vectors[members])
+            vectors += [found.block.layout.to_matrix(state) for state in states]
+            squares += s_squares
+            irreps += [found.irrep] * len(members)
+            residuals += [float(found.pairs.residuals[k]) for k in members]
+        return Level(group[0][0] + self._hamiltonian.core_energy, tuple(irreps), np.stack(vectors), tuple(squares), max(residuals))
+
+
+def _pure_spins(block: SymmetryBlock, sector: Sector, states: FloatArray) -> tuple[FloatArray, list[float]]:
+    """States of one level and one irrep, shape (k, size), turned into eigenstates of S^2, and their <S^2> ascending."""
+    states = np.ascontiguousarray(states)
+    squares = [s_squared(block, sector, state) for state in states]
+    if len(states) == 1:
+        return states, squares
+    matrix = np.diag(squares)
+    for i, j in itertools.combinations(range(len(states)), 2):  # the mixed element from the value in the sum of the two
+        both = s_squared(block, sector, (states[i] + states[j]) / np.sqrt(2.0))
+        matrix[i, j] = matrix[j, i] = both - 0.5 * (squares[i] + squares[j])
+    values, turn = np.linalg.eigh(matrix)
+    return np.ascontiguousarray(turn.T @ states), [max(0.0, float(v)) for v in values]
 
 
 def _dense(block: SymmetryBlock) -> Eigenpairs:

@@ -14,6 +14,7 @@ from thalweg.storage.files import read_limited, write_atomically
 from thalweg.storage.migrations import CURRENT_FORMAT, migrate
 from thalweg.storage.plain_json import first_not_finite, json_text, read_json
 from thalweg.study.result import StudyResult
+from thalweg.study.scan_result import ScanResult
 from thalweg.study.spec import StudySpec
 
 #: The ending that names a session file (any other is read as well).
@@ -37,6 +38,14 @@ class Run(SessionPart):
     note: str = Field(default="", description="The person's own remark.")
 
 
+class ScanRun(SessionPart):
+    """One scan; the result holds its settings and a whole result for every point."""
+
+    number: int = Field(ge=1, description="Number of the scan in its session, counted from 1; not given twice.")
+    result: ScanResult
+    note: str = Field(default="", description="The person's own remark.")
+
+
 class Session(SessionPart):
     """Everything that a colleague needs to see the same pictures without running again, and to run again."""
 
@@ -48,18 +57,28 @@ class Session(SessionPart):
     modified: datetime = Field(default_factory=now, description="ISO 8601, with offset.")
     setup: StudySpec | None = Field(default=None, description="The set-up as it was last edited.")
     runs: tuple[Run, ...] = ()
+    scans: tuple[ScanRun, ...] = ()
 
     @model_validator(mode="after")
     def _numbers_are_unique(self) -> Session:
-        numbers = [run.number for run in self.runs]
-        if len(set(numbers)) != len(numbers):
-            raise ValueError("two runs carry the same number")
+        for what, rows in (("runs", self.runs), ("scans", self.scans)):
+            if len({row.number for row in rows}) != len(rows):
+                raise ValueError(f"two {what} carry the same number")
         return self
 
     def with_result(self, result: StudyResult, note: str = "") -> Session:
         """A copy with one more run, under the next free number."""
         number = 1 + max((run.number for run in self.runs), default=0)
         return self.model_copy(update={"runs": (*self.runs, Run(number=number, result=result, note=note)), "modified": now()})
+
+    def with_scan(self, result: ScanResult, number: int | None = None) -> Session:
+        """A copy with one more scan under the next free number; with the `number` of a scan that is there, that one is replaced."""
+        old = next((scan for scan in self.scans if scan.number == number), None)
+        if old is not None:
+            changed = tuple(scan.model_copy(update={"result": result}) if scan is old else scan for scan in self.scans)
+        else:
+            changed = (*self.scans, ScanRun(number=1 + max((scan.number for scan in self.scans), default=0), result=result))
+        return self.model_copy(update={"scans": changed, "modified": now()})
 
 
 def save_session(session: Session, path: Path) -> None:

@@ -5,15 +5,17 @@ from __future__ import annotations
 import time
 from collections import OrderedDict
 from collections.abc import Callable, Hashable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from thalweg.ansatz.ground import Ground
 from thalweg.circuit.program import ExcitationProgram, GateProgram, Program
 from thalweg.encoding.encoded import EncodedSystem, encode_fermions, encode_spins
+from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine
 from thalweg.study.spec import StudySpec
+from thalweg.systems.own_reference import with_reference
 from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
 from thalweg.watch import SILENT, Watch
 
@@ -63,7 +65,8 @@ class Recent:
         return self._kept[key]
 
 
-_systems, _encodings, _products, _answers, _engines = Recent(4), Recent(4), Recent(2), Recent(4), Recent(1)
+_systems, _references, _encodings, _answers = Recent(4), Recent(4), Recent(4), Recent(4)
+_products, _engines = Recent(2), Recent(1)
 
 
 def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> Problem:
@@ -73,6 +76,8 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     """
     begun = time.perf_counter()
     prepared = prepare_system(spec, watch, neighbour)
+    if spec.reference:
+        prepared = _references.get((id(prepared), spec.reference), lambda: (prepared, with_reference(prepared, spec.reference)))[1]
     watch.stage("Encoding")
     encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared)))[1]
     watch.stage("Building the trial state")
@@ -80,6 +85,22 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
     program = spec.ansatz.build(ground)
     return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
+
+
+def with_system(problem: Problem, prepared: PreparedSystem) -> Problem:
+    """The study of another Hamiltonian on the same orbitals or sites: trial state, register and its symmetries stay."""
+    encoded = problem.encoded
+    full = prepared.spins
+    if prepared.fermions is not None:
+        from thalweg.encoding.linear import map_hamiltonian
+
+        assert encoded.linear is not None
+        full = map_hamiltonian(prepared.fermions, encoded.linear, problem.spec.encoding.cut)
+    assert full is not None
+    working = encoded.tapering.expansion(full)
+    assert working is not None
+    encoded = replace(encoded, full=full, working=working)
+    return replace(problem, prepared=prepared, encoded=encoded, ground=replace(problem.ground, fermions=prepared.fermions, qubits=working))
 
 
 def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
@@ -156,7 +177,7 @@ def exact_answer(problem: Problem, watch: Watch = SILENT) -> ExactAnswer | None:
     """The exact lowest level in the representation of the sector (fermions) or the register (spins)."""
     if not problem.spec.exact:
         return None
-    key = (id(problem.prepared), problem.budget_bytes)
+    key = (id(problem.prepared), problem.budget_bytes, problem.spec.exact_spin)
     answer: ExactAnswer = _answers.get(key, lambda: (problem.prepared, _diagonalise(problem, watch)))[1]
     return answer
 
@@ -172,7 +193,15 @@ def _diagonalise(problem: Problem, watch: Watch) -> ExactAnswer:
     if problem.prepared.fermions is not None:
         from thalweg.exact.determinant import lowest_level
 
-        return lowest_level(problem.prepared.fermions, watch=watch, budget_bytes=problem.budget_bytes, sector_hamiltonian=sector_product(problem))
+        return lowest_level(
+            problem.prepared.fermions,
+            watch=watch,
+            budget_bytes=problem.budget_bytes,
+            sector_hamiltonian=sector_product(problem),
+            fixed_spin=problem.spec.exact_spin == "fixed",
+        )
+    if problem.spec.exact_spin == "fixed":
+        raise StudyError("The spin of the exact state cannot be fixed", "this system has sites instead of electrons", "Set it to `any`", "exact_spin")
     from thalweg.exact.spin_sector import lowest_level_spins
 
     assert problem.prepared.spins is not None

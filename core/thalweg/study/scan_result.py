@@ -27,6 +27,13 @@ class CurvePoint(Record):
     flags: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     failure: str = ""
+    details: str = ""  # the traceback where the failure is a defect of the program
+
+    @property
+    def energy_per_site(self) -> float | None:
+        """The variational energy divided by the sites of a lattice; None for molecules and failed points."""
+        sites = self.result.system_facts.get("sites") if self.result is not None else None
+        return self.result.energy / sites if self.result is not None and sites else None
 
 
 class CurveFigures(Record):
@@ -39,6 +46,7 @@ class CurveFigures(Record):
     omega_e_x_e: float | None = None
     b_e: float | None = None
     fit: str = ""
+    depth: str = ""  # how d_e was taken
     remarks: tuple[str, ...] = ()
 
 
@@ -60,6 +68,7 @@ class ScanResult(Record):
     variational: CurveFigures = CurveFigures()
     reduced_mass: float | None = None
     transition: float | None = None  # coordinate of the extremum of the second derivative, for couplings
+    level_crossings: tuple[float, ...] = ()  # coordinates where the exact curve has a kink, for couplings
     remarks: tuple[str, ...] = ()
     verdict: str = ""
     seconds: float = 0.0

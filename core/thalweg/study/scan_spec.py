@@ -18,6 +18,16 @@ AnyPath = Annotated[BondPath | AnglePath | DihedralPath | StretchPath | BreatheP
 BLOCK = 8
 
 
+class Literature(Options):
+    """Values that the person typed, to stand beside the fitted ones; none is ever filled in by the program."""
+
+    r_e: float | None = option(None, "r_e", "Place of the minimum, in the unit of the coordinate.", gt=0)
+    d_e: float | None = option(None, "D_e", "Depth of the well, in the energy unit of the curve.", gt=0)
+    omega_e: float | None = option(None, "omega_e", "Harmonic frequency.", unit="cm^-1", gt=0)
+    omega_e_x_e: float | None = option(None, "omega_e x_e", "Anharmonicity.", unit="cm^-1")
+    source: str = option("", "Source", "Where the values were published.")
+
+
 class ScanSpec(Options):
     """One scan. Everything that its numbers depend on; where it runs is not part of it."""
 
@@ -27,6 +37,7 @@ class ScanSpec(Options):
     follow_orbitals: bool = option(True, "Follow orbitals", "Choose the active orbitals of a point by their overlap with its neighbour's.")
     both_directions: bool = option(False, "Both directions", "Run the curve from both ends and keep the lower energy at each point.")
     spin: Literal["any", "fixed"] = option("any", "Spin of the exact state", "`fixed` keeps the exact reference at the multiplicity asked for.")
+    literature: Literature = Literature()
     reduced_mass: float = option(0.0, "Reduced mass", "For the frequency; 0 takes the principal isotopes of a diatomic.", unit="u", ge=0)
 
     @field_validator("points")
@@ -36,8 +47,9 @@ class ScanSpec(Options):
         return tuple(sorted(set(points)))
 
     def at(self, value: float) -> StudySpec:
-        """The study of one point."""
-        return self.path.at(self.study, value)
+        """The study of one point. StudyError where the path does not fit the system."""
+        study = self.study.model_copy(update={"exact_spin": "fixed"}) if self.spin == "fixed" else self.study
+        return self.path.at(study, value)
 
 
 def linear_points(first: float, last: float, count: int) -> tuple[float, ...]:

@@ -8,13 +8,32 @@ from __future__ import annotations
 import json
 from typing import Annotated, Any, Literal
 
-from pydantic import Field, ValidationError
+from pydantic import Field, ValidationError, field_validator
 
 from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.errors import StudyError
 from thalweg.evaluate import EVALUATIONS, Exact, ExactWithError, Shots
-from thalweg.optimize import COBYLA, LBFGSB, OPTIMIZERS, SLSQP, Adam, GradientDescent, Momentum, NelderMead
+from thalweg.optimize import (
+    COBYLA,
+    GCANS,
+    ICANS,
+    LBFGSB,
+    OPTIMIZERS,
+    SLSQP,
+    SPSA,
+    Adam,
+    ConjugateGradient,
+    FreeAxis,
+    GradientDescent,
+    ImaginaryTime,
+    Momentum,
+    NaturalGradient,
+    NelderMead,
+    Nesterov,
+    OperatorSampling,
+    SequentialMinimal,
+)
 from thalweg.optimize.objective import StopRules
 from thalweg.options import Options, option
 from thalweg.registry import Alternatives
@@ -26,7 +45,26 @@ from thalweg.units import CHEMICAL_ACCURACY
 AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="key")]
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
 AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | Adaptive | NumberConserving | HardwareEfficient, Field(discriminator="key")]
-AnyOptimizer = Annotated[LBFGSB | SLSQP | COBYLA | NelderMead | GradientDescent | Momentum | Adam, Field(discriminator="key")]
+AnyOptimizer = Annotated[
+    LBFGSB
+    | SLSQP
+    | ConjugateGradient
+    | COBYLA
+    | NelderMead
+    | SPSA
+    | SequentialMinimal
+    | FreeAxis
+    | GradientDescent
+    | Momentum
+    | Nesterov
+    | Adam
+    | NaturalGradient
+    | ImaginaryTime
+    | ICANS
+    | GCANS
+    | OperatorSampling,
+    Field(discriminator="key"),
+]
 
 AnyEvaluation = Annotated[Exact | Shots | ExactWithError, Field(discriminator="key")]
 
@@ -63,6 +101,16 @@ class DepthLadder(Options):
     least_gain: float = option(1e-6, "Least gain", "Stop climbing when one layer more lowers the energy by less.", unit="Eh", ge=0, advanced=True)
 
 
+REFERENCE_HELP = (
+    "Empty: that of the system, such as the Hartree-Fock determinant. Otherwise the occupation of each active orbital, as in `22ab00` "
+    "(2 pair, a or b one electron, 0 empty), or one bit for each spin orbital or site."
+)
+CONTINUATION_HELP = (
+    "Come to the full Hamiltonian in this many steps from the mean-field one (for spins from the terms that the reference minimises), each "
+    "searched from the last; 0 begins at the full one. For trial states that do not grow."
+)
+
+
 class StudySpec(Options):
     """One study. The union members are told apart by their `key`."""
 
@@ -74,11 +122,24 @@ class StudySpec(Options):
     stop: StopRules = StopRules()
     target: Target = Target()
     ladder: DepthLadder = DepthLadder()
+    reference: str = option("", "Reference", REFERENCE_HELP, advanced=True)
+    continuation: int = option(0, "Continuation steps", CONTINUATION_HELP, ge=0, le=1000, advanced=True)
     classical: tuple[ClassicalMethod, ...] = option((), "Classical methods", "Reference figures to compute beside the exact one.")
     exact: bool = option(True, "Exact energy", "Diagonalise the Hamiltonian in its sector beside the minimisation.")
+    exact_spin: Literal["any", "fixed"] = option(
+        "any",
+        "Spin of the exact state",
+        "`any` takes the lowest state of the sector, `fixed` the lowest of the multiplicity asked for (electrons only).",
+    )
     starts: int = option(1, "Starts", "Number of independent starts; the lowest counts.", ge=1, le=1000)
     seed: int = option(1, "Seed", "Seed of every random choice.", ge=0, le=2**31 - 1)
     memory_gib: float = option(4.0, "Memory budget", "Refuse work that would need more memory than this.", unit="GiB", gt=0, advanced=True)
+
+    @field_validator("reference", mode="before")
+    @classmethod
+    def _digits_are_text(cls, value: Any) -> Any:
+        """`2200` on a command line or in a hand-written file is read as a number before it gets here."""
+        return str(value) if isinstance(value, int) and not isinstance(value, bool) else value
 
 
 #: Section of the spec -> its alternatives, for forms, the terminal and contract tests.

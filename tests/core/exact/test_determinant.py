@@ -96,3 +96,46 @@ def test_stop_is_heard(monkeypatch):
 )
 def test_spins_have_their_names(square, name):
     assert spin_name(square) == name
+
+
+@pytest.mark.parametrize(
+    ("atoms", "gap_to_triplet", "dense_limit"),
+    [("O 0 0 0; O 0 0 1.2075", True, 1), ("O 0 0 0; O 0 0 1.2075", True, 400), ("H 0 0 0; H 0 0 .74", False, 400)],
+)
+def test_the_lowest_singlet_is_found_below_or_above_a_triplet(atoms, gap_to_triplet, dense_limit, monkeypatch):
+    from pyscf import fci
+
+    monkeypatch.setattr(determinant, "DENSE_LIMIT", dense_limit)
+    h = molecule(atoms)
+    answer = lowest_level(h, budget_bytes=BUDGET, fixed_spin=True)
+    solver = fci.addons.fix_spin_(fci.direct_spin1.FCI().set(conv_tol=1e-11, max_cycle=200, verbose=0), ss=0)
+    electrons = (h.sector.n_alpha, h.sector.n_beta)
+    oracle, _ = solver.kernel(np.array(h.one_body), np.array(h.two_body), h.n_orbitals, electrons, ecore=h.core_energy)
+    assert answer.energy == pytest.approx(oracle, abs=1e-7)
+    assert answer.s_squared == pytest.approx(0.0, abs=1e-6)
+    assert bool(answer.remarks) == gap_to_triplet
+    if gap_to_triplet:
+        assert answer.energy > lowest_level(h, budget_bytes=BUDGET).energy + 1e-3
+        assert "a triplet, S^2 = 2.00, lies" in answer.remarks[0]
+
+
+def test_spins_that_share_a_level_are_told_apart():
+    # Two hydrogen atoms 60 angstrom apart: singlet and triplet have one energy, and the solver mixes them at will.
+    h = molecule("H 0 0 0; H 0 0 60", symmetry=False)
+    level = lowest_levels(h, 1, budget_bytes=BUDGET)[0]
+    assert sorted(level.s_squared) == pytest.approx([0.0, 2.0], abs=1e-9)
+    answer = lowest_level(h, budget_bytes=BUDGET, fixed_spin=True)
+    assert (answer.degeneracy, answer.s_squared) == (1, pytest.approx(0.0, abs=1e-9))
+
+
+def test_a_spin_that_no_state_has_is_refused():
+    h = random_molecule(2, 2, 2)
+    assert lowest_level(h, budget_bytes=BUDGET, fixed_spin=True).degeneracy == 1
+    with pytest.raises(StudyError, match="No singlet was found"):
+        determinant._lowest_of_spin(_OnlyTriplets(), h.sector)
+
+
+class _OnlyTriplets:
+    def levels(self, count):
+        level = determinant.Level(-1.0, (0,), np.zeros((1, 1, 1)), (2.0,), 0.0)
+        return (level,) * count, None
