@@ -35,7 +35,7 @@ def first_order_amplitudes(hamiltonian: FermionHamiltonian, program: ExcitationP
 
 def amplitudes_of(hamiltonian: FermionHamiltonian, excitations: tuple[Excitation, ...]) -> FloatArray:
     """The amplitude of each excitation by itself, shape (F,); infinite where the two determinants have one energy."""
-    fock = tuple(_fock(hamiltonian, spin) for spin in (0, 1))
+    fock = tuple(fock_matrix(hamiltonian, spin) for spin in (0, 1))
     return np.array([_amplitude(e, hamiltonian, fock) for e in excitations])
 
 
@@ -52,7 +52,7 @@ def _leads_away(e: Excitation, reference: tuple[int, int]) -> bool:
     return all(all(mask >> p & 1 for p in source) and not any(mask >> p & 1 for p in target) for source, target, mask in spins)
 
 
-def _fock(hamiltonian: FermionHamiltonian, spin: int) -> FloatArray:
+def fock_matrix(hamiltonian: FermionHamiltonian, spin: int) -> FloatArray:
     """h_pq + sum_r (pq|rr) over both spins - sum_r (pr|rq) over the same spin, shape (M, M)."""
     every = np.arange(hamiltonian.n_orbitals)
     fock = hamiltonian.one_body.copy()

@@ -122,7 +122,7 @@ class Course:
         problem = replace(self.problem, program=program)
         engine = self.engine(program) if engine is None else engine
         first: list[Progress] = []
-        objective = self._objective(problem, engine, first)
+        objective = self._objective(problem, engine, self._rules(), self.target_energy, self._reporting(first))
         reason = self._search(objective, start)
         if np.isfinite(objective.best_energy):
             objective.conclude()
@@ -141,6 +141,17 @@ class Course:
             begin.gradient_norm or 0.0,
             objective.best_standard_error,
         )
+
+    def aside(self, problem: Problem, start: FloatArray, gradient: float) -> FloatArray:
+        """The best parameters for another Hamiltonian, to a gradient of `gradient` at best. Its cost is counted, its iterates are not shown."""
+        rules = self._rules()
+        loose = rules.model_copy(update={"gradient": max(gradient, rules.gradient), "at_target": False})
+        objective = self._objective(problem, make_engine(problem, self.watch), loose, None, lambda progress: None)
+        reason = self._search(objective, start)
+        self._spent += objective.spent
+        if reason == "stopped-by-person":
+            raise Stopped(reason)
+        return objective.best_parameters if np.isfinite(objective.best_energy) else start
 
     def take_step(self, descent: Descent, added: tuple[str, ...], largest_slope: float | None) -> None:
         """Records and reports what the trial state has grown to."""
@@ -204,9 +215,9 @@ class Course:
                 raise
             return stop.reason
 
-    def _objective(self, problem: Problem, engine: Engine, first: list[Progress]) -> CountedObjective:
+    def _reporting(self, first: list[Progress]) -> Callable[[Progress], None]:
+        """Shows iterates with the counts of the whole course, and keeps them; `first` takes all of this minimisation."""
         iterations, spent, seconds = self._iterations, self._spent, self._seconds
-        source = search_source(problem, engine, self._draws, self.watch)
 
         def report(progress: Progress) -> None:
             first.append(progress)
@@ -223,11 +234,16 @@ class Course:
             self._columns.append(moved)
             self._emit(Iteration(start=self.index, **vars(moved)))
 
+        return report
+
+    def _objective(
+        self, problem: Problem, engine: Engine, rules: StopRules, target_energy: float | None, report: Callable[[Progress], None]
+    ) -> CountedObjective:
         return CountedObjective(
-            source,
+            search_source(problem, engine, self._draws, self.watch),
             offset=self.problem.prepared.reference_energy,
-            rules=self._rules(),
-            target_energy=self.target_energy,
+            rules=rules,
+            target_energy=target_energy,
             report=report,
             should_stop=self._should_stop,
         )
@@ -241,10 +257,13 @@ class Course:
         return rules.model_copy(update={"evaluations": evaluations, "shots": shots, "seconds": seconds})
 
     def _refuse_spent(self) -> None:
+        """Raises Stopped where a limit is used up; the first minimisation that is shown has one evaluation at least."""
         rules = self.problem.spec.stop
+        if not self._columns:
+            return
         if rules.evaluations and self._spent.evaluations >= rules.evaluations:
             raise Stopped("evaluations")
         if rules.shots and self._spent.shots >= rules.shots:
             raise Stopped("shots")
-        if rules.seconds and self._columns and self._seconds >= rules.seconds:
+        if rules.seconds and self._seconds >= rules.seconds:
             raise Stopped("seconds")

@@ -8,6 +8,7 @@ from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import FloatArray
 from thalweg.exact.answer import ExactAnswer
 from thalweg.study.assemble import assemble
+from thalweg.study.continuation import follow
 from thalweg.study.course import Course
 from thalweg.study.depth_ladder import climb
 from thalweg.study.events import AnyEvent, Finished, Started, Warned, watch_into
@@ -54,12 +55,14 @@ def run_from(
 
 
 def search(course: Course, initial: FloatArray | None) -> SearchEnd:
-    """One start by the way that the settings name: growth, a depth ladder, or one minimisation of a fixed trial state."""
+    """One start by the way that the settings name: growth, a depth ladder, continuation, or one minimisation of a fixed trial state."""
     spec = course.problem.spec
     if isinstance(spec.ansatz, Adaptive):
         return grow(course, spec.ansatz)
     if spec.ladder.on:
         return climb(course)
+    if spec.continuation > 1 and initial is None:
+        return follow(course, spec.continuation)
     descent = course.minimise(course.problem.program, course.first_parameters(initial))
     return descent.end(descent.reason)
 
