@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 import json
+from typing import Any
 
 import numpy as np
 import pytest
 from support.sources import PlainSource
 
 from thalweg.errors import Stopped, StudyError
+from thalweg.estimate import AXES, HARMONICS, METRIC, SHOTS
 from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import CountedObjective, StopRules
+from thalweg.optimize.settings import refuse_unless_offered
 from thalweg.study.result import STOP_REASONS
 from thalweg.study.spec import SECTIONS, DepthLadder, StudySpec, Target, spec_from_data, with_setting
 from thalweg.systems import Molecule
@@ -121,21 +124,41 @@ def periodic(x: np.ndarray) -> tuple[float, np.ndarray]:
     return float(value), gradient
 
 
+def one_qubit(x: np.ndarray) -> tuple[float, np.ndarray]:
+    """<0|U+ (0.3 X + 0.4 Y + 1.2 Z) U|0> for U = R_z(c) R_y(b) R_z(a), whose lowest value is -1.3."""
+    _, b, c = x.tolist()
+    bloch = np.array([np.sin(b) * np.cos(c), np.sin(b) * np.sin(c), np.cos(b)])
+    by_b = np.array([np.cos(b) * np.cos(c), np.cos(b) * np.sin(c), -np.sin(b)])
+    by_c = np.array([-np.sin(b) * np.sin(c), np.sin(b) * np.cos(c), 0.0])
+    field = np.array([0.3, 0.4, 1.2])
+    return float(field @ bloch), np.array([0.0, field @ by_b, field @ by_c])
+
+
+#: Function, start, lowest value, and what its source knows: degree in every parameter, bound of second derivatives, gates with free axes.
 PROBLEMS = {
-    "quadratic": (quadratic, np.zeros(4), 0.0),
-    "curved-valley": (curved_valley, np.array([-0.5, 0.5]), 0.0),
-    "periodic": (periodic, np.zeros(3), -3.0),
+    "quadratic": (quadratic, np.zeros(4), 0.0, {"steepness": 4.0}),
+    "curved-valley": (curved_valley, np.array([-0.5, 0.5]), 0.0, {"steepness": 60.0}),
+    "periodic": (periodic, np.zeros(3), -3.0, {"degree": 1, "steepness": 1.5}),
+    "one-qubit": (one_qubit, np.array([0.1, 0.4, -0.3]), -1.3, {"degree": 1, "steepness": 1.5, "triples": ((0, 1, 2),)}),
 }
 SETTINGS_OF = {
     "gradient-descent": {"max_iterations": 5000, "step": 0.03},
     "momentum": {"max_iterations": 5000, "step": 0.02},
+    "nesterov": {"max_iterations": 5000, "step": 0.02},
     "adam": {"max_iterations": 5000},
+    "spsa": {"max_iterations": 4000, "perturbation": 0.003, "first_step": 0.1},
+    "natural-gradient": {"max_iterations": 5000, "step": 0.03},
+    "icans": {"max_iterations": 10_000},
+    "gcans": {"max_iterations": 10_000},
+    "operator-sampling": {"max_iterations": 10_000},
 }
 OFFSET = 1.0
 
 
 class Account:
     """Every call of a problem and every report of its objective."""
+
+    source: PlainSource
 
     def __init__(self, function, rules: StopRules, stop_after: int = 10**9) -> None:
         self.points: list[np.ndarray] = []
@@ -144,9 +167,11 @@ class Account:
         self.objective: CountedObjective
         self._rules = rules
 
-    def make(self, n: int) -> CountedObjective:
+    def make(self, n: int, **known: Any) -> CountedObjective:
+        """What the source knows is `known`; sines of degree one where nothing is said, so that every optimiser runs."""
+        self.source = PlainSource(self._call, n, **({"degree": 1, "steepness": 60.0} | known))
         self.objective = CountedObjective(
-            PlainSource(self._call, n),
+            self.source,
             offset=OFFSET,
             rules=self._rules,
             target_energy=None,
@@ -160,9 +185,9 @@ class Account:
         return self._function(x)
 
 
-def minimise(key: str, account: Account, start: np.ndarray) -> str:
+def minimise(key: str, account: Account, start: np.ndarray, **known: Any) -> str:
     optimiser = OPTIMIZERS.get(key)(**SETTINGS_OF.get(key, {}))
-    objective = account.make(start.size)
+    objective = account.make(start.size, **known)
     before = start.copy()
     try:
         objective.begin(start)
@@ -176,11 +201,27 @@ def minimise(key: str, account: Account, start: np.ndarray) -> str:
 @pytest.mark.parametrize("problem", PROBLEMS)
 @pytest.mark.parametrize("key", OPTIMIZERS.keys())
 def test_every_optimiser_finds_the_minimum_of_every_smooth_problem(key, problem):
-    function, start, lowest = PROBLEMS[problem]
+    function, start, lowest, known = PROBLEMS[problem]
     account = Account(function, StopRules(gradient=1e-6, evaluations=50_000))
-    reason = minimise(key, account, start)
-    assert account.objective.best_energy == pytest.approx(lowest, abs=1e-5)
-    assert reason in STOP_REASONS
+    optimiser, offers = OPTIMIZERS.get(key)(), offers_of(**known)
+    if optimiser.needs <= offers:
+        reason = minimise(key, account, start, **({"degree": -1} | known))
+        assert account.objective.best_energy == pytest.approx(lowest, abs=1e-5)
+        assert reason in STOP_REASONS
+    else:
+        with pytest.raises(StudyError) as error:
+            refuse_unless_offered(optimiser, offers, "Exact")
+        assert error.value.field == "optimizer"
+
+
+def offers_of(degree: int = -1, steepness: float = 1.0, triples: tuple = ()) -> frozenset[str]:
+    """What the sources of these problems give beside values and gradients: shots and metric always."""
+    return frozenset([SHOTS, METRIC] + [HARMONICS] * (degree >= 0) + [AXES] * bool(triples))
+
+
+def test_every_optimiser_has_a_problem_that_offers_what_it_needs():
+    best = [offers_of(**known) for _, _, _, known in PROBLEMS.values()]
+    assert all(any(cls.needs <= offers for offers in best) for cls in OPTIMIZERS)
 
 
 @pytest.mark.parametrize("key", OPTIMIZERS.keys())

@@ -42,7 +42,7 @@ class Slopes:
     """The gradient, shape (K,), with the variance of each component; the variance is None where the gradient is exact.
 
     Attributes:
-        shots: repetitions of circuits that each component took, shape (K,); None where none were taken.
+        shots: taken for each of the energies that a component needs, on average, shape (K,); None where none were taken.
     """
 
     gradient: FloatArray

@@ -18,13 +18,14 @@ class PlainSource:
     Args:
         degree: of the function in every parameter as a trigonometric polynomial of lowest frequency 1; -1 where it is none.
         steepness: bound of its second derivatives.
+        triples: parameters of single-qubit gates with free axes.
     """
 
     is_sampled = begins_by_simulation = False
 
-    def __init__(self, function: Function, n: int, *, degree: int = -1, steepness: float = 1.0) -> None:
+    def __init__(self, function: Function, n: int, *, degree: int = -1, steepness: float = 1.0, triples: tuple = ()) -> None:
         self._function, self.n_parameters = function, n
-        self.structure = Structure(np.ones(n), np.full(n, degree), np.zeros(n, np.int64), (), steepness)
+        self.structure = Structure(np.ones(n), np.full(n, degree), np.zeros(n, np.int64), triples, steepness)
 
     def energy(self, x: np.ndarray) -> Estimate:
         return Estimate(self._function(x)[0])
@@ -34,8 +35,7 @@ class PlainSource:
         return Estimate(value), Slopes(gradient)
 
     def sampled_gradient(self, x: np.ndarray, shots: np.ndarray, *, random_terms: bool) -> Slopes:
-        taken = 2.0 * shots
-        return Slopes(self._function(x)[1], np.zeros(x.size), Cost(1, 1, int(taken.sum())), taken)
+        return Slopes(self._function(x)[1], np.zeros(x.size), Cost(1, 1, int(2 * shots.sum())), shots)
 
     def metric(self, x: np.ndarray) -> np.ndarray:
         return np.eye(x.size)

@@ -74,7 +74,7 @@ class Source:
         """The gradient from energies at shifted angles; `measure` takes the angles and the parameter that they belong to."""
         map_, angles = self.simulator.angles, self.simulator.angles.of(parameters)
         by_parameter, variance = np.zeros(self.n_parameters), np.zeros(self.n_parameters)
-        shots, cost, is_exact = np.zeros(self.n_parameters), Cost(0), True
+        shots, count, cost, is_exact = np.zeros(self.n_parameters), np.zeros(self.n_parameters), Cost(0), True
         for a, (k, factor, highest) in enumerate(zip(map_.parameter.tolist(), map_.factor.tolist(), map_.highest.tolist(), strict=True)):
             rule = SHIFT_RULES[highest]
             for shift, weight in zip(rule.shifts, rule.weights, strict=True):
@@ -88,7 +88,8 @@ class Source:
                         is_exact = False
                     cost += estimate.cost
                     shots[k] += estimate.cost.shots
-        return Slopes(by_parameter, None if is_exact else variance, cost, shots)
+                    count[k] += 1
+        return Slopes(by_parameter, None if is_exact else variance, cost, shots / np.maximum(count, 1))
 
 
 def _of_program(structure: Structure) -> frozenset[str]:
