@@ -90,9 +90,9 @@ def fused_steps(program: GateProgram) -> tuple[list[Step], Rotations]:
         elif kind == Gate.CZ:
             builder.group_for(Step("phases", 0, x | z)).pairs.append(x | z)
         elif kind == Gate.CNOT:
-            builder.steps.append(Step("flip", z, x | z))
+            builder.append(Step("flip", z, x | z))
         else:
-            builder.steps.append(Step("mix", x, x))
+            builder.append(Step("mix", x, x))
     return builder.finish()
 
 
@@ -107,22 +107,33 @@ class _Fusion:
             self._phase(z, parameter, factor)
         elif z == 0 and x & (x - 1) == 0:  # X = Rz(-pi/2) Y Rz(pi/2)
             self._phase(x, -1, np.pi / 2)
-            self.steps.append(Step("mix", x, x, self._gate(parameter, factor), x))
+            self.append(Step("mix", x, x, self._gate(parameter, factor), x))
             self._phase(x, -1, -np.pi / 2)
         else:
             kind = "mix" if x == z and x & (x - 1) == 0 else "turn"
-            self.steps.append(Step(kind, x, x | z, self._gate(parameter, factor), z))
+            self.append(Step(kind, x, x | z, self._gate(parameter, factor), z))
+
+    def append(self, step: Step) -> None:
+        """A step that flips bits; before the last group where they commute, so that the group can still grow."""
+        last = self.steps[-1] if self.steps else None
+        if last is not None and last.kind == "phases" and last.support & step.flips == 0:
+            self.steps.insert(-1, step)
+        else:
+            self.steps.append(step)
 
     def group_for(self, single: Step) -> Step:
-        """The group that a diagonal gate joins: the latest that it reaches past steps it commutes with, else a new one."""
+        """The group that a diagonal gate joins: the earliest that it reaches past steps it commutes with, else a new one."""
+        found = None
         for step in reversed(self.steps[-WINDOW:]):
             if step.kind == "phases":
-                step.support |= single.support
-                return step
-            if not _passes(single, step):
+                found = step
+            elif not _passes(single, step):
                 break
-        self.steps.append(Step("phases", 0, single.support))
-        return self.steps[-1]
+        if found is None:
+            found = Step("phases")
+            self.steps.append(found)
+        found.support |= single.support
+        return found
 
     def finish(self) -> tuple[list[Step], Rotations]:
         for step in self.steps:

@@ -2,28 +2,12 @@
 
 import numpy as np
 import pytest
+from support.dense import expansion_matrix
 
 from thalweg.errors import Stopped
 from thalweg.operators.pauli import PauliExpansion, collect_terms
 from thalweg.operators.product import ExpansionProduct, product_bytes
 from thalweg.watch import Watch
-
-PAULI = {
-    (0, 0): np.eye(2),
-    (1, 0): np.array([[0, 1], [1, 0]]),
-    (0, 1): np.diag([1, -1]),
-    (1, 1): np.array([[0, -1j], [1j, 0]]),
-}
-
-
-def dense(expansion: PauliExpansion) -> np.ndarray:
-    matrix = np.zeros((1 << expansion.n_qubits,) * 2, dtype=complex)
-    for x, z, c in zip(expansion.x.tolist(), expansion.z.tolist(), expansion.coefficients, strict=True):
-        term = np.eye(1)
-        for q in range(expansion.n_qubits):
-            term = np.kron(PAULI[x >> q & 1, z >> q & 1], term)  # qubit 0 is the least significant, hence rightmost
-        matrix += c * term
-    return matrix
 
 
 def random_expansion(rng: np.random.Generator, n: int, terms: int, *, real: bool) -> PauliExpansion:
@@ -49,7 +33,7 @@ def test_product_and_expectation_agree_with_dense_matrices(n, real, block_bits, 
     for terms in (1, 5, 60):
         expansion = random_expansion(rng, n, terms, real=real)
         product = ExpansionProduct(expansion, block_bits=block_bits, row_bytes=row_bytes, matrix_bytes=matrix_bytes)
-        vector, matrix = random_vector(rng, n), dense(expansion)
+        vector, matrix = random_vector(rng, n), expansion_matrix(expansion)
         out = np.full_like(vector, np.nan)
         value = product.apply(vector, out)
         np.testing.assert_allclose(out, matrix @ vector, atol=1e-12)
@@ -66,22 +50,34 @@ def test_real_operators_act_on_real_vectors(matrix_bytes):
     out = np.empty(32)
     assert product.is_real
     value = product.apply(vector, out)
-    np.testing.assert_allclose(out, dense(expansion).real @ vector, atol=1e-12)
+    np.testing.assert_allclose(out, expansion_matrix(expansion).real @ vector, atol=1e-12)
     assert product.expectation(vector) == pytest.approx(value, abs=1e-12)
 
 
 def test_sparse_operators_keep_their_matrix_and_dense_ones_do_not():
-    pair = [(0b11, 0b00), (0b11, 0b11)]  # X0 X1 + Y0 Y1: half of its elements vanish
-    masks = [(x << q, z << q) for q in range(7) for x, z in pair] + [(0b11 << q, 0b1100 << q) for q in range(5)]
-    x, z = (np.array(column, dtype=np.uint64) for column in zip(*masks, strict=True))
-    sparse = collect_terms(8, x[:2], z[:2], np.ones(2))
-    with_matrix = ExpansionProduct(sparse)
-    assert with_matrix.memory_bytes < product_bytes(sparse)
+    """X0 X1 + Y0 Y1 joins two of four states, and its product with (1 + Z2)(1 + Z3) one of eight states."""
+    z = np.array([0, 4, 8, 12], np.uint64)
+    sparse = collect_terms(8, np.full(8, 3, np.uint64), np.concatenate([z, z | np.uint64(3)]), np.ones(8))
+    field = collect_terms(8, np.uint64(1) << np.arange(8, dtype=np.uint64), np.zeros(8, np.uint64), np.ones(8))
     vector = random_vector(np.random.default_rng(0), 8)
     out = np.empty_like(vector)
-    for expansion in (sparse, collect_terms(8, x, z, np.ones(x.size))):
-        ExpansionProduct(expansion).apply(vector, out)
-        np.testing.assert_allclose(out, dense(expansion) @ vector, atol=1e-12)
+    for expansion, kept in ((sparse, True), (field, False)):
+        with_matrix, without = ExpansionProduct(expansion), ExpansionProduct(expansion, matrix_bytes=0)
+        assert (with_matrix.memory_bytes > without.memory_bytes) == kept
+        assert with_matrix.memory_bytes <= product_bytes(expansion)
+        with_matrix.apply(vector, out)
+        np.testing.assert_allclose(out, expansion_matrix(expansion) @ vector, atol=1e-12)
+
+
+def test_terms_without_low_z_are_numbers_for_each_block():
+    """XX and YY on qubits above the block: one factor that is 0 where the two bits are equal."""
+    x, z = np.full(3, 0b110000, np.uint64), np.array([0, 0b110000, 0b001000], np.uint64)
+    expansion = collect_terms(6, x, z, np.ones(3))
+    product = ExpansionProduct(expansion, block_bits=3, matrix_bytes=0)
+    vector = random_vector(np.random.default_rng(4), 6)
+    out = np.empty_like(vector)
+    assert product.apply(vector, out) == pytest.approx(product.expectation(vector), abs=1e-13)
+    np.testing.assert_allclose(out, expansion_matrix(expansion) @ vector, atol=1e-12)
 
 
 def test_an_odd_number_of_y_refuses_real_vectors():

@@ -2,41 +2,25 @@
 
 import numpy as np
 import pytest
+from support.dense import expansion_matrix, string_matrix
 
+from thalweg.ansatz.ground import Ground
+from thalweg.ansatz.hardware_efficient import HardwareEfficient
 from thalweg.circuit.program import Gate, GateProgram
 from thalweg.errors import Stopped, StudyError
 from thalweg.operators.pauli import PauliExpansion, collect_terms
 from thalweg.simulate.register import RegisterEngine
 from thalweg.watch import Watch
 
-ONE = {
-    (0, 0): np.eye(2),
-    (1, 0): np.array([[0, 1], [1, 0]]),
-    (0, 1): np.diag([1, -1]),
-    (1, 1): np.array([[0, -1j], [1j, 0]]),
-}
-
-
-def pauli_matrix(n, x, z):
-    matrix = np.eye(1)
-    for q in range(n):
-        matrix = np.kron(ONE[x >> q & 1, z >> q & 1], matrix)  # qubit 0 is the least significant
-    return matrix
-
-
-def dense(expansion):
-    terms = zip(expansion.x.tolist(), expansion.z.tolist(), expansion.coefficients, strict=True)
-    return sum((c * pauli_matrix(expansion.n_qubits, x, z) for x, z, c in terms), np.zeros((1 << expansion.n_qubits,) * 2, complex))
-
 
 def gate_matrix(n, kind, x, z, angle):
     """Each gate by its textbook definition (Nielsen and Chuang, chapter 4)."""
     if kind == Gate.ROTATION:
-        return np.cos(angle / 2) * np.eye(1 << n) - 1j * np.sin(angle / 2) * pauli_matrix(n, x, z)
+        return np.cos(angle / 2) * np.eye(1 << n) - 1j * np.sin(angle / 2) * string_matrix(n, x, z)
     if kind == Gate.HADAMARD:
-        return (pauli_matrix(n, x, 0) + pauli_matrix(n, 0, x)) / np.sqrt(2)
-    identity, z_first = np.eye(1 << n), pauli_matrix(n, 0, x)
-    flip = pauli_matrix(n, 0, z) if kind == Gate.CZ else pauli_matrix(n, z, 0)
+        return (string_matrix(n, x, 0) + string_matrix(n, 0, x)) / np.sqrt(2)
+    identity, z_first = np.eye(1 << n), string_matrix(n, 0, x)
+    flip = string_matrix(n, 0, z) if kind == Gate.CZ else string_matrix(n, z, 0)
     return (identity + z_first) / 2 + (identity - z_first) / 2 @ flip
 
 
@@ -97,7 +81,7 @@ def test_states_and_energies_agree_with_dense_matrices(n, seed):
     state = engine.state(parameters)
     np.testing.assert_allclose(state, expected, atol=1e-12)
     assert np.linalg.norm(state) == pytest.approx(1.0, abs=1e-12)
-    energy = np.vdot(expected, dense(hamiltonian) @ expected).real
+    energy = np.vdot(expected, expansion_matrix(hamiltonian) @ expected).real
     assert engine.energy(parameters) == pytest.approx(energy, abs=1e-12)
     assert engine.energy_and_gradient(parameters)[0] == pytest.approx(energy, abs=1e-12)
 
@@ -115,6 +99,26 @@ def test_tiles_smaller_than_the_register_change_nothing(tile_bytes_bits, real, s
     (energy, gradient), (other_energy, other_gradient) = (engine.energy_and_gradient(parameters) for engine in (tiled, whole))
     assert energy == pytest.approx(other_energy, abs=1e-12)
     np.testing.assert_allclose(gradient, other_gradient, atol=1e-12)
+
+
+@pytest.mark.parametrize("rotations", ["ry", "ry-rz"])
+@pytest.mark.parametrize("entangler", ["ring", "all-pairs"])
+def test_tables_of_diagonal_gates_follow_the_fixed_qubits_of_a_tile(entangler, rotations):
+    rng = np.random.default_rng(9)
+    n = 8
+    hamiltonian = random_expansion(rng, n, 40)
+    program = HardwareEfficient(depth=3, rotations=rotations, entangler=entangler).build(Ground(None, hamiltonian, 0b10110010))
+    parameters = rng.normal(size=program.n_parameters)
+    tiled, whole = (RegisterEngine(hamiltonian, program, tile_bytes_bits=bits) for bits in (7, 16))
+    np.testing.assert_allclose(tiled.state(parameters), dense_state(program, parameters), atol=1e-12)
+    np.testing.assert_allclose(tiled.energy_and_gradient(parameters)[1], whole.energy_and_gradient(parameters)[1], atol=1e-12)
+
+
+def test_the_norm_stays_one_through_a_deep_circuit():
+    hamiltonian = random_expansion(np.random.default_rng(1), 9, 5)
+    program = HardwareEfficient(depth=150, rotations="ry-rz", entangler="all-pairs").build(Ground(None, hamiltonian, 3))
+    state = RegisterEngine(hamiltonian, program, tile_bytes_bits=10).state(np.random.default_rng(2).normal(size=program.n_parameters))
+    assert np.linalg.norm(state) == pytest.approx(1.0, abs=1e-12)
 
 
 @pytest.mark.parametrize("n", [1, 3, 6])
@@ -150,11 +154,11 @@ def test_facts_agree_with_dense_matrices():
     hamiltonian, number, s_z, s_squared = (random_expansion(rng, n, 12) for _ in range(4))
     engine = RegisterEngine(hamiltonian, program, number=number, s_z=s_z, s_squared=s_squared, label=lambda bits: f"<{bits}>")
     parameters = rng.normal(size=program.n_parameters)
-    state, matrix = dense_state(program, parameters), dense(hamiltonian)
+    state, matrix = dense_state(program, parameters), expansion_matrix(hamiltonian)
     vectors = np.linalg.eigh(matrix)[1].T[:2]
     facts = engine.facts(parameters, vectors)
     for value, observable in ((facts.n_electrons, number), (facts.s_z, s_z), (facts.s_squared, s_squared)):
-        assert value == pytest.approx(np.vdot(state, dense(observable) @ state).real, abs=1e-12)
+        assert value == pytest.approx(np.vdot(state, expansion_matrix(observable) @ state).real, abs=1e-12)
     mean = np.vdot(state, matrix @ state).real
     assert facts.variance == pytest.approx(np.vdot(state, matrix @ matrix @ state).real - mean**2, abs=1e-11)
     assert facts.fidelity == pytest.approx(sum(abs(np.vdot(v, state)) ** 2 for v in vectors), abs=1e-12)
