@@ -14,7 +14,7 @@ from thalweg.errors import StudyError
 from thalweg_app.presenters.fields import FieldFacts, choice_words, fields_of, help_text
 from thalweg_app.presenters.numbers import number_text
 from thalweg_app.presenters.wording import unit_name
-from thalweg_app.views.fold import Fold
+from thalweg_app.widgets.fold import Fold
 
 LABEL_WIDTH = 104
 

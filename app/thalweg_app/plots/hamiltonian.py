@@ -11,7 +11,7 @@ from thalweg_app.forms import describe
 from thalweg_app.plots.picture import Picture
 from thalweg_app.presenters.tables import Table, terms_chart, terms_table
 from thalweg_app.presenters.workbench import Workbench
-from thalweg_app.views.number_table import NumberTable
+from thalweg_app.widgets.number_table import NumberTable
 
 NO_TERMS = Table((), (), (), ())
 

@@ -11,8 +11,8 @@ from thalweg_app.plots.chart_view import ChartView
 from thalweg_app.plots.picture import Picture
 from thalweg_app.presenters.tables import Table, occupations_chart, state_chart, state_figures, state_table
 from thalweg_app.presenters.workbench import Workbench
-from thalweg_app.views.figure_grid import FigureGrid
-from thalweg_app.views.number_table import NumberTable
+from thalweg_app.widgets.figure_grid import FigureGrid
+from thalweg_app.widgets.number_table import NumberTable
 
 NOTHING = Table((), (), (), ())
 

@@ -7,12 +7,12 @@ from pathlib import Path
 from typing import Any
 
 from thalweg.errors import StudyError
+from thalweg.storage.open_file import open_as_data
 from thalweg.storage.session import Session
 from thalweg.study.events import Failed
 from thalweg.study.spec import StudySpec, spec_from_data
 from thalweg.systems import Molecule
 from thalweg.systems.xyz import read_atoms
-from thalweg_app.jobs import open_file
 from thalweg_app.presenters.jobs import OPEN_FILE, JobListener
 from thalweg_app.presenters.wording import counted
 from thalweg_app.presenters.workbench import Workbench
@@ -32,17 +32,16 @@ class Opening:
 
     def open(self, path: Path, unit: str = "angstrom") -> None:
         """Reads the file and shows what it holds."""
-        payload = {"path": str(path), "unit": unit}
         try:
             if _is_small(path):
-                self._show(open_file(payload, lambda event: None, lambda: False), path)
+                self._show(open_as_data(path, unit), path)
                 return
         except StudyError as error:
             self._failed(error)
             return
         listener = JobListener(done=lambda value: self._show(value, path), failed=self._on_failed)
         self._workbench.told(f"Reading {path.name}")
-        self._workbench.starter.start(OPEN_FILE, payload, listener)
+        self._workbench.starter.start(OPEN_FILE, {"path": str(path), "unit": unit}, listener)
 
     def paste(self, text: str, unit: str) -> StudyError | None:
         """Takes atoms from pasted text; gives the error when there are none."""

@@ -12,8 +12,7 @@ import click
 
 from thalweg.errors import StudyError
 from thalweg.options import Options
-from thalweg.storage.files import read_limited
-from thalweg.storage.session import is_session, parse_session
+from thalweg.storage.session import Session
 from thalweg.study.spec import SECTIONS, StudySpec, with_setting
 
 Command = TypeVar("Command", bound=Callable[..., Any])
@@ -108,16 +107,16 @@ def find_sample(name: str) -> Path | None:
 
 
 def _from_file(path: Path, unit: str, **fields: str) -> tuple[StudySpec, tuple[str, ...]]:
-    if path.suffix.lower() == ".json" and is_session(content := read_limited(path)):
-        return _from_session(content, path.name)
-    from thalweg.systems.read_file import open_system
+    from thalweg.storage.open_file import open_file
 
-    system, notes = open_system(path, unit, **fields)
-    return StudySpec(system=system), tuple(notes)
+    found = open_file(path, unit, **fields)
+    if isinstance(found, Session):
+        return _from_session(found, path.name)
+    system, notes = found
+    return StudySpec(system=system), notes
 
 
-def _from_session(content: bytes, name: str) -> tuple[StudySpec, tuple[str, ...]]:
-    session = parse_session(content, name)
+def _from_session(session: Session, name: str) -> tuple[StudySpec, tuple[str, ...]]:
     if session.setup is not None:
         return session.setup, (f"Set-up read from {name}",)
     if session.runs:
@@ -131,10 +130,8 @@ def _from_standard_input(unit: str) -> tuple[StudySpec, tuple[str, ...]]:
         raise StudyError("Standard input is too long", f"the limit is {MAX_STANDARD_INPUT // 2**20} MiB", "Give the name of the file instead")
     if not content.strip():
         raise StudyError("Standard input is empty", "nothing was piped in", "Pipe a geometry in, or give the name of a file")
-    if is_session(content):
-        return _from_session(content, "standard input")
     with tempfile.TemporaryDirectory() as folder:  # the readers tell the form of a file by its content
-        path = Path(folder) / "standard-input"
+        path = Path(folder) / "standard input"
         path.write_bytes(content)
         return _from_file(path, unit, name="")
 

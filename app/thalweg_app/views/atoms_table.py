@@ -15,7 +15,7 @@ from thalweg_app.presenters.numbers import number_text
 from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.wording import minus
 from thalweg_app.theme import icon
-from thalweg_app.views.number_table import quiet
+from thalweg_app.widgets.number_table import quiet
 
 _Index = QModelIndex | QPersistentModelIndex
 MAX_ROWS_SHOWN = 7

@@ -16,8 +16,8 @@ from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Figure
 from thalweg_app.theme import SPACE
 from thalweg_app.views.alternatives import AlternativeBox
-from thalweg_app.views.figure_grid import FigureGrid
-from thalweg_app.views.fold import Fold
+from thalweg_app.widgets.figure_grid import FigureGrid
+from thalweg_app.widgets.fold import Fold
 
 
 class SectionBody(QWidget):

@@ -11,9 +11,9 @@ from thalweg_app.presenters.answer import Answer
 from thalweg_app.presenters.summaries import SECTION_TITLES, summary
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import SPACE, base_font, icon, pixmap
-from thalweg_app.views.fold import Section
 from thalweg_app.views.sections import EncodingSection, SearchSection, TrialSection
 from thalweg_app.views.system_section import SystemSection
+from thalweg_app.widgets.fold import Section
 
 WIDTH = 388
 _ANSWER_PICTURES = {"good": "reached", "bad": "missed", "unclear": "unclear"}

@@ -19,10 +19,10 @@ from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Figure
 from thalweg_app.theme import SPACE, icon
 from thalweg_app.views.atoms_table import AtomsTable
-from thalweg_app.views.figure_grid import FigureGrid
-from thalweg_app.views.fold import Fold
 from thalweg_app.views.molecule_picture import MoleculePicture
 from thalweg_app.views.orbital_ladder import OrbitalLadder
+from thalweg_app.widgets.figure_grid import FigureGrid
+from thalweg_app.widgets.fold import Fold
 
 #: Offered while typing; any basis of the library can be typed.
 BASIS_NAMES = (

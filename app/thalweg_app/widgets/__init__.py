@@ -1,0 +1,1 @@
+"""Small pieces of the window that pictures, forms and views are put together from."""
