@@ -40,16 +40,9 @@ def inspect(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
 
 def open_file(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
     """Reads the payload's `path` (coordinates in `unit`): {"session": ...}, or {"system": ..., "notes": [...]}."""
-    from thalweg.storage.files import read_limited
-    from thalweg.storage.session import is_session, parse_session
-    from thalweg.systems.read_file import open_system
+    from thalweg.storage.open_file import open_as_data
 
-    path = Path(payload["path"])
-    content = read_limited(path)
-    if is_session(content):
-        return {"session": parse_session(content, path.name).model_dump(mode="json")}
-    system, notes = open_system(path, payload["unit"])
-    return {"system": system.model_dump(mode="json"), "notes": list(notes)}
+    return open_as_data(Path(payload["path"]), payload["unit"])
 
 
 def draw(payload: Any, emit: Emit, should_stop: ShouldStop) -> str:
@@ -60,3 +53,15 @@ def draw(payload: Any, emit: Emit, should_stop: ShouldStop) -> str:
     path = Path(payload["path"])
     draw_chart(chart_from_data(payload["chart"]), path)
     return str(path)
+
+
+def scan(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
+    """Runs the payload's `scan` but for the points in `done`; points leave as events, the curve as `ScanFinished`."""
+    from thalweg.study.executors import make_executor
+    from thalweg.study.scan import run_scan
+    from thalweg.study.scan_result import CurvePoint
+    from thalweg.study.scan_spec import ScanSpec
+
+    spec = ScanSpec.model_validate(payload["scan"])
+    done = [CurvePoint.model_validate(point) for point in payload["done"]]
+    run_scan(spec, lambda: make_executor("local"), emit, should_stop, done=done)
