@@ -118,17 +118,18 @@ def hopping_matrix(graph: LatticeGraph, t: float) -> FloatArray:
 def hopping_orbitals(hopping: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Eigenvalues ascending and eigenvectors in columns, made unique.
 
-    A level of several orbitals is turned to the eigenvectors of the site number within it, and each orbital's largest
+    A level of several orbitals is turned to the eigenvectors of a number that grows with the site (to the power 1.5, so that
+    no two sums agree by chance) within it, and each orbital's largest
     component (the first of equals) is positive, so that the same lattice always gives the same integrals.
     """
     energies, vectors = np.linalg.eigh(hopping)
-    sites = np.arange(len(energies), dtype=float)
+    growing = np.arange(1.0, len(energies) + 1.0) ** 1.5
     first = 0
     for last in range(1, len(energies) + 1):
         if last == len(energies) or energies[last] - energies[last - 1] > LEVEL_TOLERANCE:
             level = vectors[:, first:last]
             if last - first > 1:
-                _, turn = np.linalg.eigh(level.T @ (sites[:, None] * level))
+                _, turn = np.linalg.eigh(level.T @ (growing[:, None] * level))
                 vectors[:, first:last] = level @ turn
             first = last
     size = np.abs(vectors)

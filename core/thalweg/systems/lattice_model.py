@@ -15,12 +15,12 @@ from thalweg.systems.hubbard import Hubbard
 from thalweg.systems.lattice import AnyLattice, Chain
 from thalweg.systems.lattice_graph import LatticeGraph
 from thalweg.systems.pauli_list import PauliList
-from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
+from thalweg.systems.prepared import DEFAULT_BUDGET, MeanFieldSeed, PreparedSystem
 from thalweg.systems.spin_model import SpinModel, number
 from thalweg.systems.spin_models import J1J2, XXZ, XY, Heisenberg, Ising, Kitaev, RandomCouplings
 from thalweg.systems.spin_reference import ReferenceChoice, choose_reference
 from thalweg.systems.toric_code import ToricCode
-from thalweg.watch import Watch
+from thalweg.watch import SILENT, Watch
 
 AnyModel = Annotated[
     Heisenberg | J1J2 | XXZ | XY | Ising | Kitaev | ToricCode | RandomCouplings | Hubbard | WeightedCut | Clauses | PauliList,
@@ -53,7 +53,7 @@ class LatticeModel(Options):
         """The sites that carry a qubit (or an orbital), with bonds, for pictures and tables."""
         return self.lattice.build() if isinstance(self.model, Hubbard) else self.model.graph(self.lattice)
 
-    def prepare(self, watch: Watch, *, budget_bytes: int, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
+    def prepare(self, watch: Watch = SILENT, *, budget_bytes: int = DEFAULT_BUDGET, neighbour: MeanFieldSeed | None = None) -> PreparedSystem:
         """Builds the Hamiltonian. Raises StudyError for settings that do not fit each other."""
         watch.stage("Building the lattice")
         if isinstance(self.model, Hubbard):

@@ -1,4 +1,4 @@
-"""Opens a file as a system: XYZ or a list of atoms, FCIDUMP, or HDF5 molecular data; told apart by content."""
+"""Opens a file as a system: XYZ or a list of atoms, FCIDUMP, HDF5 molecular data, a lattice file or an edge list."""
 
 from __future__ import annotations
 
@@ -10,15 +10,19 @@ from pydantic import ValidationError
 from thalweg.errors import StudyError
 from thalweg.systems.fcidump import looks_like_listing, read_listing
 from thalweg.systems.integrals import Integrals
+from thalweg.systems.lattice_file import looks_like_lattice, read_edge_list, read_lattice_file
+from thalweg.systems.lattice_model import LatticeModel
 from thalweg.systems.molecule import Molecule
 from thalweg.systems.xyz import read_atoms
 
+AnySystem = Molecule | Integrals | LatticeModel
+
 _HDF5 = b"\x89HDF\r\n\x1a\n"
 _LARGEST = 512 * 2**20
-_KINDS = "Give XYZ, a list of atoms, FCIDUMP, or HDF5 molecular data"
+_KINDS = "Give XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a lattice file (TOML) or an edge list (CSV)"
 
 
-def open_system(path: str | Path, unit: str = "angstrom", **overrides: Any) -> tuple[Molecule | Integrals, tuple[str, ...]]:
+def open_system(path: str | Path, unit: str = "angstrom", **overrides: Any) -> tuple[AnySystem, tuple[str, ...]]:
     """The system that a file holds, and sentences on how it was read.
 
     Args:
@@ -38,10 +42,16 @@ def open_system(path: str | Path, unit: str = "angstrom", **overrides: Any) -> t
     text = _text(content, path.name)
     if looks_like_listing(text):
         listing = read_listing(text)
-        system: Molecule | Integrals = Integrals(name=_name(path), listing=text, source=path.name, described="; ".join(listing.comments))
+        system = Integrals(name=_name(path), listing=text, source=path.name, described="; ".join(listing.comments))
         return _with(system, given), (
             f"Read '{path.name}' as FCIDUMP: {listing.n_electrons} electrons in {listing.n_orbitals} orbitals",
             *listing.notes,
+        )
+    if path.suffix.lower() == ".toml" or looks_like_lattice(text):
+        return _with(read_lattice_file(text), given), (f"Read '{path.name}' as a lattice file",)
+    if path.suffix.lower() == ".csv":
+        return _with(read_edge_list(text, _name(path)), given), (
+            f"Read '{path.name}' as an edge list; the model on it is Heisenberg until another is chosen",
         )
     return _open_geometry(path, text, unit, given)
 
@@ -60,7 +70,7 @@ def _open_geometry(path: Path, text: str, unit: str, given: dict[str, Any]) -> t
     return molecule, (*read.notes, *read.warnings)
 
 
-def _with(system: Molecule | Integrals, changes: dict[str, Any]) -> Molecule | Integrals:
+def _with(system: AnySystem, changes: dict[str, Any]) -> AnySystem:
     """A validated copy with these fields; StudyError naming the one at fault."""
     for name in changes:
         if name not in type(system).model_fields:

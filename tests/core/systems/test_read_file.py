@@ -49,9 +49,9 @@ def test_a_stored_molecule_says_what_it_is():
 def test_every_sample_is_a_system_without_warnings(sample):
     system, notes = open_system(sample.file)
     prepared = system.prepare()
-    assert prepared.fermions.sector.dimension >= 1
+    assert prepared.spins is not None or prepared.fermions.sector.dimension >= 1
     assert prepared.warnings == ()
-    assert sample.name == system.name
+    assert system.name == sample.name or sample.file.suffix == ".toml"
     assert len(sample.description) > 20
     assert notes
     assert not any("?" in note for note in notes)
