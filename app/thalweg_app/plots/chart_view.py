@@ -18,15 +18,21 @@ ZOOM_STEP, PAN_STEP = 0.8, 0.1
 
 
 class ChartView(QWidget):
-    """`read_out` carries the values under the pointer, an empty text when it is elsewhere."""
+    """`read_out` carries the values under the pointer, an empty text when it is elsewhere.
+
+    `pointed` carries the place under the pointer along x, None when it is elsewhere; `chosen` the place of a single click.
+    """
 
     read_out = Signal(str)
+    pointed = Signal(object)
+    chosen = Signal(float)
 
     def __init__(self, name: str, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._chart = Chart(name)
         self._palette = LIGHT
         self._panels: list[PanelView] = []
+        self._titled: tuple[str, Palette] | None = None
         self._follows = True
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
@@ -111,10 +117,13 @@ class ChartView(QWidget):
                 view.show(panel, self._palette)
         else:
             self._build_panels()
-        self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
+        if self._titled != (self._chart.x_title, self._palette):
+            self._titled = (self._chart.x_title, self._palette)
+            self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
 
     def _build_panels(self) -> None:
         self.graphics.clear()
+        self._titled = None
         self._panels = [PanelView(panel, self._palette, self.font()) for panel in self._chart.panels]
         for row, (view, panel) in enumerate(zip(self._panels, self._chart.panels, strict=True)):
             self.graphics.addItem(view.item, row=row, col=0)
@@ -132,9 +141,19 @@ class ChartView(QWidget):
     def _on_click(self, event: Any) -> None:
         if event.double():
             self.fit()
+            return
+        place = self._place(event.scenePos())
+        if place is not None and event.button() == Qt.MouseButton.LeftButton:
+            self.chosen.emit(place)
+
+    def _place(self, position: QPointF) -> float | None:
+        """Where a point of the scene lies along x; None outside every panel."""
+        under = next((p for p in self._panels if p.item.sceneBoundingRect().contains(position)), None)
+        return None if under is None else float(under.item.getViewBox().mapSceneToView(position).x())
 
     def _on_move(self, arguments: tuple[QPointF]) -> None:
         position = arguments[0]
+        self.pointed.emit(self._place(position))
         under = next((p for p in self._panels if p.item.sceneBoundingRect().contains(position)), None)
         found = None if under is None else under.read_out(under.item.getViewBox().mapSceneToView(position).x())
         for panel in self._panels:
@@ -153,6 +172,7 @@ class ChartView(QWidget):
         for panel in self._panels:
             panel.hair.setVisible(False)
         self.read_out.emit("")
+        self.pointed.emit(None)
         super().leaveEvent(event)
 
     def _scale(self, factor: float) -> None:

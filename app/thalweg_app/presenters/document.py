@@ -12,6 +12,7 @@ from thalweg.storage.session import SUFFIX, Session, load_session, now, save_ses
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.ledger import Ledger
 from thalweg_app.presenters.listeners import Listeners
+from thalweg_app.presenters.scan_control import ScanControl
 from thalweg_app.presenters.setup import SetupEditing
 
 UNTITLED = "untitled"
@@ -26,10 +27,10 @@ class RecentFiles(Protocol):
 
 
 class Document:
-    """Ties set-up and ledger to a file. `changed` tells of a new name or mark."""
+    """Ties set-up, ledger and scans to a file. `changed` tells of a new name or mark."""
 
-    def __init__(self, setup: SetupEditing, ledger: Ledger, history: History, recent: RecentFiles) -> None:
-        self._setup, self._ledger, self._history, self._recent = setup, ledger, history, recent
+    def __init__(self, setup: SetupEditing, ledger: Ledger, scans: ScanControl, history: History, recent: RecentFiles) -> None:
+        self._setup, self._ledger, self._scans, self._history, self._recent = setup, ledger, scans, history, recent
         self._session = Session()
         self._saved_state = self._state()
         self.path: Path | None = None
@@ -37,6 +38,7 @@ class Document:
         self.changed = Listeners()
         setup.changed.connect(self.changed)
         ledger.changed.connect(self.changed)
+        scans.changed.connect(self.changed)
 
     @property
     def name(self) -> str:
@@ -46,13 +48,13 @@ class Document:
 
     @property
     def is_dirty(self) -> bool:
-        saved_spec, saved_runs = self._saved_state
-        spec, runs = self._state()
-        return spec != saved_spec or len(runs) != len(saved_runs) or any(a is not b for a, b in zip(runs, saved_runs, strict=True))
+        saved_spec, saved_rows = self._saved_state
+        spec, rows = self._state()
+        return spec != saved_spec or len(rows) != len(saved_rows) or any(a is not b for a, b in zip(rows, saved_rows, strict=True))
 
     @property
     def has_unsaved_results(self) -> bool:
-        return self.is_dirty and bool(self._ledger.runs)
+        return self.is_dirty and bool(self._ledger.runs or self._scans.scans)
 
     @property
     def recent(self) -> list[str]:
@@ -73,6 +75,7 @@ class Document:
         if session.setup is not None:
             self._setup.load(session.setup)
         self._ledger.load(session.runs)
+        self._scans.load(session.scans)
         self._history.clear()
         if path is not None:
             self._remember(path)
@@ -89,7 +92,7 @@ class Document:
 
     def snapshot(self, name: str = "") -> Session:
         """The session as it is now."""
-        update = {"name": name or self.name, "setup": self._setup.spec, "runs": self._ledger.runs, "modified": now()}
+        update = {"name": name or self.name, "setup": self._setup.spec, "runs": self._ledger.runs, "scans": self._scans.scans, "modified": now()}
         return self._session.model_copy(update=update)
 
     def restore(self, session: Session) -> None:
@@ -104,7 +107,7 @@ class Document:
         self._recent.write([text, *(p for p in self._recent.read() if p != text)][:MAX_RECENT])
 
     def _state(self) -> tuple[object, tuple[object, ...]]:
-        return self._setup.spec, self._ledger.runs
+        return self._setup.spec, (*self._ledger.runs, *self._scans.scans)
 
 
 class Recovery:

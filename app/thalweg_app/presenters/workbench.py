@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 from thalweg.study.result import StudyResult
@@ -14,6 +15,7 @@ from thalweg_app.presenters.jobs import JobStarter
 from thalweg_app.presenters.ledger import Ledger
 from thalweg_app.presenters.listeners import Listeners
 from thalweg_app.presenters.run_control import CheckOutcome, RunControl
+from thalweg_app.presenters.scan_control import SCAN, ScanControl
 from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Terms, terms_of_result
 from thalweg_app.presenters.traces import Shown, XChoice, convergence, shown_live, shown_result
@@ -23,17 +25,20 @@ class Workbench:
     """`answer_changed`: the sentence under the set-up. `pictures_changed`: what is drawn. `told`: a sentence for the status line."""
 
     def __init__(
-        self, starter: JobStarter, recent: RecentFiles, *, run: str = jobs.RUN, inspect: str = jobs.INSPECT, check: str = jobs.CHECK
+        self, starter: JobStarter, recent: RecentFiles, *, run: str = jobs.RUN, inspect: str = jobs.INSPECT, check: str = jobs.CHECK, scan: str = SCAN
     ) -> None:
         self.starter = starter
         self.history = History()
         self.setup = SetupEditing(self.history)
         self.ledger = Ledger(self.history)
-        self.document = Document(self.setup, self.ledger, self.history, recent)
+        self.scans = ScanControl(starter, lambda: self.setup.spec if self.can_run else None, scan)
+        self.document = Document(self.setup, self.ledger, self.scans, self.history, recent)
         self.figures = DerivedFigures(starter, inspect)
         self.runs = RunControl(starter, self.figures.of, run, check)
+        self._point: Shown | None = None  # a point of a curve whose convergence is shown
         self._check: CheckOutcome | None = None
         self.answer_changed, self.pictures_changed = Listeners(), Listeners()
+        self.point_opened = Listeners()
         self.told, self.defect = Listeners(), Listeners()
         self.difference_unit = "mEh"
         self._connect()
@@ -50,6 +55,9 @@ class Workbench:
         self.runs.told.connect(self.told)
         self.runs.defect.connect(self.defect)
         self.runs.changed.connect(self.pictures_changed)
+        self.scans.told.connect(self.told)
+        self.scans.defect.connect(self.defect)
+        self.setup.changed.connect(self.scans.changed)
         self.ledger.selection_changed.connect(self._on_selection)
 
     @property
@@ -90,13 +98,19 @@ class Workbench:
         self.ledger.changed()
         self.pictures_changed()
 
+    def show_point(self, result: StudyResult, name: str) -> None:
+        """The convergence of one point of a curve, until a run is selected."""
+        self._point = replace(shown_result(0, result), name=name)
+        self.pictures_changed()
+        self.point_opened()
+
     def convergence(self, x: XChoice) -> Any:
         """The run under way in front of the ticked ones, or the selected run."""
         overlays = [(run.number, shown_result(run.number, run.result)) for run in self.ledger.ticked]
         live = shown_live(self.runs.live) if self.runs.live is not None else None
         run = self.ledger.selected
-        main: Shown | None = live
-        if live is None and run is not None:
+        main: Shown | None = live or self._point
+        if main is None and run is not None:
             main = shown_result(run.number, run.result)
             overlays = [(n, shown) for n, shown in overlays if n != run.number]
         return convergence(main, [shown for _, shown in overlays], x, self.difference_unit)
@@ -127,6 +141,6 @@ class Workbench:
         self.answer_changed()
 
     def _on_selection(self) -> None:
-        self._check = None
+        self._check, self._point = None, None
         self.answer_changed()
         self.pictures_changed()

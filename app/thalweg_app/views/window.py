@@ -150,6 +150,8 @@ class Window(QMainWindow):
         bench = self.workbench
         bench.runs.progressed.connect(lambda: self._live.isActive() or self._live.start())
         bench.runs.changed.connect(self.refresh_title)
+        bench.scans.progressed.connect(lambda: self._live.isActive() or self._live.start())
+        bench.point_opened.connect(lambda: self.show_picture(0))
         bench.runs.finished.connect(lambda _: self._keep())
         bench.document.changed.connect(self.refresh_title)
         bench.ledger.selection_changed.connect(self.refresh_title)

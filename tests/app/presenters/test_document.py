@@ -9,6 +9,7 @@ from thalweg.storage.session import SUFFIX, load_session
 from thalweg_app.presenters.document import Document, Recovery
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.ledger import Ledger
+from thalweg_app.presenters.scan_control import ScanControl
 from thalweg_app.presenters.setup import SetupEditing
 
 
@@ -17,7 +18,7 @@ class Desk:
         self.history, self.recent = History(), FakeRecent()
         self.setup = SetupEditing(self.history, studies.study())
         self.ledger = Ledger(self.history)
-        self.document = Document(self.setup, self.ledger, self.history, self.recent)
+        self.document = Document(self.setup, self.ledger, ScanControl(None, lambda: None), self.history, self.recent)
 
 
 @pytest.fixture

@@ -1,0 +1,170 @@
+"""Curve: energies along a path, their errors, what the curve yields, and the form that starts a scan."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+
+from thalweg_app.colours import Palette
+from thalweg_app.forms import QuietCombo, describe
+from thalweg_app.plots.picture import Picture
+from thalweg_app.presenters.curve import (
+    CurveUnits,
+    curve_chart,
+    curve_remarks,
+    curve_sentence,
+    curve_table,
+    nearest_point,
+    point_text,
+    yield_figures,
+)
+from thalweg_app.presenters.scan_control import scan_title
+from thalweg_app.presenters.tables import Table
+from thalweg_app.presenters.workbench import Workbench
+from thalweg_app.views.scan_form import ScanForm
+from thalweg_app.widgets.number_table import NumberTable
+
+
+class CurvePicture(Picture):
+    title: ClassVar[str] = "Curve"
+    about: ClassVar[str] = "Dissociation or coupling curve with its error, and what the curve yields."
+
+    def __init__(self, workbench: Workbench) -> None:
+        super().__init__(workbench)
+        self.scans = workbench.scans
+        self.form = ScanForm(self.scans)
+        self._make_controls()
+        self.table = NumberTable("Points of the curve")
+        self.stack = QStackedWidget()
+        self.stack.addWidget(self.view)
+        self.stack.addWidget(self.table)
+        self.body.addWidget(self._split(), 1)
+        self.view.read_out.disconnect()
+        self.view.pointed.connect(self._read)
+        self.view.chosen.connect(self._open_point)
+        self.scans.changed.connect(self.refresh)
+
+    @property
+    def units(self) -> CurveUnits:
+        return CurveUnits(self.length.currentData(), self.workbench.difference_unit)
+
+    def refresh(self) -> None:
+        self._fill_choices()
+        self.form.refresh()
+        self._draw()
+
+    def refresh_live(self) -> None:
+        self._draw()
+
+    def set_palette(self, palette: Palette) -> None:
+        super().set_palette(palette)
+        self.form.set_palette(palette)
+
+    def numbers(self) -> tuple[list[str], list[list[object]]]:
+        table = curve_table(self.scans.shown, self.units)
+        return list(table.header), [list(row) for row in table.rows]
+
+    def _draw(self) -> None:
+        shown, units = self.scans.shown, self.units
+        self.view.show_chart(curve_chart(shown, units))
+        self.table.show_table(curve_table(shown, units))
+        self.sentence.setText(curve_sentence(shown, units))
+        rows = yield_figures(shown, units)
+        cells = [(r[0], r[1], r[2]) for r in rows]
+        keys: tuple[tuple[float | str, ...], ...] = tuple((float(i),) * 3 for i in range(len(cells)))
+        self.yields.show_table(Table(("Quantity", "Variational", "Exact"), tuple(cells), (False, True, True), keys, "What the curves yield."))
+        self.yields.setVisible(bool(rows))
+        self.remarks.setText("\n".join(curve_remarks(shown)))
+        self.resume.setVisible(self.scans.live is None and self.scans.chosen is not None and not self.scans.chosen.result.finished)
+
+    def _change_unit(self) -> None:
+        self._draw()
+        self.view.fit()
+
+    def _read(self, coordinate: float | None) -> None:
+        shown = self.scans.shown
+        self.show_read_out("" if shown is None or coordinate is None else point_text(shown, coordinate, self.units))
+
+    def _open_point(self, coordinate: float) -> None:
+        """The convergence of the point that was clicked."""
+        shown = self.scans.shown
+        if shown is None:
+            return
+        factor, unit = self.units.coordinate(shown.unit)
+        point = nearest_point(shown, coordinate / factor)
+        if point is not None and point.result is not None:
+            self.workbench.show_point(point.result, f"{shown.axis} {point.coordinate * factor:.6g} {unit}".strip())
+
+    def _make_controls(self) -> None:
+        self.choice = QuietCombo()
+        self.choice.setMinimumContentsLength(28)
+        describe(self.choice, "Scan shown", "The scans of this session.")
+        self.choice.activated.connect(lambda i: self.scans.choose(self.choice.itemData(i)))
+        self.length = QuietCombo()
+        self.length.addItem("ångström", "angstrom")
+        self.length.addItem("bohr", "bohr")
+        describe(self.length, "Unit of distances", "Unit in which distances are drawn and listed.")
+        self.length.currentIndexChanged.connect(lambda _: self._change_unit())
+        self.as_table = QCheckBox("Table")
+        describe(self.as_table, "Table", "Lists the points instead of drawing them.")
+        self.as_table.toggled.connect(lambda on: self.stack.setCurrentIndex(int(on)))
+        self.resume = QPushButton("Complete")
+        describe(self.resume, "Complete", "Runs the points that an interrupted scan still lacks.")
+        self.resume.clicked.connect(self.scans.resume)
+        for part in (self.choice, self.length, self.as_table, self.resume):
+            self.controls.addWidget(part)
+
+    def _split(self) -> QSplitter:
+        side = QWidget()
+        column = QVBoxLayout(side)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(8)
+        self.sentence, self.remarks = QLabel(wordWrap=True), QLabel(wordWrap=True)
+        self.sentence.setProperty("role", "heading")
+        self.sentence.setAccessibleName("Verdict on the curve")
+        self.remarks.setProperty("role", "muted")
+        for label in (self.sentence, self.remarks):
+            label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        self.yields = NumberTable("What the curves yield")
+        self.yields.setSortingEnabled(False)
+        self.yields.setFixedHeight(30 + 5 * 24)
+        column.addWidget(self.form)
+        column.addWidget(self.sentence)
+        column.addWidget(self.yields)
+        column.addWidget(self.remarks)
+        column.addStretch(1)
+        scroll = _scrolled(side)
+        split = QSplitter(Qt.Orientation.Horizontal)
+        split.setChildrenCollapsible(False)
+        split.addWidget(self.stack)
+        split.addWidget(scroll)
+        split.setStretchFactor(0, 1)
+        split.setSizes([640, 300])
+        return split
+
+    def _fill_choices(self) -> None:
+        self.choice.blockSignals(True)
+        self.choice.clear()
+        for kept in self.scans.scans:
+            self.choice.addItem(scan_title(kept), kept.number)
+        chosen = self.scans.chosen
+        self.choice.setCurrentIndex(-1 if chosen is None else self.choice.findData(chosen.number))
+        self.choice.setEnabled(self.scans.live is None and bool(self.scans.scans))
+        self.choice.blockSignals(False)
+
+
+def _scrolled(inner: QWidget) -> QWidget:
+    from PySide6.QtWidgets import QScrollArea
+
+    area = QScrollArea()
+    area.setWidgetResizable(True)
+    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+    area.setMinimumWidth(280)
+    holder = QWidget()
+    row = QHBoxLayout(holder)
+    row.setContentsMargins(12, 0, 4, 0)
+    row.addWidget(inner)
+    area.setWidget(holder)
+    return area

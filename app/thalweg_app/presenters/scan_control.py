@@ -1,0 +1,285 @@
+"""The scan being set up, the scan that runs, and the scans that were run."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+from typing import Any, Literal
+
+from pydantic import ValidationError
+
+from thalweg.errors import StudyError
+from thalweg.storage.session import ScanRun
+from thalweg.study.events import AnyEvent, Failed, ScanFinished, ScanPoint, ScanStarted, Stage
+from thalweg.study.path import PATHS, ScanPath
+from thalweg.study.path.setting import SettingPath
+from thalweg.study.scan_result import CurvePoint, ScanResult
+from thalweg.study.scan_spec import ScanSpec, geometric_points, linear_points, read_points
+from thalweg.study.spec import StudySpec, study_error
+from thalweg_app.presenters.curve import ShownCurve
+from thalweg_app.presenters.jobs import Job, JobListener, JobStarter
+from thalweg_app.presenters.listeners import Listeners
+from thalweg_app.presenters.numbers import parse_number, parse_whole
+
+SCAN = "thalweg_app.jobs:scan"
+Spacing = Literal["equal", "geometric", "list"]
+SPACINGS: dict[Spacing, str] = {"equal": "Equal spacing", "geometric": "Geometric spacing", "list": "List of values"}
+#: Paths that can be set up in the window; frames come from a file.
+OFFERED: tuple[type[ScanPath], ...] = tuple(cls for cls in PATHS if cls.model_fields["key"].default != "frames")
+
+
+@dataclass
+class ScanDraft:
+    """What the form holds, as typed."""
+
+    path: ScanPath = field(default_factory=lambda: OFFERED[0]())
+    spacing: Spacing = "equal"
+    first: str = "0.6"
+    last: str = "3.2"
+    count: str = "24"
+    values: str = ""
+    both_directions: bool = False
+    follow_orbitals: bool = True
+
+    def points(self) -> tuple[float, ...]:
+        """StudyError naming the field at fault."""
+        if self.spacing == "list":
+            return read_points(self.values)
+        first, last = parse_number(self.first, "first"), parse_number(self.last, "last")
+        make = linear_points if self.spacing == "equal" else geometric_points
+        return make(first, last, parse_whole(self.count, "count"))
+
+
+@dataclass
+class LiveScan:
+    """A scan under way: its points as they come."""
+
+    spec: ScanSpec
+    axis: str = ""
+    unit: str = ""
+    points: dict[int, CurvePoint] = field(default_factory=dict)
+    total: int = 0
+    stage: str = ""
+    begun: float = field(default_factory=time.monotonic)
+    result: ScanResult | None = None
+    is_stopping: bool = False
+
+    def take(self, events: Sequence[AnyEvent]) -> None:
+        for event in events:
+            if isinstance(event, ScanStarted):
+                self.axis, self.unit, self.total = event.axis, event.unit, len(event.points)
+            elif isinstance(event, ScanPoint):
+                self.points[event.point.index] = event.point
+                self.stage = f"Scanning: point {event.done} of {event.total}"
+            elif isinstance(event, Stage):
+                self.stage = event.text
+            elif isinstance(event, ScanFinished):
+                self.result = event.result
+
+    @property
+    def fraction(self) -> float | None:
+        return len(self.points) / self.total if self.total else None
+
+    @property
+    def seconds_left(self) -> float | None:
+        """From the time that the points so far have taken; None before the first."""
+        if not self.points or not self.total:
+            return None
+        return (time.monotonic() - self.begun) * (self.total / len(self.points) - 1)
+
+
+def scan_title(scan: ScanRun) -> str:
+    """`Scan 2: LiH, STO-3G, Li1-H2 distance`, and how far it came when it is not complete."""
+    r = scan.result
+    state = "" if r.finished else f", {len([p for p in r.points if p.result])} of {len(r.spec.points)} points"
+    return f"Scan {scan.number}: {r.label}, {r.axis}{state}"
+
+
+class ScanControl:
+    """`changed`: set-up, start, end or choice. `progressed`: the scan under way told something."""
+
+    def __init__(self, starter: JobStarter, study: Callable[[], StudySpec | None], function: str = SCAN) -> None:
+        self._starter, self._study, self._function = starter, study, function
+        self._job: Job | None = None
+        self.draft = ScanDraft()
+        self.live: LiveScan | None = None
+        self.scans: tuple[ScanRun, ...] = ()
+        self._chosen: int | None = None
+        self.changed, self.progressed = Listeners(), Listeners()
+        self.told = Listeners()  # (sentence)
+        self.defect = Listeners()  # (Failed)
+
+    @property
+    def obstacle(self) -> str:
+        """Why the scan cannot be started; empty when it can."""
+        try:
+            self.spec()
+        except StudyError as error:
+            return str(error)
+        return ""
+
+    @property
+    def chosen(self) -> ScanRun | None:
+        return next((s for s in self.scans if s.number == self._chosen), None)
+
+    @property
+    def shown(self) -> ShownCurve | None:
+        """The scan under way, otherwise the chosen one."""
+        if self.live is not None:
+            points = tuple(self.live.points[i] for i in sorted(self.live.points))
+            return ShownCurve("Variational", self.live.axis, self.live.unit, points)
+        kept = self.chosen
+        if kept is None:
+            return None
+        return ShownCurve("Variational", kept.result.axis, kept.result.unit, kept.result.points, kept.result)
+
+    def spec(self) -> ScanSpec:
+        """The scan as it is set up. StudyError when something does not fit."""
+        study = self._study()
+        if study is None:
+            raise StudyError("There is nothing to scan", "no system is open or a field is in error", "Open a system first")
+        draft = self.draft
+        scan = ScanSpec.model_validate(
+            {
+                "study": study,
+                "path": draft.path,
+                "points": draft.points(),
+                "follow_orbitals": draft.follow_orbitals,
+                "both_directions": draft.both_directions,
+            }
+        )
+        scan.at(scan.points[0])
+        return scan
+
+    def edit(self, name: str, value: Any) -> StudyError | None:
+        """Sets a field of the draft, `path.FIELD` for one of the path; the error that it then has, if any."""
+        if not name.startswith("path."):
+            setattr(self.draft, name, value)
+            self.changed()
+            return None
+        data = self.draft.path.model_dump() | {name.removeprefix("path."): value}
+        try:
+            self.draft.path = type(self.draft.path).model_validate(data)
+        except ValidationError as error:
+            return study_error(error)
+        self.changed()
+        return None
+
+    def choose_path(self, key: str) -> None:
+        cls = PATHS.get(key)
+        if type(self.draft.path) is not cls:
+            self.draft.path = cls()
+            if cls is SettingPath and (study := self._study()) is not None:
+                self.draft.path = SettingPath(setting=next(iter(numeric_settings(study)), ""))
+            self.changed()
+
+    def pick_atom(self, number: int) -> None:
+        """An atom was clicked in the picture: it becomes the second atom of the bond, and the second the first."""
+        from thalweg.study.path import BondPath
+
+        if isinstance(self.draft.path, BondPath) and number != self.draft.path.second:
+            self.draft.path = BondPath(first=self.draft.path.second, second=number)
+            self.changed()
+
+    def start(self) -> None:
+        """Runs the scan as set up; a sentence when it cannot be."""
+        try:
+            self._run(self.spec(), ())
+        except StudyError as error:
+            self.told(str(error))
+
+    def resume(self) -> None:
+        """Completes the chosen scan; finished points stay as they are."""
+        kept = self.chosen
+        if kept is not None and not kept.result.finished:
+            self._run(kept.result.spec, tuple(p for p in kept.result.points if p.result is not None))
+
+    def stop(self) -> None:
+        if self._job is not None and self.live is not None and not self.live.is_stopping:
+            self.live.is_stopping = True
+            self._job.stop()
+            self.changed()
+
+    def choose(self, number: int | None) -> None:
+        if number != self._chosen:
+            self._chosen = number
+            self.changed()
+
+    def load(self, scans: Sequence[ScanRun]) -> None:
+        self.scans = tuple(scans)
+        self._chosen = self.scans[-1].number if self.scans else None
+        self.changed()
+
+    def delete(self, number: int) -> None:
+        self.scans = tuple(s for s in self.scans if s.number != number)
+        self._chosen = self.scans[-1].number if self.scans else None
+        self.changed()
+
+    def _run(self, spec: ScanSpec, done: tuple[CurvePoint, ...]) -> None:
+        if self.live is not None:
+            self.told("A scan is running; stop it or wait for its end.")
+            return
+        live = self.live = LiveScan(spec, spec.path.axis(spec.study), spec.path.unit(spec.study), {p.index: p for p in done}, len(spec.points))
+        listener = JobListener(
+            events=lambda events: self._on_events(live, events),
+            done=lambda _: self._on_end(live),
+            failed=lambda failure: self._on_failed(live, failure),
+            stopped=lambda: self._on_end(live),
+        )
+        payload = {"scan": spec.model_dump(mode="json"), "done": [p.model_dump(mode="json") for p in done]}
+        self._job = self._starter.start(self._function, payload, listener)
+        self.changed()
+
+    def _on_events(self, live: LiveScan, events: Sequence[AnyEvent]) -> None:
+        live.take(events)
+        self.progressed()
+
+    def _on_end(self, live: LiveScan) -> None:
+        result = live.result or self._cut_off(live)
+        self.live, self._job = None, None
+        if result is None:
+            self.told("Stopped before there was any point to keep.")
+        else:
+            self._keep(result)
+        self.changed()
+
+    def _on_failed(self, live: LiveScan, failure: Failed) -> None:
+        if failure.fix and not failure.details:
+            self.told(str(StudyError(failure.what, failure.why, failure.fix, failure.field)))
+        else:
+            self.defect(failure)
+        self._on_end(live)
+
+    def _cut_off(self, live: LiveScan) -> ScanResult | None:
+        """What a scan leaves whose process was ended by force: the points that had come."""
+        from thalweg.study.scan_summary import summarise
+
+        points = [live.points.get(i) or CurvePoint(index=i, coordinate=x, result=None) for i, x in enumerate(live.spec.points)]
+        if not any(p.result is not None for p in points):
+            return None
+        return summarise(live.spec, points, time.monotonic() - live.begun)
+
+    def _keep(self, result: ScanResult) -> None:
+        """A resumed scan takes the place of its first part."""
+        same = next((s for s in self.scans if s.result.spec == result.spec and not s.result.finished), None)
+        number = same.number if same is not None else 1 + max((s.number for s in self.scans), default=0)
+        kept = ScanRun(number=number, result=result)
+        self.scans = (*(s for s in self.scans if s.number != number), kept)
+        self._chosen = number
+
+
+def numeric_settings(study: StudySpec) -> list[str]:
+    """Dotted names of the settings of the system that are plain numbers: couplings, fields, sites."""
+    found: list[str] = []
+
+    def walk(node: Any, prefix: str) -> None:
+        for name in type(node).model_fields:
+            value = getattr(node, name)
+            if hasattr(type(value), "model_fields"):
+                walk(value, f"{prefix}.{name}")
+            elif isinstance(value, int | float) and not isinstance(value, bool):
+                found.append(f"{prefix}.{name}")
+
+    walk(study.system, "system")
+    return found
