@@ -10,6 +10,7 @@ from math import sqrt
 import numpy as np
 
 from thalweg.ansatz.excitations import doubles, generalised_doubles, generalised_singles, singles
+from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation, ExcitationProgram
 from thalweg.operators.fermion import FermionHamiltonian
 
@@ -43,13 +44,29 @@ class ExcitationPool:
     @cached_property
     def excitations(self) -> tuple[Excitation, ...]:
         """Every different excitation once."""
-        return tuple(dict.fromkeys(e for operator in self.operators for e in operator.excitations))
+        return tuple(self._places)
 
-    def slopes(self, of_excitations: np.ndarray) -> np.ndarray:
+    def slopes(self, of_excitations: FloatArray) -> FloatArray:
         """Derivative along each operator, shape (len(self),), from those along `excitations`."""
-        place = {e: i for i, e in enumerate(self.excitations)}
-        sums = [sum(w * of_excitations[place[e]] for e, w in zip(o.excitations, o.weights, strict=True)) for o in self.operators]
-        return np.array(sums, float)
+        place, weight, owner = self._table
+        sums: FloatArray = np.bincount(owner, weights=weight * of_excitations[place], minlength=len(self))
+        return sums
+
+    @cached_property
+    def _places(self) -> dict[Excitation, int]:
+        known: dict[Excitation, int] = {}
+        for operator in self.operators:
+            for e in operator.excitations:
+                known.setdefault(e, len(known))
+        return known
+
+    @cached_property
+    def _table(self) -> tuple[IntArray, FloatArray, IntArray]:
+        """Excitation, weight and operator of every term."""
+        place = [self._places[e] for operator in self.operators for e in operator.excitations]
+        weight = [w for operator in self.operators for w in operator.weights]
+        owner = np.repeat(np.arange(len(self)), [len(operator.excitations) for operator in self.operators])
+        return np.array(place, np.int64), np.array(weight, float), owner
 
     def grown(self, program: ExcitationProgram, chosen: list[int]) -> ExcitationProgram:
         """The program with these operators appended, each with a parameter of its own."""
