@@ -37,7 +37,6 @@ class Source:
 
     Attributes:
         n_parameters: K.
-        structure: what is known of the energy from the program alone.
         is_sampled: whether energies carry statistical noise.
         begins_by_simulation: whether the start is judged by the simulation alone, as gradients cost shots or evaluations.
     """
@@ -47,8 +46,12 @@ class Source:
 
     def __init__(self, simulator: Simulator) -> None:
         self.simulator = simulator
-        self.structure = simulator.structure
-        self.n_parameters = simulator.angles.n_parameters
+        self.n_parameters = simulator.n_parameters
+
+    @property
+    def structure(self) -> Structure:
+        """What is known of the energy from the program alone."""
+        return self.simulator.structure
 
     def energy(self, parameters: FloatArray) -> Estimate:
         raise AssertionError(f"{type(self).__name__} gives no energy")

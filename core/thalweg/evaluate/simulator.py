@@ -36,6 +36,9 @@ class Simulator(Protocol):
     """One program on one Hamiltonian. Parameters have shape (K,), angles (A,); energies in the Hamiltonian's unit."""
 
     @property
+    def n_parameters(self) -> int: ...
+
+    @property
     def angles(self) -> Angles: ...
 
     @property

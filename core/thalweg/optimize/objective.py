@@ -55,9 +55,11 @@ class EnergySource(Protocol):
     """
 
     n_parameters: int
-    structure: Structure
     is_sampled: bool
     begins_by_simulation: bool
+
+    @property
+    def structure(self) -> Structure: ...
 
     def energy(self, parameters: FloatArray) -> Estimate: ...
 
@@ -139,7 +141,7 @@ class CountedObjective:
         should_stop: Callable[[], bool],
     ) -> None:
         self._source = source
-        self.n_parameters, self.structure = source.n_parameters, source.structure
+        self.n_parameters = source.n_parameters
         self.offset, self._rules = offset, rules
         self._target, self._report, self._should_stop = target_energy, report, should_stop
         self._begun = time.perf_counter()
@@ -207,6 +209,10 @@ class CountedObjective:
             estimate = self._source.energy(self.best_parameters)
             self.spent += estimate.cost
             self.best_energy, self.best_standard_error = estimate.energy, estimate.standard_error
+
+    @property
+    def structure(self) -> Structure:
+        return self._source.structure
 
     @property
     def evaluations(self) -> int:

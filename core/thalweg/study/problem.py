@@ -9,9 +9,11 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from thalweg.ansatz.ground import Ground
+from thalweg.circuit.axes import with_free_axes
 from thalweg.circuit.program import ExcitationProgram, GateProgram, Program
 from thalweg.encoding.encoded import EncodedSystem, encode_fermions, encode_spins
 from thalweg.errors import StudyError
+from thalweg.estimate import AXES
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine
 from thalweg.study.spec import StudySpec
@@ -84,6 +86,8 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     kind, pairs = prepared.reference_kind, prepared.reference_pairs
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
     program = spec.ansatz.build(ground)
+    if AXES in spec.optimizer.needs and isinstance(program, GateProgram):
+        program = with_free_axes(program)
     return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
 
 

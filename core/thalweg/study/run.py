@@ -18,6 +18,7 @@ from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.point_seed import PointSeed
 from thalweg.study.problem import Problem, exact_answer, prepare, target_error
 from thalweg.study.result import StudyResult
+from thalweg.study.simulator import refuse_unfit
 from thalweg.study.spec import StudySpec
 
 
@@ -44,6 +45,7 @@ def run_from(
     """As `run`, from a neighbour's seed where there is one; also returns the seed for the next neighbour."""
     watch = watch_into(emit, should_stop)
     problem = prepare(spec, watch, seed.mean_field if seed is not None else None)
+    refuse_unfit(problem)
     for text in warnings_of(problem):
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)

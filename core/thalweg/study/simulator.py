@@ -28,6 +28,7 @@ class StudySimulator:
 
     def __init__(self, problem: Problem, engine: Engine, watch: Watch = SILENT) -> None:
         self._problem, self._engine, self._watch = problem, engine, watch
+        self.n_parameters = problem.program.n_parameters
 
     @cached_property
     def angles(self) -> Angles:
@@ -128,7 +129,13 @@ class StudySimulator:
 
 def search_source(problem: Problem, engine: Engine, rng: np.random.Generator, watch: Watch = SILENT) -> Source:
     """Where a search by the study's optimiser draws its numbers from; StudyError where that optimiser needs more than is offered."""
-    simulator = StudySimulator(problem, engine, watch)
-    evaluation = problem.spec.evaluation
-    refuse_unless_offered(problem.spec.optimizer, evaluation.offers(simulator.structure), evaluation.title)
-    return evaluation.source(simulator, rng)
+    refuse_unfit(problem)
+    return problem.spec.evaluation.source(StudySimulator(problem, engine, watch), rng)
+
+
+def refuse_unfit(problem: Problem) -> None:
+    """StudyError where the optimiser needs what neither the evaluation nor the trial state offers."""
+    spec, program = problem.spec, problem.program
+    if spec.optimizer.needs and program.n_parameters:
+        offers = spec.evaluation.offers(structure_of(program, problem.encoded.working.one_norm))
+        refuse_unless_offered(spec.optimizer, offers, spec.evaluation.title)
