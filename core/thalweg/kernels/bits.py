@@ -92,3 +92,45 @@ def excitation_pairs(strings: np.ndarray, inverse: np.ndarray, binomial: np.ndar
             start[n], end[n], sign[n] = i, inverse[rank_of(mask, binomial)], s
             n += 1
     return start[:n].copy(), end[:n].copy(), sign[:n].copy()
+
+
+@njit(cache=True, nogil=True)
+def many_pairs(strings: np.ndarray, inverse: np.ndarray, binomial: np.ndarray, string_first: np.ndarray, orbitals: np.ndarray) -> Any:
+    """The pairs of many excitations one after another, each as `excitation_pairs` gives them.
+
+    orbitals: (E, 2, R) source and target orbitals, -1 where there are fewer than R. string_first: (G + 1,), where the strings
+    of each irrep begin. Returns first (E, G + 1), the pairs of each excitation by irrep of the first string; start; end; sign.
+    """
+    one = np.uint64(1)
+    n_irreps = string_first.size - 1
+    first = np.zeros((orbitals.shape[0], n_irreps + 1), np.int64)
+    masks = np.zeros((orbitals.shape[0], 2), np.uint64)
+    ranks = np.zeros(orbitals.shape[0], np.int64)
+    total = 0
+    for e in range(orbitals.shape[0]):
+        for side in range(2):
+            for p in orbitals[e, side]:
+                if p >= 0:
+                    masks[e, side] |= one << np.uint64(p)
+                    ranks[e] += side
+        for h in range(n_irreps):
+            first[e, h] = total
+            for i in range(string_first[h], string_first[h + 1]):
+                total += _is_moved(strings[i], masks[e, 0], masks[e, 1])
+        first[e, n_irreps] = total
+    start, end, sign = np.empty(total, np.int64), np.empty(total, np.int64), np.empty(total)
+    n = 0
+    for e in range(orbitals.shape[0]):
+        source, target = orbitals[e, 0, : ranks[e]], orbitals[e, 1, : ranks[e]]
+        for i in range(strings.size):
+            if _is_moved(strings[i], masks[e, 0], masks[e, 1]):
+                mask, s = excite(strings[i], source, target)
+                start[n], end[n], sign[n] = i, inverse[rank_of(mask, binomial)], s
+                n += 1
+    return first, start, end, sign
+
+
+@njit(cache=True, nogil=True)
+def _is_moved(mask: np.uint64, source: np.uint64, target: np.uint64) -> bool:
+    """Whether all sources are occupied and, once they are empty, all targets are empty too."""
+    return mask & source == source and (mask ^ source) & target == np.uint64(0)

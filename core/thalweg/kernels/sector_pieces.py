@@ -94,21 +94,31 @@ def sweep_groups(
 
 @njit(cache=True, nogil=True)
 def permute_columns(
-    source: np.ndarray,
-    target: np.ndarray,
-    row_start: np.ndarray,
-    row_irrep: np.ndarray,
-    first: np.ndarray,
-    irrep: int,
-    place: np.ndarray,
-    phase: np.ndarray,
+    source: np.ndarray, target: np.ndarray, offsets: np.ndarray, first: np.ndarray, irrep: int, place: np.ndarray, phase: np.ndarray
 ) -> None:
-    """target[row, c] = phase[c] source[row, place[c]]; place counts within the irrep, columns of irrep k are first[k] to first[k + 1]."""
-    for r in range(row_start.size):
-        k = row_irrep[r] ^ irrep
-        start = np.uint64(row_start[r])
-        for c in range(first[k], first[k + 1]):
-            target[start + np.uint64(c - first[k])] = phase[c] * source[start + np.uint64(place[c])]
+    """target[row, c] = phase[c] source[row, place[c]], four rows at a time.
+
+    offsets: (G + 1,), where the rows of each irrep begin; first: (G + 1,), columns of each irrep; place counts within the irrep.
+    """
+    for h in range(offsets.size - 1):
+        k = h ^ irrep
+        begin, width = first[k], np.uint64(first[k + 1] - first[k])
+        if width == 0:
+            continue
+        at, end = np.uint64(offsets[h]), np.uint64(offsets[h + 1])
+        while at + np.uint64(4) * width <= end:
+            second, third, fourth = at + width, at + np.uint64(2) * width, at + np.uint64(3) * width
+            for c in range(width):
+                p, s = np.uint64(place[begin + c]), phase[begin + c]
+                target[at + c] = s * source[at + p]
+                target[second + c] = s * source[second + p]
+                target[third + c] = s * source[third + p]
+                target[fourth + c] = s * source[fourth + p]
+            at += np.uint64(4) * width
+        while at < end:
+            for c in range(width):
+                target[at + c] = phase[begin + c] * source[at + np.uint64(place[begin + c])]
+            at += width
 
 
 @njit(cache=True, nogil=True)
@@ -127,19 +137,32 @@ def transpose(
     """target[r, c] = row_phase[r] column_phase[c] source[column_start[c] + row_place[r]], in tiles that stay in the cache.
 
     row_place: column that the row string has in the source, within its irrep; column_start: where the column string's row
-    begins in the source.
+    begins in the source. Four rows are written at a time.
     """
-    tile = 16
+    tile = 32
     for h in range(row_first.size - 1):
         k = h ^ irrep
-        for r0 in range(row_first[h], row_first[h + 1], tile):
-            r1 = min(r0 + tile, row_first[h + 1])
-            for c0 in range(column_first[k], column_first[k + 1], tile):
-                c1 = min(c0 + tile, column_first[k + 1])
-                for r in range(r0, r1):
-                    at, place, phase = row_start[r] - column_first[k], row_place[r], row_phase[r]
-                    for c in range(c0, c1):
-                        target[np.uint64(at + c)] = phase * column_phase[c] * source[np.uint64(column_start[c] + place)]
+        c_first, c_last = np.uint64(column_first[k]), np.uint64(column_first[k + 1])
+        for c0 in range(c_first, c_last, np.uint64(tile)):
+            c1 = min(c0 + np.uint64(tile), c_last)
+            r = row_first[h]
+            while r + 4 <= row_first[h + 1]:
+                at, at2 = np.uint64(row_start[r]) - c_first, np.uint64(row_start[r + 1]) - c_first
+                at3, at4 = np.uint64(row_start[r + 2]) - c_first, np.uint64(row_start[r + 3]) - c_first
+                p, p2, p3, p4 = np.uint64(row_place[r]), np.uint64(row_place[r + 1]), np.uint64(row_place[r + 2]), np.uint64(row_place[r + 3])
+                s, s2, s3, s4 = row_phase[r], row_phase[r + 1], row_phase[r + 2], row_phase[r + 3]
+                for c in range(c0, c1):
+                    begin, phase = np.uint64(column_start[c]), column_phase[c]
+                    target[at + c] = s * phase * source[begin + p]
+                    target[at2 + c] = s2 * phase * source[begin + p2]
+                    target[at3 + c] = s3 * phase * source[begin + p3]
+                    target[at4 + c] = s4 * phase * source[begin + p4]
+                r += 4
+            while r < row_first[h + 1]:
+                at = np.uint64(row_start[r]) - c_first
+                for c in range(c0, c1):
+                    target[at + c] = row_phase[r] * column_phase[c] * source[np.uint64(column_start[c] + row_place[r])]
+                r += 1
 
 
 @njit(cache=True, nogil=True)

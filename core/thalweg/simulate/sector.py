@@ -21,7 +21,7 @@ from thalweg.watch import SILENT, Watch
 __all__ = ["SectorEngine", "SectorHamiltonian"]
 
 #: Amplitudes times factors up to which one kernel call for the whole program is fastest.
-SMALL_WORK = 300_000
+SMALL_WORK = 2_000_000
 
 
 class SectorEngine:
@@ -81,7 +81,8 @@ class SectorEngine:
         return self._bytes
 
     def _angles(self, parameters: FloatArray) -> FloatArray:
-        return self._factor * np.asarray(parameters, float)[self._parameter]
+        angles: FloatArray = self._factor * np.asarray(parameters, float)[self._parameter]
+        return angles
 
     def _forward(self, parameters: FloatArray) -> FloatArray:
         return self._runner.forward(self._program.reference, self._angles(parameters), self._watch)

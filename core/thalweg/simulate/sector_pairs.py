@@ -8,7 +8,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
-from thalweg.kernels.bits import excitation_pairs
+from thalweg.kernels.bits import many_pairs
 from thalweg.operators.sector_layout import StringSpace
 
 #: (source, target) orbitals of one spin.
@@ -38,30 +38,17 @@ def pair_lists(space: StringSpace, excitations: list[OneSpin], *, rows: bool, ph
     """
     known: dict[OneSpin, int] = {}
     which = np.array([known.setdefault(e, len(known)) for e in excitations], dtype=np.int64)
-    firsts, starts, ends, signs = [], [], [], []
-    total = 0
-    for source, target in known:
-        start, end, sign = excitation_pairs(space.strings, space.inverse, space.binomial, _array(source), _array(target))
-        firsts.append(total + np.searchsorted(start, space.first))  # strings are sorted by irrep
-        starts.append(start)
-        ends.append(end)
-        signs.append(sign if phase is None else sign * phase[start] * phase[end])
-        total += start.size
-    start, end = _joined(starts, np.int64), _joined(ends, np.int64)
+    orbitals = np.full((len(known), 2, max((len(source) for source, _ in known), default=0)), -1, np.int64)
+    for n, (source, target) in enumerate(known):
+        orbitals[n, 0, : len(source)], orbitals[n, 1, : len(target)] = source, target
+    first, start, end, sign = many_pairs(space.strings, space.inverse, space.binomial, space.first, orbitals)
+    if phase is not None:
+        sign *= phase[start] * phase[end]
     if not rows:
         start, end = space.local[start], space.local[end]
-    first = np.array(firsts, dtype=np.int64).reshape(len(known), space.first.size)
-    return SpinPairs(first, start, end, _joined(signs, np.float64)), which
+    return SpinPairs(first, start, end, sign), which
 
 
 def one_spin(e: Excitation, alpha: bool) -> OneSpin:
     """What an excitation does to one spin."""
     return (e.alpha_source, e.alpha_target) if alpha else (e.beta_source, e.beta_target)
-
-
-def _array(orbitals: tuple[int, ...]) -> IntArray:
-    return np.array(orbitals, dtype=np.int64)
-
-
-def _joined(arrays: list[np.ndarray], kind: type) -> np.ndarray:
-    return np.concatenate(arrays).astype(kind) if arrays else np.empty(0, kind)

@@ -1,4 +1,4 @@
-"""Runs an excitation program on a small sector: one kernel call for the whole program, one string pair after another."""
+"""Runs an excitation program on a small sector: one kernel call for the whole program, one listed pair of amplitudes after another."""
 
 from __future__ import annotations
 
@@ -20,12 +20,15 @@ class SmallRunner:
         alpha, alpha_ids = pair_lists(layout.alpha, [one_spin(e, True) for e in excitations], rows=True)
         beta, beta_ids = pair_lists(layout.beta, [one_spin(e, False) for e in excitations], rows=False)
         factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
-        self._lists = (layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), factors)
+        self._lists = kernels.amplitude_pairs(layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), factors)
+        self._start: tuple[tuple[int, int], int] | None = None
 
     def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
         """The state from the determinant with these (alpha, beta) masks."""
+        if self._start is None or self._start[0] != start:
+            self._start = (start, self._layout.index(*start))
         psi = np.zeros(self._layout.size)
-        psi[self._layout.index(*start)] = 1.0
+        psi[self._start[1]] = 1.0
         kernels.rotate_all(psi, *self._lists, angles)
         return psi
 

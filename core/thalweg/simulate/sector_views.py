@@ -69,7 +69,7 @@ class Move:
             place = source.columns.inverse[target.columns.rank]
             phase = target.phase * source.phase[place]
             first = target.columns.first
-            self._arguments = (new.row_start, target.rows.irreps, first, target.irrep, source.columns.local[place], phase)
+            self._arguments = (new.offsets, first, target.irrep, source.columns.local[place], phase)
 
     def __call__(self, source: FloatArray, target: FloatArray) -> None:
         (kernels.transpose if self._transposes else kernels.permute_columns)(source, target, *self._arguments)
