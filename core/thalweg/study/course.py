@@ -164,6 +164,7 @@ class Course:
             largest_slope=largest_slope,
             iteration=self._iterations,
             evaluations=self._spent.evaluations,
+            standard_error=descent.standard_error,
         )
         self.steps.append(step)
         self._emit(StepTaken(start=self.index, number=len(self.steps) - 1, step=step))

@@ -90,6 +90,7 @@ class GrowthStep(Record):
     largest_slope: float | None  # among the operators of the pool, after this step; None without a pool
     iteration: int  # iterations and evaluations of the whole start when the step ended
     evaluations: int
+    standard_error: float | None = None  # of a sampled energy, or the one that shots would have
 
 
 class StudyResult(Record):
