@@ -24,8 +24,8 @@ ROW_BYTES = 2**25
 MATRIX_BYTES = 2**26
 #: The matrix is stored only where at most this share of its possible elements differs from 0.
 SPARSE_SHARE = 0.3
-#: Amplitudes times x masks between two looks at the watch: below 50 ms.
-STEP = 2**24
+#: Amplitudes times x masks between two looks at the watch: about 5 ms.
+STEP = 2**22
 
 
 class ExpansionProduct:

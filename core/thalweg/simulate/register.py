@@ -86,10 +86,10 @@ class RegisterEngine:
             state = state.astype(np.complex128)
             image = np.empty_like(state)
         energy = self._full_product.apply(state, image, self.watch)
-        variance = squared_distance(image, energy, state)
+        variance = squared_distance(image, energy, state, self.watch)
         number, s_z, s_squared = (None if o is None else ExpansionProduct(o).expectation(state, self.watch) for o in self._observables)
-        fidelity = None if exact_vectors is None else ground_weight(exact_vectors, state)
-        return StateFacts(number, s_z, s_squared, variance, fidelity, leading_states(state, exact_vectors, self._label))
+        fidelity = None if exact_vectors is None else ground_weight(exact_vectors, state, self.watch)
+        return StateFacts(number, s_z, s_squared, variance, fidelity, leading_states(state, exact_vectors, self._label, self.watch))
 
     def _forward(self, parameters: FloatArray) -> FloatArray:
         state = self._state

@@ -17,7 +17,7 @@ COLUMNS = 7
 #: The lowest qubits are local in every tile, so that memory is read in whole cache lines.
 CHUNK_BITS = 3
 #: Steps times amplitudes of a tile: more is split into several passes, so that none runs long without a look at the watch.
-MOST_COST = 2**25
+MOST_COST = 2**24
 
 
 @dataclass(frozen=True)

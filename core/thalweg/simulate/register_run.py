@@ -14,8 +14,8 @@ from thalweg.simulate.register_passes import Pass, Plan
 from thalweg.simulate.register_plan import FIRST
 from thalweg.watch import Watch
 
-#: Operations times amplitudes between two looks at the watch: about 20 ms.
-PART = 2**25
+#: Operations times amplitudes between two looks at the watch, about 5 ms; an operation on both states counts four times.
+PART = 2**24
 
 
 class PlanRunner:
@@ -51,7 +51,7 @@ class PlanRunner:
 
     def _run(self, part: Pass, operations: Any, states: Any, both: int, entries: FloatArray, gradient: FloatArray, watch: Watch) -> None:
         if part.streamed:
-            for first, last in _parts(states[0].size >> 4, 16):
+            for first, last in _parts(states[0].size >> 4, 16 << 2 * both):
                 watch.check()
                 kernels.turn_parts(states, both, first, last, operations[0], entries, gradient)
             return
@@ -61,7 +61,7 @@ class PlanRunner:
         work = (tables, self._made, self._moments[:size], self._table_scratch)
         self._made[:] = False
         layout = (unit, part.fixed, part.offsets, part.chunk)
-        for first, last in _parts(part.tiles, part.cost * size):
+        for first, last in _parts(part.tiles, part.cost * size << 2 * both):
             watch.check()
             kernels.run_tiles(states, scratch, both, first, last, *layout, operations, part.groups, work, entries, gradient)
 
