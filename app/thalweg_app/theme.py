@@ -42,8 +42,7 @@ class Theme(QObject):
     def __init__(self, application: QApplication) -> None:
         super().__init__(application)
         self._application = application
-        self._settings = QSettings()
-        stored = str(self._settings.value("appearance", "desktop"))
+        stored = str(QSettings().value("appearance", "desktop"))
         self.appearance: Appearance = "light" if stored == "light" else "dark" if stored == "dark" else "desktop"
         application.setStyle("Fusion")
         application.setFont(base_font())
@@ -53,7 +52,7 @@ class Theme(QObject):
 
     def choose(self, appearance: Appearance) -> None:
         self.appearance = appearance
-        self._settings.setValue("appearance", appearance)
+        QSettings().setValue("appearance", appearance)
         self._apply()
 
     def _apply(self) -> None:

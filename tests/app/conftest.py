@@ -16,7 +16,7 @@ sys.path.insert(0, str(HELPERS))  # fake jobs are found by name, here and in wor
 
 @pytest.fixture(autouse=True)
 def _own_surroundings(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
-    from PySide6.QtCore import QSettings, QStandardPaths
+    from PySide6.QtCore import QCoreApplication, QEvent, QSettings, QStandardPaths
 
     inherited = os.environ.get("PYTHONPATH")
     monkeypatch.setenv("PYTHONPATH", os.pathsep.join([str(HELPERS), *([inherited] if inherited else [])]))
@@ -24,3 +24,5 @@ def _own_surroundings(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterat
     QSettings.setDefaultFormat(QSettings.Format.IniFormat)
     QSettings.setPath(QSettings.Format.IniFormat, QSettings.Scope.UserScope, str(tmp_path / "settings"))
     yield
+    if QCoreApplication.instance() is not None:  # windows of earlier tests would slow every later one down
+        QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete)

@@ -248,6 +248,28 @@ def test_inspect_states_the_figures_and_minimises_nothing(thalweg):
         assert word in out
 
 
+def facts_of(out: str) -> dict[str, str]:
+    return {name.strip(): text.strip() for name, _, text in (line.partition("  ") for line in out.splitlines())}
+
+
+def test_facts_carry_their_units(thalweg):
+    molecule = facts_of(thalweg("inspect", "H2", "--quiet")[1])
+    assert molecule["Nuclear repulsion"] == "0.71375399 Eh"
+    assert molecule["HOMO-LUMO gap"].endswith(" Eh")
+    assert molecule["Hartree-Fock"].endswith(" Eh")
+    assert molecule["Mean field converged"] == "yes"
+    lattice = facts_of(thalweg("inspect", "hubbard_dimer", "--quiet")[1])
+    assert lattice["Reference energy per site"].endswith(" t")
+    assert lattice["One-norm"].endswith(" t")
+
+
+def test_a_lattice_is_solved_in_the_unit_of_its_couplings(thalweg):
+    status, out, _ = thalweg("solve", "hubbard_dimer", "--quiet")
+    assert status == 0
+    assert facts_of(out)["Energy"].split("  ")[0].endswith(" t")
+    assert "mEh" not in out
+
+
 def test_samples_lists_every_sample_with_what_it_is(thalweg):
     status, out, _ = thalweg("samples")
     assert status == 0

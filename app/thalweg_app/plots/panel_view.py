@@ -13,7 +13,7 @@ from PySide6.QtGui import QBrush, QColor, QFont, QPen
 from thalweg.arrays import FloatArray
 from thalweg_app.colours import Palette, Style, style_of
 from thalweg_app.plots.axes import DecadeAxis, NameAxis, PlainAxis, set_axis_colours
-from thalweg_app.presenters.chart import Panel, Series
+from thalweg_app.presenters.chart import Band, Panel, Series
 
 #: Wide antialiased pens are slow on long curves, and marks melt into one another.
 MAX_WIDE_POINTS = 2000
@@ -48,6 +48,8 @@ class PanelView:
         self._levels: dict[str, Any] = {}
         self._bars: list[Any] = []
         self._band: Any = None
+        self._banded: tuple[Band | None, Palette] | None = None
+        self._framed: tuple[str, Palette] | None = None
         self._floor = 0.0
         self.hair = pg.InfiniteLine(angle=90, movable=False)
         self.hair.setVisible(False)
@@ -56,16 +58,22 @@ class PanelView:
 
     def show(self, panel: Panel, palette: Palette) -> None:
         self._panel, self._palette = panel, palette
-        for side in ("left", "bottom"):
-            set_axis_colours(self.item.getAxis(side), palette.ink, palette.border)
-        self.item.setLabel("left", panel.y_title, color=palette.ink)
-        self.hair.setPen(pg.mkPen(palette.muted, width=1))
+        self._show_frame(panel.y_title, palette)
         if isinstance(axis := self.item.getAxis("bottom"), NameAxis):
             axis.set_names(panel.categories)
         self._show_band()
         self._show_levels()
         self._show_series()
         self._show_bars()
+
+    def _show_frame(self, title: str, palette: Palette) -> None:
+        if self._framed == (title, palette):
+            return
+        self._framed = (title, palette)
+        for side in ("left", "bottom"):
+            set_axis_colours(self.item.getAxis(side), palette.ink, palette.border)
+        self.item.setLabel("left", title, color=palette.ink)
+        self.hair.setPen(pg.mkPen(palette.muted, width=1))
 
     def height_of(self, values: FloatArray) -> FloatArray:
         """Data to axis coordinates: decades where the axis is logarithmic; what cannot be shown becomes NaN."""
@@ -171,6 +179,9 @@ class PanelView:
 
     def _show_band(self) -> None:
         band = self._panel.band
+        if self._banded == (band, self._palette):
+            return
+        self._banded = (band, self._palette)
         if self._band is not None:
             for part in self._band:
                 self.item.removeItem(part)

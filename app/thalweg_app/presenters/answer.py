@@ -39,10 +39,16 @@ def answer_of_check(outcome: CheckOutcome) -> Answer:
     if outcome.deviation is None:
         return Answer("unclear", f"The check of run {outcome.number} was stopped before it was complete.")
     same = outcome.deviation <= SAME
-    unit = wording.unit_name(outcome.unit)
-    words = "repeats" if same else "does not repeat"
-    deviation = wording.minus(f"{outcome.deviation:.1e}")
-    return Answer("good" if same else "bad", f"Run {outcome.number} {words}: it deviates by {deviation} {unit} ({outcome.compared}).")
+    unit, words = wording.unit_name(outcome.unit), check_words(outcome)
+    by = f"it deviates by {wording.minus(f'{outcome.deviation:.1e}')} {unit}" if outcome.deviation else "it agrees to the last digit"
+    return Answer("good" if same else "bad", f"Run {outcome.number} {words}: {by} ({outcome.compared}).")
+
+
+def check_words(outcome: CheckOutcome) -> str:
+    """`repeats`, `does not repeat`, `check stopped`."""
+    if outcome.deviation is None:
+        return "check stopped"
+    return "repeats" if outcome.deviation <= SAME else "does not repeat"
 
 
 NOTHING_YET = Answer("none", "No run yet.")

@@ -7,12 +7,12 @@ from typing import Any
 
 from thalweg.study.result import StudyResult
 from thalweg_app.presenters import jobs
-from thalweg_app.presenters.answer import NOTHING_YET, Answer, answer_of, answer_of_check
+from thalweg_app.presenters.answer import NOTHING_YET, Answer, answer_of, answer_of_check, check_words
 from thalweg_app.presenters.document import Document, RecentFiles
 from thalweg_app.presenters.figures import DerivedFigures
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.jobs import JobStarter
-from thalweg_app.presenters.ledger import Ledger
+from thalweg_app.presenters.ledger import VERDICT_WORDS, Ledger
 from thalweg_app.presenters.listeners import Listeners
 from thalweg_app.presenters.run_control import CheckOutcome, RunControl
 from thalweg_app.presenters.scan_control import SCAN, ScanControl
@@ -75,11 +75,25 @@ class Workbench:
         known = figures.warnings if figures is not None and run.result.spec == self.setup.spec else ()
         return answer_of(run.number, run.result, known)
 
+    @property
+    def state_in_words(self) -> str:
+        """For the title bar: what runs, or what the answer is."""
+        run = self.ledger.selected
+        if self.runs.is_running:
+            return "running"
+        if self._check is not None:
+            return f"run {self._check.number}: {check_words(self._check)}"
+        return "" if run is None else f"run {run.number}: {VERDICT_WORDS.get(run.result.verdict_kind, run.result.verdict_kind)}"
+
     def run(self) -> None:
         """Runs the set-up as it is, when it can be run."""
         if self.can_run:
             self._check = None
             self.runs.submit(self.setup.spec)
+
+    def stop(self) -> None:
+        """Ends the run under way, or else the scan; what is finished is kept."""
+        (self.runs.stop if self.runs.is_running else self.scans.stop)()
 
     def check_selected(self) -> None:
         """Repeats the selected run and states the deviation."""

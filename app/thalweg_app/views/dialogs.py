@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from html import escape
 
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QFontDatabase
@@ -139,7 +140,7 @@ def _box(parent: QWidget | None, picture: QMessageBox.Icon, text: str, below: st
     box = QMessageBox(parent)
     box.setIcon(picture)
     box.setWindowTitle("Thalweg")
-    box.setText(f"<b>{text}</b>" if Qt.mightBeRichText(text) is False else text)
+    box.setText(f"<b>{escape(text)}</b>")
     box.setInformativeText(below)
     box.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
     return box

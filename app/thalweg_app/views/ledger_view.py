@@ -14,7 +14,7 @@ from thalweg_app.forms import describe
 from thalweg_app.presenters.answer import KINDS
 from thalweg_app.presenters.ledger import COLUMNS, NOTE, Ledger
 from thalweg_app.theme import SPACE, icon
-from thalweg_app.views.number_table import quiet, selected_text
+from thalweg_app.widgets.number_table import quiet, selected_text
 
 _Index = QModelIndex | QPersistentModelIndex
 VERDICT = next(i for i, c in enumerate(COLUMNS) if c.name == "Verdict")
@@ -180,9 +180,9 @@ class LedgerView(QWidget):
             self._ledger.select(self.model.rows[current.row()].number)
 
     def _make_actions(self) -> None:
-        self.use_action = QAction("Use this set-up", self, triggered=self.use_asked)
+        self.use_action = QAction("Use this set-up", self, triggered=lambda: self.use_asked.emit())
         self.use_action.setToolTip("Puts the settings of the selected run back into the set-up column.")
-        self.check_action = QAction("Check again", self, triggered=self.check_asked)
+        self.check_action = QAction("Check again", self, triggered=lambda: self.check_asked.emit())
         self.check_action.setToolTip("Repeats the selected run and states the deviation.")
         self.delete_action = QAction("Delete run", self, triggered=self.delete_selected)
         self.delete_action.setToolTip("Takes the selected run out of the ledger; undo brings it back.")

@@ -12,9 +12,9 @@ from thalweg.study.events import Failed
 from thalweg_app.colours import Palette
 from thalweg_app.forms import TextEntry
 from thalweg_app.plots.all_pictures import PICTURES
+from thalweg_app.plots.curve import CurvePicture
 from thalweg_app.plots.picture import Picture
 from thalweg_app.presenters.document import Recovery
-from thalweg_app.presenters.ledger import VERDICT_WORDS
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import Theme, application_icon
 from thalweg_app.views.dialogs import show_defect
@@ -64,10 +64,19 @@ class Window(QMainWindow):
 
     def run(self) -> None:
         """Takes over what is still being typed, then runs."""
+        self._commit_typing()
+        self.workbench.run()
+
+    def scan(self) -> None:
+        """Takes over what is still being typed, shows the curve, and runs its points."""
+        self._commit_typing()
+        self.show_picture(next(i for i, picture in enumerate(self.pictures) if isinstance(picture, CurvePicture)))
+        self.workbench.scans.start()
+
+    def _commit_typing(self) -> None:
         focus = QApplication.focusWidget()
         if isinstance(focus, TextEntry):
             focus.commit()
-        self.workbench.run()
 
     def open_path(self, path: str) -> None:
         self.files.open(Path(path))
@@ -83,14 +92,8 @@ class Window(QMainWindow):
         self.picture.refresh()
 
     def refresh_title(self) -> None:
-        document, runs = self.workbench.document, self.workbench.runs
-        state = ""
-        run = self.workbench.ledger.selected
-        if runs.is_running:
-            state = " – running"
-        elif run is not None:
-            state = f" – run {run.number}: {VERDICT_WORDS.get(run.result.verdict_kind, '')}"
-        self.setWindowTitle(f"{document.name}[*]{state} – Thalweg")
+        document, words = self.workbench.document, self.workbench.state_in_words
+        self.setWindowTitle(f"{document.name}[*]{f' – {words}' if words else ''} – Thalweg")
         self.setWindowModified(document.is_dirty)
 
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:  # noqa: N802 - Qt's name
@@ -154,12 +157,13 @@ class Window(QMainWindow):
         bench.point_opened.connect(lambda: self.show_picture(0))
         bench.runs.finished.connect(lambda _: self._keep())
         bench.document.changed.connect(self.refresh_title)
-        bench.ledger.selection_changed.connect(self.refresh_title)
+        bench.answer_changed.connect(self.refresh_title)
         bench.pictures_changed.connect(self._draw.start)
         bench.figures.needed.connect(self._rest.start)
         bench.defect.connect(self.show_failure)
         self.column.run_asked.connect(self.run)
         self.column.stop_asked.connect(bench.runs.stop)
+        self.column.system.picture.atom_chosen.connect(bench.scans.pick_atom)
         self.column.system.open_asked.connect(self.files.ask_open)
         self.column.system.paste_asked.connect(self.files.ask_paste)
         self.column.system.sample_asked.connect(self.files.open_sample)

@@ -1,0 +1,442 @@
+"""The window driven by keyboard and mouse, with jobs answered by hand."""
+
+import pytest
+import studies
+import windows
+from fake_starter import FakeStarter
+from PySide6.QtCore import QMimeData, QPointF, QSettings, Qt, QUrl
+from PySide6.QtGui import QDropEvent, QGuiApplication
+from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QFileDialog, QLineEdit, QMessageBox
+
+from thalweg.storage.session import SUFFIX, load_session
+from thalweg.study.events import Failed, Finished, Iteration, Started
+from thalweg.systems.samples import list_samples
+from thalweg_app.main import begin, defect_hook
+from thalweg_app.presenters.jobs import DRAW, INSPECT, OPEN_FILE, RUN
+from thalweg_app.views.dialogs import PasteDialog
+
+
+@pytest.fixture
+def starter():
+    return FakeStarter()
+
+
+@pytest.fixture
+def window(qtbot, tmp_path, starter):
+    made = windows.make(qtbot, tmp_path, starter)
+    made.workbench.setup.load(studies.study())
+    made.workbench.document.mark_pristine()
+    return made
+
+
+def jobs_of(starter, function):
+    return [job for job in starter.jobs if job.function == function]
+
+
+def started(**changes):
+    made = {
+        "label": "LiH",
+        "energy_unit": "hartree",
+        "reference_name": "Hartree-Fock",
+        "reference_energy": studies.REFERENCE,
+        "exact_energy": studies.EXACT,
+        "target_error": 1.6e-3,
+        "n_parameters": 44,
+        "n_starts": 1,
+    }
+    return Started(**(made | changes))
+
+
+def iteration(i, energy):
+    return Iteration(start=0, iteration=i, evaluations=i + 1, energy=energy, gradient_norm=0.1 / (i + 1), seconds=0.1 * i)
+
+
+def finish(starter, result=None):
+    job = jobs_of(starter, RUN)[-1]
+    job.listener.events([started(), iteration(0, -7.86), Finished(result=result or studies.result())])
+    job.listener.done(None)
+
+
+def add_run(window, *errors):
+    for error in errors:
+        window.workbench.ledger.add(studies.result(error))
+
+
+def curves(window):
+    return [series.name for panel in window.picture.view.chart.panels[:1] for series in panel.series]
+
+
+def press(window, key, modifier=Qt.KeyboardModifier.ControlModifier):
+    QTest.keyClick(window.focusWidget() or window, key, modifier)
+
+
+def test_the_first_sample_is_shown_unchanged(qtbot, tmp_path):
+    window = windows.make(qtbot, tmp_path)
+    begin(window, [])
+    assert window.workbench.setup.spec.system.name == "LiH"
+    assert not window.isWindowModified()
+    assert not window.menus.undo.isEnabled()
+
+
+def test_figures_follow_an_edit_and_are_dimmed_meanwhile(qtbot, window, starter):
+    qtbot.waitUntil(lambda: bool(jobs_of(starter, INSPECT)))
+    line = window.column.sections["encoding"].line
+    assert line.property("role") == "stale"
+    jobs_of(starter, INSPECT)[-1].listener.done(studies.figures().model_dump(mode="json"))
+    assert line.text() == "Jordan-Wigner, tapered: 12 → 10 qubits, 631 terms"
+    assert line.property("role") == "figure"
+
+
+def test_quick_edits_in_a_row_ask_for_figures_once(qtbot, window, starter):
+    qtbot.waitUntil(lambda: bool(jobs_of(starter, INSPECT)))
+    before = len(jobs_of(starter, INSPECT))
+    for charge in ("1", "2", "3"):
+        window.workbench.setup.edit("system.charge", charge)
+    qtbot.waitUntil(lambda: len(jobs_of(starter, INSPECT)) > before)
+    qtbot.wait(150)
+    assert len(jobs_of(starter, INSPECT)) == before + 1
+
+
+def test_ctrl_r_runs_what_is_still_being_typed(qtbot, window, starter):
+    window.column.sections["optimizer"].set_open(True)
+    entry = window.column.search.forms[0].editor("seed")
+    entry.setFocus()
+    entry.selectAll()
+    QTest.keyClicks(entry, "42")
+    QTest.keyClick(entry, Qt.Key.Key_R, Qt.KeyboardModifier.ControlModifier)
+    assert jobs_of(starter, RUN)[0].payload["seed"] == 42
+
+
+def test_a_run_fills_picture_status_ledger_answer_and_title(qtbot, window, starter):
+    QTest.mouseClick(window.column.run_button, Qt.MouseButton.LeftButton)
+    job = jobs_of(starter, RUN)[0]
+    job.listener.events([started(), iteration(0, -7.862), iteration(1, -7.88)])
+    qtbot.waitUntil(lambda: len(window.picture.view.chart.panels) == 2 and "iteration 1" in window.status.text)
+    assert "running" in window.windowTitle()
+    assert window.column.run_button.text() == "Add to queue"
+    finish(starter)
+    assert window.ledger_view.model.rowCount() == 1
+    assert "0.011 mEh" in window.column.answer.text
+    assert "run 1: reached" in window.windowTitle()
+    assert window.isWindowModified()
+    assert window.column.run_button.text() == "Run"
+
+
+def test_escape_stops_the_run(qtbot, window, starter):
+    window.run()
+    window.setFocus()
+    press(window, Qt.Key.Key_Escape, Qt.KeyboardModifier.NoModifier)
+    assert jobs_of(starter, RUN)[0].was_stopped
+    assert not window.column.stop_button.isEnabled()
+
+
+def test_runs_queue_and_can_be_taken_off(qtbot, window, starter):
+    window.run()
+    window.run()
+    assert window.status._waiting.text() == "1 waiting"
+    window.status._waiting.menu().actions()[0].trigger()
+    assert not window.workbench.runs.queue
+
+
+def test_bad_input_disables_run_and_says_why(qtbot, window):
+    window.column.sections["optimizer"].set_open(True)
+    entry = window.column.search.forms[0].editor("starts")
+    entry.setFocus()
+    entry.selectAll()
+    QTest.keyClicks(entry, "none")
+    QTest.keyClick(entry, Qt.Key.Key_Tab)
+    assert not window.column.run_button.isEnabled()
+    assert "none" in window.column._obstacle.text()
+    window.menus.undo.trigger()
+    assert window.column.run_button.isEnabled()
+
+
+def test_what_the_calculation_refuses_is_marked_in_its_field(qtbot, window, starter):
+    window.run()
+    jobs_of(starter, RUN)[0].listener.failed(Failed(what="Odd electrons", why="a singlet needs pairs", fix="Use 2", field="system.multiplicity"))
+    row = next(r for r in window.column.system._forms["molecule"].rows if r.path == "system.multiplicity")
+    assert "Odd electrons" in row.error.text()
+    assert "Odd electrons" in window.status.text
+
+
+def test_a_killed_calculation_is_told_and_the_window_lives_on(qtbot, window, starter):
+    window.run()
+    jobs_of(starter, RUN)[0].listener.failed(Failed(what="The calculation was cut off", why="no memory", fix="Run it again", details="x"))
+    assert "cut off" in window.status.text
+    window.run()
+    finish(starter)
+    assert window.ledger_view.model.rowCount() == 1
+
+
+def test_a_defect_is_shown_with_details(qtbot, window, starter):
+    window.run()
+    jobs_of(starter, RUN)[0].listener.failed(Failed(what="defect", details="Traceback (most recent call last)"))
+    box = windows.dialog(window, QMessageBox)
+    assert "Traceback" in box.detailedText()
+
+
+def test_an_exception_in_the_window_is_logged_and_shown(qtbot, window, capsys):
+    try:
+        raise ZeroDivisionError("by hand")
+    except ZeroDivisionError as error:
+        defect_hook(window)(type(error), error, error.__traceback__)
+    assert "by hand" in windows.dialog(window, QMessageBox).detailedText()
+
+
+def test_a_click_on_a_row_shows_its_run_and_the_space_bar_ticks_it(qtbot, window):
+    add_run(window, 3e-3, 1e-5)
+    view = window.ledger_view.view
+    QTest.mouseClick(view.viewport(), Qt.MouseButton.LeftButton, pos=view.visualRect(window.ledger_view.model.index(0, 3)).center())
+    assert window.workbench.ledger.selected.number == 1
+    QTest.keyClick(view, Qt.Key.Key_Space)
+    assert [r.number for r in window.workbench.ledger.ticked] == [1]
+    qtbot.waitUntil(lambda: curves(window)[-1:] == ["Run 1"])
+
+
+def test_ticked_runs_are_laid_over_the_picture(qtbot, window):
+    add_run(window, 3e-3, 1e-5)
+    index = window.ledger_view.model.index(0, 0)
+    window.ledger_view.model.setData(index, Qt.CheckState.Checked.value, Qt.ItemDataRole.CheckStateRole)
+    qtbot.waitUntil(lambda: curves(window) == ["Run 1", "Run 2"])
+
+
+def test_delete_removes_a_run_and_undo_brings_it_back(qtbot, window):
+    add_run(window, 3e-3, 1e-5)
+    window.ledger_view.view.setFocus()
+    QTest.keyClick(window.ledger_view.view, Qt.Key.Key_Delete)
+    assert window.ledger_view.model.rowCount() == 1
+    window.menus.undo.trigger()
+    assert window.ledger_view.model.rowCount() == 2
+
+
+def test_a_heading_sorts_the_ledger(qtbot, window):
+    add_run(window, 3e-3, 1e-5)
+    window.ledger_view.view.sortByColumn(6, Qt.SortOrder.AscendingOrder)
+    assert [r.number for r in window.ledger_view.model.rows] == [2, 1]
+
+
+def test_a_note_is_edited_in_its_cell(qtbot, window):
+    add_run(window, 1e-5)
+    model = window.ledger_view.model
+    model.setData(model.index(0, model.columnCount() - 1), "baseline")
+    assert window.workbench.ledger.run(1).note == "baseline"
+
+
+def test_use_this_set_up_and_check_again_act_on_the_selected_run(qtbot, window, starter):
+    window.workbench.ledger.add(studies.result(spec=studies.other_study()))
+    window.ledger_view.use_action.trigger()
+    assert window.workbench.setup.spec == studies.other_study()
+    window.ledger_view.check_action.trigger()
+    starter.last.listener.done({"deviation": 0.0, "exact_deviation": 0.0, "compared": "final energies"})
+    assert "Run 1 repeats" in window.column.answer.text
+
+
+@pytest.mark.parametrize("title", ["Convergence", "Hamiltonian", "State"])
+def test_ctrl_and_a_digit_shows_a_picture(qtbot, window, title):
+    add_run(window, 1e-5)
+    place = [picture.title for picture in window.pictures].index(title)
+    press(window, Qt.Key(Qt.Key.Key_1.value + place))
+    qtbot.waitUntil(lambda: window.picture.title == title and not window.picture.view.chart.is_empty)
+
+
+def test_saving_asks_for_a_name_once_and_clears_the_mark(qtbot, window, tmp_path):
+    add_run(window, 1e-5)
+    press(window, Qt.Key.Key_S)
+    dialog = windows.dialog(window, QFileDialog)
+    dialog.findChild(QLineEdit).setText(str(tmp_path / "lih"))
+    dialog.accept()
+    assert load_session(tmp_path / f"lih{SUFFIX}").runs == window.workbench.ledger.runs
+    assert not window.isWindowModified()
+    assert window.windowTitle().startswith("lih")
+    window.workbench.ledger.annotate(1, "again")
+    press(window, Qt.Key.Key_S)
+    assert load_session(tmp_path / f"lih{SUFFIX}").runs[0].note == "again"
+
+
+def test_a_save_that_fails_is_told_and_nothing_is_lost(qtbot, window, tmp_path):
+    add_run(window, 1e-5)
+    window.files._save_to(tmp_path / "missing" / "x", lambda: None)
+    assert windows.dialog(window, QMessageBox) is not None
+    assert window.isWindowModified()
+
+
+def test_opening_a_session_shows_what_was_saved(qtbot, window, tmp_path):
+    add_run(window, 3e-3, 1e-5)
+    path = window.workbench.document.save(tmp_path / "lih")
+    window.files.new_session()
+    assert window.ledger_view.model.rowCount() == 0
+    window.open_path(str(path))
+    assert window.ledger_view.model.rowCount() == 2
+    assert "0.01 mEh" in window.column.answer.text
+
+
+def test_opening_over_unsaved_results_asks_first(qtbot, window, tmp_path):
+    path = window.workbench.document.save(tmp_path / "lih")
+    add_run(window, 1e-5)
+    window.open_path(str(path))
+    box = windows.dialog(window, QMessageBox)
+    box.button(QMessageBox.StandardButton.NoButton)
+    next(b for b in box.buttons() if b.text() == "Cancel").click()
+    assert window.ledger_view.model.rowCount() == 1
+
+
+def test_every_sample_opens(qtbot, window):
+    for sample in list_samples():
+        window.column.system.sample_asked.emit(str(sample.file))
+        assert windows.dialog(window, QMessageBox) is None, sample.name
+        assert not window.workbench.setup.errors
+        assert sample.name in window.workbench.history.undo_text
+
+
+def test_a_file_that_cannot_be_read_is_told(qtbot, window, tmp_path):
+    window.open_path(str(tmp_path / "missing.xyz"))
+    assert "missing.xyz" in windows.dialog(window, QMessageBox).text()
+
+
+def test_a_large_file_is_read_by_a_worker(qtbot, window, tmp_path, starter):
+    path = tmp_path / "large.xyz"
+    path.write_text("2\n\nH 0 0 0\nH 0 0 0.74\n" + "\n" * 400_000)
+    window.open_path(str(path))
+    job = jobs_of(starter, OPEN_FILE)[0]
+    job.listener.done({"system": studies.molecule(name="large").model_dump(mode="json"), "notes": ["Read."]})
+    assert window.workbench.setup.spec.system.name == "large"
+
+
+def test_a_dropped_geometry_becomes_the_system(qtbot, window):
+    sample = next(s for s in list_samples() if s.name == "H2O")
+    data = QMimeData()
+    data.setUrls([QUrl.fromLocalFile(str(sample.file))])
+    assert window.files.can_drop(data)
+    drop = QDropEvent(QPointF(50, 50), Qt.DropAction.CopyAction, data, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier)
+    window.dropEvent(drop)
+    assert window.workbench.setup.spec.system.name == "H2O"
+
+
+def test_pasted_atoms_are_read_and_bad_ones_leave_the_dialog_open(qtbot, window):
+    QGuiApplication.clipboard().setText("He 0 0 0\nH 0 0 nonsense")
+    window.files.ask_paste()
+    dialog = windows.dialog(window, PasteDialog)
+    dialog.accept()
+    assert dialog.isVisible()
+    assert dialog._error.text()
+    dialog.text.setPlainText("He 0 0 0\nH 0 0 1.5")
+    dialog.unit.setCurrentIndex(1)
+    dialog.accept()
+    assert window.workbench.setup.spec.system.atoms == (("He", 0.0, 0.0, 0.0), ("H", 0.0, 0.0, 1.5))
+    assert window.workbench.setup.spec.system.unit == "bohr"
+
+
+def test_closing_with_unsaved_results_asks(qtbot, window):
+    window._may_close = False
+    add_run(window, 1e-5)
+    assert not window.close()
+    box = windows.dialog(window, QMessageBox)
+    next(b for b in box.buttons() if b.text() == "Cancel").click()
+    assert window.isVisible()
+    window.close()
+    next(b for b in windows.dialog(window, QMessageBox).buttons() if b.text() == "Do not save").click()
+    assert not window.isVisible()
+
+
+def test_closing_saves_when_asked_to(qtbot, window, tmp_path):
+    window._may_close = False
+    window.workbench.document.save(tmp_path / "lih")
+    add_run(window, 1e-5)
+    window.close()
+    next(b for b in windows.dialog(window, QMessageBox).buttons() if b.text() == "Save").click()
+    assert not window.isVisible()
+    assert len(load_session(tmp_path / f"lih{SUFFIX}").runs) == 1
+
+
+def test_a_clean_window_closes_at_once(qtbot, window):
+    window._may_close = False
+    assert window.close()
+
+
+def test_place_and_split_are_remembered(qtbot, window, tmp_path):
+    window.whole.setSizes([450, 550])
+    column, width = window.column.width(), window.width()
+    window.close()
+    again = windows.make(qtbot, tmp_path)
+    assert again.width() == width
+    assert again.column.width() == column
+
+
+def test_a_crash_is_recovered_at_the_next_start(qtbot, window, tmp_path):
+    from thalweg_app.presenters.document import Recovery
+
+    add_run(window, 1e-5)
+    Recovery(tmp_path / "recovery", process=999_999_999).keep(window.workbench.document)
+    fresh = windows.make(qtbot, tmp_path)
+    begin(fresh, [])
+    next(b for b in windows.dialog(fresh, QMessageBox).buttons() if b.text() == "Restore").click()
+    assert fresh.ledger_view.model.rowCount() == 1
+    assert fresh.isWindowModified()
+
+
+def test_f1_explains_the_field_with_the_focus(qtbot, window):
+    entry = window.column.system._forms["molecule"].editor("system.basis")
+    entry.setFocus()
+    window.help.show_for(entry)
+    assert "Basis set" in window.help.label.text()
+    window.help.hide()
+
+
+@pytest.mark.parametrize("appearance", ["dark", "light"])
+def test_appearance_changes_everything_at_once_and_is_remembered(qtbot, window, appearance):
+    add_run(window, 1e-5)
+    window.theme.choose(appearance)
+    assert window.theme.palette.name == appearance
+    assert QSettings().value("appearance") == appearance
+    assert window.picture.palette_now.name == appearance
+
+
+def test_the_picture_is_copied_and_its_numbers_are_saved(qtbot, window, tmp_path):
+    add_run(window, 1e-5)
+    QGuiApplication.clipboard().clear()
+    window.redraw()
+    window.picture.copy_image()
+    assert not QGuiApplication.clipboard().pixmap().isNull()
+    window.picture.save_numbers(tmp_path / "a.csv")
+    assert "Energy / Eh,Run 1" in (tmp_path / "a.csv").read_text()
+
+
+def test_the_picture_is_drawn_for_print_by_a_worker(qtbot, window, tmp_path, starter):
+    add_run(window, 1e-5)
+    window.redraw()
+    window.picture.save_picture(tmp_path / "a.svg")
+    job = jobs_of(starter, DRAW)[0]
+    from thalweg_app.jobs import draw
+
+    draw(job.payload, lambda event: None, lambda: False)
+    text = (tmp_path / "a.svg").read_text()
+    assert "Chemical accuracy" in text
+    job.listener.done(str(tmp_path / "a.svg"))
+    assert "a.svg" in window.status.text
+
+
+def test_every_control_of_the_column_is_named_and_reachable(qtbot, window):
+    from PySide6.QtWidgets import QAbstractButton, QComboBox
+
+    for section in window.column.sections.values():
+        section.set_open(True)
+    for widget in window.column.findChildren(QLineEdit) + window.column.findChildren(QComboBox) + window.column.findChildren(QAbstractButton):
+        if not widget.isVisible() or widget.objectName().startswith("qt_") or widget.metaObject().className() == "QTableCornerButton":
+            continue
+        assert widget.accessibleName() or widget.text(), widget
+        assert widget.focusPolicy() != Qt.FocusPolicy.NoFocus, widget.accessibleName()
+        assert widget.toolTip(), widget.accessibleName()
+
+
+def test_differences_can_be_shown_in_another_unit(qtbot, window):
+    add_run(window, 1e-5)
+    window.choose_difference_unit("eV")
+    assert "Error / eV" in window.workbench.ledger.header
+    assert QSettings().value("difference_unit") == "eV"
+
+
+def test_recent_sessions_are_offered(qtbot, window, tmp_path):
+    path = window.workbench.document.save(tmp_path / "lih")
+    window.menus._fill_recent()
+    assert window.menus._recent.actions()[0].text() == str(path)
