@@ -12,8 +12,8 @@ from thalweg_app.presenters.wording import bytes_text, counted, significant, uni
 
 Rows = list[tuple[str, str]]
 
-#: Facts of a molecule that are energies, and endings that name a length's unit.
-ENERGY_FACTS = frozenset({"nuclear_repulsion", "core_energy", "mean_field_energy", "homo_lumo_gap", "largest_dropped_integral"})
+#: Facts that are energies though they are not called so, and endings that name a length's unit.
+ENERGY_FACTS = frozenset({"nuclear_repulsion", "homo_lumo_gap", "largest_dropped_integral"})
 LENGTH_ENDINGS = {"_angstrom": "angstrom", "_bohr": "bohr"}
 
 
@@ -27,7 +27,7 @@ def answer_lines(result: StudyResult) -> list[str]:
 def figures_lines(figures: StudyFigures) -> list[str]:
     """What `inspect` prints: the figures of a study that has not been run."""
     unit = unit_name(figures.energy_unit)
-    rows: Rows = [("System", figures.label), (figures.reference_name, _energy(figures.reference_energy, unit))]
+    rows: Rows = [("System", figures.label), (_words(figures.reference_name), _energy(figures.reference_energy, unit))]
     if figures.n_electrons is not None:
         rows += [
             ("Electrons", f"{figures.n_electrons} active"),
@@ -40,7 +40,7 @@ def figures_lines(figures: StudyFigures) -> list[str]:
     if figures.two_qubit_gates is not None:
         rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
     rows += [("Memory", bytes_text(figures.memory_bytes)), ("Operator order", figures.operator_order)]
-    facts = [(_words(name), _fact(name, value)) for name, value in figures.facts.items()]
+    facts = [(_words(name), _fact(name, value, unit)) for name, value in figures.facts.items()]
     warnings = [f"Warning: {text}" for text in figures.warnings]
     return [*aligned(rows), "", *aligned(facts), *_ladder(figures), *([""] if warnings else []), *warnings]
 
@@ -73,7 +73,7 @@ def _energy_rows(result: StudyResult) -> Rows:
     if result.exact_energy is not None:
         several = f", {result.exact_degeneracy}-fold degenerate" if (result.exact_degeneracy or 1) > 1 else ""
         rows.append(("Exact", f"{_energy(result.exact_energy, unit)}  ({result.exact_method}{several})"))
-    rows.append((result.reference_name, _energy(result.reference_energy, unit)))
+    rows.append((_words(result.reference_name), _energy(result.reference_energy, unit)))
     rows += [
         (name.upper(), _energy(value, unit) if value is not None else "not available for this system") for name, value in result.classical.items()
     ]
@@ -165,15 +165,15 @@ def _words(name: str) -> str:
     return text[:1].upper() + text[1:]
 
 
-def _fact(name: str, value: Any) -> str:
+def _fact(name: str, value: Any, energy_unit: str) -> str:
     if isinstance(value, bool):
         return "yes" if value else "no"
     if isinstance(value, list | tuple):
-        return ", ".join(_fact(name, item) for item in value)
+        return ", ".join(_fact(name, item, energy_unit) for item in value)
     if not isinstance(value, float):
         return "" if value is None else str(value)
     length = next((unit for ending, unit in LENGTH_ENDINGS.items() if name.endswith(ending)), "")
-    unit = length or ("Eh" if name in ENERGY_FACTS else "")
+    unit = length or (energy_unit if name in ENERGY_FACTS or "energy" in name else "")
     return f"{value:.8g} {unit}".rstrip()
 
 

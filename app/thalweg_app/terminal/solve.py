@@ -33,7 +33,7 @@ STANDARD_OUTPUT = "-"
 def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: bool, **options: Any) -> int:
     """Find the lowest energy of a trial state and judge it against the exact one.
 
-    INPUT is a file (XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a session), the name of a sample, or - for standard input.
+    INPUT is a file (XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a lattice, a session), the name of a sample, or - for standard input.
     The exit status is 0 when the study ran, whatever its verdict; 2 for bad input; 130 after Ctrl-C, with the best so far kept.
     """
     spec, notes = read_setup(options)
