@@ -76,6 +76,7 @@ class CurvePicture(Picture):
         keys: tuple[tuple[float | str, ...], ...] = tuple((float(i),) * 3 for i in range(len(cells)))
         self.yields.show_table(Table(("Quantity", "Variational", "Exact"), tuple(cells), (False, True, True), keys, "What the curves yield."))
         self.yields.setVisible(bool(rows))
+        self.yields.setColumnWidth(0, 130)
         self.remarks.setText("\n".join(curve_remarks(shown)))
         self.resume.setVisible(self.scans.live is None and self.scans.chosen is not None and not self.scans.chosen.result.finished)
 
@@ -99,7 +100,7 @@ class CurvePicture(Picture):
 
     def _make_controls(self) -> None:
         self.choice = QuietCombo()
-        self.choice.setMinimumContentsLength(28)
+        self.choice.setMinimumContentsLength(34)
         describe(self.choice, "Scan shown", "The scans of this session.")
         self.choice.activated.connect(lambda i: self.scans.choose(self.choice.itemData(i)))
         self.length = QuietCombo()

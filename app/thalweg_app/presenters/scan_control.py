@@ -78,6 +78,11 @@ class LiveScan:
                 self.result = event.result
 
     @property
+    def text(self) -> str:
+        """What is done now."""
+        return "Stopping, finished points are kept" if self.is_stopping else self.stage or "Waiting for a free process"
+
+    @property
     def fraction(self) -> float | None:
         return len(self.points) / self.total if self.total else None
 

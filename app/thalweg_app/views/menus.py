@@ -31,6 +31,7 @@ class Menus:
         self._help_menu()
         self._bench.history.changed.connect(self.refresh)
         self._bench.runs.changed.connect(self.refresh)
+        self._bench.scans.changed.connect(self.refresh)
         self._bench.setup.changed.connect(self.refresh)
         self._bench.ledger.selection_changed.connect(self.refresh)
         self._bench.figures.changed.connect(self.refresh)
@@ -42,7 +43,8 @@ class Menus:
             action.setText(f"{verb} {text}" if text else verb)
             action.setEnabled(bool(text))
         self.run.setEnabled(self._bench.can_run)
-        self.stop.setEnabled(runs.is_running)
+        self.scan.setEnabled(self._bench.can_run and self._bench.scans.live is None)
+        self.stop.setEnabled(runs.is_running or self._bench.scans.live is not None)
         self.stop_all.setEnabled(runs.is_running)
 
     def _file_menu(self) -> None:
@@ -74,7 +76,8 @@ class Menus:
     def _run_menu(self) -> None:
         menu, ledger = self._menu("&Run"), self._window.ledger_view
         self.run = self._add(menu, "&Run", "Ctrl+R", self._window.run, "Minimises the energy with the settings at the left.")
-        self.stop = self._add(menu, "&Stop", "Esc", self._bench.runs.stop, "Ends the run and keeps the best point so far.")
+        self.scan = self._add(menu, "S&can", "Ctrl+Alt+R", self._window.scan, "Runs every point of the path that the Curve picture shows.")
+        self.stop = self._add(menu, "&Stop", "Esc", self._bench.stop, "Ends the run or the scan and keeps what is finished.")
         self.stop_all = self._add(menu, "Stop &all", "Shift+Esc", self._bench.runs.stop_all, "Ends the run and empties the queue.")
         menu.addSeparator()
         ledger.check_action.setShortcut("Ctrl+Shift+R")

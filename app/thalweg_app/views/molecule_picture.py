@@ -7,7 +7,7 @@ from functools import lru_cache
 from math import hypot
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, QSize, Qt
+from PySide6.QtCore import QPointF, QRectF, QSize, Qt, Signal
 from PySide6.QtGui import QBrush, QColor, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen, QPixmap, QRadialGradient, QWheelEvent
 from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
@@ -41,6 +41,7 @@ ELEMENT_COLOURS = {
 }
 OTHER_COLOUR = "#A89F94"
 TURN = 0.011  # radians a pixel
+CLICK = 4.0  # pixels that the mouse may move within a click
 STICK = 0.24  # bohr, radius
 
 
@@ -54,7 +55,9 @@ class _Ball:
 
 
 class MoleculePicture(QWidget):
-    """Shows atoms in `unit`; broken input shows what can be shown."""
+    """Shows atoms in `unit`; broken input shows what can be shown. `atom_chosen` carries the number of a clicked atom, counted from 1."""
+
+    atom_chosen = Signal(int)
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -64,6 +67,7 @@ class MoleculePicture(QWidget):
         self._turn: FloatArray = np.eye(3)
         self._zoom = 1.0
         self._grip: QPointF | None = None
+        self._pressed = QPointF()
         self._palette = LIGHT
         self.setMouseTracking(True)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
@@ -71,7 +75,7 @@ class MoleculePicture(QWidget):
         self.setMinimumHeight(150)
         self.setAccessibleName("Picture of the molecule")
         self.setProperty("help", "<b>Picture of the molecule</b><br>Drag or use the arrow keys to turn it, the wheel or + and - to zoom, "
-                                 "double click to reset. Bond lengths appear under the pointer.")  # fmt: skip
+                                 "double click to reset. Bond lengths appear under the pointer; a click on two atoms chooses their bond for a scan.")  # fmt: skip
 
     def sizeHint(self) -> QSize:  # noqa: N802 - Qt's name
         return QSize(320, 150)
@@ -144,10 +148,14 @@ class MoleculePicture(QWidget):
         return max(hit, key=lambda b: b.depth).number if hit else None
 
     def mousePressEvent(self, event: QMouseEvent) -> None:  # noqa: N802
-        self._grip = event.position()
+        self._grip = self._pressed = event.position()
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         self._grip = None
+        moved = event.position() - self._pressed
+        atom = self.atom_at(event.position())
+        if atom is not None and hypot(moved.x(), moved.y()) < CLICK:
+            self.atom_chosen.emit(atom + 1)
 
     def mouseDoubleClickEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         self.reset()

@@ -122,7 +122,7 @@ class ScanForm(QWidget):
     def _buttons(self) -> QHBoxLayout:
         self.start, self.stop = QPushButton("Scan"), QPushButton("Stop scan")
         self.start.setProperty("role", "primary")
-        describe(self.start, "Scan", "Runs every point of the path (Ctrl+Shift+R).")
+        describe(self.start, "Scan", "Runs every point of the path (Ctrl+Alt+R).")
         describe(self.stop, "Stop scan", "Ends the scan and keeps the points that are finished.")
         for button in (self.start, self.stop):
             button.setIconSize(QSize(14, 14))
@@ -166,5 +166,4 @@ class ScanForm(QWidget):
             self.progress.setText("")
             return
         left = live.seconds_left
-        state = "Stopping, finished points are kept" if live.is_stopping else live.stage or "Waiting for a free process"
-        self.progress.setText(state + ("" if left is None else f", {time_left(left)}"))
+        self.progress.setText(live.text + ("" if left is None else f", {time_left(left)}"))

@@ -39,6 +39,7 @@ class StatusLine(QStatusBar):
         self._forget.timeout.connect(lambda: self.tell(""))
         workbench.told.connect(self.tell)
         workbench.runs.changed.connect(self.refresh)
+        workbench.scans.changed.connect(self.refresh)
         self.refresh()
 
     @property
@@ -54,20 +55,26 @@ class StatusLine(QStatusBar):
 
     def refresh(self) -> None:
         runs = self._workbench.runs
-        live = runs.live
+        live, scan = runs.live, self._workbench.scans.live
         for part in (self._bar, self._left):
-            part.setVisible(live is not None)
+            part.setVisible(live is not None or scan is not None)
         self._show_queue()
+        if live is None and scan is not None:
+            self._show_work(scan.text, scan.seconds_left, scan.fraction)
+            return
         if live is None:
             self._show(self._told or "Ready")
             return
         now = estimate(live)
         what = system_label(live.spec) if live.check_of is None else f"check of run {live.check_of}"
-        self._show(f"{now.text}  ({what})" + (f"    {self._told}" if self._told else ""))
-        self._left.setText("" if now.seconds_left is None else time_left(now.seconds_left))
-        self._bar.setRange(0, 0 if now.fraction is None else 1000)
-        if now.fraction is not None:
-            self._bar.setValue(round(1000 * min(1.0, max(0.0, now.fraction))))
+        self._show_work(f"{now.text}  ({what})", now.seconds_left, now.fraction)
+
+    def _show_work(self, text: str, seconds_left: float | None, fraction: float | None) -> None:
+        self._show(text + (f"    {self._told}" if self._told else ""))
+        self._left.setText("" if seconds_left is None else time_left(seconds_left))
+        self._bar.setRange(0, 0 if fraction is None else 1000)
+        if fraction is not None:
+            self._bar.setValue(round(1000 * min(1.0, max(0.0, fraction))))
 
     def _show(self, text: str) -> None:
         self._text.setText(text)
