@@ -49,15 +49,14 @@ def main(arguments: list[str]) -> int:
         install_packages(system, [*system.missing_libraries().values(), *missing_programs()])
         install(tests=True)
         return run_tests(arguments[1:])
-    if arguments:
+    if not arguments and not system.has_display():
         install(tests=False)
-        return replace_by(["-m", "thalweg_app", *arguments])
-    if system.has_display():
+        return sample_study()
+    words = arguments or ["open", str(TOP / "sample_systems" / f"{SAMPLE}.xyz")]
+    if words[0] == "open":
         install_packages(system, list(system.missing_libraries().values()))
-        install(tests=False)
-        return replace_by(["-m", "thalweg_app", "open", str(TOP / "sample_systems" / f"{SAMPLE}.xyz")])
     install(tests=False)
-    return sample_study()
+    return replace_by(["-m", "thalweg_app", *words])
 
 
 def load_system_libraries():
