@@ -49,8 +49,7 @@ class ExcitationPool:
     def slopes(self, of_excitations: FloatArray) -> FloatArray:
         """Derivative along each operator, shape (len(self),), from those along `excitations`."""
         place, weight, owner = self._table
-        sums: FloatArray = np.bincount(owner, weights=weight * of_excitations[place], minlength=len(self))
-        return sums
+        return np.bincount(owner, weights=weight * of_excitations[place], minlength=len(self)).astype(float)
 
     @cached_property
     def _places(self) -> dict[Excitation, int]:

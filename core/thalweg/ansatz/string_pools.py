@@ -36,10 +36,9 @@ class StringPool:
     def __len__(self) -> int:
         return len(self.labels)
 
-    def slopes(self, of_strings: np.ndarray) -> np.ndarray:
+    def slopes(self, of_strings: FloatArray) -> FloatArray:
         """Derivative along each operator, shape (len(self),), from those along the rotations about each string."""
-        sums: np.ndarray = np.bincount(self.owner, weights=self.weights * of_strings, minlength=len(self))
-        return sums
+        return np.bincount(self.owner, weights=self.weights * of_strings, minlength=len(self)).astype(float)
 
     def grown(self, program: GateProgram, chosen: list[int]) -> GateProgram:
         """The program with these operators appended, each with a parameter of its own."""
