@@ -28,6 +28,7 @@ class Structure:
         triples: parameters (a, b, c) of single-qubit gates R_z(c) R_y(b) R_z(a).
         steepness: bound of |d2E/dtheta_k2| over all parameters and states: (highest frequency)^2 sum |c_l| without the identity
             (Bernstein's inequality), energy unit.
+        curvature: estimate of d2E/dtheta_k2 near the reference, shape (K,), energy unit; None where there is none.
     """
 
     base: FloatArray
@@ -35,6 +36,7 @@ class Structure:
     layer: IntArray
     triples: tuple[tuple[int, int, int], ...]
     steepness: float
+    curvature: FloatArray | None = None
 
     @property
     def has_harmonics(self) -> bool:

