@@ -140,7 +140,8 @@ def style_sheet(p: Palette) -> str:
     QToolButton[role="section"] {{ text-align: left; background: {p.sunken}; border: none; border-radius: 0; padding: 6px 8px; font-weight: 600; }}
     QToolButton[role="fold"] {{ text-align: left; padding: 2px 2px; color: {p.muted}; }}
     QCheckBox {{ spacing: 7px; }}
-    QCheckBox::indicator, QTableView::indicator {{ width: 13px; height: 13px; border: 1px solid {p.muted}; border-radius: 3px; background: {p.raised}; }}
+    QCheckBox::indicator, QTableView::indicator {{ width: 13px; height: 13px; border: 1px solid {p.muted}; border-radius: 3px;
+        background: {p.raised}; }}
     QCheckBox::indicator:checked, QTableView::indicator:checked {{ background: {p.accent}; border-color: {p.accent}; image: url({check}); }}
     QCheckBox::indicator:focus {{ border-color: {p.accent}; }}
     QCheckBox::indicator:disabled {{ border-color: {p.border}; }}

@@ -13,7 +13,7 @@ from thalweg_app.presenters.wording import minus
 _SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
-class PlainAxis(pg.AxisItem):  # type: ignore[misc]
+class PlainAxis(pg.AxisItem):
     """Decimal numbers with a true minus sign and without unit prefixes."""
 
     def __init__(self, orientation: str) -> None:
@@ -22,7 +22,7 @@ class PlainAxis(pg.AxisItem):  # type: ignore[misc]
         self.setStyle(tickLength=-4, maxTickLevel=1, maxTextLevel=1)
         self._finest = 1.0
 
-    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802, N803
+    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802
         levels: list[tuple[float, list[float]]] = super().tickValues(minVal, maxVal, size)
         self._finest = min((spacing for spacing, values in levels[:2] if len(values)), default=1.0)
         return levels
@@ -35,7 +35,7 @@ class PlainAxis(pg.AxisItem):  # type: ignore[misc]
         return [minus(f"{v:.{places}f}") for v in values]
 
 
-class DecadeAxis(pg.AxisItem):  # type: ignore[misc]
+class DecadeAxis(pg.AxisItem):
     """An axis whose data are base-ten logarithms: a tick a decade, or fewer."""
 
     def __init__(self, orientation: str) -> None:
@@ -43,7 +43,7 @@ class DecadeAxis(pg.AxisItem):  # type: ignore[misc]
         self.enableAutoSIPrefix(False)
         self.setStyle(tickLength=-4)
 
-    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802, N803
+    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802
         decades = range(math.ceil(minVal), math.floor(maxVal) + 1)
         if not decades:
             return [(1.0, [minVal, maxVal])]
@@ -67,7 +67,7 @@ class NameAxis(PlainAxis):
             self.picture = None
             self.update()
 
-    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802, N803
+    def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802
         visible = range(max(0, math.ceil(minVal)), min(len(self._names) - 1, math.floor(maxVal)) + 1)
         if not visible:
             return [(1.0, [])]

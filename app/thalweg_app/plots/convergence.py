@@ -22,7 +22,7 @@ class ConvergencePicture(Picture):
         for key, title in X_TITLES.items():
             self.axis.addItem(title, key)
         describe(self.axis, "Horizontal axis", "What the iterates are drawn against.")
-        self.axis.currentIndexChanged.connect(lambda _: (self.refresh(), self.view.fit()))
+        self.axis.currentIndexChanged.connect(lambda _: self.refresh_whole())
         label = QLabel("Against")
         label.setBuddy(self.axis)
         self.controls.addWidget(label)

@@ -77,7 +77,7 @@ def _draw_sample(painter: QPainter, at: QPointF, style: Style, kind: str, palett
 
 
 def _draw_mark(painter: QPainter, c: QPointF, mark: str) -> None:
-    shapes = {
+    shapes: dict[str, list[tuple[float, float]]] = {
         "s": [(-3.2, -3.2), (3.2, -3.2), (3.2, 3.2), (-3.2, 3.2)],
         "^": [(0, -4), (4, 3.2), (-4, 3.2)],
         "v": [(0, 4), (4, -3.2), (-4, -3.2)],

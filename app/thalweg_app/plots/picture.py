@@ -61,6 +61,15 @@ class Picture(QWidget):
         """Draws the present state."""
         raise NotImplementedError(type(self).__name__)
 
+    def refresh_whole(self) -> None:
+        """Draws the present state and shows all of it."""
+        self.refresh()
+        self.view.fit()
+
+    def fit(self) -> None:
+        for chart in self.charts:
+            chart.fit()
+
     def refresh_live(self) -> None:
         """Draws what a run under way has told; pictures that show only results have nothing to do."""
 
@@ -111,7 +120,7 @@ class Picture(QWidget):
         box = QCheckBox("Logarithmic")
         box.setChecked(on)
         describe(box, "Logarithmic", "Draws the vertical axis in decades, so that small values can be seen.")
-        box.toggled.connect(lambda _: (self.refresh(), self.view.fit()))
+        box.toggled.connect(lambda _: self.refresh_whole())
         self.controls.addSpacing(SPACE)
         self.controls.addWidget(box)
         return box
@@ -122,7 +131,7 @@ class Picture(QWidget):
         row.addLayout(self.controls)
         row.addStretch(1)
         tools: list[tuple[str, str, str, Callable[[], None]]] = [
-            ("fit", "Fit", "Shows all data again (double click, or 0).", lambda: [c.fit() for c in self.charts] and None),
+            ("fit", "Fit", "Shows all data again (double click, or 0).", self.fit),
             ("copy", "Copy", "Copies the picture to the clipboard.", self.copy_image),
             ("picture", "Save picture", "Saves the picture as PNG, SVG or PDF, drawn for print.", self._ask_picture),
             ("numbers", "Save numbers", "Saves the numbers behind the picture as CSV.", self._ask_numbers),

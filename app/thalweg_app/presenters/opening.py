@@ -49,7 +49,7 @@ class Opening:
             read = read_atoms(text, unit)
         except StudyError as error:
             return error
-        system = {**Molecule(atoms=read.atoms, unit=read.unit).model_dump(), "charge": read.charge or 0, "multiplicity": read.multiplicity or 1}
+        system = {**Molecule(atoms=read.atoms).model_dump(), "unit": read.unit, "charge": read.charge or 0, "multiplicity": read.multiplicity or 1}
         self._take_system(system, (*read.notes, *read.warnings), "pasted atoms")
         return None
 

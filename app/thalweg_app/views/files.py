@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QFileDialog, QMainWindow
 
 from thalweg.errors import StudyError
 from thalweg.storage.session import SUFFIX, Session
+from thalweg.study.events import Failed
 from thalweg_app.presenters.document import Recovery
 from thalweg_app.presenters.opening import Opening
 from thalweg_app.presenters.workbench import Workbench
@@ -24,9 +25,10 @@ class StoredRecent:
     """The list of recent sessions in the person's settings."""
 
     def read(self) -> list[str]:
-        stored = QSettings().value("recent", [])
-        paths = [stored] if isinstance(stored, str) else list(stored or [])
-        return [str(path) for path in paths]
+        stored = QSettings().value("recent")
+        if isinstance(stored, str):  # a list of one is stored as its only member
+            return [stored]
+        return [str(path) for path in stored] if isinstance(stored, list) else []
 
     def write(self, paths: list[str]) -> None:
         QSettings().setValue("recent", paths)
@@ -37,7 +39,7 @@ class Files:
 
     def __init__(self, window: QMainWindow, workbench: Workbench, recovery: Recovery) -> None:
         self._window, self._workbench, self._recovery = window, workbench, recovery
-        self._opening = Opening(workbench, self._show_error, lambda failure: show_defect(window, failure), self._take_session)
+        self._opening = Opening(workbench, self._show_error, self._show_defect, self._take_session)
 
     def ask_open(self) -> None:
         dialog = self._dialog("Open a session, a geometry or integrals", QFileDialog.AcceptMode.AcceptOpen, OPEN_FILTER)
@@ -134,6 +136,9 @@ class Files:
         document = self._workbench.document
         name = getattr(self._workbench.setup.spec.system, "name", "")
         return name or document.name
+
+    def _show_defect(self, failure: Failed) -> None:
+        show_defect(self._window, failure)
 
     def _show_error(self, error: StudyError) -> None:
         show_error(self._window, error)

@@ -5,7 +5,10 @@ from __future__ import annotations
 from PySide6.QtCore import QPoint, Qt
 from PySide6.QtWidgets import QApplication, QFrame, QLabel, QVBoxLayout, QWidget
 
-NOTHING = "<b>Thalweg</b><br>Choose a system, an encoding, a trial state and a search at the left, then press Run. F1 explains the field that has the focus."
+NOTHING = (
+    "<b>Thalweg</b><br>Choose a system, an encoding, a trial state and a search at the left, then press Run. "
+    "F1 explains the field that has the focus."
+)
 
 
 def help_of(widget: QWidget | None) -> str:
@@ -23,6 +26,7 @@ class HelpBubble(QFrame):
 
     def __init__(self, parent: QWidget) -> None:
         super().__init__(parent, Qt.WindowType.Popup)
+        self._owner = parent
         self.setProperty("role", "help")
         self.label = QLabel(wordWrap=True)
         self.label.setTextFormat(Qt.TextFormat.RichText)
@@ -35,8 +39,8 @@ class HelpBubble(QFrame):
     def show_for(self, widget: QWidget | None) -> None:
         self.label.setText(help_of(widget))
         self.adjustSize()
-        anchor = widget if widget is not None else self.parentWidget()
-        place = anchor.mapToGlobal(QPoint(0, anchor.height() + 4)) if widget is not None else anchor.mapToGlobal(QPoint(60, 60))
+        anchor, offset = (self._owner, QPoint(60, 60)) if widget is None else (widget, QPoint(0, widget.height() + 4))
+        place = anchor.mapToGlobal(offset)
         screen = QApplication.primaryScreen().availableGeometry()
         place.setX(max(screen.left(), min(place.x(), screen.right() - self.width())))
         place.setY(max(screen.top(), min(place.y(), screen.bottom() - self.height())))

@@ -180,11 +180,14 @@ class LedgerView(QWidget):
             self._ledger.select(self.model.rows[current.row()].number)
 
     def _make_actions(self) -> None:
-        self.use_action = QAction("Use this set-up", self, triggered=lambda: self.use_asked.emit())
+        self.use_action = QAction("Use this set-up", self)
+        self.use_action.triggered.connect(lambda _=False: self.use_asked.emit())
         self.use_action.setToolTip("Puts the settings of the selected run back into the set-up column.")
-        self.check_action = QAction("Check again", self, triggered=lambda: self.check_asked.emit())
+        self.check_action = QAction("Check again", self)
+        self.check_action.triggered.connect(lambda _=False: self.check_asked.emit())
         self.check_action.setToolTip("Repeats the selected run and states the deviation.")
-        self.delete_action = QAction("Delete run", self, triggered=self.delete_selected)
+        self.delete_action = QAction("Delete run", self)
+        self.delete_action.triggered.connect(lambda _=False: self.delete_selected())
         self.delete_action.setToolTip("Takes the selected run out of the ledger; undo brings it back.")
 
     def _menu(self) -> QMenu:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 from typing import TYPE_CHECKING
 
 from PySide6.QtGui import QAction, QActionGroup, QKeySequence
@@ -86,7 +87,7 @@ class Menus:
     def _view_menu(self) -> None:
         menu, window = self._menu("&View"), self._window
         for i, picture in enumerate(window.pictures):
-            self._add(menu, picture.title, f"Ctrl+{i + 1}", lambda i=i: window.show_picture(i), picture.about)
+            self._add(menu, picture.title, f"Ctrl+{i + 1}", partial(window.show_picture, i), picture.about)
         menu.addSeparator()
         appearances = menu.addMenu("&Appearance")
         self._choices(appearances, APPEARANCES, window.theme.appearance, window.theme.choose)
@@ -131,6 +132,6 @@ class Menus:
         self._recent.clear()
         paths = self._bench.document.recent
         for path in paths:
-            self._add(self._recent, path, None, lambda path=path: self._window.open_path(path), "Opens this session.")
+            self._add(self._recent, path, None, partial(self._window.open_path, path), "Opens this session.")
         if not paths:
             self._recent.addAction("None yet").setEnabled(False)

@@ -40,6 +40,10 @@ ELEMENT_COLOURS = {
     "Ar": "#82C4D3",
 }
 OTHER_COLOUR = "#A89F94"
+HELP = (
+    "<b>Picture of the molecule</b><br>Drag or use the arrow keys to turn it, the wheel or + and - to zoom, double click to reset. "
+    "Bond lengths appear under the pointer; a click on two atoms chooses their bond for a scan."
+)
 TURN = 0.011  # radians a pixel
 CLICK = 4.0  # pixels that the mouse may move within a click
 STICK = 0.24  # bohr, radius
@@ -74,8 +78,7 @@ class MoleculePicture(QWidget):
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
         self.setMinimumHeight(150)
         self.setAccessibleName("Picture of the molecule")
-        self.setProperty("help", "<b>Picture of the molecule</b><br>Drag or use the arrow keys to turn it, the wheel or + and - to zoom, "
-                                 "double click to reset. Bond lengths appear under the pointer; a click on two atoms chooses their bond for a scan.")  # fmt: skip
+        self.setProperty("help", HELP)
 
     def sizeHint(self) -> QSize:  # noqa: N802 - Qt's name
         return QSize(320, 150)

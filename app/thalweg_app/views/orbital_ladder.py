@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from PySide6.QtCore import QPointF, QRectF, QSize, Qt, Signal
+from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt, Signal
 from PySide6.QtGui import QColor, QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen
 from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
@@ -100,13 +100,13 @@ class OrbitalLadder(QWidget):
             super().keyPressEvent(event)
         self.update()
 
-    def event(self, event: object) -> bool:  # type: ignore[override]
+    def event(self, event: QEvent) -> bool:
         if isinstance(event, QHelpEvent):
             rung = self.rung_at(QPointF(event.pos()))
             if rung is not None:
                 QToolTip.showText(event.globalPos(), _describe(rung), self)
                 return True
-        return super().event(event)  # type: ignore[arg-type]
+        return super().event(event)
 
     def _order(self) -> list[Rung]:
         return [rung for row in self._rows for rung in row]

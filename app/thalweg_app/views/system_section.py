@@ -25,10 +25,28 @@ from thalweg_app.widgets.figure_grid import FigureGrid
 from thalweg_app.widgets.fold import Fold
 
 #: Offered while typing; any basis of the library can be typed.
-BASIS_NAMES = (
-    "sto-3g sto-6g 3-21g 6-31g 6-31g* 6-31g** 6-31+g* 6-311g 6-311g** 6-311++g** cc-pvdz cc-pvtz cc-pvqz aug-cc-pvdz aug-cc-pvtz "
-    "def2-svp def2-tzvp def2-tzvpp ano-rcc minao"
-).split()
+BASIS_NAMES = [
+    "sto-3g",
+    "sto-6g",
+    "3-21g",
+    "6-31g",
+    "6-31g*",
+    "6-31g**",
+    "6-31+g*",
+    "6-311g",
+    "6-311g**",
+    "6-311++g**",
+    "cc-pvdz",
+    "cc-pvtz",
+    "cc-pvqz",
+    "aug-cc-pvdz",
+    "aug-cc-pvtz",
+    "def2-svp",
+    "def2-tzvp",
+    "def2-tzvpp",
+    "ano-rcc",
+    "minao",
+]
 
 
 class SystemSection(QWidget):
@@ -60,10 +78,11 @@ class SystemSection(QWidget):
         layout.setContentsMargins(12, SPACE, 12, 12)
         layout.setSpacing(SPACE)
         layout.addLayout(self._buttons())
-        for part in (self.picture, self._problem, self.atoms_fold):
+        parts: list[list[QWidget]] = [[self.picture, self._problem, self.atoms_fold], [self.ladder_fold, self.figures, self._remarks]]
+        for part in parts[0]:
             layout.addWidget(part)
         layout.addLayout(self._form_place)
-        for part in (self.ladder_fold, self.figures, self._remarks):
+        for part in parts[1]:
             layout.addWidget(part)
 
     def refresh(self) -> None:

@@ -1,3 +1,6 @@
+import contextlib
+import math
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -8,8 +11,20 @@ from thalweg_app.presenters.numbers import number_text, parse_number, parse_whol
 
 @pytest.mark.parametrize(
     ("text", "value"),
-    [("0.735", 0.735), ("0,735", 0.735), ("1e-6", 1e-6), ("1E-6", 1e-6), ("1D-6", 1e-6), (".5", 0.5), (",5", 0.5), ("-2", -2.0), ("\u22121.5", -1.5), (" 7 ", 7.0), ("5.", 5.0)],
-)  # fmt: skip
+    [
+        ("0.735", 0.735),
+        ("0,735", 0.735),
+        ("1e-6", 1e-6),
+        ("1E-6", 1e-6),
+        ("1D-6", 1e-6),
+        (".5", 0.5),
+        (",5", 0.5),
+        ("-2", -2.0),
+        ("\u22121.5", -1.5),
+        (" 7 ", 7.0),
+        ("5.", 5.0),
+    ],
+)
 def test_numbers_are_read_as_people_type_them(text, value):
     assert parse_number(text) == value
 
@@ -41,10 +56,8 @@ def test_shown_numbers_read_back_to_eight_digits(value):
 @given(st.text())
 def test_any_text_gives_a_number_or_a_sentence(text):
     for parse in (parse_number, parse_whole):
-        try:
-            parse(text)
-        except StudyError as error:
-            assert error.what
+        with contextlib.suppress(StudyError):
+            assert math.isfinite(parse(text))
 
 
 @pytest.mark.parametrize(("value", "text"), [(1e-6, "1e-6"), (0.0, "0"), (0.0015936014376410235, "0.0015936014"), (0.3, "0.3"), (20000, "20000")])

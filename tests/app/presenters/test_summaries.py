@@ -20,8 +20,14 @@ def test_a_folded_section_says_what_is_chosen_and_what_it_costs(section, line):
 
 
 @pytest.mark.parametrize(
-    ("section", "line"), [("system", "LiH, STO-3G"), ("encoding", "Jordan-Wigner, tapered"), ("ansatz", "UCCSD"), ("optimizer", "L-BFGS-B: 1 start, target 1.59 mEh")]
-)  # fmt: skip
+    ("section", "line"),
+    [
+        ("system", "LiH, STO-3G"),
+        ("encoding", "Jordan-Wigner, tapered"),
+        ("ansatz", "UCCSD"),
+        ("optimizer", "L-BFGS-B: 1 start, target 1.59 mEh"),
+    ],
+)
 def test_figures_that_are_not_known_are_left_out(section, line):
     assert summary(section, studies.study(), None) == line
 

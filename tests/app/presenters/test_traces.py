@@ -85,12 +85,17 @@ def test_errors_follow_the_unit_chosen():
 def test_a_run_under_way_is_drawn_from_its_first_iterate_on():
     live = LiveRun(studies.study())
     assert shown_live(live) is None
-    live.take(
-        [
-            Started(label="LiH", energy_unit="hartree", reference_name="HF", reference_energy=-7.86, exact_energy=-7.88, target_error=1e-3, n_parameters=4, n_starts=1),
-            Iteration(start=0, iteration=0, evaluations=1, energy=-7.86, gradient_norm=0.1, seconds=0.0),
-        ]
-    )  # fmt: skip
+    started = Started(
+        label="LiH",
+        energy_unit="hartree",
+        reference_name="HF",
+        reference_energy=-7.86,
+        exact_energy=-7.88,
+        target_error=1e-3,
+        n_parameters=4,
+        n_starts=1,
+    )
+    live.take([started, Iteration(start=0, iteration=0, evaluations=1, energy=-7.86, gradient_norm=0.1, seconds=0.0)])
     chart = convergence(shown_live(live))
     assert chart.panels[0].series[-1].name == "Running"
     assert chart.panels[0].series[-1].y.tolist() == [-7.86]

@@ -26,7 +26,7 @@ def test_bonds_are_found_and_measured_in_both_units(picture):
 def test_the_pointer_finds_atoms_and_bonds(picture):
     balls = picture._balls()
     assert picture.atom_at(balls[0].at) == 0
-    assert picture.bond_at((balls[0].at * 0.45 + balls[1].at * 0.55)) == (0, 1)
+    assert picture.bond_at(balls[0].at * 0.45 + balls[1].at * 0.55) == (0, 1)
     assert picture.atom_at(balls[0].at * 0) is None
 
 
