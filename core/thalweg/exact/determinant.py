@@ -113,7 +113,7 @@ def _lowest_of_spin(search: _Search, sector: Sector) -> tuple[Level, float | Non
             )
         count *= 2
     lower = pure[0].energy - levels[0].energy
-    remarks = ()
+    remarks: tuple[str, ...] = ()
     if lower > SAME_LEVEL:
         found = levels[0].s_squared[0]
         remarks = (f"The exact state is the lowest {spin_name(wanted)}; a {spin_name(found)}, S^2 = {found:.2f}, lies {1e3 * lower:.3g} mEh lower.",)
