@@ -15,7 +15,7 @@ from typing import Any
 import numpy as np
 
 from thalweg.kernels import spin as kernels
-from thalweg.watch import Watch
+from thalweg.watch import SILENT, Watch
 
 #: Writes H v into `out`; looks at the watch where that takes long.
 Apply = Callable[[Any, Any], None]
@@ -25,6 +25,8 @@ Enough = Callable[[float, float], bool]
 
 #: Steps between two looks at the tridiagonal matrix.
 TEST_EVERY = 4
+#: Random numbers drawn between two looks at the watch.
+START_STEP = 2**21
 #: Steps after which a search starts again from the best state so far.
 CHAIN_STEPS = 300
 RESTARTS = 20
@@ -104,11 +106,17 @@ def rayleigh(apply: Apply, vector: Any, found: Sequence[Any] = ()) -> tuple[floa
     return energy, float(np.sqrt(kernels.subtract(image, vector, energy)))
 
 
-def random_start(dimension: int, dtype: Any, seed: int) -> Any:
+def random_start(dimension: int, dtype: Any, seed: int, watch: Watch = SILENT) -> Any:
     """A vector with a component along everything, the same for the same seed."""
     rng = np.random.default_rng(seed)
-    start = rng.standard_normal(dimension)
-    return start if np.dtype(dtype).kind == "f" else start + 1j * rng.standard_normal(dimension)
+    start = np.empty(dimension, dtype=dtype)
+    for first in range(0, dimension, START_STEP):
+        watch.check()
+        part = start[first : first + START_STEP]
+        part[:] = rng.random(part.size) - 0.5
+        if part.dtype.kind == "c":
+            part += 1j * (rng.random(part.size) - 0.5)
+    return start
 
 
 class _Chain:
@@ -146,6 +154,7 @@ class _Chain:
         self._watch.check()
         image = np.empty_like(vector)
         self._apply(vector, image)
+        self._watch.check()
         self.spent += 1
         alpha = float(np.vdot(vector, image).real)
         square = kernels.subtract(image, vector, alpha) if previous is None else kernels.subtract_two(image, vector, alpha, previous, beta)

@@ -44,13 +44,14 @@ class RunsBlock:
         terms = (basis.states, strings.diagonal_z, strings.diagonal_values)
         in_steps(self.dimension, watch, lambda a, b: kernels.diagonal_values(self._diagonal, a, b, *terms))
         self._tables = _run_tables(basis, strings)
-        runs = basis.offset.size
-        self._step = max(1, runs * STEP // max(1, self.dimension))
+        highs = np.flatnonzero(basis.offset >= 0)
+        self._order = highs[np.argsort(np.bitwise_count(highs), kind="stable")]
+        self._step = max(4, highs.size * STEP // max(1, self.dimension))
 
     def apply(self, vector: Any, out: Any) -> None:
         basis = self.basis
-        fixed = (basis.down, basis.offset, basis.start, self._diagonal, *self._tables)
-        in_steps(basis.offset.size, self._watch, lambda a, b: kernels.apply_exchange(vector, out, a, b, *fixed), self._step)
+        fixed = (basis.down, self._order, basis.offset, basis.start, self._diagonal, *self._tables)
+        in_steps(self._order.size, self._watch, lambda a, b: kernels.apply_exchange(vector, out, a, b, *fixed), self._step)
 
     def expand(self, vector: Any) -> Any:
         return vector

@@ -208,7 +208,7 @@ class _Search:
         found: list[Level] = []
         while len(found) < block.dimension:
             room = int(0.5 * self.budget_bytes / (block.dimension * block.dtype.itemsize)) - WORKING_VECTORS - len(found)
-            start = random_start(block.dimension, block.dtype, seed=1 + len(found))
+            start = random_start(block.dimension, block.dtype, seed=1 + len(found), watch=self.watch)
             vectors = [level.vector for level in found]
             enough = self._judge(min([self.best, *(level.energy for level in found)]))
             level = lowest_state(block.apply, start, is_enough=enough, watch=self.watch, found=vectors, room=room)

@@ -70,44 +70,64 @@ def diagonal_values(out, first, last, states, z, values):  # type: ignore[no-unt
 
 
 @njit(cache=True, nogil=True)
+def apply_low(v, out, begins, length, row, diagonal, low_pointer, low_column, low_value):  # type: ignore[no-untyped-def]
+    """out <- (diagonal + terms within the low part) v on four runs of one class at a time: their rows are read once for all."""
+    begin0, begin1, begin2, begin3 = begins
+    v0, v1, v2, v3 = v[begin0:], v[begin1:], v[begin2:], v[begin3:]
+    for j in range(length):
+        total0, total1 = diagonal[begin0 + j] * v0[j], diagonal[begin1 + j] * v1[j]
+        total2, total3 = diagonal[begin2 + j] * v2[j], diagonal[begin3 + j] * v3[j]
+        for t in range(low_pointer[row + j], low_pointer[row + j + 1]):
+            column, value = low_column[t], low_value[t]
+            total0 += value * v0[column]
+            total1 += value * v1[column]
+            total2 += value * v2[column]
+            total3 += value * v3[column]
+        out[begin0 + j] = total0
+        out[begin1 + j] = total1
+        out[begin2 + j] = total2
+        out[begin3 + j] = total3
+
+
+@njit(cache=True, nogil=True)
 def apply_exchange(  # type: ignore[no-untyped-def]
-    v, out, first, last, down, offset, start, diagonal, low_pointer, low_column, low_value, high_x, high_value,
+    v, out, first, last, down, order, offset, start, diagonal, low_pointer, low_column, low_value, high_x, high_value,
     cross_high, cross_half, cross_value, cross_base, cross_pointer, cross_from, cross_to,
 ):  # fmt: skip
-    """out <- H v for the states whose high part is in first:last. Exchange terms flip x where half of its bits are set.
+    """out <- H v for the runs of the high parts order[first:last]. Exchange terms flip x where half of its bits are set.
 
+    order: the high parts that have states, sorted by class (number of bits set); a group of fewer than four repeats its last run.
     low_*: rows of the terms within the low part, one row a low word (sorted by class), columns ranked within the class.
     high_*: terms within the high part. cross_*: terms in both; for such a term e with c low bits set the pairs of ranks
     (here, there) of class p are cross_from/to[cross_pointer[cross_base[e] + c, p] : cross_pointer[..., p + 1]].
     """
-    for high in range(first, last):
-        begin = offset[high]
-        if begin < 0:
-            continue
-        p = down - np.int64(count_bits(uint64(high)))
+    i = first
+    while i < last:
+        p = down - np.int64(count_bits(uint64(order[i])))
+        same = 1
+        while same < 4 and i + same < last and down - np.int64(count_bits(uint64(order[i + same]))) == p:
+            same += 1
         length = start[p + 1] - start[p]
-        own, target, own_diagonal = v[begin : begin + length], out[begin : begin + length], diagonal[begin : begin + length]
-        row = start[p]
-        for j in range(length):
-            total = own_diagonal[j] * own[j]
-            for t in range(low_pointer[row + j], low_pointer[row + j + 1]):
-                total += low_value[t] * own[low_column[t]]
-            target[j] = total
-        for e in range(high_x.size):
-            x = high_x[e]
-            if uint64(2) * count_bits(uint64(high) & x) == count_bits(x):
-                there = offset[uint64(high) ^ x]
-                source, value = v[there : there + length], high_value[e]
-                for j in range(length):
-                    target[j] += value * source[j]
-        for e in range(cross_high.size):
-            low_set = cross_half[e] - np.int64(count_bits(uint64(high) & cross_high[e]))
-            if low_set < 0 or low_set >= cross_base[e + 1] - cross_base[e]:
-                continue
-            there = offset[uint64(high) ^ cross_high[e]]
-            source, value, line = v[there:], cross_value[e], cross_pointer[cross_base[e] + low_set]
-            for t in range(line[p], line[p + 1]):
-                target[cross_from[t]] += value * source[cross_to[t]]
+        begins = (offset[order[i]], offset[order[i + min(1, same - 1)]], offset[order[i + min(2, same - 1)]], offset[order[i + same - 1]])
+        apply_low(v, out, begins, length, start[p], diagonal, low_pointer, low_column, low_value)
+        for high in order[i : i + same]:
+            target = out[offset[high] : offset[high] + length]
+            for e in range(high_x.size):
+                x = high_x[e]
+                if uint64(2) * count_bits(uint64(high) & x) == count_bits(x):
+                    there = offset[uint64(high) ^ x]
+                    source, value = v[there : there + length], high_value[e]
+                    for j in range(length):
+                        target[j] += value * source[j]
+            for e in range(cross_high.size):
+                low_set = cross_half[e] - np.int64(count_bits(uint64(high) & cross_high[e]))
+                if low_set < 0 or low_set >= cross_base[e + 1] - cross_base[e]:
+                    continue
+                there = offset[uint64(high) ^ cross_high[e]]
+                source, value, line = v[there:], cross_value[e], cross_pointer[cross_base[e] + low_set]
+                for t in range(line[p], line[p + 1]):
+                    target[cross_from[t]] += value * source[cross_to[t]]
+        i += same
 
 
 @njit(cache=True, nogil=True)
