@@ -10,6 +10,7 @@ from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QPushButton, QSpli
 from thalweg_app.colours import Palette
 from thalweg_app.forms import QuietCombo, describe
 from thalweg_app.plots.picture import Picture
+from thalweg_app.plots.scan_form import ScanForm
 from thalweg_app.presenters.curve import (
     CurveUnits,
     curve_chart,
@@ -23,7 +24,6 @@ from thalweg_app.presenters.curve import (
 from thalweg_app.presenters.scan_control import scan_title
 from thalweg_app.presenters.tables import Table
 from thalweg_app.presenters.workbench import Workbench
-from thalweg_app.views.scan_form import ScanForm
 from thalweg_app.widgets.number_table import NumberTable
 
 
@@ -76,7 +76,8 @@ class CurvePicture(Picture):
         keys: tuple[tuple[float | str, ...], ...] = tuple((float(i),) * 3 for i in range(len(cells)))
         self.yields.show_table(Table(("Quantity", "Variational", "Exact"), tuple(cells), (False, True, True), keys, "What the curves yield."))
         self.yields.setVisible(bool(rows))
-        self.yields.setColumnWidth(0, 130)
+        for column, width in enumerate((112, 92, 92)):
+            self.yields.setColumnWidth(column, width)
         self.remarks.setText("\n".join(curve_remarks(shown)))
         self.resume.setVisible(self.scans.live is None and self.scans.chosen is not None and not self.scans.chosen.result.finished)
 
@@ -130,7 +131,8 @@ class CurvePicture(Picture):
             label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
         self.yields = NumberTable("What the curves yield")
         self.yields.setSortingEnabled(False)
-        self.yields.setFixedHeight(30 + 5 * 24)
+        self.yields.setFixedHeight(34 + 5 * 24)
+        self.yields.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         column.addWidget(self.form)
         column.addWidget(self.sentence)
         column.addWidget(self.yields)
@@ -142,7 +144,7 @@ class CurvePicture(Picture):
         split.addWidget(self.stack)
         split.addWidget(scroll)
         split.setStretchFactor(0, 1)
-        split.setSizes([640, 300])
+        split.setSizes([640, 330])
         return split
 
     def _fill_choices(self) -> None:
@@ -162,7 +164,7 @@ def _scrolled(inner: QWidget) -> QWidget:
     area = QScrollArea()
     area.setWidgetResizable(True)
     area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setMinimumWidth(280)
+    area.setMinimumWidth(330)
     holder = QWidget()
     row = QHBoxLayout(holder)
     row.setContentsMargins(12, 0, 4, 0)

@@ -16,6 +16,8 @@ from thalweg_app.presenters.chart import Band, Chart, Panel, Series
 from thalweg_app.presenters.tables import Table
 from thalweg_app.presenters.traces import CLASSICAL_NAMES
 
+#: Short signs for narrow headings.
+UNIT_SIGNS = {"angstrom": "Å", "degree": "°"}
 EMPTY = "Choose a path and press Scan to see the curve fill in point by point."
 
 
@@ -125,7 +127,7 @@ def yield_figures(shown: ShownCurve | None, units: CurveUnits) -> list[tuple[str
     factor, unit = units.coordinate(shown.unit)
     energy_unit = wording.unit_name(shown.energy_unit)
     quantities: list[tuple[str, str, Callable[[CurveFigures], str]]] = [
-        (f"Minimum at / {unit}" if unit else "Minimum at", "Where the fitted curve is lowest.", lambda f: _number(f.r_e, factor, ".5f")),
+        (f"Minimum / {UNIT_SIGNS.get(unit, unit)}" if unit else "Minimum", "Where the fitted curve is lowest.", lambda f: _number(f.r_e, factor, ".5f")),
         (f"E_min / {energy_unit}", "Energy of the minimum.", lambda f: _number(f.e_min, 1.0, ".6f")),
         (f"D_e / {energy_unit}", "Depth below the flat far end of the curve.", lambda f: _number(f.d_e, 1.0, ".6f")),
         ("ω_e / cm⁻¹", "Harmonic frequency of the diatomic.", lambda f: _number(f.omega_e, 1.0, ".1f")),

@@ -110,7 +110,7 @@ def test_figures_and_remarks_of_a_finished_curve(control):
     result = summarise(spec, list(curve()), 1.0)
     shown = ShownCurve("Variational", "Li1-H2 distance", "angstrom", curve(), result)
     names = [row[0] for row in yield_figures(shown, CurveUnits())]
-    assert names[:2] == ["Minimum at / angstrom", "E_min / Eh"]
+    assert names[:2] == ["Minimum / Å", "E_min / Eh"]
     assert yield_figures(shown, CurveUnits())[0][2] == "1.60000"
     assert "non-parallelity error 0.8 mEh" in curve_sentence(shown, CurveUnits())
     assert any(text.startswith("Fit of the exact curve") for text in curve_remarks(shown))
