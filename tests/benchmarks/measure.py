@@ -31,7 +31,7 @@ Row = dict[str, object]
 
 def main(wanted: list[str]) -> int:
     """Prints the table; exit status 1 where a bar is missed."""
-    sys.path[:0] = [str(HERE.parents[1] / "core"), str(HERE.parents[1] / "app"), str(HERE), str(HERE.parents[1])]
+    sys.path[:0] = [str(HERE.parents[1] / "core"), str(HERE.parents[1] / "app"), str(HERE), str(HERE.parent), str(HERE.parents[1])]
     print(f"{datetime.date.today()}  {platform.processor() or platform.machine()}  Python {platform.python_version()}  numpy {np.__version__}")
     print(f"in-place scale of 256 MiB: {bandwidth() / 1e9:.1f} GB/s read + write; DGEMM: {gemm_rate() / 1e9:.1f} GF/s, one thread\n")
     print(f"{'bar':<4} {'measured':>12} {'limit':>12}  met  what")
