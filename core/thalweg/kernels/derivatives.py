@@ -59,7 +59,8 @@ def gate_slopes(psi, slopes, kind, x, z, columns, angles, weights):  # type: ign
             for a in range(psi.size):
                 if uint64(a) & both == both:
                     psi[a] = -psi[a]
-                    slopes[a, :active] = -slopes[a, :active]
+                    for k in range(active):
+                        slopes[a, k] = -slopes[a, k]
         else:
             mix_or_flip(psi, slopes, active, kind[f], x[f], z[f])
 

@@ -97,12 +97,12 @@ class StudySimulator:
     def _register_state(self, angles: FloatArray) -> ComplexArray:
         state = self._by_angle.state(self._settings_of(angles))
         if isinstance(self._problem.program, ExcitationProgram):
-            return self._register.from_sector(state[None])[0]
+            return self.register.from_sector(state[None])[0]
         register_state: ComplexArray = state
         return register_state
 
     @cached_property
-    def _register(self) -> EncodedSystem:
+    def register(self) -> EncodedSystem:
         """The register that is measured: the full one where an excitation leaves the tapered sector, as for gates."""
         encoded, program = self._problem.encoded, self._problem.program
         if isinstance(program, ExcitationProgram) and encoded.symmetries:
@@ -115,7 +115,7 @@ class StudySimulator:
 
     @cached_property
     def _sets(self) -> Any:
-        expansion = self._register.working
+        expansion = self.register.working
         needed = 64 << expansion.n_qubits
         if needed > self._problem.budget_bytes:
             raise StudyError(
