@@ -93,7 +93,8 @@ class PanelView:
         heights = [self.height_of(s.y) for s in panel.series]
         heights += [self.height_of(np.array([level.value for level in panel.levels]))] if panel.levels else []
         if panel.band is not None and heights:
-            heights.append(self.height_of(np.array([panel.band.upper])) + (0.35 if self.log else 0.0))
+            border = self.height_of(np.array([panel.band.upper]))
+            heights += [border + 0.35, border - 0.35] if self.log else [border]
         if panel.bars:
             heights += [self.height_of(b.values) for b in panel.bars] + [np.array([self._floor])]
         extent = _extent(heights)

@@ -52,7 +52,7 @@ COLUMNS: tuple[Column, ...] = (
         "Energy",
         "Lowest energy found, core energy included.",
         True,
-        lambda run, _: f"{wording.energy(run.result.energy)}{_unit_suffix(run.result)}",
+        lambda run, _: wording.energy(run.result.energy),
         lambda run: run.result.energy,
     ),
     Column(
@@ -72,6 +72,7 @@ COLUMNS: tuple[Column, ...] = (
     Column("Note", "Your own remark; double click to edit.", False, lambda run, _: run.note, lambda run: run.note),
 )
 NOTE = len(COLUMNS) - 1
+ENERGY, ERROR = (next(i for i, c in enumerate(COLUMNS) if c.name == name) for name in ("Energy", "Error"))
 
 
 class Ledger:
@@ -102,13 +103,27 @@ class Ledger:
         return known + [r for r in self._runs if key(r) is None]
 
     @property
-    def header(self) -> list[str]:
+    def _shared_unit(self) -> str:
+        """The energy unit of all rows; empty when they differ."""
         units = {run.result.energy_unit for run in self._runs}
-        shared = next(iter(units)) if len(units) == 1 else "hartree" if not units else ""
+        return next(iter(units)) if len(units) == 1 else "" if units else "hartree"
+
+    def cell(self, run: Run, column: int) -> str:
+        """What a cell shows; energies carry their unit where the heading cannot."""
+        text = COLUMNS[column].text(run, self.difference_unit)
+        if self._shared_unit or text == wording.MISSING:
+            return text
+        if column == ENERGY:
+            return f"{text} {wording.unit_name(run.result.energy_unit)}"
+        return f"{text} {wording.difference_factor(run.result.energy_unit, self.difference_unit)[1]}" if column == ERROR else text
+
+    @property
+    def header(self) -> list[str]:
+        shared = self._shared_unit
         names = [c.name for c in COLUMNS]
         if shared:
-            names[names.index("Energy")] = f"Energy / {wording.unit_name(shared)}"
-            names[names.index("Error")] = f"Error / {wording.difference_factor(shared, self.difference_unit)[1]}"
+            names[ENERGY] = f"Energy / {wording.unit_name(shared)}"
+            names[ERROR] = f"Error / {wording.difference_factor(shared, self.difference_unit)[1]}"
         names[names.index("Seconds")] = "Time / s"
         return names
 
@@ -193,7 +208,3 @@ class Ledger:
 
 def _comparable(value: Any) -> Any:
     return value.lower() if isinstance(value, str) else value
-
-
-def _unit_suffix(result: StudyResult) -> str:
-    return "" if result.energy_unit == "hartree" else f" {wording.unit_name(result.energy_unit)}"

@@ -69,7 +69,7 @@ class LedgerModel(QAbstractTableModel):
     def data(self, index: _Index, role: int = Qt.ItemDataRole.DisplayRole) -> Any:
         run, column = self.rows[index.row()], COLUMNS[index.column()]
         if role in (Qt.ItemDataRole.DisplayRole, Qt.ItemDataRole.EditRole):
-            return column.text(run, self._ledger.difference_unit)
+            return self._ledger.cell(run, index.column())
         if role == Qt.ItemDataRole.TextAlignmentRole and column.numeric and index.column():
             return Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter
         if role == Qt.ItemDataRole.CheckStateRole and index.column() == 0:

@@ -76,12 +76,12 @@ class MoleculePicture(QWidget):
         self.setMouseTracking(True)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
-        self.setMinimumHeight(150)
+        self.setMinimumHeight(172)
         self.setAccessibleName("Picture of the molecule")
         self.setProperty("help", HELP)
 
     def sizeHint(self) -> QSize:  # noqa: N802 - Qt's name
-        return QSize(320, 150)
+        return QSize(320, 172)
 
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
@@ -207,17 +207,15 @@ class MoleculePicture(QWidget):
 
     def _scale(self) -> float:
         """Pixels a bohr."""
-        extent = float(np.linalg.norm(self._positions, axis=1).max(initial=0.0)) + 1.4
-        return self._zoom * min(min(self.width(), 2.1 * self.height()) / 2.1, self.height() / 1.15 if extent < 2.6 else 1e9) / extent / 1.08
+        reach = [float(np.linalg.norm(p)) + _radius(a[0]) for p, a in zip(self._positions, self._atoms, strict=True)]
+        return self._zoom * (min(self.width(), self.height()) / 2 - 5) / max(reach, default=1.0)
 
     def _balls(self) -> list[_Ball]:
         seen = self._positions @ self._turn.T
         scale, middle = self._scale(), QPointF(self.width() / 2, self.height() / 2)
         balls = []
         for number, ((x, y, z), atom) in enumerate(zip(seen.tolist(), self._atoms, strict=True)):
-            element = find_element(atom[0])
-            radius = 0.36 + 0.42 * ((element.covalent_radius if element else None) or 1.3) ** 0.7
-            balls.append(_Ball(atom[0], middle + QPointF(x * scale, -y * scale), z, radius * scale, number))
+            balls.append(_Ball(atom[0], middle + QPointF(x * scale, -y * scale), z, _radius(atom[0]) * scale, number))
         return balls
 
     def _draw_ball(self, painter: QPainter, ball: _Ball) -> None:
@@ -261,6 +259,12 @@ def _sphere(colour: str, size: int, rim: str, ratio: float) -> QPixmap:
     painter.drawEllipse(QRectF(1, 1, pixels - 2, pixels - 2))
     painter.end()
     return drawn
+
+
+def _radius(symbol: str) -> float:
+    """Of a ball, bohr: smaller than the atom, so that the sticks are seen."""
+    element = find_element(symbol)
+    return 0.36 + 0.42 * ((element.covalent_radius if element else None) or 1.3) ** 0.7
 
 
 def _softened(colour: str) -> str:

@@ -98,7 +98,8 @@ def test_headings_carry_units_and_rows_of_mixed_units_their_own(ledger):
     assert "Error / mEh" in ledger.header
     ledger.add(studies.result().model_copy(update={"energy_unit": "J"}))
     assert "Energy" in ledger.header
-    assert COLUMNS[column("Energy")].text(ledger.run(4), "mEh").endswith(" J")
+    assert ledger.cell(ledger.run(4), column("Energy")).endswith(" J")
+    assert ledger.cell(ledger.run(1), column("Error")) == "3 mEh"
 
 
 def test_loading_takes_runs_over_and_goes_on_numbering(ledger, history):
