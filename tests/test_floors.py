@@ -17,6 +17,7 @@ PACKAGES = {"thalweg": TOP / "core" / "thalweg", "thalweg_app": TOP / "app" / "t
 FLOORS = (
     {"thalweg", "thalweg.errors", "thalweg.units", "thalweg.arrays", "thalweg.options", "thalweg.paths"},
     {"thalweg.registry", "thalweg.watch", "thalweg.estimate", "thalweg.kernels"},
+    {"thalweg.parts"},
     {"thalweg.operators"},
     {"thalweg.systems", "thalweg.encoding"},
     {"thalweg.circuit"},

@@ -11,6 +11,7 @@ from thalweg.arrays import FloatArray, MaskArray
 from thalweg.kernels import register_product as kernels
 from thalweg.kernels.register_rows import walsh_hadamard
 from thalweg.operators.pauli import PauliExpansion
+from thalweg.parts import allowed_threads, run_parts
 from thalweg.watch import SILENT, Watch
 
 #: Qubits of one block: its row of 8 * 2^11 bytes and its amplitudes stay in the second-level cache.
@@ -19,13 +20,13 @@ BLOCK_BITS = 11
 LEAST_BITS = 3
 #: An x mask with at most this many different high parts of z keeps its rows; others transform their coefficients for each block.
 MAX_ROWS = 6
-#: Bytes that stored rows may take, and that a stored matrix may take.
-ROW_BYTES = 2**25
+#: Bytes that stored rows may take (they must stay in the second-level cache), and that a stored matrix may take.
+ROW_BYTES = 2**20
 MATRIX_BYTES = 2**26
 #: The matrix is stored only where at most this share of its possible elements differs from 0.
 SPARSE_SHARE = 0.3
 #: Amplitudes times x masks between two looks at the watch: about 5 ms.
-STEP = 2**22
+PART = 2**22
 
 
 class ExpansionProduct:
@@ -40,9 +41,16 @@ class ExpansionProduct:
     """
 
     def __init__(
-        self, expansion: PauliExpansion, *, block_bits: int = BLOCK_BITS, row_bytes: int = ROW_BYTES, matrix_bytes: int = MATRIX_BYTES
+        self,
+        expansion: PauliExpansion,
+        *,
+        block_bits: int = BLOCK_BITS,
+        row_bytes: int = ROW_BYTES,
+        matrix_bytes: int = MATRIX_BYTES,
+        threads: int | None = None,
     ) -> None:
-        self.n_qubits = expansion.n_qubits
+        """`threads`: how many share a large vector, by default as many as `parts.allowed_threads` says."""
+        self.n_qubits, self._threads = expansion.n_qubits, threads or allowed_threads()
         self._bits = max(LEAST_BITS, min(block_bits, expansion.n_qubits))
         self._tables = _tables(expansion, self._bits, row_bytes)
         self.is_real = not bool(self._tables[0][:, 1].any())
@@ -54,17 +62,17 @@ class ExpansionProduct:
         """Writes H v into `out`, which must not overlap v, and returns Re <v|H v>. Both of one dtype."""
         unit = self._unit(vector)
         if self._matrix is not None:
-            return self._walk_rows(lambda first, last: kernels.apply_stored(vector, out, first, last, *self._matrix), watch)
+            return self._walk_rows(lambda first, last, _: kernels.apply_stored(vector, out, first, last, *self._matrix), watch)
         own, image = vector.view(np.float64), out.view(np.float64)
-        return self._walk_blocks(lambda first, last: kernels.apply_blocks(own, image, first, last, self._bits, unit, self._tables), watch)
+        return self._walk_blocks(lambda first, last, _: kernels.apply_blocks(own, image, first, last, self._bits, unit, self._tables), watch)
 
     def expectation(self, vector: Any, watch: Watch = SILENT) -> float:
         """<v|H|v> without a second vector."""
         unit = self._unit(vector)
         if self._matrix is not None:
-            return self._walk_rows(lambda first, last: kernels.expectation_stored(vector, first, last, *self._matrix), watch)
+            return self._walk_rows(lambda first, last, _: kernels.expectation_stored(vector, first, last, *self._matrix), watch)
         own = vector.view(np.float64)
-        return self._walk_blocks(lambda first, last: kernels.expectation_blocks(own, first, last, self._bits, unit, self._tables), watch)
+        return self._walk_blocks(lambda first, last, _: kernels.expectation_blocks(own, first, last, self._bits, unit, self._tables), watch)
 
     def _unit(self, vector: Any) -> int:
         if vector.dtype == np.complex128:
@@ -74,14 +82,13 @@ class ExpansionProduct:
         return 0
 
     def _walk_blocks(self, part: Any, watch: Watch) -> float:
-        blocks = 1 << (self.n_qubits - self._bits)
-        step = max(1, STEP // max(1, len(self._tables[0]) << self._bits))
-        return _sum_parts(part, blocks, step, watch)
+        cost = max(1, len(self._tables[0])) << self._bits
+        return run_parts(part, 1 << (self.n_qubits - self._bits), cost, PART, watch, self._threads)
 
     def _walk_rows(self, part: Any, watch: Watch) -> float:
         assert self._matrix is not None
         rows = 1 << self.n_qubits
-        return _sum_parts(part, rows, max(1, STEP * rows // max(1, self._matrix[1].size)), watch)
+        return run_parts(part, rows, 1 + self._matrix[1].size // rows, PART, watch, self._threads)
 
     def _stored_matrix(self, matrix_bytes: int) -> tuple[Any, ...] | None:
         """(row starts, columns, values) where the matrix is sparse and small enough, or the register too small for blocks; else None."""
@@ -106,14 +113,6 @@ def product_bytes(expansion: PauliExpansion) -> int:
     rows = min(ROW_BYTES, (terms * 8) << min(BLOCK_BITS, expansion.n_qubits))
     matrix = min(MATRIX_BYTES, 12 * terms * size) + 16 * size if np.unique(expansion.x).size * size <= MATRIX_BYTES else 0
     return rows + matrix + 64 * terms
-
-
-def _sum_parts(part: Any, count: int, step: int, watch: Watch) -> float:
-    total = 0.0
-    for first in range(0, count, step):
-        watch.check()
-        total += float(part(first, min(count, first + step)))
-    return total
 
 
 def _tables(expansion: PauliExpansion, bits: int, row_bytes: int) -> tuple[Any, ...]:

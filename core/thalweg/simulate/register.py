@@ -13,6 +13,7 @@ from thalweg.circuit.program import GateProgram
 from thalweg.errors import StudyError
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.operators.product import ExpansionProduct, product_bytes
+from thalweg.parts import allowed_threads
 from thalweg.simulate.engine import StateFacts
 from thalweg.simulate.register_facts import ground_weight, leading_states, squared_distance
 from thalweg.simulate.register_passes import plan
@@ -36,6 +37,7 @@ class RegisterEngine:
         budget_bytes: StudyError when the estimate is above it.
         product: gives H as a product with vectors where engines share one; asked when first needed.
         watch: asked between parts of every long pass; raises Stopped.
+        threads: how many share a large register, by default as many as `parts.allowed_threads` says.
     """
 
     def __init__(
@@ -51,6 +53,7 @@ class RegisterEngine:
         product: Callable[[], ExpansionProduct] | None = None,
         watch: Watch = SILENT,
         tile_bytes_bits: int = TILE_BYTES_BITS,
+        threads: int | None = None,
     ) -> None:
         if hamiltonian.n_qubits != program.n_qubits:
             raise ValueError("program and Hamiltonian act on registers of different sizes")
@@ -58,12 +61,12 @@ class RegisterEngine:
         self._hamiltonian, self._reference, self._observables = hamiltonian, program.reference, (number, s_z, s_squared)
         self._shared_product = product
         self._label = label or (lambda bits: format(bits, f"0{self.n_qubits}b"))
-        self._plan = plan(program, tile_bytes_bits)
+        self._plan, self._threads = plan(program, tile_bytes_bits), threads or allowed_threads()
         _refuse_above(self.memory_bytes(), budget_bytes, self.n_qubits)
 
     def memory_bytes(self) -> int:
         """State, adjoint state, scratch memory, and the tables of the Hamiltonian."""
-        return 2 * self._amplitude_bytes + PlanRunner.bytes_needed(self._plan) + product_bytes(self._hamiltonian)
+        return 2 * self._amplitude_bytes + PlanRunner.bytes_needed(self._plan, self._threads) + product_bytes(self._hamiltonian)
 
     def energy(self, parameters: FloatArray) -> float:
         return self._product.expectation(self._amplitudes(self._forward(parameters)), self.watch)
@@ -117,13 +120,13 @@ class RegisterEngine:
 
     @cached_property
     def _runner(self) -> PlanRunner:
-        return PlanRunner(self._plan)
+        return PlanRunner(self._plan, self._threads)
 
     @cached_property
     def _product(self) -> ExpansionProduct:
         """H, or its real part where the amplitudes are real: the rest adds nothing to energy and gradient."""
         if not self._plan.unit and _has_odd_terms(self._hamiltonian):
-            return ExpansionProduct(_real_part(self._hamiltonian))
+            return ExpansionProduct(_real_part(self._hamiltonian), threads=self._threads)
         return self._full_product
 
     @cached_property

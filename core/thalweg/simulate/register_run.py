@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from typing import Any
 
 import numpy as np
@@ -10,6 +9,7 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.kernels import register as kernels
 from thalweg.kernels.register_phases import table_scratch
+from thalweg.parts import run_parts
 from thalweg.simulate.register_passes import Pass, Plan
 from thalweg.simulate.register_plan import FIRST
 from thalweg.watch import Watch
@@ -19,51 +19,77 @@ PART = 2**24
 
 
 class PlanRunner:
-    """Holds the scratch memory of a plan; not to be used by two threads at a time."""
+    """Holds the scratch memory of a plan; not to be used by two callers at a time."""
+
+    def __init__(self, plan: Plan, threads: int = 1) -> None:
+        self._plan, self._threads = plan, threads if plan.n_qubits > plan.largest_tile else 1
+        self._workers = [_Worker(plan) for _ in range(self._threads)]
+
+    @staticmethod
+    def bytes_needed(plan: Plan, threads: int = 1) -> int:
+        """What the scratch memory takes."""
+        return threads * ((16 * plan.table_rows + 40) << plan.largest_tile)
+
+    def forward(self, state: FloatArray, angles: FloatArray, watch: Watch) -> None:
+        """Applies the gates in place."""
+        entries = self._plan.rotations.entries(angles)
+        for part in self._plan.passes:
+            self._run(part, part.operations, (state, state), 0, entries, watch)
+
+    def backward(self, state: FloatArray, adjoint: FloatArray, angles: FloatArray, watch: Watch) -> FloatArray:
+        """Undoes the gates on both; returns dE/d(angle) of each rotation for adjoint = H state, shape of the angles."""
+        entries = self._plan.rotations.entries(-angles)
+        for worker in self._workers:
+            worker.gradient[:] = 0.0
+        for part in reversed(self._plan.passes):
+            self._run(part, np.ascontiguousarray(part.operations[::-1]), (state, adjoint), 1, entries, watch)
+        total: FloatArray = sum((worker.gradient for worker in self._workers[1:]), self._workers[0].gradient)[FIRST:].copy()
+        return total
+
+    def _run(self, part: Pass, operations: Any, states: Any, both: int, entries: FloatArray, watch: Watch) -> None:
+        size, unit = 1 << part.local_bits, self._plan.unit
+        layout = (unit, part.fixed, part.offsets, part.chunk)
+        works = [worker.for_tiles(part) for worker in self._workers]
+
+        def tiles(first: int, last: int, number: int) -> float:
+            worker = self._workers[number]
+            scratch = states if part.tiles == 1 else worker.tiles(size << unit)
+            kernels.run_tiles(states, scratch, both, first, last, *layout, operations, part.groups, works[number], entries, worker.gradient)
+            return 0.0
+
+        def stream(first: int, last: int, number: int) -> float:
+            kernels.turn_parts(states, both, first, last, operations[0], entries, self._workers[number].gradient)
+            return 0.0
+
+        if part.streamed:
+            run_parts(stream, states[0].size >> 4, 16 << 2 * both, PART, watch, self._threads)
+        else:
+            run_parts(tiles, part.tiles, part.cost * size << 2 * both, PART, watch, self._threads)
+
+
+class _Worker:
+    """Scratch memory of one thread."""
 
     def __init__(self, plan: Plan) -> None:
-        self._plan = plan
         tile = 1 << plan.largest_tile
         self._scratch = [aligned(tile << plan.unit) for _ in range(2)]
         self._tables = aligned(plan.table_rows * 2 * tile)
         self._made = np.zeros(plan.table_rows, dtype=bool)
         self._moments = aligned(tile)
         self._table_scratch = table_scratch()
+        self.gradient = np.zeros(FIRST + plan.rotations.factor.size)
 
-    @staticmethod
-    def bytes_needed(plan: Plan) -> int:
-        """What the scratch memory takes."""
-        return (16 * plan.table_rows + 40) << plan.largest_tile
+    def tiles(self, positions: int) -> tuple[FloatArray, FloatArray]:
+        return self._scratch[0][:positions], self._scratch[1][:positions]
 
-    def forward(self, state: FloatArray, angles: FloatArray, watch: Watch) -> None:
-        """Applies the gates in place."""
-        entries = self._plan.rotations.entries(angles)
-        for part in self._plan.passes:
-            self._run(part, part.operations, (state, state), 0, entries, np.empty(len(entries)), watch)
-
-    def backward(self, state: FloatArray, adjoint: FloatArray, angles: FloatArray, watch: Watch) -> FloatArray:
-        """Undoes the gates on both; returns dE/d(angle) of each rotation for adjoint = H state, shape of the angles."""
-        entries = self._plan.rotations.entries(-angles)
-        gradient = np.zeros(len(entries))
-        for part in reversed(self._plan.passes):
-            self._run(part, np.ascontiguousarray(part.operations[::-1]), (state, adjoint), 1, entries, gradient, watch)
-        return gradient[FIRST:]
-
-    def _run(self, part: Pass, operations: Any, states: Any, both: int, entries: FloatArray, gradient: FloatArray, watch: Watch) -> None:
+    def for_tiles(self, part: Pass) -> tuple[Any, ...]:
+        """`work` of `kernels.register_phases`, with no table made."""
         if part.streamed:
-            for first, last in _parts(states[0].size >> 4, 16 << 2 * both):
-                watch.check()
-                kernels.turn_parts(states, both, first, last, operations[0], entries, gradient)
-            return
-        size, unit = 1 << part.local_bits, self._plan.unit
-        scratch = states if part.tiles == 1 else tuple(buffer[: size << unit] for buffer in self._scratch)
-        tables = self._tables[: part.table_rows * 2 * size].reshape(part.table_rows, 2 * size)
-        work = (tables, self._made, self._moments[:size], self._table_scratch)
+            return ()
+        size = 1 << part.local_bits
         self._made[:] = False
-        layout = (unit, part.fixed, part.offsets, part.chunk)
-        for first, last in _parts(part.tiles, part.cost * size << 2 * both):
-            watch.check()
-            kernels.run_tiles(states, scratch, both, first, last, *layout, operations, part.groups, work, entries, gradient)
+        tables = self._tables[: part.table_rows * 2 * size].reshape(part.table_rows, 2 * size)
+        return tables, self._made, self._moments[:size], self._table_scratch
 
 
 def aligned(size: int) -> FloatArray:
@@ -71,10 +97,3 @@ def aligned(size: int) -> FloatArray:
     raw = np.empty(8 * size + 64, dtype=np.uint8)
     start = -raw.ctypes.data % 64
     return raw[start : start + 8 * size].view(np.float64)
-
-
-def _parts(count: int, cost: int) -> Iterator[tuple[int, int]]:
-    """Ranges of 0:count whose cost, that of one item times their length, stays near PART."""
-    step = max(1, PART // cost)
-    for first in range(0, count, step):
-        yield first, min(count, first + step)

@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from support.dense import expansion_matrix
 
+from thalweg import parts
 from thalweg.errors import Stopped
 from thalweg.operators.pauli import PauliExpansion, collect_terms
 from thalweg.operators.product import ExpansionProduct, product_bytes
@@ -78,6 +79,18 @@ def test_terms_without_low_z_are_numbers_for_each_block():
     out = np.empty_like(vector)
     assert product.apply(vector, out) == pytest.approx(product.expectation(vector), abs=1e-13)
     np.testing.assert_allclose(out, expansion_matrix(expansion) @ vector, atol=1e-12)
+
+
+def test_threads_change_nothing(monkeypatch):
+    monkeypatch.setattr(parts, "SHARED_FROM", 0)
+    rng = np.random.default_rng(6)
+    expansion, vector = random_expansion(rng, 7, 90, real=False), random_vector(rng, 7)
+    for matrix_bytes in (0, 2**20):
+        serial, shared = (ExpansionProduct(expansion, block_bits=3, matrix_bytes=matrix_bytes, threads=n) for n in (1, 3))
+        out, other = np.empty_like(vector), np.empty_like(vector)
+        assert serial.apply(vector, out) == pytest.approx(shared.apply(vector, other), abs=1e-13)
+        np.testing.assert_array_equal(out, other)
+        assert serial.expectation(vector) == pytest.approx(shared.expectation(vector), abs=1e-13)
 
 
 def test_an_odd_number_of_y_refuses_real_vectors():

@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from support.dense import expansion_matrix, string_matrix
 
+from thalweg import parts
 from thalweg.ansatz.ground import Ground
 from thalweg.ansatz.hardware_efficient import HardwareEfficient
 from thalweg.circuit.program import Gate, GateProgram
@@ -112,6 +113,21 @@ def test_tables_of_diagonal_gates_follow_the_fixed_qubits_of_a_tile(entangler, r
     tiled, whole = (RegisterEngine(hamiltonian, program, tile_bytes_bits=bits) for bits in (7, 16))
     np.testing.assert_allclose(tiled.state(parameters), dense_state(program, parameters), atol=1e-12)
     np.testing.assert_allclose(tiled.energy_and_gradient(parameters)[1], whole.energy_and_gradient(parameters)[1], atol=1e-12)
+
+
+@pytest.mark.parametrize("rotations", ["ry", "ry-rz"])
+def test_threads_change_nothing(monkeypatch, rotations):
+    monkeypatch.setattr(parts, "SHARED_FROM", 0)
+    rng = np.random.default_rng(12)
+    hamiltonian = random_expansion(rng, 9, 60)
+    program = HardwareEfficient(depth=3, rotations=rotations, entangler="ring").build(Ground(None, hamiltonian, 5))
+    parameters = rng.normal(size=program.n_parameters)
+    serial, shared = (RegisterEngine(hamiltonian, program, tile_bytes_bits=8, threads=threads) for threads in (1, 3))
+    np.testing.assert_array_equal(serial.state(parameters), shared.state(parameters))
+    (energy, gradient), (other_energy, other_gradient) = (engine.energy_and_gradient(parameters) for engine in (serial, shared))
+    assert shared.energy(parameters) == pytest.approx(energy, abs=1e-13) == other_energy
+    np.testing.assert_allclose(gradient, other_gradient, atol=1e-13)
+    np.testing.assert_array_equal(other_gradient, shared.energy_and_gradient(parameters)[1])
 
 
 def test_the_norm_stays_one_through_a_deep_circuit():
