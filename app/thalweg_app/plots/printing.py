@@ -94,6 +94,8 @@ def _draw_panel(panel: Panel, ax: Any) -> None:
             markersize=4,
             label=series.name if series.legend else None,
         )
+        if series.spread is not None:
+            ax.errorbar(series.x, series.y, series.spread, fmt="none", ecolor=style.colour, elinewidth=0.8, capsize=1.5, alpha=0.7)
     for level in panel.levels:
         style = style_of(level.role, level.rank, LIGHT)
         ax.axhline(level.value, color=style.colour, linestyle=_DASHES[style.dash], linewidth=style.width * 0.8, label=level.name)

@@ -17,7 +17,10 @@ Role = Literal["variational", "exact", "reference", "classical", "overlay", "fai
 
 @dataclass(frozen=True)
 class Series:
-    """One curve. `rank` numbers curves of the same role. x and y have equal length; NaN leaves a gap."""
+    """One curve. `rank` numbers curves of the same role. x, y and spread have equal length; NaN leaves a gap.
+
+    `spread`: half heights of error bars, two standard errors each; None where there are none.
+    """
 
     name: str
     x: FloatArray
@@ -27,6 +30,7 @@ class Series:
     legend: bool = True
     marks: bool = True
     line: bool = True
+    spread: FloatArray | None = None
 
 
 @dataclass(frozen=True)
@@ -122,7 +126,7 @@ def chart_from_data(data: dict[str, Any]) -> Chart:
     """The chart of `chart_data`."""
     panels = []
     for panel in data["panels"]:
-        series = tuple(Series(**{**s, "x": _array(s["x"]), "y": _array(s["y"])}) for s in panel["series"])
+        series = tuple(Series(**{**s, **{k: _array(s[k]) for k in ("x", "y", "spread") if s[k] is not None}}) for s in panel["series"])
         bars = tuple(Bars(**{**b, "values": _array(b["values"])}) for b in panel["bars"])
         levels = tuple(Level(**level) for level in panel["levels"])
         band = None if panel["band"] is None else Band(**panel["band"])

@@ -19,6 +19,10 @@ class LiveStart:
     energy: list[float] = field(default_factory=list)
     gradient_norm: list[float | None] = field(default_factory=list)
     seconds: list[float] = field(default_factory=list)
+    circuits: list[int] = field(default_factory=list)
+    shots: list[int] = field(default_factory=list)
+    standard_error: list[float | None] = field(default_factory=list)
+    noiseless: list[float | None] = field(default_factory=list)
 
     def add(self, event: Iteration) -> None:
         self.iteration.append(event.iteration)
@@ -26,6 +30,10 @@ class LiveStart:
         self.energy.append(event.energy)
         self.gradient_norm.append(event.gradient_norm)
         self.seconds.append(event.seconds)
+        self.circuits.append(event.circuits)
+        self.shots.append(event.shots)
+        self.standard_error.append(event.standard_error)
+        self.noiseless.append(event.noiseless)
 
 
 @dataclass

@@ -67,6 +67,10 @@ def _record(start: LiveStart, seed: int, reason: str) -> StartRecord:
         energy=tuple(start.energy),
         gradient_norm=tuple(start.gradient_norm),
         seconds=tuple(start.seconds),
+        circuits=tuple(start.circuits),
+        shots=tuple(start.shots),
+        standard_error=tuple(start.standard_error),
+        noiseless=tuple(start.noiseless),
     )
     return StartRecord(
         seed=seed,
@@ -77,6 +81,9 @@ def _record(start: LiveStart, seed: int, reason: str) -> StartRecord:
         gradient_norm=start.gradient_norm[lowest],
         seconds=start.seconds[-1],
         trace=trace,
+        circuits=start.circuits[-1],
+        shots=start.shots[-1],
+        standard_error=start.standard_error[lowest],
     )
 
 

@@ -1,4 +1,4 @@
-"""The Convergence picture as data: energy and error against iteration, evaluations or seconds."""
+"""The Convergence picture as data: energy and error against iteration, evaluations, circuits, shots or seconds."""
 
 from __future__ import annotations
 
@@ -15,9 +15,17 @@ from thalweg_app.presenters import wording
 from thalweg_app.presenters.chart import Band, Chart, Level, Panel, Role, Series
 from thalweg_app.presenters.live import LiveRun
 
-XChoice = Literal["iteration", "evaluations", "seconds"]
-X_TITLES: dict[XChoice, str] = {"iteration": "Iteration", "evaluations": "Energy evaluations", "seconds": "Seconds"}
+XChoice = Literal["iteration", "evaluations", "circuits", "shots", "seconds"]
+X_TITLES: dict[XChoice, str] = {
+    "iteration": "Iteration",
+    "evaluations": "Energy evaluations",
+    "circuits": "Circuits run",
+    "shots": "Shots",
+    "seconds": "Seconds",
+}
 CLASSICAL_NAMES = {"mp2": "MP2", "ccsd": "CCSD", "ccsd(t)": "CCSD(T)"}
+#: Height of the energy panel as a multiple of the error panel's.
+ENERGY_SHARE = 1.15
 EMPTY = "Press Run to see the energy fall towards the exact one."
 
 
@@ -28,6 +36,10 @@ class Columns(Protocol):
     def energy(self) -> Sequence[float]: ...
     @property
     def gradient_norm(self) -> Sequence[float | None]: ...
+    @property
+    def standard_error(self) -> Sequence[float | None]: ...
+    @property
+    def noiseless(self) -> Sequence[float | None]: ...
 
 
 @dataclass(frozen=True)
@@ -82,9 +94,9 @@ def convergence(main: Shown | None, overlays: Sequence[Shown] = (), x: XChoice =
     others = [o for o in overlays if o.unit == main.unit]
     energy = Panel(
         f"Energy / {wording.unit_name(main.unit)}",
-        _curves(main, others, x, lambda run, start: _array(start.energy)),
+        _curves(main, others, x, lambda run, start: _array(start.energy), bars=True),
         _levels(main),
-        share=1.15,
+        share=ENERGY_SHARE,
     )
     return Chart("Convergence", X_TITLES[x], (energy, _lower(main, others, x, factor, unit)), EMPTY, _describe(main))
 
@@ -95,29 +107,32 @@ def _lower(main: Shown, others: list[Shown], x: XChoice, factor: float, unit: st
         return Panel("Largest gradient component", curves, log=True)
 
     def error(run: Shown, start: Columns) -> FloatArray:
+        """Of the simulated state, as a measured error may well be negative."""
         exact = np.nan if run.exact_energy is None else run.exact_energy
-        return _positive((_array(start.energy) - exact) * factor)
+        noiseless = [e if n is None else n for e, n in zip(start.energy, start.noiseless, strict=False)] or start.energy
+        return _positive((_array(noiseless) - exact) * factor)
 
     band = Band(main.target * factor, f"{_target_name(main)}, {wording.significant(main.target * factor)} {unit}")
     return Panel(f"Error against exact / {unit}", _curves(main, others, x, error), band=band, log=True)
 
 
-def _curves(main: Shown, others: list[Shown], x: XChoice, values: object) -> tuple[Series, ...]:
+def _curves(main: Shown, others: list[Shown], x: XChoice, values: object, *, bars: bool = False) -> tuple[Series, ...]:
     assert callable(values)
     curves = []
     for k, start in enumerate(main.starts):
         if k != main.best_start:
-            curves.append(_series(f"{main.name}, start {k + 1}", start, x, values(main, start), "faint", k))
+            curves.append(_series(f"{main.name}, start {k + 1}", start, x, values(main, start), "faint", k, bars=False))
     for rank, other in enumerate(others):
-        curves.append(_series(other.name, other.lead, x, values(other, other.lead), "overlay", rank))
-    curves.append(_series(main.name, main.lead, x, values(main, main.lead), "variational", 0))
+        curves.append(_series(other.name, other.lead, x, values(other, other.lead), "overlay", rank, bars=bars))
+    curves.append(_series(main.name, main.lead, x, values(main, main.lead), "variational", 0, bars=bars))
     return tuple(curves)
 
 
-def _series(name: str, start: Columns, x: XChoice, y: FloatArray, role: Role, rank: int) -> Series:
+def _series(name: str, start: Columns, x: XChoice, y: FloatArray, role: Role, rank: int, *, bars: bool) -> Series:
     along = np.asarray(getattr(start, x), dtype=np.float64)
     n = min(along.size, y.size)
-    return Series(name, along[:n], y[:n], role, rank, legend=role != "faint")
+    spread = 2 * _array(start.standard_error)[:n] if bars and any(e is not None for e in start.standard_error) else None
+    return Series(name, along[:n], y[:n], role, rank, legend=role != "faint", spread=spread)
 
 
 def _levels(main: Shown) -> tuple[Level, ...]:

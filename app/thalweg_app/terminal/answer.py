@@ -70,6 +70,11 @@ def _energy_rows(result: StudyResult) -> Rows:
         ("System", result.label),
         ("Energy", f"{_energy(result.energy, unit)}  ({spec.ansatz.title}, {spec.optimizer.title}, {spec.encoding.title})"),
     ]
+    if result.measured_energy is not None and result.standard_error is not None:
+        measured = f"{_energy(result.measured_energy, unit)} +- {significant(2 * result.standard_error)}"
+        rows.append(("Measured", f"{measured}  (two standard errors; the energy above is that of the same state without noise)"))
+    elif result.standard_error is not None:
+        rows.append(("Error bar of shots", f"+- {significant(2 * result.standard_error)} {unit}  (two standard errors)"))
     if result.exact_energy is not None:
         several = f", {result.exact_degeneracy}-fold degenerate" if (result.exact_degeneracy or 1) > 1 else ""
         rows.append(("Exact", f"{_energy(result.exact_energy, unit)}  ({result.exact_method}{several})"))
@@ -133,6 +138,8 @@ def _search_rows(result: StudyResult) -> Rows:
         ("Stopped because", STOP_REASONS.get(result.stop_reason, result.stop_reason)),
         ("Evaluations", f"{result.evaluations:,} in {counted(result.iterations, 'iteration')}{starts}"),
     ]
+    if result.circuits:
+        rows.append(("Circuits run", f"{result.circuits:,}" + (f", {result.shots:,} shots" if result.shots else "")))
     if result.gradient_norm is not None:
         rows.append(("Largest gradient", f"{significant(result.gradient_norm)} {unit}"))
     rows.append(("Time", f"{result.seconds:.2f} s, preparation {result.preparation_seconds:.2f} s"))

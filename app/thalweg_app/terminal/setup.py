@@ -30,10 +30,16 @@ PLAIN_OPTIONS = {
     "taper": "encoding.taper",
     "ansatz": "ansatz",
     "depth": "ansatz.depth",
+    "start": "ansatz.start",
     "optimizer": "optimizer",
+    "evaluation": "evaluation",
+    "shots": "evaluation.shots",
     "starts": "starts",
     "seed": "seed",
 }
+
+#: Sections whose settings have an option of their own.
+SET_SECTIONS = ("ansatz", "optimizer", "evaluation")
 
 
 def setup_options(command: Command) -> Command:
@@ -56,8 +62,14 @@ def _options() -> list[Callable[[Command], Command]]:
         click.option("--encoding", type=choice["encoding"], help="Fermions to qubits."),
         click.option("--taper/--no-taper", default=None, help="Remove a qubit for each Z2 symmetry."),
         click.option("--ansatz", type=choice["ansatz"], help="Trial state."),
+        _setting_option("ansatz", "the trial state, e.g. k=2"),
         click.option("--depth", type=int, help="Number of layers of a layered circuit."),
+        click.option("--start", help="First parameters, e.g. zero, mp2, small-random, uniform-random."),
         click.option("--optimizer", type=choice["optimizer"], help="Search for the lowest energy."),
+        _setting_option("optimizer", "the search, e.g. step=0.05"),
+        click.option("--evaluation", type=choice["evaluation"], help="Exact energies, drawn bit strings, or exact with the error of shots."),
+        _setting_option("evaluation", "the evaluation, e.g. allocation=by-variance"),
+        click.option("--shots", type=int, help="Shots of one energy, for an evaluation that draws them."),
         click.option("--starts", type=int, help="Number of independent starts; the lowest counts."),
         click.option("--seed", type=int, help="Seed of every random choice."),
         click.option("--classical", metavar="mp2,ccsd", help="Classical methods to compute beside: mp2, ccsd, ccsd(t)."),
@@ -76,12 +88,24 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
         given["system.active_space"] = _active_space(options["frozen_core"], options["active"])
     for path, value in given.items():
         spec = _with_option(spec, path, value)
+    for section in SET_SECTIONS:
+        for text in options[f"{section}_settings"]:
+            spec = _with_text(spec, f"--{section}-set", f"{section}.", text)
     for text in options["settings"]:
-        path, sign, value = text.partition("=")
-        if not sign:
-            raise StudyError(f"--set {text} has no value", "it needs a field and a value", "Write it as --set field=value")
-        spec = _with_option(spec, path.strip(), value.strip())
+        spec = _with_text(spec, "--set", "", text)
     return spec, notes
+
+
+def _setting_option(section: str, what: str) -> Callable[[Command], Command]:
+    words = f"A setting of {what}. Repeatable."
+    return click.option(f"--{section}-set", f"{section}_settings", multiple=True, metavar="KEY=VALUE", help=words)
+
+
+def _with_text(spec: StudySpec, name: str, before: str, text: str) -> StudySpec:
+    path, sign, value = text.partition("=")
+    if not sign:
+        raise StudyError(f"{name} {text} has no value", "it needs a field and a value", f"Write it as {name} field=value")
+    return _with_option(spec, before + path.strip(), value.strip())
 
 
 def read_input(name: str, unit: str) -> tuple[StudySpec, tuple[str, ...]]:

@@ -16,7 +16,7 @@ from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.plots.printing import draw_chart, picture_format
-from thalweg_app.presenters.traces import convergence, shown_result
+from thalweg_app.presenters.traces import X_TITLES, XChoice, convergence, shown_result
 from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
@@ -28,9 +28,10 @@ STANDARD_OUTPUT = "-"
 @setup_options
 @click.option("--save", type=click.Path(path_type=Path), metavar="FILE", help="Save a session; a session that is there gets one more run.")
 @click.option("--figure", type=click.Path(path_type=Path), metavar="FILE", help="Draw the convergence as PNG, SVG or PDF.")
+@click.option("--x-axis", type=click.Choice(list(X_TITLES)), default="iteration", help="What the figure is drawn against.")
 @click.option("--json", "json_file", metavar="FILE|-", help="Write the result as one JSON object; - is standard output and nothing else.")
 @click.option("--quiet", is_flag=True, help="Show no progress.")
-def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: bool, **options: Any) -> int:
+def solve(save: Path | None, figure: Path | None, x_axis: XChoice, json_file: str | None, quiet: bool, **options: Any) -> int:
     """Find the lowest energy of a trial state and judge it against the exact one.
 
     INPUT is a file (XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a lattice, a session), the name of a sample, or - for standard input.
@@ -52,7 +53,7 @@ def solve(save: Path | None, figure: Path | None, json_file: str | None, quiet: 
         print("Stopped before the first energy: there is nothing to keep.", file=sys.stderr)
         return status
     _print(result, json_file)
-    _keep(result, session, save, figure)
+    _keep(result, session, save, figure, x_axis)
     return status
 
 
@@ -86,11 +87,11 @@ def _print(result: StudyResult, json_file: str | None) -> None:
         write_atomically(Path(json_file), json_text(result.model_dump(), indent=1).encode() + b"\n")
 
 
-def _keep(result: StudyResult, session: Session, save: Path | None, figure: Path | None) -> None:
+def _keep(result: StudyResult, session: Session, save: Path | None, figure: Path | None, x_axis: XChoice) -> None:
     session = session.with_result(result)
     if save is not None:
         save_session(session, save)
         print(f"Saved as run {session.runs[-1].number} of {save}", file=sys.stderr)
     if figure is not None:
-        draw_chart(convergence(shown_result(session.runs[-1].number, result)), figure)
+        draw_chart(convergence(shown_result(session.runs[-1].number, result), x=x_axis), figure)
         print(f"Drawn in {figure}", file=sys.stderr)
