@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import Any, Protocol
 
 from thalweg.arrays import FloatArray
+from thalweg.watch import Watch
 
 
 @dataclass(frozen=True)
@@ -42,6 +43,7 @@ class Engine(Protocol):
     """Evaluates one program on one Hamiltonian. Energies in the Hamiltonian's unit; parameters shape (K,)."""
 
     n_parameters: int
+    watch: Watch  # asked during an evaluation; whoever takes the engine over sets it
 
     def energy(self, parameters: FloatArray) -> float: ...
 

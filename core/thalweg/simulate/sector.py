@@ -41,7 +41,7 @@ class SectorEngine:
         watch: Watch = SILENT,
     ) -> None:
         """`product` shares H between engines; StudyError where the estimate is past `budget_bytes`."""
-        self._hamiltonian, self._program, self._watch = hamiltonian, program, watch
+        self._hamiltonian, self._program, self.watch = hamiltonian, program, watch
         self._bytes = engine_bytes(hamiltonian, program)
         if budget_bytes is not None and self._bytes > budget_bytes:
             raise _over_budget(hamiltonian, self._bytes)
@@ -63,10 +63,10 @@ class SectorEngine:
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         angles = self._angles(parameters)
-        psi = self._runner.forward(self._program.reference, angles, self._watch)
+        psi = self._runner.forward(self._program.reference, angles, self.watch)
         dual = self._block.apply(psi)
         energy = self._hamiltonian.core_energy + float(psi @ dual)
-        slopes = self._runner.backward(psi, dual, angles, self._watch)
+        slopes = self._runner.backward(psi, dual, angles, self.watch)
         gradient = np.bincount(self._parameter, weights=slopes * self._factor, minlength=self.n_parameters)
         return energy, gradient.astype(float)
 
@@ -85,7 +85,7 @@ class SectorEngine:
         return angles
 
     def _forward(self, parameters: FloatArray) -> FloatArray:
-        return self._runner.forward(self._program.reference, self._angles(parameters), self._watch)
+        return self._runner.forward(self._program.reference, self._angles(parameters), self.watch)
 
 
 def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) -> int:

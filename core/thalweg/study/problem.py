@@ -130,6 +130,7 @@ def make_engine(problem: Problem, watch: Watch = SILENT) -> Engine:
     prepared, program = problem.prepared, problem.program
     key = (id(prepared), id(program), problem.spec.encoding, problem.budget_bytes)
     engine: Engine = _engines.get(key, lambda: (prepared, program, _new_engine(problem, watch)))[2]
+    engine.watch = watch  # the engine may come from a search that was stopped
     return engine
 
 
