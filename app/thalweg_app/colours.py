@@ -78,6 +78,9 @@ class Style:
     filled: bool = True  # bars: filled or hatched
 
 
+#: The palette in an order in which neighbours differ most, for classes of things that have no role of their own.
+OKABE_ITO = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9")
+
 _OVERLAYS = (
     ("#E69F00", "solid", "s"),
     ("#009E73", "dash", "^"),

@@ -9,7 +9,7 @@ from typing import Any
 
 from thalweg.errors import StudyError
 from thalweg.options import Options
-from thalweg.study.spec import SECTIONS, StudySpec, spec_from_data
+from thalweg.study.spec import UNIONS, StudySpec, spec_from_data, suited
 from thalweg.systems import Integrals, Molecule
 from thalweg.systems.elements import find_element
 from thalweg_app.presenters.fields import FieldFacts, fields_of
@@ -123,14 +123,14 @@ class SetupEditing:
         self._record(text, replace(draft, spec=spec, typed=typed, errors=errors))
 
     def choose(self, section: str, key: str) -> None:
-        """Switches a section to another alternative, which comes back as it was left."""
+        """Switches a section, or a choice within one such as `system.lattice`, to another alternative, which comes back as it was left."""
         draft = self._draft
-        old: Options = getattr(draft.spec, section)
+        old: Options = node_at(draft.spec, section)
         if old.key == key:  # type: ignore[attr-defined]
             return
-        cls = SECTIONS[section].get(key)
+        cls = UNIONS[section.rpartition(".")[2]].get(key)
         new = draft.shelf.get((section, key)) or _carried_over(cls, old)
-        spec = draft.spec.model_copy(update={section: new})
+        spec = suited(_with_node(draft.spec, section.split("."), new))
         shelf = {**draft.shelf, (section, old.key): old}  # type: ignore[attr-defined]
         typed = {p: v for p, v in draft.typed.items() if not p.startswith(section + ".")}
         errors = {p: e for p, e in draft.errors.items() if not p.startswith(section + ".")}
@@ -141,7 +141,7 @@ class SetupEditing:
         draft = self._draft
         typed = {p: v for p, v in draft.typed.items() if not p.startswith("system.")}
         errors = {p: e for p, e in draft.errors.items() if not p.startswith("system.")}
-        self._record(text, replace(draft, spec=draft.spec.model_copy(update={"system": system}), typed=typed, errors=errors))
+        self._record(text, replace(draft, spec=suited(draft.spec.model_copy(update={"system": system})), typed=typed, errors=errors))
 
     def use(self, spec: StudySpec, text: str) -> None:
         """Puts the settings of a run back; undo returns to what was there."""
@@ -157,10 +157,7 @@ class SetupEditing:
         """What the field shows: the text that does not validate, or the value."""
         if path in self._draft.typed:
             return self._draft.typed[path]
-        node: Any = self.spec
-        for name in path.split("."):
-            node = getattr(node, name)
-        return node
+        return node_at(self.spec, path)
 
     def _read(self, path: str, value: Any) -> Any:
         facts = facts_of(path, self.spec)
@@ -189,12 +186,24 @@ class SetupEditing:
         self.changed()
 
 
+def node_at(spec: StudySpec, path: str) -> Any:
+    """The settings or the value at a dotted path."""
+    node: Any = spec
+    for name in path.split("."):
+        node = getattr(node, name)
+    return node
+
+
+def _with_node(owner: Any, names: list[str], value: Any) -> Any:
+    """A copy of `owner` in which the node reached by `names` is `value`."""
+    first, *rest = names
+    return owner.model_copy(update={first: _with_node(getattr(owner, first), rest, value) if rest else value})
+
+
 def facts_of(path: str, spec: StudySpec) -> FieldFacts | None:
     """Metadata of the field at a dotted path, None for fields with an editor of their own."""
-    *parents, last = path.split(".")
-    owner: Any = spec
-    for name in parents:
-        owner = getattr(owner, name)
+    parents, _, last = path.rpartition(".")
+    owner = node_at(spec, parents) if parents else spec
     return next((facts for facts in fields_of(type(owner)) if facts.name == last), None)
 
 

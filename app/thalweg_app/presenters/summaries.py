@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from thalweg.errors import StudyError
 from thalweg.study.derived import StudyFigures
 from thalweg.study.spec import StudySpec
-from thalweg.systems import Molecule
+from thalweg.systems import LatticeModel, Molecule
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.wording import counted
 
@@ -30,7 +31,17 @@ def system_label(spec: StudySpec) -> str:
     if isinstance(system, Molecule):
         name = system.name or formula(system.atoms)
         return f"{name}, {system.basis.upper() if system.basis[:3] == 'sto' else system.basis}" if name else ""
-    return str(getattr(system, "name", "") or system.title)
+    if isinstance(system, LatticeModel):
+        return lattice_label(system)
+    return system.name or system.title
+
+
+def lattice_label(system: LatticeModel) -> str:
+    """Name, or model and lattice; the titles alone where the two do not fit each other."""
+    try:
+        return system.label()
+    except StudyError:
+        return f"{system.model.title}, {system.lattice.title}"
 
 
 def _system(spec: StudySpec, figures: StudyFigures | None) -> str:
@@ -61,7 +72,8 @@ def _ansatz(spec: StudySpec, figures: StudyFigures | None) -> str:
 
 
 def _search(spec: StudySpec, figures: StudyFigures | None) -> str:
-    unit = figures.energy_unit if figures is not None else "hartree"
-    value = wording.difference(spec.target.error, unit)
-    _, name = wording.difference_factor(unit, "mEh")
-    return f"{spec.optimizer.title}: {counted(spec.starts, 'start')}, target {value} {name}"
+    if isinstance(spec.system, LatticeModel):
+        target = f"{wording.significant(100 * spec.target.relative)} % of |E|"
+    else:
+        target = f"{wording.difference(spec.target.error)} mEh"
+    return f"{spec.optimizer.title}: {counted(spec.starts, 'start')}, target {target}"

@@ -13,7 +13,7 @@ import click
 from thalweg.errors import StudyError
 from thalweg.options import Options
 from thalweg.storage.session import Session
-from thalweg.study.spec import SECTIONS, StudySpec, with_setting
+from thalweg.study.spec import SECTIONS, StudySpec, suited, with_setting
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
@@ -137,7 +137,7 @@ def _from_file(path: Path, unit: str, **fields: str) -> tuple[StudySpec, tuple[s
     if isinstance(found, Session):
         return _from_session(found, path.name)
     system, notes = found
-    return StudySpec(system=system), notes
+    return suited(StudySpec(system=system)), notes
 
 
 def _from_session(session: Session, name: str) -> tuple[StudySpec, tuple[str, ...]]:

@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
 from thalweg.registry import Alternatives, key_of
 from thalweg_app.forms import OptionsForm, QuietCombo, describe, form_grid
-from thalweg_app.presenters.setup import SetupEditing
+from thalweg_app.presenters.setup import SetupEditing, node_at
 
 
 class AlternativeBox(QWidget):
@@ -41,7 +41,7 @@ class AlternativeBox(QWidget):
         self._layout.addWidget(head)
 
     def refresh(self) -> None:
-        key = getattr(self._setup.spec, self._section).key
+        key = node_at(self._setup.spec, self._section).key
         self.menu.setCurrentIndex(self.menu.findData(key))
         self._about.setText(self._classes[key].about)
         if key not in self._forms:
@@ -52,3 +52,8 @@ class AlternativeBox(QWidget):
         for other, form in self._forms.items():
             form.setVisible(other == key)
         self._forms[key].show_values(self._setup.shown, self._setup.errors)
+
+    def paths(self) -> set[str]:
+        """Dotted paths of the fields of the form that is shown."""
+        form = self._forms.get(node_at(self._setup.spec, self._section).key)
+        return set() if form is None else {row.path for row in form.rows}

@@ -9,16 +9,17 @@ from PySide6.QtWidgets import QCompleter, QHBoxLayout, QLabel, QLineEdit, QMenu,
 
 from thalweg.registry import key_of
 from thalweg.study.derived import StudyFigures
-from thalweg.systems import SYSTEMS, Molecule
+from thalweg.systems import SYSTEMS, LatticeModel, Molecule
 from thalweg.systems.samples import list_samples
 from thalweg_app.colours import LIGHT, Palette
-from thalweg_app.forms import OptionsForm, describe
+from thalweg_app.forms import OptionsForm, QuietCombo, describe
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.active_space import toggled
 from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Figure
 from thalweg_app.theme import SPACE, icon
 from thalweg_app.views.atoms_table import AtomsTable
+from thalweg_app.views.lattice_section import LatticeSection
 from thalweg_app.views.molecule_picture import MoleculePicture
 from thalweg_app.views.orbital_ladder import OrbitalLadder
 from thalweg_app.widgets.figure_grid import FigureGrid
@@ -61,7 +62,9 @@ class SystemSection(QWidget):
         self._setup = setup
         self._forms: dict[str, OptionsForm] = {}
         self._ladder_rungs: Any = ()
+        self.kind = self._kind_menu()
         self.picture = MoleculePicture()
+        self.lattice = LatticeSection(setup)
         self.atoms = AtomsTable(setup)
         self.atoms_fold = Fold("Atoms")
         self.atoms_fold.set_content(self.atoms)
@@ -78,7 +81,8 @@ class SystemSection(QWidget):
         layout.setContentsMargins(12, SPACE, 12, 12)
         layout.setSpacing(SPACE)
         layout.addLayout(self._buttons())
-        parts: list[list[QWidget]] = [[self.picture, self._problem, self.atoms_fold], [self.ladder_fold, self.figures, self._remarks]]
+        layout.addWidget(self.kind)
+        parts: list[list[QWidget]] = [[self.picture, self.lattice, self._problem, self.atoms_fold], [self.ladder_fold, self.figures, self._remarks]]
         for part in parts[0]:
             layout.addWidget(part)
         layout.addLayout(self._form_place)
@@ -91,6 +95,10 @@ class SystemSection(QWidget):
         is_molecule = isinstance(system, Molecule)
         self.picture.setVisible(is_molecule)
         self.atoms_fold.setVisible(is_molecule)
+        self.lattice.setVisible(isinstance(system, LatticeModel))
+        if isinstance(system, LatticeModel):
+            self.lattice.refresh(system)
+        self.kind.setCurrentIndex(self.kind.findData(key_of(type(system))))
         if isinstance(system, Molecule):
             self.picture.show_atoms(system.atoms, system.unit)
             self.atoms.refresh()
@@ -100,6 +108,7 @@ class SystemSection(QWidget):
             form.setVisible(other == key)
         self._form(key).show_values(self._setup.shown, errors)
         shown_in_form = {row.path for row in self._form(key).rows}
+        shown_in_form |= self.lattice.paths() if isinstance(system, LatticeModel) else set()
         loose = [e for path, e in errors.items() if path.startswith("system") and path not in shown_in_form]
         loose += [e for path, e in errors.items() if path.partition(".")[0] not in ("system", "encoding", "ansatz", "optimizer", "stop", "target")]
         self._problem.setText("\n".join(str(e) for e in loose))
@@ -120,12 +129,21 @@ class SystemSection(QWidget):
 
     def set_palette(self, palette: Palette) -> None:
         self.picture.set_palette(palette)
+        self.lattice.set_palette(palette)
         self.ladder.set_palette(palette)
         self.atoms.set_palette(palette)
         for button, picture in ((self.open_button, "open"), (self.paste_button, "paste"), (self.sample_button, "sample")):
             button.setIcon(icon(picture, palette.ink, 16))
         for fold in (self.atoms_fold, self.ladder_fold, *(f.fold for f in self._forms.values() if f.fold)):
             fold.refresh_icon()
+
+    def _kind_menu(self) -> QuietCombo:
+        menu = QuietCombo()
+        for cls in SYSTEMS:
+            menu.addItem(cls.title, key_of(cls))
+        describe(menu, "Kind of system", " ".join(f"{cls.title}: {cls.about}" for cls in SYSTEMS))
+        menu.activated.connect(lambda i: self._setup.choose("system", menu.itemData(i)))
+        return menu
 
     def _form(self, key: str) -> OptionsForm:
         if key not in self._forms:
@@ -168,7 +186,7 @@ class SystemSection(QWidget):
 
 
 def _short(name: str) -> str:
-    return {"Hartree-Fock": "E(HF)"}.get(name, name)
+    return {"Hartree-Fock": "E(HF)"}.get(name, "E(ref)")
 
 
 def _figures(figures: StudyFigures) -> list[Figure]:
@@ -177,10 +195,16 @@ def _figures(figures: StudyFigures) -> list[Figure]:
     if figures.n_electrons is not None and figures.n_orbitals is not None:
         found.append(Figure("Electrons", wording.count(figures.n_electrons), figures.sector))
         found.append(Figure("Orbitals", wording.count(figures.n_orbitals), "Spatial orbitals that the study works with."))
+    if figures.n_electrons is None:
+        found.append(Figure("Sites", wording.count(figures.qubits_before_tapering), "Sites that carry a spin."))
     if figures.sector_dimension is not None:
         found.append(Figure("Sector", wording.count(figures.sector_dimension), "Number of determinants with these electrons of each spin."))
     found.append(Figure("Memory", wording.bytes_text(figures.memory_bytes), "Largest amount of memory that a run needs, estimated."))
     found.append(
-        Figure(f"{_short(figures.reference_name)} / {unit}", wording.minus(f"{figures.reference_energy:.6f}"), "Energy of the reference state.")
+        Figure(
+            f"{_short(figures.reference_name)} / {unit}",
+            wording.minus(f"{figures.reference_energy:.6f}"),
+            f"Energy of the reference state: {figures.reference_name}.",
+        )
     )
     return found

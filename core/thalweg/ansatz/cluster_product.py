@@ -29,6 +29,7 @@ class ClusterProduct(Options):
     """Base of the coupled cluster products; each adds `key`, its list of `excitations` and their `order`."""
 
     #: How the listed order is described: the groups as the list has them.
+    electrons_only: ClassVar[bool] = True
     groups: ClassVar[str] = ""
 
     order: str

@@ -18,6 +18,7 @@ from thalweg.options import Options, option
 class NumberConserving(Options):
     """Settings of the fabric of gates that keep N, S_z and S^2 (Anselmetti, Wierichs, Gogolin and Parrish 2021)."""
 
+    electrons_only: ClassVar[bool] = True
     title: ClassVar[str] = "Number-conserving layers"
     about: ClassVar[str] = "Short local gates that keep electron number and total spin; distant orbitals need many layers (Anselmetti et al. 2021)."
     depth_field: ClassVar[str] = "depth"

@@ -10,7 +10,19 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, ValidationError, field_validator
 
-from thalweg.ansatz import ANSATZE, PUCCD, UCCD, UCCGSD, UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import (
+    ANSATZE,
+    PUCCD,
+    UCCD,
+    UCCGSD,
+    UCCSD,
+    Adaptive,
+    AlternatingOperators,
+    ExchangeLayers,
+    HardwareEfficient,
+    KUpCCGSD,
+    NumberConserving,
+)
 from thalweg.encoding import ENCODINGS, BravyiKitaev, JordanWigner, ParityEncoding
 from thalweg.errors import StudyError
 from thalweg.evaluate import EVALUATIONS, Exact, ExactWithError, Shots
@@ -37,14 +49,17 @@ from thalweg.optimize import (
 from thalweg.optimize.objective import StopRules
 from thalweg.options import Options, option
 from thalweg.registry import Alternatives
-from thalweg.systems import SYSTEMS, Integrals, LatticeModel, Molecule
+from thalweg.systems import SYSTEMS, Integrals, LatticeModel, Molecule, has_electrons
 from thalweg.systems.lattice import LATTICES
 from thalweg.systems.lattice_model import MODELS
 from thalweg.units import CHEMICAL_ACCURACY
 
 AnySystem = Annotated[Molecule | Integrals | LatticeModel, Field(discriminator="key")]
 AnyEncoding = Annotated[JordanWigner | ParityEncoding | BravyiKitaev, Field(discriminator="key")]
-AnyAnsatz = Annotated[UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | Adaptive | NumberConserving | HardwareEfficient, Field(discriminator="key")]
+AnyAnsatz = Annotated[
+    UCCSD | UCCD | UCCGSD | PUCCD | KUpCCGSD | Adaptive | NumberConserving | HardwareEfficient | AlternatingOperators | ExchangeLayers,
+    Field(discriminator="key"),
+]
 AnyOptimizer = Annotated[
     LBFGSB
     | SLSQP
@@ -152,6 +167,17 @@ SECTIONS: dict[str, Alternatives[Any]] = {
 }
 #: Every field of the spec, at any depth, that holds one of several alternatives.
 UNIONS: dict[str, Alternatives[Any]] = SECTIONS | {"lattice": LATTICES, "model": MODELS}
+
+
+#: Trial state of a spin model until another is chosen.
+SPIN_ANSATZ = HardwareEfficient
+
+
+def suited(spec: StudySpec) -> StudySpec:
+    """The same study, with the usual trial state of spins where its own needs electrons and the system has none."""
+    if has_electrons(spec.system) or not getattr(spec.ansatz, "electrons_only", False):
+        return spec
+    return spec.model_copy(update={"ansatz": SPIN_ANSATZ()})
 
 
 def with_setting(spec: StudySpec, path: str, value: Any) -> StudySpec:
