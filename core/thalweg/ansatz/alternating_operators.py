@@ -56,7 +56,7 @@ class AlternatingOperators(Options):
 
     title: ClassVar[str] = "Alternating operators"
     about: ClassVar[str] = (
-        "Few parameters, and it keeps the lattice's symmetries; needs enough layers for correlations to spread (Farhi et al. 2014; Wecker et al. 2015)."
+        "Few parameters, and the symmetries are kept; needs enough layers for correlations to spread (Farhi et al. 2014; Wecker et al. 2015)."
     )
     depth_field: ClassVar[str] = "depth"
 

@@ -184,7 +184,7 @@ def _label(cells: list[_Cell]) -> str:
         return f"{sum(cell.x.size for cell in cells)} exchange terms on {count} sets of qubits" if count > 1 else f"{cells[0].x.size} exchange terms"
     if kind in ("X", "Y", "Z", "mixed") and any(int(cell.x[0] | cell.z[0]).bit_count() > 1 for cell in cells):
         types = sorted({string_type(int(cell.x[0]), int(cell.z[0])) for cell in cells}, key=lambda text: (-len(text), text))
-        return f"{count} terms {' and '.join(types[:3])}{' ...' if len(types) > 3 else ''}"
+        return f"{count} {' and '.join(types[:3])}{' ...' if len(types) > 3 else ''} {'term' if count == 1 else 'terms'}"
     weight = int(cells[0].x[0] | cells[0].z[0]).bit_count()
     what = {1: "site", 2: "bond"}.get(weight, f"set of {weight} sites")
     plural = what.replace("set", "sets") if weight > 2 else f"{what}s"
