@@ -194,6 +194,7 @@ def add_rows(grid: QGridLayout, rows: list[FieldRow]) -> None:
             grid.addWidget(row.editor, at, 1, 1, 2)
         else:
             row.editor.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
+            row.label.setFixedWidth(LABEL_WIDTH)  # long titles wrap, so that all forms stay aligned
             grid.addWidget(row.label, at, 0)
             unit = unit_name(row.facts.unit)
             grid.addWidget(row.editor, at, 1, 1, 1 if unit else 2)

@@ -32,20 +32,21 @@ def open_window(argv: list[str]) -> int:
         faulthandler.enable(crash_log)
         application = make_application()
         pool = WorkerPool()
-        window = make_window(application, pool)
         old_hook = sys.excepthook
-        sys.excepthook = defect_hook(window)
-        signal.signal(signal.SIGINT, lambda *_: window.close())
-        heartbeat = QTimer(interval=500)  # lets Python see Ctrl-C while Qt waits
-        heartbeat.timeout.connect(lambda: None)
-        heartbeat.start()
-        window.show()
-        QTimer.singleShot(0, lambda: begin(window, argv))
-        status = application.exec()
-        pool.shut_down()
-        sys.excepthook = old_hook
-        faulthandler.disable()
-    return status
+        try:
+            window = make_window(application, pool)
+            sys.excepthook = defect_hook(window)
+            signal.signal(signal.SIGINT, lambda *_: window.close())
+            heartbeat = QTimer(interval=500)  # lets Python see Ctrl-C while Qt waits
+            heartbeat.timeout.connect(lambda: None)
+            heartbeat.start()
+            window.show()
+            QTimer.singleShot(0, lambda: begin(window, argv))
+            return application.exec()
+        finally:
+            pool.shut_down()
+            sys.excepthook = old_hook
+            faulthandler.disable()
 
 
 def make_application() -> QApplication:

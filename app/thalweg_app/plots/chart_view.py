@@ -74,6 +74,11 @@ class ChartView(QWidget):
             if fresh or self._follows:
                 self.fit()
 
+    def prepare(self, chart: Chart) -> None:
+        """Builds the axes of such a chart while nothing else is to be done, so that the first picture comes at once."""
+        if not self._panels:
+            self._build_panels(chart)
+
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
         self.graphics.setBackground(palette.paper)
@@ -116,19 +121,23 @@ class ChartView(QWidget):
             for view, panel in zip(self._panels, panels, strict=True):
                 view.show(panel, self._palette)
         else:
-            self._build_panels()
+            self._build_panels(self._chart)
         if self._titled != (self._chart.x_title, self._palette):
             self._titled = (self._chart.x_title, self._palette)
             self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
 
-    def _build_panels(self) -> None:
+    def _build_panels(self, chart: Chart) -> None:
+        layout = self.graphics.ci.layout
         self.graphics.clear()
+        for row in range(len(self._panels)):  # a row keeps its height when it has become empty
+            layout.setRowStretchFactor(row, 0)
+            layout.setRowPreferredHeight(row, 0)
         self._titled = None
-        self._panels = [PanelView(panel, self._palette, self.font()) for panel in self._chart.panels]
-        for row, (view, panel) in enumerate(zip(self._panels, self._chart.panels, strict=True)):
+        self._panels = [PanelView(panel, self._palette, self.font()) for panel in chart.panels]
+        for row, (view, panel) in enumerate(zip(self._panels, chart.panels, strict=True)):
             self.graphics.addItem(view.item, row=row, col=0)
-            self.graphics.ci.layout.setRowStretchFactor(row, round(100 * panel.share))
-            self.graphics.ci.layout.setRowPreferredHeight(row, 1000 * panel.share)
+            layout.setRowStretchFactor(row, round(100 * panel.share))
+            layout.setRowPreferredHeight(row, 1000 * panel.share)
             view.item.getViewBox().sigRangeChangedManually.connect(self._on_manual_range)
             if row:
                 view.item.setXLink(self._panels[0].item)

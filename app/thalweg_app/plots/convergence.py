@@ -8,8 +8,12 @@ from PySide6.QtWidgets import QLabel
 
 from thalweg_app.forms import QuietCombo, describe
 from thalweg_app.plots.picture import Picture
-from thalweg_app.presenters.traces import X_TITLES
+from thalweg_app.presenters.chart import Chart, Panel
+from thalweg_app.presenters.traces import ENERGY_SHARE, X_TITLES
 from thalweg_app.presenters.workbench import Workbench
+
+#: Has the panels of every convergence chart.
+BLANK = Chart("Convergence", panels=(Panel("Energy", share=ENERGY_SHARE), Panel("Error", log=True)))
 
 
 class ConvergencePicture(Picture):
@@ -28,6 +32,9 @@ class ConvergencePicture(Picture):
         self.controls.addWidget(label)
         self.controls.addWidget(self.axis)
         self.body.addWidget(self.view, 1)
+
+    def prepare(self) -> None:
+        self.view.prepare(BLANK)
 
     def refresh(self) -> None:
         self.view.show_chart(self.workbench.convergence(self.axis.currentData()))

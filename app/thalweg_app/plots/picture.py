@@ -61,6 +61,9 @@ class Picture(QWidget):
         """Draws the present state."""
         raise NotImplementedError(type(self).__name__)
 
+    def prepare(self) -> None:
+        """Builds ahead what the first drawing would take long for; called when nothing else is to be done."""
+
     def refresh_whole(self) -> None:
         """Draws the present state and shows all of it."""
         self.refresh()

@@ -6,10 +6,11 @@ from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
 from thalweg.ansatz import ANSATZE
 from thalweg.encoding import ENCODINGS
+from thalweg.evaluate import EVALUATIONS
 from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import StopRules
 from thalweg.study.derived import StudyFigures
-from thalweg.study.spec import StudySpec, Target
+from thalweg.study.spec import DepthLadder, StudySpec, Target
 from thalweg_app.forms import OptionsForm
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.setup import SetupEditing
@@ -29,6 +30,17 @@ class SectionBody(QWidget):
         self.column = QVBoxLayout(self)
         self.column.setContentsMargins(12, SPACE, 12, 12)
         self.column.setSpacing(SPACE)
+        self.problem = QLabel(wordWrap=True)
+        self.problem.setProperty("role", "error")
+        self.problem.hide()
+        self.column.addWidget(self.problem)
+
+    def show_problem(self, *sections: str) -> None:
+        """Errors of a section as a whole, such as a trial state that does not fit the system."""
+        names = {*sections, *(f"{section}.key" for section in sections)}
+        found = [str(error) for path, error in self.setup.errors.items() if path in names]
+        self.problem.setText("\n".join(found))
+        self.problem.setVisible(bool(found))
 
     def folds(self) -> list[Fold]:
         return list(self.findChildren(Fold))
@@ -46,6 +58,7 @@ class EncodingSection(SectionBody):
 
     def refresh(self) -> None:
         self.choice.refresh()
+        self.show_problem("encoding")
 
     def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
         self.figures.show_figures([] if figures is None else _encoding_figures(figures), is_fresh)
@@ -64,11 +77,17 @@ class TrialSection(SectionBody):
         self.figures = FigureGrid()
         self._order = QLabel(wordWrap=True)
         self._order.setProperty("role", "muted")
-        for part in (self.choice, self.figures, self._order):
+        self.forms = [OptionsForm(StudySpec, only=("reference", "continuation")), OptionsForm(DepthLadder, "ladder")]
+        for form in self.forms:
+            form.edited.connect(setup.edit)
+        for part in (self.choice, *self.forms, self.figures, self._order):
             self.column.addWidget(part)
 
     def refresh(self) -> None:
         self.choice.refresh()
+        self.show_problem("ansatz", "ladder")
+        for form in self.forms:
+            form.show_values(self.setup.shown, self.setup.errors)
 
     def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
         self.figures.show_figures([] if figures is None else _trial_figures(figures), is_fresh)
@@ -80,21 +99,24 @@ class SearchSection(SectionBody):
     def __init__(self, setup: SetupEditing) -> None:
         super().__init__(setup)
         self.choice = AlternativeBox(setup, "optimizer", "Optimiser", OPTIMIZERS)
+        self.evaluation = AlternativeBox(setup, "evaluation", "Energy by", EVALUATIONS)
         self.forms = [
             OptionsForm(StudySpec, only=("starts", "seed")),
             OptionsForm(Target, "target"),
-            OptionsForm(StudySpec, only=("exact", "exact_spin", "classical", "memory_gib")),
+            OptionsForm(StudySpec, skip=("starts", "seed", "reference", "continuation")),
         ]
         self.rules = OptionsForm(StopRules, "stop")
         self.rules_fold = Fold("Stop rules")
         self.rules_fold.set_content(self.rules)
         for form in (*self.forms, self.rules):
             form.edited.connect(setup.edit)
-        for part in (self.choice, *self.forms, self.rules_fold):
+        for part in (self.choice, self.evaluation, *self.forms, self.rules_fold):
             self.column.addWidget(part)
 
     def refresh(self) -> None:
         self.choice.refresh()
+        self.evaluation.refresh()
+        self.show_problem("optimizer", "evaluation", "starts")
         errors = self.setup.errors
         for form in (*self.forms, self.rules):
             form.show_values(self.setup.shown, errors)

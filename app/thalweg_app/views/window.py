@@ -29,6 +29,8 @@ REDRAW_MS = 50
 #: Rest after an edit before the figures are asked for; quick edits in a row ask once.
 REST_MS = 90
 AUTOSAVE_MS = 20_000
+#: After the start, when the window stands and nobody waits for it.
+PREPARE_MS = 700
 
 
 class Window(QMainWindow):
@@ -148,6 +150,7 @@ class Window(QMainWindow):
         self._autosave = QTimer(self, interval=AUTOSAVE_MS)
         self._autosave.timeout.connect(self._keep)
         self._autosave.start()
+        QTimer.singleShot(PREPARE_MS, self, self._prepare)
 
     def _connect(self) -> None:
         bench = self.workbench
@@ -178,6 +181,10 @@ class Window(QMainWindow):
     def _redraw_live(self) -> None:
         self.picture.refresh_live()
         self.status.refresh()
+
+    def _prepare(self) -> None:
+        for picture in self.pictures:
+            picture.prepare()
 
     def _keep(self) -> None:
         self._recovery.keep(self.workbench.document)
