@@ -6,10 +6,8 @@ parameters that give the state of one layer less, so that a depth ladder can cli
 
 from thalweg.ansatz.adaptive import Adaptive
 from thalweg.ansatz.alternating_operators import AlternatingOperators
-from thalweg.ansatz.alternating_operators import AlternatingOperators
 from thalweg.ansatz.coupled_cluster import UCCSD
 from thalweg.ansatz.doubles_coupled_cluster import UCCD
-from thalweg.ansatz.exchange_layers import ExchangeLayers
 from thalweg.ansatz.exchange_layers import ExchangeLayers
 from thalweg.ansatz.generalised_coupled_cluster import UCCGSD
 from thalweg.ansatz.ground import Ground
