@@ -16,9 +16,11 @@ from thalweg.evaluate import Shots
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
+from thalweg.study.lattice_facts import best_string, exact_s_z, facts_with_energies
 from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import LeadingWeight, StudyResult
+from thalweg.study.site_figures import site_figures
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import constants_record
 
@@ -82,7 +84,10 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
         parameter_labels=program.labels(),
         operator_order=program.order,
         pauli_terms=heaviest_terms(encoded.working),
-        system_facts=prepared.facts,
+        sites=site_figures(problem, np.asarray(engine.state(parameters))[None]),
+        exact_sites=None if exact is None else site_figures(problem, exact.vectors),
+        system_facts=facts_with_energies(problem, energy, exact),
+        best_string=best_string(problem, engine, parameters),
         seed=problem.spec.seed,
         versions=versions(),
         constants=constants_record(),
@@ -143,7 +148,7 @@ def _evidence(exact: ExactAnswer | None, end: SearchEnd, energy: float, norm: fl
         n_electrons=facts.n_electrons,
         expected_electrons=sector.n_electrons if sector else None,
         s_z=facts.s_z,
-        expected_s_z=sector.s_z if sector else None,
+        expected_s_z=sector.s_z if sector else exact_s_z(problem, exact),
         s_squared=facts.s_squared,
         exact_s_squared=None if exact is None else exact.s_squared,
         standard_error=end.standard_error,

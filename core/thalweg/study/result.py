@@ -79,6 +79,32 @@ class LeadingWeight(Record):
     exact_weight: float | None
 
 
+class BestString(Record):
+    """For a diagonal cost: the best of the bit strings that measurements of the trial state would show."""
+
+    bits: str  # site 0 first
+    energy: float
+    weight: float  # probability to measure it
+    words: str = ""  # what it means, such as the two parts of a cut
+
+
+class SiteFigures(Record):
+    """A state on its lattice; empty where a figure has no meaning. Spins in units of hbar; sites in order.
+
+    Attributes:
+        magnetisation: <S^z_i>.
+        z_correlations, spin_correlations: <S^z_i S^z_j> and <S_i.S_j>, one row a site.
+        structure_factor: (k_x, k_y, S(k)), momenta in units of 1 / nearest distance.
+        double_occupancy: <n_i,up n_i,down> of electrons.
+    """
+
+    magnetisation: tuple[float, ...] = ()
+    z_correlations: tuple[tuple[float, ...], ...] = ()
+    spin_correlations: tuple[tuple[float, ...], ...] = ()
+    structure_factor: tuple[tuple[float, float, float], ...] = ()
+    double_occupancy: tuple[float, ...] = ()
+
+
 class GrowthStep(Record):
     """One step of adaptive growth or of a depth ladder, after its minimisation. The first is the reference or the shallowest circuit."""
 
@@ -148,7 +174,10 @@ class StudyResult(Record):
     exact_s_squared: float | None = None
     exact_method: str = ""
     leading: tuple[LeadingWeight, ...] = ()
+    best_string: BestString | None = None
     natural_occupations: tuple[float, ...] = ()
+    sites: SiteFigures | None = None
+    exact_sites: SiteFigures | None = None  # averaged over the ground space
 
     final_parameters: tuple[float, ...] = ()
     start_parameters: tuple[float, ...] = ()

@@ -39,12 +39,9 @@ class Hubbard(Options):
         """H in the orbitals chosen. Raises StudyError when lattice, filling and S_z do not fit."""
         sector = self.sector(graph)
         hopping = hopping_matrix(graph, self.t)
-        if self.orbitals == "site":
-            reference = site_determinant(graph, sector)
-            energies, orbitals = np.empty(0), np.eye(graph.n_sites)
-        else:
-            reference = (2**sector.n_alpha - 1, 2**sector.n_beta - 1)
-            energies, orbitals = hopping_orbitals(hopping)
+        energies, orbitals = self._levels(graph)
+        filled = (2**sector.n_alpha - 1, 2**sector.n_beta - 1)
+        reference = site_determinant(graph, sector) if self.orbitals == "site" else filled
         one_body = orbitals.T @ hopping @ orbitals - self.mu * np.eye(graph.n_sites)
         one_body = 0.5 * (one_body + one_body.T)
         one_body[np.abs(one_body) < 1e-14 * max(1.0, abs(self.t))] = 0.0
@@ -57,6 +54,16 @@ class Hubbard(Options):
             reference=reference,
             orbital_energies=energies - self.mu if energies.size else energies,
         )
+
+    def orbital_coefficients(self, graph: LatticeGraph) -> FloatArray:
+        """The orbitals of the Hamiltonian in columns over sites, shape (n, n)."""
+        return self._levels(graph)[1]
+
+    def _levels(self, graph: LatticeGraph) -> tuple[FloatArray, FloatArray]:
+        """Hopping energies (none for sites) and the orbitals."""
+        if self.orbitals == "site":
+            return np.empty(0), np.eye(graph.n_sites)
+        return hopping_orbitals(hopping_matrix(graph, self.t))
 
     def sector(self, graph: LatticeGraph) -> Sector:
         n = graph.n_sites
