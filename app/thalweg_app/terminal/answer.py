@@ -19,7 +19,7 @@ LENGTH_ENDINGS = {"_angstrom": "angstrom", "_bohr": "bohr"}
 
 def answer_lines(result: StudyResult) -> list[str]:
     """The answer of one run."""
-    rows = [*_energy_rows(result), *_state_rows(result), *_cost_rows(result), *_search_rows(result)]
+    rows = [*_energy_rows(result), *_lattice_rows(result), *_state_rows(result), *_cost_rows(result), *_search_rows(result)]
     remarks = [f"Remark: {remark}" for remark in result.remarks]
     return [_ended(result.verdict), "", *aligned(rows), *([""] if remarks else []), *remarks]
 
@@ -66,9 +66,10 @@ def _energy(value: float, unit: str) -> str:
 def _energy_rows(result: StudyResult) -> Rows:
     unit = unit_name(result.energy_unit)
     spec = result.spec
+    used = (spec.ansatz, spec.optimizer, *([spec.encoding] if result.n_electrons is not None else []))  # spins are qubits already
     rows = [
         ("System", result.label),
-        ("Energy", f"{_energy(result.energy, unit)}  ({spec.ansatz.title}, {spec.optimizer.title}, {spec.encoding.title})"),
+        ("Energy", f"{_energy(result.energy, unit)}  ({', '.join(section.title for section in used)})"),
     ]
     if result.measured_energy is not None and result.standard_error is not None:
         measured = f"{_energy(result.measured_energy, unit)} +- {significant(2 * result.standard_error)}"
@@ -85,6 +86,25 @@ def _energy_rows(result: StudyResult) -> Rows:
     if result.error is not None:
         target = difference_text(result.target_error, result.energy_unit)
         rows.append(("Error", f"{difference_text(result.error, result.energy_unit)}  (target {target})"))
+    return rows
+
+
+def _lattice_rows(result: StudyResult) -> Rows:
+    """What belongs to an energy on a lattice: its value per site, the convention, the gap, and the answer of a diagonal cost."""
+    facts, unit = result.system_facts, unit_name(result.energy_unit)
+    rows: Rows = []
+    if "energy per site" in facts:
+        exact = f"  (exact {facts['exact energy per site']:.8f})" if "exact energy per site" in facts else ""
+        rows.append(("Per site", f"{_energy(facts['energy per site'], unit)}{exact}"))
+        rows.append(("Convention", facts.get("convention", "")))
+        if result.exact_gap is not None:
+            rows.append(("Exact gap", f"{significant(result.exact_gap)} {unit}"))
+    if result.best_string is not None:
+        best = result.best_string
+        is_lowest = result.exact_energy is not None and best.energy <= result.exact_energy + 1e-9 * max(1.0, abs(result.exact_energy))
+        lowest = ", the lowest energy there is" if is_lowest else ""
+        rows.append(("Best bit string", f"{best.bits}: {_energy(best.energy, unit)}, probability {significant(best.weight)}{lowest}"))
+        rows.append(("Its meaning", best.words))
     return rows
 
 

@@ -20,8 +20,10 @@ from thalweg.encoding.linear import (
 from thalweg.encoding.occupations import alpha_beta_masks, determinant_masks, interleave, occupation_text, orbital_list, order_signs
 from thalweg.encoding.settings import EncodingSettings
 from thalweg.encoding.symmetry import Symmetry, Tapering, commuting_z_masks, independent, lightest, sector_value, taper_by
+from thalweg.operators.conserved import conserves_total_spin_along
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.pauli import PauliExpansion
+from thalweg.operators.total_spin import total_s_squared, total_s_z
 
 DEGENERATE_NOTE = (
     "Some orbitals are degenerate: numbers of Pauli terms, measurement groups and symmetries depend on how the degenerate pair is oriented."
@@ -39,7 +41,8 @@ class EncodedSystem:
         symmetries: those removed, empty without tapering.
         tapering: how bits and strings of `full` are written on `working`.
         reference_bits: the reference as a basis state of the working register.
-        number, s_z, s_squared: observables on the working register (hbar = 1); None where they have no meaning or leave the sector.
+        number, s_z, s_squared: observables on the working register (hbar = 1); None where they have no meaning or leave the sector,
+            for spins also where the Hamiltonian does not conserve them, or is diagonal.
         degenerate_note: a sentence where counts depend on the orientation of degenerate orbitals, else "".
         remarks: other sentences to stand beside the figures.
         linear: the encoding as masks; None for spin systems, whose qubits are the sites.
@@ -175,12 +178,16 @@ def encode_spins(expansion: PauliExpansion, settings: EncodingSettings, referenc
         symmetries = _named([(m, "parity of sites " + _counted(m)) for m in masks], tapering, reference_bits)
     working = tapering.expansion(expansion)
     assert working is not None
+    along_z = not diagonal and conserves_total_spin_along(expansion, "z")  # the bits of a cost are no spins
+    every_axis = along_z and conserves_total_spin_along(expansion, "x")
     return EncodedSystem(
         expansion,
         working,
         symmetries,
         tapering,
         int(tapering.strip(np.array([reference_bits], np.uint64))[0]),
+        s_z=tapering.expansion(total_s_z(expansion.n_qubits)) if along_z else None,
+        s_squared=tapering.expansion(total_s_squared(expansion.n_qubits)) if every_axis else None,
         remarks=(DIAGONAL_NOTE,) if wanted and diagonal else (),
     )
 

@@ -110,7 +110,7 @@ class Course:
     def parameters_of(self, ansatz: Any, program: Any) -> FloatArray:
         """The start of this trial state (each takes the kind of program that it builds), displaced for later starts."""
         start: FloatArray = ansatz.start_parameters(self.problem.ground, program, self.rng)
-        if self.index and ansatz.start in ("zero", "mp2"):
+        if self.index and ansatz.start in ("zero", "mp2", "ramp"):
             start = self.displaced(start)
         return start
 

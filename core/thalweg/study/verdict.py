@@ -9,6 +9,8 @@ from thalweg.study.result import CONVERGED, STOP_REASONS
 #: Deviations of N and S_z above this mean another sector; of S^2 another spin.
 NUMBER_TOLERANCE = 1e-3
 SPIN_TOLERANCE = 0.05
+#: The same for spins on sites, of which no sector was asked for: the state is nearer to another one.
+SITE_TOLERANCE = 0.5
 
 
 @dataclass(frozen=True)
@@ -72,13 +74,15 @@ def amount(value: float, unit: str) -> str:
 def _wrong_symmetry(e: Evidence) -> str:
     assert e.error is not None
     found = []
+    by_number, by_spin = (SITE_TOLERANCE, SITE_TOLERANCE) if e.expected_electrons is None else (NUMBER_TOLERANCE, SPIN_TOLERANCE)
     if e.n_electrons is not None and e.expected_electrons is not None and abs(e.n_electrons - e.expected_electrons) > NUMBER_TOLERANCE:
         found.append(f"particle number {e.n_electrons:.3f} instead of {e.expected_electrons:g}")
-    if e.s_z is not None and e.expected_s_z is not None and abs(e.s_z - e.expected_s_z) > NUMBER_TOLERANCE:
+    if e.s_z is not None and e.expected_s_z is not None and abs(e.s_z - e.expected_s_z) > by_number:
         found.append(f"S_z {e.s_z:.3f} instead of {e.expected_s_z:g}")
-    if e.s_squared is not None and e.exact_s_squared is not None and abs(e.s_squared - e.exact_s_squared) > SPIN_TOLERANCE:
+    if e.s_squared is not None and e.exact_s_squared is not None and abs(e.s_squared - e.exact_s_squared) > by_spin:
         found.append(f"S^2 {e.s_squared:.3f} instead of {e.exact_s_squared:.3f}")
-    where = f"{amount(abs(e.error), e.unit)} {'above' if e.error >= 0 else 'below'} the exact energy of the sector asked for"
+    sector = "" if e.expected_electrons is None else " of the sector asked for"
+    where = f"{amount(abs(e.error), e.unit)} {'above' if e.error >= 0 else 'below'} the exact energy{sector}"
     if found:
         return f"Wrong symmetry: {' and '.join(found)}; {where}"
     if e.error < -max(1e-7, 1e-3 * e.target):
