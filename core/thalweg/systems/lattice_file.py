@@ -102,4 +102,4 @@ def _quoted(text: str) -> str:
     plain = all(sign == "\n" or sign.isprintable() for sign in text) and '"""' not in text and "\\" not in text and not text.endswith('"')
     if "\n" in text and plain:
         return f'"""\n{text}"""'
-    return json.dumps(text, ensure_ascii=True).replace("\x7f", "\\u007f")
+    return json.dumps(text, ensure_ascii=False).replace("\x7f", "\\u007f")

@@ -46,10 +46,10 @@ class SpinTerms:
         """The sum, equal strings added up; StudyError when nothing is left."""
         x, z = np.array(self._x, dtype=np.uint64), np.array(self._z, dtype=np.uint64)
         c = np.array(self._c, dtype=float)
+        if not np.isfinite(c).all():
+            raise StudyError("The Hamiltonian is not finite", "couplings are too large for a floating-point number", "Use smaller couplings", "model")
         rounding = 1e-15 * float(np.abs(c).max(initial=0.0))  # what sums that cancel leave behind
         summed = collect_terms(self.n_sites, x, z, c, rounding)
         if not len(summed):
             raise StudyError("The Hamiltonian is zero", "every coupling and field vanishes or there is no bond", "Set a coupling or a field", "model")
-        if not np.isfinite(summed.coefficients).all():
-            raise StudyError("The Hamiltonian is not finite", "couplings are too large for a floating-point number", "Use smaller couplings", "model")
         return summed
