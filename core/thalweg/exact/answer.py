@@ -12,9 +12,10 @@ class ExactAnswer:
 
     Attributes:
         energy: the level, in the Hamiltonian's unit (core energy included).
-        degeneracy: multiplicity of the level inside the sector.
+        degeneracy: multiplicity of the level inside the sector; for spin models over all sectors unless one S_z was asked for.
         gap: distance to the next level of the sector; None where the sector has no other level.
-        vectors: orthonormal ground space, first axis = degeneracy; then the engine's state shape.
+        vectors: orthonormal ground space, first axis = degeneracy; then the engine's state shape. None where they
+            would not fit the memory budget (`method` says so).
         s_squared: <S^2> of the (first) ground state; None for systems without spin meaning.
         method: how it was found, one line.
         residual: |H v - E v|, the largest over the ground space.

@@ -14,7 +14,7 @@ from typing import Any
 
 import numpy as np
 
-from thalweg.kernels import spin as kernels
+from thalweg.kernels import lanczos as kernels
 from thalweg.watch import SILENT, Watch
 
 #: Writes H v into `out`; looks at the watch where that takes long.

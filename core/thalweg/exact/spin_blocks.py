@@ -11,6 +11,7 @@ from thalweg.errors import StudyError
 from thalweg.exact.spin_basis import STEP, SortedStrings, SpinBasis, in_steps
 from thalweg.exact.spin_symmetry import Character, SymmetryGroup, byte_tables
 from thalweg.kernels import spin as kernels
+from thalweg.kernels import spin_orbits as orbits
 from thalweg.operators.pauli import PauliExpansion, collect_terms
 from thalweg.operators.product import ExpansionProduct
 from thalweg.watch import Watch
@@ -130,18 +131,18 @@ def orbit_tables(basis: SpinBasis, strings: SortedStrings, group: SymmetryGroup,
         watch.check()
         last = min(size, first + STEP)
         fixed = (basis.states, tables, group.inverts, ones, *place, orbit_of, element_of, representatives, stabilisers)
-        count = kernels.mark_orbits(first, last, count, *fixed)
+        count = orbits.mark_orbits(first, last, count, *fixed)
     representatives, stabilisers = representatives[:count].copy(), stabilisers[:count].copy()
     diagonal, counts = np.empty(count), np.empty(count, dtype=np.int64)
     flip = (strings.x, strings.pointer, strings.z, strings.values, strings.threshold)
     in_steps(count, watch, lambda a, b: kernels.diagonal_values(diagonal, a, b, representatives, strings.diagonal_z, strings.diagonal_values))
-    in_steps(count, watch, lambda a, b: kernels.count_links(a, b, representatives, *flip, counts), STEP // 8)
+    in_steps(count, watch, lambda a, b: orbits.count_links(a, b, representatives, *flip, counts), STEP // 8)
     starts = np.concatenate([[0], np.cumsum(counts)])
     links, item = int(starts[-1]), strings.values.dtype.itemsize
     refuse_beyond(links * (5 + 2 * item + 4) + size * 8, budget_bytes, size)
     link_orbit, link_element, link_value = np.empty(links, np.int32), np.empty(links, np.uint8), np.empty(links, strings.values.dtype)
     where = (*place, orbit_of, element_of, starts, link_orbit, link_element, link_value)
-    in_steps(count, watch, lambda a, b: kernels.fill_links(a, b, representatives, *flip, *where), STEP // 8)
+    in_steps(count, watch, lambda a, b: orbits.fill_links(a, b, representatives, *flip, *where), STEP // 8)
     return OrbitTables(basis, group, orbit_of, element_of, representatives, stabilisers, diagonal, starts, link_orbit, link_element, link_value)
 
 
@@ -165,22 +166,22 @@ class OrbitBlock:
     def _stored_rows(self, kept: Any) -> tuple[Any, Any, Any]:
         t = self._tables
         counts = np.empty(self.dimension, dtype=np.int64)
-        in_steps(self.dimension, self._watch, lambda a, b: kernels.block_counts(a, b, kept, t.starts, t.link_orbit, self._number, counts))
+        in_steps(self.dimension, self._watch, lambda a, b: orbits.block_counts(a, b, kept, t.starts, t.link_orbit, self._number, counts))
         row_start = np.concatenate([[0], np.cumsum(counts)])
         columns, values = np.empty(row_start[-1], np.uint32), np.empty(row_start[-1], self.dtype)
         fixed = (kept, t.starts, t.link_orbit, t.link_element, t.link_value, self._number, self._root, self._character, row_start, columns, values)
-        in_steps(self.dimension, self._watch, lambda a, b: kernels.block_fill(a, b, *fixed), STEP // 4)
+        in_steps(self.dimension, self._watch, lambda a, b: orbits.block_fill(a, b, *fixed), STEP // 4)
         return row_start, columns, values
 
     def apply(self, vector: Any, out: Any) -> None:
-        in_steps(self.dimension, self._watch, lambda a, b: kernels.apply_rows(vector, out, a, b, self._diagonal, *self._rows), STEP // 8)
+        in_steps(self.dimension, self._watch, lambda a, b: orbits.apply_rows(vector, out, a, b, self._diagonal, *self._rows), STEP // 8)
 
     def expand(self, vector: Any) -> Any:
         t = self._tables
         out = np.zeros(t.basis.dimension, dtype=self.dtype)
         weight = self._root / np.sqrt(t.group.order)
         fixed = (t.orbit_of, t.element_of, self._number, weight, self._character)
-        in_steps(out.size, self._watch, lambda a, b: kernels.spread_orbits(vector, out, a, b, *fixed))
+        in_steps(out.size, self._watch, lambda a, b: orbits.spread_orbits(vector, out, a, b, *fixed))
         return out
 
 
