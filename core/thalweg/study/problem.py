@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import threading
 import time
 from collections import OrderedDict
 from collections.abc import Callable, Hashable
@@ -57,14 +58,20 @@ class Recent:
     def __init__(self, size: int) -> None:
         self._size = size
         self._kept: OrderedDict[Hashable, Any] = OrderedDict()
+        self._lock = threading.Lock()  # tasks may run on an executor of threads
 
     def get(self, key: Hashable, make: Callable[[], Any]) -> Any:
-        if key not in self._kept:
-            self._kept[key] = make()
+        with self._lock:
+            if key in self._kept:
+                self._kept.move_to_end(key)
+                return self._kept[key]
+        made = make()
+        with self._lock:
+            self._kept[key] = made
+            self._kept.move_to_end(key)
             while len(self._kept) > self._size:
                 self._kept.popitem(last=False)
-        self._kept.move_to_end(key)
-        return self._kept[key]
+        return made
 
 
 _systems, _references, _encodings, _answers = Recent(4), Recent(4), Recent(4), Recent(4)
