@@ -23,6 +23,9 @@ MAX_ROWS = 6
 #: Bytes that stored rows may take (they must stay in the second-level cache), and that a stored matrix may take.
 ROW_BYTES = 2**20
 MATRIX_BYTES = 2**26
+#: The largest register whose matrix may be stored, and how many of its possible elements may be looked at to find out.
+MATRIX_QUBITS = 18
+MATRIX_ELEMENTS = 2**26
 #: The matrix is stored only where at most this share of its possible elements differs from 0.
 SPARSE_SHARE = 0.3
 #: Amplitudes times x masks between two looks at the watch: about 5 ms.
@@ -77,6 +80,8 @@ class ExpansionProduct:
     def _unit(self, vector: Any) -> int:
         if vector.dtype == np.complex128:
             return 1
+        if vector.dtype != np.float64:
+            raise TypeError(f"vectors are float64 or complex128, not {vector.dtype}")
         if not self.is_real:
             raise TypeError("a real vector needs an operator whose strings all have an even number of Y")
         return 0
@@ -93,7 +98,7 @@ class ExpansionProduct:
     def _stored_matrix(self, matrix_bytes: int) -> tuple[Any, ...] | None:
         """(row starts, columns, values) where the matrix is sparse and small enough, or the register too small for blocks; else None."""
         entries, size, small = len(self._tables[0]), 1 << self.n_qubits, self.n_qubits < LEAST_BITS
-        if not small and entries * size > matrix_bytes:
+        if not small and (self.n_qubits > MATRIX_QUBITS or entries * size > MATRIX_ELEMENTS or not matrix_bytes):
             return None
         blocks = max(1, size >> self._bits)
         counts = np.zeros(max(size, 1 << self._bits), dtype=np.int64)
@@ -108,10 +113,13 @@ class ExpansionProduct:
 
 
 def product_bytes(expansion: PauliExpansion) -> int:
-    """Upper bound of `ExpansionProduct.memory_bytes`, before anything is allocated."""
+    """Upper bound of what preparing an `ExpansionProduct` takes, before anything is allocated."""
     terms, size = len(expansion), 1 << expansion.n_qubits
     rows = min(ROW_BYTES, (terms * 8) << min(BLOCK_BITS, expansion.n_qubits))
-    matrix = min(MATRIX_BYTES, 12 * terms * size) + 16 * size if np.unique(expansion.x).size * size <= MATRIX_BYTES else 0
+    if expansion.n_qubits > MATRIX_QUBITS:
+        return rows + 64 * terms
+    elements = (1.0 if expansion.n_qubits < LEAST_BITS else SPARSE_SHARE) * 2 * np.unique(expansion.x).size * size
+    matrix = min(MATRIX_BYTES, 12 * int(elements)) * 3 + 24 * size  # values are written as complex numbers first
     return rows + matrix + 64 * terms
 
 

@@ -65,8 +65,10 @@ class RegisterEngine:
         _refuse_above(self.memory_bytes(), budget_bytes, self.n_qubits)
 
     def memory_bytes(self) -> int:
-        """State, adjoint state, scratch memory, and the tables of the Hamiltonian."""
-        return 2 * self._amplitude_bytes + PlanRunner.bytes_needed(self._plan, self._threads) + product_bytes(self._hamiltonian)
+        """State, adjoint state, a complex copy to hand out, scratch memory, and the tables of the Hamiltonian."""
+        copies = 3 if not self._plan.unit and _has_odd_terms(self._hamiltonian) else 1  # facts then need complex vectors
+        register = 2 * self._amplitude_bytes + (copies * 16 << self.n_qubits)
+        return register + PlanRunner.bytes_needed(self._plan, self._threads) + product_bytes(self._hamiltonian)
 
     def energy(self, parameters: FloatArray) -> float:
         return self._product.expectation(self._amplitudes(self._forward(parameters)), self.watch)
@@ -131,7 +133,7 @@ class RegisterEngine:
 
     @cached_property
     def _full_product(self) -> ExpansionProduct:
-        return ExpansionProduct(self._hamiltonian) if self._shared_product is None else self._shared_product()
+        return ExpansionProduct(self._hamiltonian, threads=self._threads) if self._shared_product is None else self._shared_product()
 
 
 def _odd_terms(expansion: PauliExpansion) -> Any:

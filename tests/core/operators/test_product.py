@@ -97,6 +97,8 @@ def test_an_odd_number_of_y_refuses_real_vectors():
     product = ExpansionProduct(PauliExpansion(1, np.array([1], np.uint64), np.array([1], np.uint64), np.ones(1)))
     with pytest.raises(TypeError, match="even number of Y"):
         product.apply(np.ones(2), np.empty(2))
+    with pytest.raises(TypeError, match="float64 or complex128, not complex64"):
+        product.expectation(np.ones(2, np.complex64))
 
 
 def test_an_empty_expansion_gives_zero():

@@ -207,14 +207,28 @@ def test_a_register_past_the_budget_is_refused_with_the_figure():
     expansion = PauliExpansion(n, np.zeros(1, np.uint64), np.ones(1, np.uint64), np.ones(1))
     empty = np.empty(0, np.uint64)
     program = GateProgram(n, 0, np.empty(0, np.uint8), empty, empty, np.empty(0, np.int64), np.empty(0), 0)
-    with pytest.raises(StudyError, match=r"40 qubits does not fit: it needs 1.64e\+04 GiB of memory and 4 GiB are allowed"):
+    with pytest.raises(StudyError, match=r"40 qubits does not fit: it needs 3.28e\+04 GiB of memory and 4 GiB are allowed"):
         RegisterEngine(expansion, program)
 
 
-def test_memory_is_estimated_from_the_size_of_the_register():
-    rng = np.random.default_rng(0)
-    estimates = [RegisterEngine(random_expansion(rng, n, 3), random_program(rng, n, 3)).memory_bytes() for n in (4, 5)]
-    assert estimates[1] - estimates[0] >= 32 * 16
+@pytest.mark.parametrize(("rotations", "bytes_an_amplitude"), [("ry", 2 * 8 + 3 * 16), ("ry-rz", 2 * 16 + 16)])
+def test_memory_is_estimated_from_the_size_of_the_register(rotations, bytes_an_amplitude):
+    estimates = []
+    for n in (24, 25):
+        field = PauliExpansion(n, np.ones(1, np.uint64), np.ones(1, np.uint64), np.ones(1))  # Y: not real
+        program = HardwareEfficient(depth=1, rotations=rotations).build(Ground(None, field, 0))
+        estimates.append(RegisterEngine(field, program, budget_bytes=2**40).memory_bytes())
+    assert estimates[1] - estimates[0] == pytest.approx(bytes_an_amplitude << 24, rel=0.01)
+    assert estimates[0] < 24 * 2**30
+
+
+def test_a_register_without_qubits_has_the_energy_of_the_identity():
+    empty = np.empty(0, np.uint64)
+    program = GateProgram(0, 0, np.empty(0, np.uint8), empty, empty, np.empty(0, np.int64), np.empty(0), 0)
+    engine = RegisterEngine(PauliExpansion(0, np.zeros(1, np.uint64), np.zeros(1, np.uint64), np.array([-1.5])), program)
+    assert engine.energy(np.empty(0)) == -1.5
+    assert engine.energy_and_gradient(np.empty(0))[1].shape == (0,)
+    assert engine.facts(np.empty(0), None).leading[0].weight == 1.0
 
 
 def test_a_stop_ends_an_evaluation():
