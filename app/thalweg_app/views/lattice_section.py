@@ -12,9 +12,10 @@ from thalweg.systems.lattice_graph import SECOND, LatticeGraph
 from thalweg.systems.lattice_model import MODELS
 from thalweg_app.colours import Palette
 from thalweg_app.presenters.setup import SetupEditing
+from thalweg_app.presenters.sites import coupled_kinds
 from thalweg_app.theme import SPACE
 from thalweg_app.views.alternatives import AlternativeBox
-from thalweg_app.views.lattice_picture import LatticePicture
+from thalweg_app.widgets.lattice_picture import LatticePicture
 
 #: Larger lattices are not drawn: their sites could not be told apart.
 MAX_DRAWN = 600
@@ -65,12 +66,6 @@ class LatticeSection(QWidget):
         self._facts.setVisible(bool(facts))
         self._problem.setText(problem)
         self._problem.setVisible(bool(problem))
-
-
-def coupled_kinds(system: LatticeModel, graph: LatticeGraph) -> tuple[str, ...]:
-    """Classes of bonds that the model couples."""
-    uses_second = getattr(system.model, "uses_second", False)
-    return tuple(kind for kind in graph.bonds_per_class() if uses_second or kind != SECOND)
 
 
 def lattice_lines(system: LatticeModel, graph: LatticeGraph) -> list[str]:
