@@ -20,8 +20,8 @@ from thalweg_app.presenters.jobs import JobListener
 
 #: A job that has not noticed a stop after this many ms is ended by force.
 PATIENCE_MS = 150
-#: A job that has noticed gets this long to hand over its best point.
-GRACE_MS = 5000
+#: A job that has noticed gets this long to hand over its best point, unless it is stopped again.
+GRACE_MS = 30_000
 #: Processes that die one after the other before they are ready; then something is wrong with the installation.
 MAX_FAILED_STARTS = 3
 STDERR_KEPT = 8000
@@ -42,7 +42,12 @@ class PooledJob:
     timer: QTimer = field(default_factory=QTimer)
 
     def stop(self) -> None:
-        if not self.is_over and not self.is_stopping:
+        """Asks for an end; asked again, ends it by force."""
+        if self.is_over:
+            return
+        if self.is_stopping:
+            self.pool.force_job(self)
+        else:
             self.is_stopping = True
             self.pool.stop_job(self)
 
@@ -125,7 +130,7 @@ class WorkerPool(QObject):
             return
         job.worker.send(StopJob(job=job.number))
         job.timer.setSingleShot(True)
-        job.timer.timeout.connect(lambda: self._force(job))
+        job.timer.timeout.connect(lambda: self.force_job(job))
         job.timer.start(PATIENCE_MS)
 
     def shut_down(self) -> None:
@@ -187,7 +192,7 @@ class WorkerPool(QObject):
         worker.job = None
         job.worker = None
 
-    def _force(self, job: PooledJob) -> None:
+    def force_job(self, job: PooledJob) -> None:
         """Ends the process of a job that does not stop; the spare takes the next job."""
         worker = job.worker
         if worker is None or job.is_over:

@@ -128,7 +128,8 @@ def test_escape_stops_the_run(qtbot, window, starter):
     window.setFocus()
     press(window, Qt.Key.Key_Escape, Qt.KeyboardModifier.NoModifier)
     assert jobs_of(starter, RUN)[0].was_stopped
-    assert not window.column.stop_button.isEnabled()
+    assert window.column.stop_button.text() == "Stop now"
+    assert "Stopping" in window.status.text
 
 
 def test_runs_queue_and_can_be_taken_off(qtbot, window, starter):

@@ -103,6 +103,18 @@ def test_a_deaf_job_is_ended_by_force_and_the_spare_takes_over(qtbot, pool):
     both_ready(qtbot, pool)
 
 
+def test_a_job_that_takes_long_to_hand_over_is_ended_when_stopped_again(qtbot, pool):
+    heard = Heard()
+    job = pool.start("fake_jobs:slow_to_hand_over", None, heard.listener)
+    qtbot.waitUntil(lambda: job.worker is not None, timeout=15000)
+    qtbot.wait(50)
+    job.stop()
+    qtbot.waitUntil(lambda: bool(heard.ends), timeout=5000)
+    assert heard.ends == [("noticed", None)]
+    job.stop()
+    assert heard.ends == [("noticed", None), ("stopped", None)]
+
+
 def test_a_job_still_waiting_can_be_stopped(qtbot, pool):
     heard = Heard()
     job = pool.start("fake_jobs:echo", 1, heard.listener)

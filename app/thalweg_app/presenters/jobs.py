@@ -32,7 +32,7 @@ class JobListener:
 
 class Job(Protocol):
     def stop(self) -> None:
-        """Asks the job to end; within 200 ms it has noticed, or it is ended by force."""
+        """Asks the job to end; within 200 ms it has noticed, or it is ended by force. Asked again, it is ended by force at once."""
         ...
 
 

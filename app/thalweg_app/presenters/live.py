@@ -49,6 +49,7 @@ class LiveRun:
     warnings: list[str] = field(default_factory=list)
     result: StudyResult | None = None
     is_stopping: bool = False
+    has_noticed: bool = False  # the search has ended, the best point is being examined
 
     def take(self, events: Sequence[AnyEvent]) -> None:
         for event in events:

@@ -24,7 +24,7 @@ class Estimate:
 def estimate(live: LiveRun) -> Estimate:
     """What the status line shows. Searches are foretold by the trend of the gradient and bounded by the stop rules."""
     if live.is_stopping:
-        return Estimate("Stopping, the best point is kept", None, None)
+        return Estimate("Stopped; examining the best point" if live.has_noticed else "Stopping; the best point is kept", None, None)
     if not live.starts:
         return Estimate(live.stage or "Waiting for a free process", live.fraction, None)
     current = live.starts[-1]

@@ -66,8 +66,8 @@ class RunControl:
         self._enqueue(Queued(run.result.spec, run))
 
     def stop(self) -> None:
-        """Ends the run under way and keeps its best point; the next in the queue follows."""
-        if self._job is not None and self.live is not None and not self.live.is_stopping:
+        """Ends the run under way and keeps its best point; asked again, does not wait for its properties. The next in the queue follows."""
+        if self._job is not None and self.live is not None:
             self.live.is_stopping = True
             self._job.stop()
             self.changed()
@@ -96,6 +96,7 @@ class RunControl:
         live = self.live = LiveRun(queued.spec, None if checked is None else checked.number)
         listener = JobListener(
             events=lambda events: self._on_events(live, events),
+            noticed=lambda: self._on_noticed(live),
             done=lambda value: self._on_done(live) if checked is None else self._on_checked(live, checked, value),
             failed=lambda failure: self._on_failed(live, failure),
             stopped=lambda: self._on_stopped(live),
@@ -107,6 +108,10 @@ class RunControl:
 
     def _on_events(self, live: LiveRun, events: Sequence[AnyEvent]) -> None:
         live.take(events)
+        self.progressed()
+
+    def _on_noticed(self, live: LiveRun) -> None:
+        live.has_noticed = True
         self.progressed()
 
     def _on_done(self, live: LiveRun) -> None:

@@ -16,6 +16,8 @@ from thalweg_app.views.system_section import SystemSection
 from thalweg_app.widgets.fold import Section
 
 WIDTH = 388
+STOP_HELP = "Ends the run and keeps the best point so far (Esc)."
+STOP_NOW_HELP = "Does not wait for the properties of the best point; its energy is kept (Esc)."
 _ANSWER_PICTURES = {"good": "reached", "bad": "missed", "unclear": "unclear"}
 
 
@@ -77,7 +79,10 @@ class SetupColumn(QWidget):
         self.run_button.setEnabled(not obstacle)
         self.run_button.setText("Add to queue" if runs.is_running else "Run")
         self.run_button.setToolTip(obstacle or "Minimises the energy with these settings (Ctrl+R).")
-        self.stop_button.setEnabled(runs.is_running and runs.live is not None and not runs.live.is_stopping)
+        stopping = runs.live is not None and runs.live.is_stopping
+        self.stop_button.setEnabled(runs.is_running)
+        self.stop_button.setText("Stop now" if stopping else "Stop")
+        self.stop_button.setToolTip(STOP_NOW_HELP if stopping else STOP_HELP)
         self._obstacle.setText(obstacle)
         self._obstacle.setVisible(bool(obstacle))
 
@@ -129,7 +134,7 @@ class SetupColumn(QWidget):
         self.run_button, self.stop_button = QPushButton("Run"), QPushButton("Stop")
         self.run_button.setProperty("role", "primary")
         describe(self.run_button, "Run", "Minimises the energy with these settings (Ctrl+R).")
-        describe(self.stop_button, "Stop", "Ends the run and keeps the best point so far (Esc).")
+        describe(self.stop_button, "Stop", STOP_HELP)
         for button in (self.run_button, self.stop_button):
             button.setIconSize(QSize(14, 14))
         self.run_button.clicked.connect(self.run_asked)

@@ -32,6 +32,12 @@ def polite(payload, emit, should_stop):
     return "best so far"
 
 
+def slow_to_hand_over(payload, emit, should_stop):
+    while not should_stop():
+        time.sleep(0.005)
+    time.sleep(60)
+
+
 def stopped_early(payload, emit, should_stop):
     while not should_stop():
         time.sleep(0.005)

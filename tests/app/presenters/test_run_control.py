@@ -5,6 +5,7 @@ from fake_starter import FakeStarter
 from thalweg.storage.session import Run
 from thalweg.study.events import Failed, Finished, Iteration, Stage, Started, Warned
 from thalweg_app.presenters.jobs import CHECK, RUN
+from thalweg_app.presenters.progress import estimate
 from thalweg_app.presenters.run_control import RunControl
 
 
@@ -110,6 +111,19 @@ def test_a_run_ended_by_force_keeps_its_lowest_energy_and_never_counts_as_reache
     assert not kept.reached_target
     assert "stopped by hand" in kept.verdict
     assert kept.final_parameters == ()
+
+
+def test_while_the_best_point_is_examined_a_second_stop_ends_the_run_at_once(starter, runs, heard):
+    runs.submit(studies.study())
+    starter.last.listener.events([started(), iteration(0, -7.86)])
+    runs.stop()
+    starter.last.listener.noticed()
+    assert "examining" in estimate(runs.live).text
+    starter.last.was_stopped = False
+    runs.stop()
+    assert starter.last.was_stopped
+    starter.last.listener.stopped()
+    assert heard.finished[0].energy == -7.86
 
 
 def test_a_run_stopped_before_any_point_says_so(starter, runs, heard):
