@@ -106,14 +106,15 @@ def turn(typingctx: Any, states: Any, both: Any, parts: Any, base: Any, op: Any,
         first, last = (builder.extract_value(arguments[2], k) for k in range(2))
         row = v.pointer(signature.args[4], arguments[4])
         gate, x, z, fixed, kappa = (v.item(row, integer(k)) for k in range(1, 6))
-        side = builder.fmul(builder.sitofp(kappa, DOUBLE), v.sign(builder.and_(arguments[3], fixed)))
+        whole = builder.fmul(builder.sitofp(kappa, DOUBLE), v.sign(builder.and_(arguments[3], fixed)))
         entry = builder.shl(gate, integer(2))
         table, slopes = v.pointer(signature.args[5], arguments[5]), v.pointer(signature.args[6], arguments[6])
         cosine, sine = v.splat(v.item(table, entry)), v.splat(v.item(table, builder.add(entry, integer(2))))
-        signs = v.times(v.splat(side), v.lanes([v.sign(builder.and_(z, integer(lane))) for lane in range(LANES)]))
+        signs = v.times(v.splat(whole), v.lanes([v.sign(builder.and_(z, integer(lane))) for lane in range(LANES)]))
         x_vector, z_vector = (builder.lshr(mask, integer(3)) for mask in (x, z))
         top = builder.lshr(integer(-(2**63)), builder.ctlz(builder.or_(x_vector, integer(1)), ir.Constant(ir.IntType(1), 0)))
         inside = builder.icmp_signed("==", x_vector, integer(0))
+        by_side = [signs, v.times(signs, v.splat(v.sign(builder.and_(x_vector, z_vector))))]
         for pointers in v.one_or_both(v.pointers(signature.args[0], arguments[0]), arguments[1]):
             total = v.accumulator()
             for paired in (False, True):
@@ -121,7 +122,8 @@ def turn(typingctx: Any, states: Any, both: Any, parts: Any, base: Any, op: Any,
                     with v.loop(last, first) as loop:
                         low = v.open_bit(loop.index, top) if paired else loop.index
                         vectors = [low, builder.xor(low, x_vector)] if paired else [low]
-                        factors = [v.times(signs, v.splat(v.sign(builder.and_(place, z_vector)))) for place in vectors]
+                        here = v.splat(v.sign(builder.and_(low, z_vector)))
+                        factors = [v.times(here, side) for side in by_side[: len(vectors)]]
                         places = [builder.shl(place, integer(3)) for place in vectors]
                         _turn_places(v, pointers, places, factors, lane, cosine, sine, total)
             _add_slopes(v, pointers, slopes, [gate], [v.sum(total)])
