@@ -15,9 +15,13 @@ FIT_POINTS, FIT_DEGREE = 11, 9
 #: The degree rises until the root mean square residual (Eh) is below this, or one point is left over.
 GOOD_RESIDUAL = 1e-8
 #: A fit whose root mean square residual is larger than this (Eh) is not trusted.
-LARGEST_RESIDUAL = 2e-5
-#: The slope (Eh per angstrom) below which the end of a curve counts as the separated fragments.
-FLAT_SLOPE = 2e-3
+LARGEST_RESIDUAL = 2e-4
+#: Nor is one whose curvature moves by more than this part when the degree changes by one.
+LARGEST_SPREAD = 0.15
+#: Moves of the minimum below this part of r_e are alike.
+LIKE = 2e-5
+#: The part of the well that may still be missing at the far end of a curve for it to count as the separated fragments.
+MISSING_PART = 0.01
 
 
 @dataclass(frozen=True)
@@ -45,6 +49,7 @@ class CurveMinimum:
         degree, points: of the polynomial.
         residual: root mean square of the fit.
         variable: that the polynomial is in.
+        r_e_spread, curvature_spread: how far r_e (unit of the coordinate) and the curvature (as a part) move with a degree one off.
     """
 
     r_e: float
@@ -57,7 +62,9 @@ class CurveMinimum:
     degree: int
     points: int
     residual: float
-    variable: str = "ln r"
+    variable: str
+    r_e_spread: float
+    curvature_spread: float
 
     def scaled(self, factor: float) -> CurveMinimum:
         """The same minimum with the coordinate multiplied by `factor`, as from bohr to angstrom."""
@@ -69,12 +76,14 @@ class CurveMinimum:
             fourth=self.fourth / factor**4,
             first=self.first * factor,
             last=self.last * factor,
+            r_e_spread=self.r_e_spread * factor,
         )
 
     def sentence(self) -> str:
         return (
             f"polynomial of degree {self.degree} in {self.variable} through {self.points} points from {self.first:.4g} to {self.last:.4g}, "
-            f"root mean square residual {self.residual:.2g}"
+            f"root mean square residual {self.residual:.2g}; with a degree one off the minimum moves by {self.r_e_spread:.1g} "
+            f"and the frequency by {50 * self.curvature_spread:.1g} %"
         )
 
 
@@ -99,26 +108,49 @@ def error_measures(energies: Sequence[float], exact: Sequence[float]) -> ErrorMe
 
 
 def fit_minimum(coordinates: Sequence[float], energies: Sequence[float], *, logarithmic: bool = True) -> CurveMinimum | None:
-    """The minimum of a curve, or None where the curve has no inner minimum, too few points, or too large a residual.
+    """The minimum of a curve, or None where the curve has no inner minimum, too few points, or follows no smooth fit.
 
     Fits a polynomial in ln(r/r0), with r0 the lowest point: at the same degree it follows both walls of a bond better than one in r or
-    1/r (tried on full-CI curves of H2). With `logarithmic` False in (r - r0), for angles and factors.
+    1/r (tried on full-CI curves of H2). With `logarithmic` False in (r - r0), for angles and factors. Of several numbers of points the
+    largest is taken whose minimum hardly moves when the degree changes by one: with sparse points a small residual proves nothing.
     """
     r, e = _sorted(coordinates, energies)
     lowest = int(np.argmin(e)) if e.size else 0
     if e.size < 5 or lowest in (0, e.size - 1):
         return None
-    window = _window(r, lowest)
-    r, e, r0 = r[window], e[window], r[lowest]
-    shift = e.min()
+    windows = dict.fromkeys((w.start, w.stop) for w in (_window(r, lowest, points) for points in range(FIT_POINTS, 4, -2)))
+    fits = [_fit(r[a:b], e[a:b], r[lowest], logarithmic) for a, b in windows]
+    trusted = [fit for fit in fits if fit is not None]
+    least = min((fit.r_e_spread for fit in trusted), default=0.0)
+    return next((fit for fit in trusted if fit.r_e_spread <= max(3.0 * least, LIKE * abs(fit.r_e))), None)
+
+
+def _fit(r: FloatArray, e: FloatArray, r0: float, logarithmic: bool) -> CurveMinimum | None:
+    shift = float(e.min())
     z = _variable(r, r0, logarithmic)
     degree, polynomial, residual = _smallest_good_fit(z, e - shift)
-    place = _stationary(polynomial, r, r0, logarithmic)
-    if place is None or residual > LARGEST_RESIDUAL:
+    other = np.polynomial.Polynomial.fit(z, e - shift, degree - 1 if degree > 3 else degree + 1)
+    place, other_place = (_stationary(p, r, r0, logarithmic) for p in (polynomial, other))
+    if place is None or other_place is None or residual > LARGEST_RESIDUAL:
         return None
     energy, _, second, third, fourth = _derivatives(polynomial, place, r0, logarithmic)
+    spread = abs(_derivatives(other, other_place, r0, logarithmic)[2] / second - 1.0)
+    if spread > LARGEST_SPREAD:
+        return None
     return CurveMinimum(
-        place, energy + shift, second, third, fourth, float(r[0]), float(r[-1]), degree, int(r.size), residual, "ln r" if logarithmic else "r"
+        r_e=place,
+        e_min=energy + shift,
+        curvature=second,
+        third=third,
+        fourth=fourth,
+        first=float(r[0]),
+        last=float(r[-1]),
+        degree=degree,
+        points=int(r.size),
+        residual=residual,
+        variable="ln r" if logarithmic else "r",
+        r_e_spread=abs(other_place - place),
+        curvature_spread=spread,
     )
 
 
@@ -139,11 +171,28 @@ def diatomic_constants(minimum: CurveMinimum, reduced_mass: float) -> DiatomicCo
     )
 
 
-def well_depth(coordinates: Sequence[float], energies: Sequence[float], minimum: CurveMinimum) -> float | None:
-    """D_e: the energy at the far end above the minimum; None where the curve has not flattened out there."""
+def well_depth(coordinates: Sequence[float], energies: Sequence[float], minimum: CurveMinimum) -> tuple[float | None, str]:
+    """D_e, the energy of the far end above the minimum, or None where the curve has not reached separated fragments there; and a sentence.
+
+    What is still missing at the end is estimated from the last two slopes, taken to fall off exponentially.
+    """
     r, e = _sorted(coordinates, energies)
-    slope = (e[-1] - e[-2]) / (r[-1] - r[-2])
-    return None if abs(slope) > FLAT_SLOPE or r[-1] <= minimum.last else float(e[-1] - minimum.e_min)
+    depth = float(e[-1] - minimum.e_min)
+    missing = _beyond(r, e, minimum.r_e)
+    still = f"at {r[-1]:.4g} the curve still {'rises' if missing > 0 else 'falls'} by an estimated {1e3 * abs(missing):.3g} mEh"
+    if r[-1] <= minimum.last or abs(missing) > MISSING_PART * depth:
+        return None, f"the curve does not reach separated fragments; {still}"
+    return depth, f"energy at {r[-1]:.4g} above the minimum; {still} beyond"
+
+
+def _beyond(r: FloatArray, e: FloatArray, r_e: float) -> float:
+    """Energy that the curve still gains beyond its last point; where the slope does not fall off, what it gains over another r_e."""
+    h1, h2 = float(r[-2] - r[-3]), float(r[-1] - r[-2])
+    before, last = float(e[-2] - e[-3]) / h1, float(e[-1] - e[-2]) / h2
+    if last == 0.0 or before / last <= 1.0:
+        return last * r_e
+    rate = float(np.log(before / last)) / (0.5 * (h1 + h2))
+    return last * float(np.exp(-0.5 * rate * h2)) / rate
 
 
 def _sorted(coordinates: Sequence[float], energies: Sequence[float]) -> tuple[FloatArray, FloatArray]:
@@ -152,12 +201,12 @@ def _sorted(coordinates: Sequence[float], energies: Sequence[float]) -> tuple[Fl
     return r[order], e[order]
 
 
-def _window(r: FloatArray, lowest: int) -> slice:
-    """The lowest point with at most half the fit points on each side."""
-    half = FIT_POINTS // 2
+def _window(r: FloatArray, lowest: int, points: int) -> slice:
+    """The lowest point with at most half of the points on each side."""
+    half = points // 2
     first = max(0, lowest - half)
-    last = min(r.size, max(lowest + half, first + FIT_POINTS - 1) + 1)
-    return slice(max(0, last - FIT_POINTS), last)
+    last = min(r.size, max(lowest + half, first + points - 1) + 1)
+    return slice(max(0, last - points), last)
 
 
 def _variable(r: FloatArray | float, r0: float, logarithmic: bool) -> FloatArray:

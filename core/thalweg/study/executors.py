@@ -2,19 +2,28 @@
 
 from __future__ import annotations
 
+import contextlib
 import multiprocessing
 import os
+import signal
 import threading
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
 from multiprocessing.connection import wait
 from typing import Any, TypeVar
 
+from thalweg import __version__
 from thalweg.errors import StudyError
 
 T = TypeVar("T")
 EXECUTORS = ("local", "serial", "dask")
 _THREAD_LIMITS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "NUMBA_NUM_THREADS")
+#: Loaded once by the process that the workers are forked from.
+_PRELOADED = ("thalweg.study.scan_task", "thalweg.simulate.sector", "thalweg.exact.determinant", "scipy.optimize", "pyscf.scf", "pyscf.ao2mo")
+#: Seconds that a pool takes before its first point: it loads the numerical libraries anew (measured 1.5 to 3 on two cores).
+START_UP = 2.5
+#: Seconds that a scheduler and its workers have to answer.
+PATIENCE = 10
 
 
 class InProcess(Executor):
@@ -31,26 +40,86 @@ class InProcess(Executor):
         return future
 
 
+class Local(InProcess):
+    """Begins in this process, and stays there while a pool would cost more than it saves."""
+
+    def __init__(self, workers: int = 0) -> None:
+        self.workers = workers or usable_cores()
+        self._shortest = float("inf")
+
+    def took(self, seconds: float) -> None:
+        """A point was run here. The first may have loaded libraries, which a pool would load as well."""
+        self._shortest = min(self._shortest, max(0.0, seconds - START_UP) if self._shortest == float("inf") else seconds)
+
+    def pays(self, points_left: int) -> bool:
+        """Whether the time that a pool saves on these points is more than its start takes."""
+        workers = min(self.workers, points_left)
+        return workers > 1 and self._shortest < float("inf") and self._shortest * points_left * (1.0 - 1.0 / workers) > START_UP
+
+    def pool(self) -> Executor:
+        return local_pool(self.workers)
+
+
 def make_executor(kind: str, workers: int = 0, scheduler: str = "") -> Executor:
     """An executor for scan points. `workers` 0 takes all cores; `scheduler` is a Dask address such as `tcp://host:8786`."""
     if kind == "serial":
         return InProcess()
     if kind == "local":
-        return local_pool(workers)
+        return Local(workers)
     if kind == "dask":
         return _dask(scheduler)
     raise StudyError(f"Unknown executor '{kind}'", "no such way to run points", "Use one of: " + ", ".join(EXECUTORS), "executor")
 
 
+def usable_cores() -> int:
+    """Cores that this process may run on (a batch system or a container may allow fewer than there are)."""
+    if hasattr(os, "sched_getaffinity"):
+        return len(os.sched_getaffinity(0))
+    return os.cpu_count() or 1
+
+
 def local_pool(workers: int = 0) -> ProcessPoolExecutor:
-    """A pool of fresh processes, one thread each: with several threads they would fight for the cores."""
-    context = multiprocessing.get_context("spawn")  # fork would copy numba's and Qt's threads in an unknown state
-    return ProcessPoolExecutor(workers or os.cpu_count() or 1, mp_context=context, initializer=_enter_worker)
+    """A pool of fresh processes, one thread each: with several threads they would fight for the cores.
+
+    They are forked from a server that has the libraries loaded but no threads, where the system has such servers. This process itself is
+    not forked: that would copy the threads of numba and Qt in an unknown state.
+    """
+    forked = "forkserver" in multiprocessing.get_all_start_methods()
+    context = multiprocessing.get_context("forkserver" if forked else "spawn")
+    if forked:
+        context.set_forkserver_preload(list(_PRELOADED))
+    return _Pool(workers or usable_cores(), mp_context=context, initializer=_enter_worker)
+
+
+class _Pool(ProcessPoolExecutor):
+    """Processes start inside `submit`, so that what they inherit is arranged there."""
+
+    def submit(self, fn: Callable[..., T], /, *args: Any, **kwargs: Any) -> Future[T]:
+        with _for_children():
+            return super().submit(fn, *args, **kwargs)
+
+
+_arranging = threading.Lock()
+
+
+@contextlib.contextmanager
+def _for_children() -> Iterator[None]:
+    """One thread for every library, and deafness to Ctrl-C, which the terminal sends to all: the scan ends its workers itself."""
+    with _arranging:
+        before = {name: os.environ.get(name) for name in _THREAD_LIMITS}
+        masked = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT}) if hasattr(signal, "pthread_sigmask") else None
+        os.environ.update(dict.fromkeys(_THREAD_LIMITS, "1"))
+        try:
+            yield
+        finally:
+            for name, value in before.items():
+                os.environ.pop(name) if value is None else os.environ.update({name: value})
+            if masked is not None:
+                signal.pthread_sigmask(signal.SIG_SETMASK, masked)
 
 
 def _enter_worker() -> None:
-    for name in _THREAD_LIMITS:
-        os.environ[name] = "1"
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
     parent = multiprocessing.parent_process()
     if parent is not None:
         threading.Thread(target=_leave_with, args=(parent.sentinel,), daemon=True).start()
@@ -62,6 +131,21 @@ def _leave_with(sentinel: int) -> None:
     os._exit(1)
 
 
+class _Cluster(Executor):
+    """The workers of a Dask scheduler; shutting it down lets go of the connection, the cluster stays."""
+
+    def __init__(self, client: Any) -> None:
+        self._client = client
+        self._executor: Executor = client.get_executor(pure=False)
+
+    def submit(self, fn: Callable[..., T], /, *args: Any, **kwargs: Any) -> Future[T]:
+        return self._executor.submit(fn, *args, **kwargs)
+
+    def shutdown(self, wait: bool = True, *, cancel_futures: bool = False) -> None:
+        self._executor.shutdown(wait=wait)
+        self._client.close()
+
+
 def _dask(scheduler: str) -> Executor:
     if not scheduler:
         raise StudyError("No Dask scheduler is named", "a cluster is reached by its address", "Give one such as tcp://host:8786", "scheduler")
@@ -70,8 +154,32 @@ def _dask(scheduler: str) -> Executor:
     except ImportError:
         raise StudyError("Dask is not installed", "it is optional", "Install it with: pip install 'thalweg[cluster]'", "executor") from None
     try:
-        client = Client(scheduler, timeout="10s", set_as_default=False)
+        client = Client(scheduler, timeout=PATIENCE, set_as_default=False)
     except (OSError, ValueError) as error:
         raise StudyError(f"No Dask scheduler answers at {scheduler}", str(error)[:80] or "timed out", "Check the address", "scheduler") from None
-    executor: Executor = client.get_executor(pure=False)
-    return executor
+    try:
+        _check_workers(client, scheduler)
+    except BaseException:
+        client.close()
+        raise
+    return _Cluster(client)
+
+
+def _check_workers(client: Any, scheduler: str) -> None:
+    """StudyError where the cluster has no workers, or they have another version of this program or none."""
+    try:
+        client.wait_for_workers(1, timeout=PATIENCE)
+    except (OSError, TimeoutError):
+        raise StudyError(f"The cluster at {scheduler} has no workers", "nothing would ever run there", "Start a worker", "scheduler") from None
+    fix = f"Install thalweg {__version__} on every worker"
+    try:
+        versions = set(client.run(own_version).values())
+    except Exception as error:
+        raise StudyError(f"The workers at {scheduler} cannot run scan points", f"{type(error).__name__}: {error}"[:120], fix, "scheduler") from None
+    if versions != {__version__}:
+        raise StudyError(f"The workers at {scheduler} run thalweg {', '.join(sorted(versions))}", f"here runs {__version__}", fix, "scheduler")
+
+
+def own_version() -> str:
+    """Asked of every worker of a cluster."""
+    return __version__

@@ -11,21 +11,25 @@ from collections.abc import Callable, Iterable
 from concurrent.futures import Executor
 from dataclasses import replace
 
-from thalweg.errors import Stopped
-from thalweg.study.events import AnyEvent, ScanFinished, ScanPoint, ScanStarted, Stage
+from thalweg.errors import Stopped, StudyError
+from thalweg.study.events import AnyEvent, ScanFinished, ScanPoint, ScanStarted, Stage, watch_into
 from thalweg.study.point_seed import PointSeed
 from thalweg.study.scan_mean_fields import BRANCH, CurveField, curve_fields
 from thalweg.study.scan_result import CurvePoint, ScanResult
 from thalweg.study.scan_spec import BLOCK, ScanSpec
-from thalweg.study.scan_summary import flagged_points, needs_healing, summarise
+from thalweg.study.scan_summary import STUCK, flagged_points, needs_healing, summarise
 from thalweg.study.scan_task import PointOutcome
 from thalweg.study.scan_tasks import PointTasks
-from thalweg.watch import Watch
 
-#: A rerun replaces a point when its energy is lower by more than this.
+#: A rerun replaces a point when its energy is lower by more than this, and is passed on to the neighbours when by more than this part
+#: of the target error.
 LOWER = 1e-9
+PASSED_ON = 1e-3
+BRANCHED = "mean-field-branch: starts from the two sides lead to different mean fields; the lower variational energy is kept"
 #: Rounds of the healing pass; each lets a better solution travel one point further.
 HEALING_ROUNDS = 2 * BLOCK
+#: Starts at a point that still jumps or stalls after runs from both neighbours.
+SEVERAL_STARTS = 4
 
 
 def run_scan(
@@ -35,14 +39,19 @@ def run_scan(
     should_stop: Callable[[], bool] = lambda: False,
     *,
     done: Iterable[CurvePoint] = (),
+    checked: bool = False,
 ) -> ScanResult:
-    """Runs every point of the scan that is not in `done` (from an interrupted session) and returns the curve.
+    """Runs every point of the scan that is not in `done` and returns the curve.
 
-    `make_pool` makes the executor, and makes a new one when a worker was killed. Emits ScanStarted, ScanPoint for every point that is
-    new or became lower, and ScanFinished. Stopping keeps the finished points. Raises StudyError where the path does not fit the system.
+    `done` are points of an interrupted scan, or with `checked` those of a finished one that has been refined: their healing pass is over,
+    so that only new points are run. `make_pool` makes the executor, and makes a new one when a worker was killed. Emits ScanStarted,
+    ScanPoint for every point that is new or became lower, and ScanFinished. Stopping keeps the finished points.
+    Raises StudyError where there are no points or the path does not fit the system.
     """
+    if not scan.points:
+        raise StudyError("No points to scan", "the list of values is empty", "Give a range or a list of values", "points")
     scan.at(scan.points[0])
-    return _Scan(scan, make_pool, emit, should_stop, {p.coordinate: p for p in done}).run()
+    return _Scan(scan, make_pool, emit, should_stop, {p.coordinate: p for p in done}, checked).run()
 
 
 class _Scan:
@@ -55,20 +64,22 @@ class _Scan:
         emit: Callable[[AnyEvent], None],
         should_stop: Callable[[], bool],
         done: dict[float, CurvePoint],
+        checked: bool,
     ) -> None:
-        self._scan, self._make_pool, self._emit, self._should_stop = scan, make_pool, emit, should_stop
+        self._scan, self._emit, self._should_stop = scan, emit, should_stop
         self._outcomes: list[PointOutcome | None] = [_known(done.get(x)) for x in scan.points]
-        self._retried: set[int] = set()
+        self._settled = {i for i, outcome in enumerate(self._outcomes) if outcome is not None} if checked else set()
+        self._retried = {i for i, x in enumerate(scan.points) if x in done and "retried" in done[x].flags}
         self._fields: list[CurveField | None] = [None] * len(scan.points)
         self._tasks = PointTasks(make_pool, should_stop)
         self._begun = time.perf_counter()
 
     def run(self) -> ScanResult:
-        self._emit(ScanStarted(axis=self._scan.path.axis(self._scan.study), unit=self._scan.path.unit(self._scan.study), points=self._scan.points))
+        path, study = self._scan.path, self._scan.study
+        self._emit(ScanStarted(axis=path.axis(study), unit=path.unit(study), points=self._scan.points))
         try:
-            watch = Watch(lambda text, fraction: self._emit(Stage(text=text, fraction=fraction)), self._should_stop)
             if any(outcome is None for outcome in self._outcomes):
-                self._fields = curve_fields(self._scan, watch)
+                self._fields = curve_fields(self._scan, watch_into(self._emit, self._should_stop))
             self._blocks(forward=True)
             if self._scan.both_directions:
                 self._blocks(forward=False)
@@ -96,67 +107,85 @@ class _Scan:
 
     def _advance(self, chain: list[int], seed: PointSeed | None, fresh: bool) -> None:
         """Submits the first point of the chain that is still to be computed."""
-        while fresh and chain and self._outcomes[chain[0]] is not None:
-            known = self._outcomes[chain[0]]
-            seed = known.seed if known is not None else seed
-            chain = chain[1:]
+        while chain and (chain[0] in self._settled or fresh) and (known := self._outcomes[chain[0]]) is not None:
+            seed, chain = known.seed, chain[1:]
         if chain:
             self._tasks.submit((chain[0], chain[1:]), self._scan, self._scan.points[chain[0]], self._start(chain[0], seed))
 
     def _heal(self) -> None:
-        """Reruns block starts and doubtful points from their neighbours, and passes every improvement on to both sides.
+        """Reruns block starts and doubtful points from their neighbours, and those that stay doubtful from several starts.
 
         A block's first point started cold: its left neighbour's seed shows whether it lies on the same branch. Where it does, nothing is
         lower and the pass ends at once.
         """
-        doubtful = needs_healing(self._scan, self._curve())
-        starts = [(a, a - 1) for a in range(BLOCK, len(self._outcomes), BLOCK)]
-        pairs = {*starts, *((i, n) for i in doubtful for n in (i - 1, i + 1))}
+        doubtful = [i for i in needs_healing(self._curve()) if i not in self._settled]
+        starts = [(a, a - 1) for a in range(BLOCK, len(self._outcomes), BLOCK) if a not in self._settled]
+        self._pass_on({*starts, *((i, n) for i in doubtful for n in (i - 1, i + 1))}, set(doubtful))
+        stuck = [i for i in needs_healing(self._curve(), STUCK) if i not in self._settled]
+        if stuck and not self._should_stop():
+            self._emit(Stage(text=f"Trying {SEVERAL_STARTS} starts where the curve jumps"))
+            study = self._scan.study
+            several = self._scan.model_copy(update={"study": study.model_copy(update={"starts": max(SEVERAL_STARTS, study.starts)})})
+            lowered = self._rerun([(i, self._start(i, self._seed(i - 1) or self._seed(i + 1))) for i in stuck], several)
+            self._retried |= {*stuck, *lowered}
+            self._pass_on(self._beside(lowered), set())
+
+    def _pass_on(self, pairs: set[tuple[int, int]], retried: set[int]) -> None:
+        """Reruns point i from the seed of point n for each (i, n), then the neighbours of what became lower, and so on."""
         for round_number in range(HEALING_ROUNDS):
             ready = sorted((i, n) for i, n in pairs if self._seed(n) is not None)
             if not ready or self._should_stop():
                 return
             self._emit(Stage(text="Checking points from both sides", fraction=round_number / HEALING_ROUNDS))
-            self._retried.update(i for i, _ in ready if i in doubtful)
-            for i, n in ready:
-                self._tasks.submit((i, []), self._scan, self._scan.points[i], self._start(i, self._seed(n)))
-            found = sorted(self._tasks.results(), key=lambda item: item[0][0])  # in order of the curve, not of arrival
-            lowered = {index for (index, _), outcome in found if self._keep(index, outcome)}
+            self._retried.update(i for i, _ in ready if i in retried)
+            lowered = self._rerun([(i, self._start(i, self._seed(n))) for i, n in ready], self._scan)
             self._retried |= lowered
-            pairs = {(n, i) for i in lowered for n in (i - 1, i + 1) if 0 <= n < len(self._outcomes) and n not in lowered}
+            pairs = self._beside(lowered)
+
+    def _rerun(self, wanted: list[tuple[int, PointSeed | None]], scan: ScanSpec) -> set[int]:
+        """Runs these points again; those whose energy became lower by an amount that matters."""
+        for i, seed in wanted:
+            self._tasks.submit((i, []), scan, scan.points[i], seed)
+        found = sorted(self._tasks.results(), key=lambda item: item[0][0])  # in order of the curve, not of arrival
+        falls = [(index, self._keep(index, outcome)) for (index, _), outcome in found]
+        return {index for index, fall in falls if fall > PASSED_ON * self._target(index)}
+
+    def _beside(self, lowered: set[int]) -> set[tuple[int, int]]:
+        """(neighbour, lowered point) where the neighbour did not become lower itself."""
+        last = len(self._outcomes) - 1
+        return {(n, i) for i in lowered for n in (i - 1, i + 1) if 0 <= n <= last and n not in lowered}
 
     def _start(self, index: int, neighbour: PointSeed | None) -> PointSeed | None:
         """The neighbour's parameters with the point's own mean field where the curve's mean fields were followed first."""
         field = self._fields[index]
         if field is None:
             return neighbour
-        return PointSeed(field.seed, *((neighbour.parameters, neighbour.labels) if neighbour is not None else ((), ())))
+        return PointSeed(replace(field.seed, here=True), *((neighbour.parameters, neighbour.labels) if neighbour is not None else ((), ())))
 
     def _seed(self, index: int) -> PointSeed | None:
         outcome = self._outcomes[index] if 0 <= index < len(self._outcomes) else None
         return None if outcome is None else outcome.seed
 
-    def _keep(self, index: int, outcome: PointOutcome) -> bool:
-        """Keeps the outcome where there is none yet or it lies lower; True when a lower one replaced another."""
+    def _keep(self, index: int, outcome: PointOutcome) -> float:
+        """Keeps the outcome where there is none yet or it lies lower; by how much a lower one replaced another, 0 where none did."""
         old = self._outcomes[index]
-        first = old is None or old.result is None
-        lower = outcome.result is not None and old is not None and old.result is not None and outcome.result.energy < old.result.energy - LOWER
-        if not first and not lower:
-            return False
-        if lower and outcome.result is not None and abs(outcome.result.reference_energy - self._reference(index)) > BRANCH:
-            note = "mean-field-branch: starts from the two sides lead to different mean fields; the lower variational energy is kept"
-            outcome = replace(outcome, notes=(*outcome.notes, note))
+        fall = 0.0
+        if old is not None and old.result is not None:
+            fall = old.result.energy - outcome.result.energy if outcome.result is not None else 0.0
+            if fall <= LOWER:
+                return 0.0
+            assert outcome.result is not None
+            if abs(outcome.result.reference_energy - old.result.reference_energy) > BRANCH:
+                outcome = replace(outcome, notes=(*outcome.notes, BRANCHED))
         field = self._fields[index]
         self._outcomes[index] = outcome if field is None else replace(outcome, notes=tuple(dict.fromkeys((*outcome.notes, *field.notes))))
         curve = self._curve()
         self._emit(ScanPoint(point=curve[index], done=sum(o is not None for o in self._outcomes), total=len(self._outcomes)))
-        return lower
+        return fall
 
-    def _reference(self, index: int) -> float:
+    def _target(self, index: int) -> float:
         outcome = self._outcomes[index]
-        assert outcome is not None
-        assert outcome.result is not None
-        return outcome.result.reference_energy
+        return outcome.result.target_error if outcome is not None and outcome.result is not None else 0.0
 
     def _curve(self) -> list[CurvePoint]:
         return flagged_points(self._scan, self._outcomes, self._retried)

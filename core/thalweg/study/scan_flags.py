@@ -8,6 +8,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from thalweg.arrays import FloatArray
+
 #: A jump is this many times larger than the steps on either side of it.
 JUMP_RATIO = 4.0
 #: Two values of <S^2> that differ by more than this are different spins.
@@ -62,9 +64,49 @@ def spin_crossings(coordinates: Sequence[float], s_squared: Sequence[float | Non
 
 
 def extremum_of_second_derivative(coordinates: Sequence[float], energies: Sequence[float]) -> float | None:
-    """Where |d2E/dx2| is largest inside the curve (a quantum phase transition shows there); None with fewer than 5 points."""
+    """Where |d2E/dx2| has its largest inner maximum, from a parabola through three points (a quantum phase transition shows there).
+
+    None with fewer than 5 points, or where the curvature is largest at an end or vanishes.
+    """
     x, e = np.asarray(coordinates, float), np.asarray(energies, float)
     if x.size < 5:
         return None
-    second = np.gradient(np.gradient(e, x), x)[2:-2]
-    return float(x[2:-2][int(np.argmax(np.abs(second)))]) if second.size else None
+    curvature = np.abs(_second_derivative(x, e))
+    top = int(np.argmax(curvature))
+    noise = 1e-9 * np.abs(e).max() / np.diff(x).min() ** 2
+    if top in (0, curvature.size - 1) or curvature[top] <= noise:
+        return None
+    three = slice(top - 1, top + 2)
+    bend, slope, _ = np.polyfit(x[1:-1][three] - x[top + 1], curvature[three], 2)
+    return float(x[top + 1] - slope / (2 * bend)) if bend < 0 else float(x[top + 1])
+
+
+def level_crossings(coordinates: Sequence[float], energies: Sequence[float]) -> tuple[float, ...]:
+    """Where the lowest level is replaced by another: the slope of the curve jumps by more than the slopes on either side explain.
+
+    Needs three points on both sides. The place is where the two branches, continued from both sides, meet.
+    """
+    x, e = np.asarray(coordinates, float), np.asarray(energies, float)
+    if x.size < 6:
+        return ()
+    middle, slope = 0.5 * (x[1:] + x[:-1]), np.diff(e) / np.diff(x)
+    turn = np.diff(slope) / np.diff(middle)  # turn[i] between the intervals i and i + 1
+    noise = 1e-8 * np.abs(e).max() / np.diff(x).min()
+    found: list[float] = []
+    for i in range(2, slope.size - 2):
+        left = slope[i - 1] + turn[i - 2] * (middle[i] - middle[i - 1])
+        right = slope[i + 1] - turn[i + 1] * (middle[i + 1] - middle[i])
+        usual = max(abs(slope[i - 1] - slope[i - 2]), abs(slope[i + 2] - slope[i + 1]))
+        if abs(right - left) <= JUMP_RATIO * usual + noise:
+            continue
+        place = (e[i + 1] - e[i] + left * x[i] - right * x[i + 1]) / (left - right)
+        reach = 0.25 * (x[i + 1] - x[i])
+        if x[i] - reach <= place <= x[i + 1] + reach and not (found and place - found[-1] < 2 * reach):
+            found.append(float(place))
+    return tuple(found)
+
+
+def _second_derivative(x: FloatArray, e: FloatArray) -> FloatArray:
+    """At the inner points, from three points each; the spacing may vary."""
+    slope = np.diff(e) / np.diff(x)
+    return np.asarray(2.0 * np.diff(slope) / (x[2:] - x[:-2]))

@@ -56,11 +56,16 @@ def _walk_back(scan: ScanSpec, fields: list[CurveField | None], walk: list[int],
         if old is None or neighbour is None:
             continue
         watch.stage("Looking for lower mean fields")
-        again = _step(scan, i, neighbour, watch)
+        again = _step(scan, i, replace(neighbour, seed=_as_known(neighbour.seed, old.seed)), watch)
         if again is not None and again.seed.energy < old.seed.energy - BRANCH:
             fall = 1e3 * (old.seed.energy - again.seed.energy)
             note = f"mean-field-branch: from the other side the mean field is {fall:.3g} mEh lower, and that one is taken"
             fields[i] = replace(again, notes=(*again.notes, note))
+
+
+def _as_known(neighbour: MeanFieldSeed, own: MeanFieldSeed) -> MeanFieldSeed:
+    """The neighbour's density and orbitals; a mean field of the point's own energy is the one whose stability is known already."""
+    return replace(neighbour, energy=own.energy, stability=own.stability, warnings=own.warnings, breaks_group=own.breaks_group, here=True)
 
 
 def _step(scan: ScanSpec, index: int, neighbour: CurveField | None, watch: Watch) -> CurveField | None:

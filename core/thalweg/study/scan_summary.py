@@ -4,32 +4,46 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from thalweg.study.curve_fit import CurveMinimum, diatomic_constants, error_measures, fit_minimum, well_depth
-from thalweg.study.path import SettingPath
+from thalweg.study.curve_fit import error_measures
 from thalweg.study.result import CONVERGED, StudyResult
-from thalweg.study.scan_flags import extremum_of_second_derivative, jumps, spin_crossings
-from thalweg.study.scan_result import CurveFigures, CurvePoint, ScanResult
+from thalweg.study.scan_figures import coupling_figures, curve_figures
+from thalweg.study.scan_flags import jumps, spin_crossings
+from thalweg.study.scan_result import CurvePoint, ScanResult
 from thalweg.study.scan_spec import ScanSpec
 from thalweg.study.scan_task import PointOutcome
 from thalweg.study.verdict import amount
 from thalweg.systems.elements import find_element
 from thalweg.systems.molecule import Molecule
-from thalweg.units import BOHR_IN_ANGSTROM
+from thalweg.systems.wording import counted
 
 #: A jump counts from this part of the target error.
 JUMP_PART = 0.1
+#: Flags of points that are run again from their neighbours, and of those that then get several starts.
+DOUBTFUL = frozenset({"jump", "stalled", "not-converged", "mean-field-branch"})
+STUCK = frozenset({"jump", "stalled"})
+#: Kind of a verdict -> what is said of the points that have it.
+KINDS = {
+    "outside": "outside the target",
+    "wrong-symmetry": "in a state of other symmetry or spin than the exact one",
+    "stationary": "stalled at a stationary point",
+    "not-converged": "not converged",
+    "no-exact": "without an exact energy to compare with",
+}
 
 
 def flagged_points(scan: ScanSpec, outcomes: Sequence[PointOutcome | None], retried: set[int]) -> list[CurvePoint]:
     """One CurvePoint for every point that has an outcome, with its flags."""
     results = [o.result if o is not None else None for o in outcomes]
-    jumped = set(jumps([_error(r) for r in results], JUMP_PART * scan.study.target.error))
+    tolerance = JUMP_PART * next((r.target_error for r in results if r is not None), scan.study.target.error)
+    jumped = set(jumps([_error(r) for r in results], tolerance))
+    branched = set(jumps([_reference_error(r) for r in results], tolerance)) - jumped
     spins = [r.exact_s_squared if r is not None else None for r in results]
     turned = {crossing.right for crossing in spin_crossings(scan.points, spins)}
     points = []
     for index, outcome in enumerate(outcomes):
         flags = [] if outcome is None else _own_flags(outcome)
-        flags += [name for name, on in (("jump", index in jumped), ("spin-changed", scan.points[index] in turned)) if on]
+        seen = (("jump", index in jumped), ("mean-field-branch", index in branched), ("spin-changed", scan.points[index] in turned))
+        flags += [name for name, on in seen if on and name not in flags]
         flags += ["retried"] if index in retried and results[index] is not None else []
         points.append(
             CurvePoint(
@@ -39,14 +53,15 @@ def flagged_points(scan: ScanSpec, outcomes: Sequence[PointOutcome | None], retr
                 flags=tuple(flags),
                 notes=outcome.notes if outcome is not None else (),
                 failure=outcome.failure if outcome is not None else "",
+                details=outcome.details if outcome is not None else "",
             )
         )
     return points
 
 
-def needs_healing(scan: ScanSpec, points: Sequence[CurvePoint]) -> list[int]:
-    """Points to run again from their neighbours: failed, stalled, jumped or not converged."""
-    return [p.index for p in points if set(p.flags) & {"failed", "jump", "stalled", "not-converged", "mean-field-branch"}]
+def needs_healing(points: Sequence[CurvePoint], flags: frozenset[str] = DOUBTFUL) -> list[int]:
+    """Indices of the points that carry one of these flags."""
+    return [p.index for p in points if flags.intersection(p.flags)]
 
 
 def summarise(scan: ScanSpec, points: Sequence[CurvePoint], seconds: float) -> ScanResult:
@@ -54,10 +69,9 @@ def summarise(scan: ScanSpec, points: Sequence[CurvePoint], seconds: float) -> S
     done = [(p, p.result) for p in points if p.result is not None]
     first = done[0][1] if done else None
     mass, mass_remarks = _reduced_mass(scan)
-    x = [p.coordinate for p, _ in done]
     both = [(p.coordinate, r.energy, r.exact_energy) for p, r in done if r.exact_energy is not None]
     measures = error_measures([e for _, e, _ in both], [e for _, _, e in both]) if both else None
-    varies_coupling = isinstance(scan.path, SettingPath)
+    exact = [(x, e) for x, _, e in both]
     return ScanResult(
         label=first.label if first else "",
         axis=scan.path.axis(scan.study),
@@ -65,19 +79,19 @@ def summarise(scan: ScanSpec, points: Sequence[CurvePoint], seconds: float) -> S
         energy_unit=first.energy_unit if first else "hartree",
         target_error=first.target_error if first else scan.study.target.error,
         points=tuple(p for p in points if p.result is not None or p.failure),
-        finished=len(done) == len(points),
+        finished=all(p.result is not None or p.failure for p in points),
         max_error=measures.maximum if measures else None,
         mean_error=measures.mean if measures else None,
         npe=measures.npe if measures else None,
         error_at_minimum=measures.at_minimum if measures else None,
-        exact=_figures(scan, [c for c, _, _ in both], [e for _, _, e in both], mass),
-        variational=_figures(scan, x, [r.energy for _, r in done], mass),
+        exact=curve_figures(scan, exact, mass),
+        variational=curve_figures(scan, [(p.coordinate, r.energy) for p, r in done], mass),
         reduced_mass=mass,
-        transition=extremum_of_second_derivative([c for c, _, _ in both], [e for _, _, e in both]) if varies_coupling else None,
         remarks=mass_remarks + _remarks(scan, points),
-        verdict=_verdict(points, [r for _, r in done], measures.maximum if measures else None),
+        verdict=_verdict(points, measures.maximum if measures else None),
         seconds=seconds,
         spec=scan,
+        **coupling_figures(scan, exact),
     )
 
 
@@ -102,22 +116,8 @@ def _error(result: StudyResult | None) -> float | None:
     return result.error if result.error is not None else result.energy - result.reference_energy
 
 
-def _figures(scan: ScanSpec, x: Sequence[float], energies: Sequence[float], mass: float | None) -> CurveFigures:
-    distance = scan.path.is_distance
-    minimum = fit_minimum(x, energies, logarithmic=distance) if len(x) >= 5 else None
-    if minimum is None:
-        return CurveFigures(remarks=("No minimum: the curve has none inside, too few points, or does not follow a smooth fit.",))
-    depth = well_depth(x, energies, minimum) if distance else None
-    remarks = () if depth is not None or not distance else ("No D_e: the curve does not flatten out at its far end.",)
-    frequency = _constants(scan, minimum, mass)
-    return CurveFigures(r_e=minimum.r_e, e_min=minimum.e_min, d_e=depth, fit=minimum.sentence(), remarks=remarks, **frequency)
-
-
-def _constants(scan: ScanSpec, minimum: CurveMinimum, mass: float | None) -> dict[str, float]:
-    if mass is None or not scan.path.is_distance:
-        return {}
-    found = diatomic_constants(minimum.scaled(BOHR_IN_ANGSTROM) if scan.path.unit(scan.study) == "bohr" else minimum, mass)
-    return {"omega_e": found.omega_e, "omega_e_x_e": found.omega_e_x_e, "b_e": found.b_e}
+def _reference_error(result: StudyResult | None) -> float | None:
+    return None if result is None or result.exact_energy is None else result.reference_energy - result.exact_energy
 
 
 def _reduced_mass(scan: ScanSpec) -> tuple[float | None, tuple[str, ...]]:
@@ -139,19 +139,30 @@ def _remarks(scan: ScanSpec, points: Sequence[CurvePoint]) -> tuple[str, ...]:
     spins = [p.result.exact_s_squared if p.result else None for p in points]
     crossings = tuple(c.sentence()[:1].upper() + c.sentence()[1:] + "." for c in spin_crossings(scan.points, spins))
     failed = [f"{p.coordinate:g}" for p in points if p.failure]
-    lost = (f"{len(failed)} points failed: {', '.join(failed)}.",) if failed else ()
+    lost = (f"{counted(len(failed), 'point')} failed: {', '.join(failed)}.",) if failed else ()
     return crossings + lost
 
 
-def _verdict(points: Sequence[CurvePoint], results: Sequence[StudyResult], worst: float | None) -> str:
+def _verdict(points: Sequence[CurvePoint], worst: float | None) -> str:
+    results = [p.result for p in points if p.result is not None]
+    failures = [p.failure for p in points if p.failure]
     if not results:
-        return "No point was finished"
-    if len(results) < len(points):
-        return f"Unfinished: {len(results)} of {len(points)} points"
+        return f"No point could be computed: {failures[0].rstrip('.')}" if failures else "No point was finished"
+    size = f"; largest error {amount(worst, results[0].energy_unit)}" if worst is not None else ""
+    lost = f"; {counted(len(failures), 'point')} failed" if failures else ""
+    if len(results) + len(failures) < len(points):
+        return f"Unfinished: {len(results)} of {len(points)} points{size}{lost}"
     reached = sum(r.reached_target for r in results)
-    unit = results[0].energy_unit
-    size = f"; largest error {amount(worst, unit)}" if worst is not None else ""
     if reached == len(results):
-        return f"Reaches the target at all {reached} points{size}"
-    outside = [f"{p.coordinate:g}" for p in points if p.result is not None and not p.result.reached_target]
-    return f"Outside the target at {len(outside)} of {len(results)} points ({outside[0]} to {outside[-1]}){size}"
+        return f"Reaches the target at {'all ' if not failures else ''}{counted(reached, 'point')}{size}{lost}"
+    parts = [text for kind in KINDS if (text := _points_of(points, kind))]
+    return "; ".join(parts)[:1].upper() + "; ".join(parts)[1:] + size + lost
+
+
+def _points_of(points: Sequence[CurvePoint], kind: str) -> str:
+    """`outside the target at 3 of 9 points (2.6 to 3.2)`; empty where no point has this kind of verdict."""
+    places = [p.coordinate for p in points if p.result is not None and p.result.verdict_kind == kind]
+    if not places:
+        return ""
+    where = f"{places[0]:g}" if len(places) == 1 else f"{places[0]:g} to {places[-1]:g}"
+    return f"{KINDS[kind]} at {len(places)} of {counted(sum(p.result is not None for p in points), 'point')} ({where})"

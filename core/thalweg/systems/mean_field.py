@@ -14,6 +14,7 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.systems.gaussian_basis import pyscf_module, with_turned_axes
 from thalweg.systems.orbital_order import MeanField, settled
+from thalweg.systems.prepared import MeanFieldSeed
 from thalweg.watch import Watch
 
 _CONVERGED_ENERGY = 1e-11  # Eh
@@ -39,19 +40,26 @@ class _Progress:
         self.watch.check()
 
 
-def solve(mole: Any, watch: Watch, seed: FloatArray | None = None) -> MeanField:
-    """RHF or ROHF from PySCF's atomic guess or from the density matrix `seed`, shape (functions, functions) or (2, ...)."""
+def solve(mole: Any, watch: Watch, density: FloatArray | None = None, seed: MeanFieldSeed | None = None) -> MeanField:
+    """RHF or ROHF from PySCF's atomic guess or from a density matrix, shape (functions, functions) or (2, ...).
+
+    `seed` says what was found at the geometry that the density comes from: its own, whose stability is then known, or a neighbour.
+    """
     lib = pyscf_module("lib")
     progress = _Progress(watch)
     # One thread: sums of several threads come in any order, and the same settings must give the same numbers.
     with lib.with_omp_threads(1), warnings.catch_warnings():
         warnings.simplefilter("ignore")
-        solver = _first_solution(mole, progress, seed)
+        solver = _first_solution(mole, progress, density)
+        if seed is not None and seed.here and abs(float(solver.e_tot) - seed.energy) < _LOWER:
+            return settled(solver, seed.stability, progress.iterations, seed.warnings, seed.breaks_group)
         if _is_stable_at_once(solver, progress):
             return settled(solver, "stable", progress.iterations, tuple(progress.remarks))
         stability = _make_stable(solver, progress)
-        solver = _checked_for_broken_symmetry(solver, progress)
-        return settled(solver, stability, progress.iterations, tuple(progress.remarks))
+        breaks_group = False
+        if solver.mol.symmetry and _has_rotations(solver):
+            solver, breaks_group = _checked_for_broken_symmetry(solver, progress, seed is not None and seed.breaks_group)
+        return settled(solver, stability, progress.iterations, tuple(progress.remarks), breaks_group)
 
 
 def _first_solution(mole: Any, progress: _Progress, seed: FloatArray | None) -> Any:
@@ -142,29 +150,34 @@ def _make_stable(solver: Any, progress: _Progress) -> str:
     return "stable"
 
 
-def _checked_for_broken_symmetry(solver: Any, progress: _Progress) -> Any:
-    """Looks for a lower solution outside the point group. One that fits the group with its axes turned is taken; another is only told of."""
-    if not solver.mol.symmetry or not _has_rotations(solver):
-        return solver
+def _checked_for_broken_symmetry(solver: Any, progress: _Progress, expected: bool) -> tuple[Any, bool]:
+    """Looks for a lower solution outside the point group. One that fits the group with its axes turned is taken; another is only told of.
+
+    Returns the solver, and whether such another one was told of. Where it is `expected`, because a neighbouring geometry has one, the
+    instability is enough and the solution itself is not worked out.
+    """
     orbitals = _lowest_rotation(solver, with_symmetry=False)
     if orbitals is None:
-        return solver
+        return solver, False
+    group, remedy = solver.mol.groupname, "switch the point group off to start from it"
+    if expected:
+        progress.remarks.append(f"A lower mean field breaks the point group {group}, as at the neighbouring geometry: {remedy}")
+        return solver, True
     plain = solver.mol.copy()
     plain.symmetry = False
     broken = _new_solver(plain, progress)
     broken._eri, broken.mo_occ = solver._eri, solver.mo_occ
     _second_order(broken, np.asarray(orbitals), progress)
     if broken.e_tot > solver.e_tot - _WORTH_TELLING:
-        return solver
+        return solver, False
     turned = _solved_with_turned_axes(solver, broken.make_rdm1(), progress)
     if turned is not None:
         solver = turned
     fall = float(solver.e_tot - broken.e_tot)
-    if fall > _WORTH_TELLING:
-        progress.remarks.append(
-            f"A mean field {1e3 * fall:.3f} mEh lower breaks the point group {solver.mol.groupname}: switch the point group off to start from it"
-        )
-    return solver
+    if fall <= _WORTH_TELLING:
+        return solver, False
+    progress.remarks.append(f"A mean field {1e3 * fall:.3f} mEh lower breaks the point group {group}: {remedy}")
+    return solver, turned is None
 
 
 def _solved_with_turned_axes(solver: Any, seed: FloatArray, progress: _Progress) -> Any | None:

@@ -42,7 +42,7 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     mole = build_mole(symbols, xyz, basis, spec.charge, n_alpha - n_beta, spec.cartesian, spec.point_group, budget_bytes)
     n_functions = int(mole.nao_nr())
     _check_filling(n_functions, int(mole.nelec[0]))
-    field = solve(mole, watch, usable_density(neighbour, n_functions))
+    field = solve(mole, watch, usable_density(neighbour, n_functions), neighbour)
     watch.stage("integrals")
     n_core = sum(max(0, core_orbitals(e.number) - mole.atom_nelec_core(i) // 2) for i, e in enumerate(elements))
     space, following = follow(neighbour, field, choose_active_space(spec.active_space, field.occupation, field.energies, n_core))

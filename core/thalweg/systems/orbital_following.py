@@ -30,6 +30,9 @@ def seed_of(field: MeanField, space: ActiveSpace) -> MeanFieldSeed:
         core=space.core,
         active=space.active,
         energy=field.energy,
+        stability=field.stability,
+        warnings=field.warnings,
+        breaks_group=field.breaks_group,
     )
 
 

@@ -28,6 +28,7 @@ class MeanField:
         irreps: labels whose product is the bitwise xor, shape (orbitals,); all 0 without a point group.
         irrep_names: name of each label, empty without a point group.
         iterations: of all solutions together.
+        breaks_group: whether a lower solution outside the point group was told of.
     """
 
     solver: Any
@@ -41,13 +42,14 @@ class MeanField:
     converged: bool
     stability: str
     warnings: tuple[str, ...]
+    breaks_group: bool = False
 
     def without_point_group(self, why: str) -> MeanField:
         """The same orbitals without labels, and the reason among the warnings."""
         return replace(self, irreps=np.zeros_like(self.irreps), irrep_names=(), warnings=(*self.warnings, why))
 
 
-def settled(solver: Any, stability: str, iterations: int, warnings: tuple[str, ...]) -> MeanField:
+def settled(solver: Any, stability: str, iterations: int, warnings: tuple[str, ...], breaks_group: bool = False) -> MeanField:
     """Brings the orbitals into the order and phases that `MeanField` promises, in the solver too."""
     energies, occupation = np.array(solver.mo_energy, dtype=float), np.array(solver.mo_occ, dtype=float)
     orbitals = np.array(solver.mo_coeff, dtype=float)
@@ -76,6 +78,7 @@ def settled(solver: Any, stability: str, iterations: int, warnings: tuple[str, .
         converged=bool(solver.converged),
         stability=stability,
         warnings=warnings,
+        breaks_group=breaks_group,
     )
 
 

@@ -37,6 +37,8 @@ class MeanFieldSeed:
         occupation: 2, 1 or 0 for each orbital.
         core, active: orbitals counted from 0.
         energy: of the mean field, Eh.
+        stability, warnings, breaks_group: what was found of it.
+        here: it is this very geometry's own, followed beforehand, so that nothing of this is to be found out again.
         follow: pick the neighbour's active orbitals by overlap instead of those that the description of the space picks.
     """
 
@@ -46,6 +48,10 @@ class MeanFieldSeed:
     core: tuple[int, ...]
     active: tuple[int, ...]
     energy: float
+    stability: str = ""
+    warnings: tuple[str, ...] = ()
+    breaks_group: bool = False
+    here: bool = False
     follow: bool = True
 
 

@@ -28,8 +28,13 @@ def test_a_morse_curve_gives_back_its_constants(grid):
 
 def test_the_depth_is_given_only_where_the_curve_has_flattened():
     far, near = np.linspace(0.5, 6.0, 60), np.linspace(0.5, 1.4, 30)
-    assert well_depth(far, morse(far), fit_minimum(far, morse(far))) == pytest.approx(DEPTH, rel=1e-3)
-    assert well_depth(near, morse(near), fit_minimum(near, morse(near))) is None
+    depth, sentence = well_depth(far, morse(far), fit_minimum(far, morse(far)))
+    assert depth == pytest.approx(DEPTH, rel=1e-3)
+    missing = DEPTH * (2 * np.exp(-WIDTH * (6.0 - R_E)))  # what the Morse curve gains beyond 6
+    assert f"an estimated {1e3 * missing:.2g} mEh" in sentence
+    depth, sentence = well_depth(near, morse(near), fit_minimum(near, morse(near)))
+    assert depth is None
+    assert "does not reach separated fragments" in sentence
 
 
 def test_no_minimum_is_invented():
@@ -41,6 +46,15 @@ def test_no_minimum_is_invented():
 def test_a_curve_with_a_jump_is_not_fitted():
     r = np.linspace(0.5, 2.0, 20)
     assert fit_minimum(r, morse(r) + 0.01 * (r > 0.8)) is None
+
+
+def test_sparse_points_say_how_uncertain_their_fit_is():
+    r = np.linspace(0.5, 2.5, 9)
+    sparse = fit_minimum(r, morse(r))
+    fine = fit_minimum(np.linspace(0.5, 2.5, 41), morse(np.linspace(0.5, 2.5, 41)))
+    assert abs(sparse.r_e - R_E) < 5 * sparse.r_e_spread
+    assert sparse.r_e_spread > 20 * fine.r_e_spread
+    assert "with a degree one off the minimum moves by" in sparse.sentence()
 
 
 def test_a_parabola_in_an_angle_needs_no_logarithm():

@@ -70,7 +70,7 @@ def test_the_depth_of_the_well_is_that_of_separated_atoms(h2_curve):
     assert far.variational.d_e == pytest.approx(0.204142, abs=2e-4)
     near = serial(ScanSpec(study=H2, points=linear_points(0.5, 1.25, 8)))
     assert near.exact.d_e is None
-    assert any("flatten" in remark for remark in near.exact.remarks)
+    assert any("does not reach separated fragments" in remark for remark in near.exact.remarks)
 
 
 def test_a_local_pool_gives_the_same_curve_to_the_last_digit():
@@ -156,8 +156,9 @@ def test_points_that_cannot_be_are_failures_with_their_sentence_and_the_rest_goe
     result = serial(scan)
     assert result.points[0].flags == ("failed",)
     assert "one spot" in result.points[0].failure
-    assert not result.finished
-    assert any("1 points failed" in remark for remark in result.remarks)
+    assert result.finished
+    assert result.verdict.endswith("; 1 point failed")
+    assert any("1 point failed: 0.001" in remark for remark in result.remarks)
 
 
 def test_a_path_that_does_not_fit_is_refused_before_anything_runs():

@@ -34,6 +34,11 @@ class ScanPath(Options):
         """True where the coordinate is a length, so that the curve is that of a bond."""
         return False
 
+    @property
+    def has_equilibrium(self) -> bool:
+        """True where the coordinate is one of the geometry, so that a minimum is an equilibrium."""
+        return True
+
 
 def molecule_of(spec: StudySpec, path: str) -> Molecule:
     """The molecule of the study; StudyError for other systems."""

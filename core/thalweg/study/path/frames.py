@@ -35,3 +35,7 @@ class FramesPath(ScanPath):
 
     def axis(self, spec: StudySpec) -> str:
         return "Frame"
+
+    @property
+    def has_equilibrium(self) -> bool:
+        return False

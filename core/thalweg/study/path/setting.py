@@ -26,6 +26,14 @@ class SettingPath(ScanPath):
     def axis(self, spec: StudySpec) -> str:
         return self.setting
 
+    @property
+    def has_equilibrium(self) -> bool:
+        return False
+
+    def counts_something(self, spec: StudySpec) -> bool:
+        """True for whole numbers, such as the sites of a lattice, along which a curve has no derivatives."""
+        return isinstance(self._current(spec), int)
+
     def _current(self, spec: StudySpec) -> int | float:
         node: object = spec
         for name in self.setting.split("."):
