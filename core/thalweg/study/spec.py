@@ -170,7 +170,7 @@ UNIONS: dict[str, Alternatives[Any]] = SECTIONS | {"lattice": LATTICES, "model":
 
 
 #: Trial state of a spin model until another is chosen.
-SPIN_ANSATZ = HardwareEfficient
+SPIN_ANSATZ = AlternatingOperators
 
 
 def suited(spec: StudySpec) -> StudySpec:
