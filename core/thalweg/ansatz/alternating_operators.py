@@ -17,8 +17,11 @@ from thalweg.circuit.program import Gate, GateProgram
 from thalweg.errors import StudyError
 from thalweg.options import Options, option
 
-#: Rotation angle in radians of the strongest term in the middle of a full step of the ramp: near the best ones of Zhou et al. 2020.
-RAMP_ANGLE = 1.2
+#: Sum in radians of the rotation angles that a full step of the ramp turns one site by, and the angle of a full step of a mixer:
+#: near the best ones of Zhou et al. 2020 for cuts of a ring, and small enough for lattices with many bonds at a site.
+RAMP_STEP, MIXER_STEP = 2.4, 1.2
+#: Parts of a layer that its description names.
+NAMED_PARTS = 6
 SPLIT_HELP = (
     "`bonds` keeps the terms of one bond together and colours the bonds, so that S_z or total spin is kept where the Hamiltonian keeps it; "
     "`types` takes terms of X, of Y and of Z apart. Electrons: terms that move the same occupations stay together."
@@ -102,15 +105,15 @@ class AlternatingOperators(Options):
         if self.start != "ramp" or program.n_parameters != self.depth * sum(counts):
             return start_angles("small-random" if self.start == "ramp" else self.start, program.n_parameters, rng)
         has_mixer = self._has_mixer(ground)
-        strongest = max(turn.group.largest for turn in turns if not (has_mixer and turn.is_driver))
-        angles = []
+        step = RAMP_STEP / _largest_on_a_site(ground)
+        angles: list[float] = []
         for layer in range(self.depth):
             share = (layer + 0.5) / self.depth
             for block, count in enumerate(counts):
                 turn = next(t for t in turns if t.block == block)
-                size = 1.0 if has_mixer and turn.is_driver else turn.group.largest / strongest
+                size = MIXER_STEP if has_mixer and turn.is_driver else step * turn.group.largest
                 part = (1.0 - share if has_mixer else 1.0) if turn.is_driver else share
-                angles += [RAMP_ANGLE * size * part] * count
+                angles += [size * part] * count
         return np.array(angles)
 
     def from_shallower(self, parameters: FloatArray, n_parameters: int) -> FloatArray:
@@ -186,8 +189,10 @@ class AlternatingOperators(Options):
         begins = {"plus": "all plus", "singlets": "dimer singlets"}.get(state.reference_kind, "the basis state of the reference")
         if self._has_mixer(ground) and self.mixer == "ring" and self.initial == "fitting":
             begins = f"the bit string {''.join(str(state.reference_bits >> q & 1) for q in range(ground.qubits.n_qubits))}"
+        named = [turn.group.label for turn in turns[:NAMED_PARTS]]
+        named += [f"{len(turns) - NAMED_PARTS} more parts"] if len(turns) > NAMED_PARTS else []
         angle = "an angle for each term" if self.multi_angle else "one angle for each part"
-        return f"from {begins}, {self.depth} times: {', then '.join(turn.group.label for turn in turns)}; {angle}"
+        return f"from {begins}, {self.depth} times: {', then '.join(named)}; {angle}"
 
 
 def _fitting_pairs(ground: Ground) -> tuple[tuple[int, int], ...]:
@@ -203,6 +208,12 @@ def _fitting_pairs(ground: Ground) -> tuple[tuple[int, int], ...]:
         return ()
     graph = replace(unconnected(n, ""), bonds=tuple(Bond(a, b, weight=w) for (a, b), w in bonds.items()))
     return pairing(graph) or ()
+
+
+def _largest_on_a_site(ground: Ground) -> float:
+    """The largest sum of |coefficient| over the strings that act on one qubit."""
+    support, sizes = ground.qubits.x | ground.qubits.z, np.abs(ground.qubits.coefficients)
+    return max(float(sizes[(support >> np.uint64(q) & np.uint64(1)) == 1].sum()) for q in range(ground.qubits.n_qubits))
 
 
 def _is_kept(group: TermGroup, state: Ground) -> bool:

@@ -178,10 +178,10 @@ def _group(cells: list[_Cell], n_qubits: int) -> TermGroup:
 def _label(cells: list[_Cell]) -> str:
     """What a group holds, e.g. `XX+YY+ZZ on 6 bonds`, `X on 8 sites`, `12 diagonal terms`."""
     kind, count = cells[0].kind, len(cells)
-    if kind == "diagonal":
-        return f"{sum(cell.x.size for cell in cells)} diagonal terms"
-    if kind == "flips":
-        return f"{sum(cell.x.size for cell in cells)} exchange terms on {count} sets of qubits" if count > 1 else f"{cells[0].x.size} exchange terms"
+    if kind in ("diagonal", "flips"):
+        strings = sum(cell.x.size for cell in cells)
+        what = "diagonal" if kind == "diagonal" else "exchange"
+        return f"{strings} {what} {'term' if strings == 1 else 'terms'}"
     if kind in ("X", "Y", "Z", "mixed") and any(int(cell.x[0] | cell.z[0]).bit_count() > 1 for cell in cells):
         types = sorted({string_type(int(cell.x[0]), int(cell.z[0])) for cell in cells}, key=lambda text: (-len(text), text))
         return f"{count} {' and '.join(types[:3])}{' ...' if len(types) > 3 else ''} {'term' if count == 1 else 'terms'}"
