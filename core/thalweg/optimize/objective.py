@@ -167,7 +167,7 @@ class CountedObjective:
         self._tell(seen, 0)
 
     def value(self, parameters: FloatArray) -> float:
-        if self._seen.is_at(parameters):
+        if self._is_known(parameters):
             return self._seen.estimate.energy - self.offset
         self._before()
         self._after(_Seen(parameters.copy(), self._source.energy(parameters)))
@@ -175,7 +175,7 @@ class CountedObjective:
 
     def value_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         seen = self._seen
-        if seen.gradient is None or not seen.is_at(parameters):  # optimisers ask again for their own start
+        if seen.gradient is None or not self._is_known(parameters):  # optimisers ask again for their own start
             self._before()
             estimate, slopes = self._source.energy_and_gradient(parameters)
             seen = _Seen(parameters.copy(), estimate, slopes.gradient, *_norm(slopes))
@@ -233,6 +233,10 @@ class CountedObjective:
         if not self._source.is_sampled and seen.estimate.energy < self.best_energy:
             self._keep(seen)
         return seen
+
+    def _is_known(self, parameters: FloatArray) -> bool:
+        """Whether the latest evaluation answers for this point; whoever asks again for a sampled energy wants another sample."""
+        return not self._source.is_sampled and self._seen.is_at(parameters)
 
     def _before(self) -> None:
         if self._should_stop():

@@ -23,7 +23,7 @@ def decays_of(points: Sequence[GradientSpread]) -> tuple[Decay, ...]:
         for value in values:
             line = [p for p in points if getattr(p, held) == value and getattr(p, along) is not None]
             if len({getattr(p, along) for p in line}) > 1:
-                other = "" if value is None or len(values) == 1 else f"{value} {held}"
+                other = "" if value is None or len(values) == 1 else f"{value} {held if value != 1 else held[:-1]}"
                 found.append(fitted_decay(line, along, other))
     return tuple(found)
 

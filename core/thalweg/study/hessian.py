@@ -60,7 +60,8 @@ def spread_of_starts(result: StudyResult) -> StartSpread:
     within = None
     if result.exact_energy is not None:
         within = int(np.count_nonzero(energies <= result.exact_energy + result.target_error))
-    found = f"{energies.size} starts end at {distinct} different energies, {amount(highest - lowest, result.energy_unit)} apart"
+    ended = "at one energy" if distinct == 1 else f"at {distinct} different energies, {amount(highest - lowest, result.energy_unit)} apart"
+    found = f"{energies.size} start{'s' if energies.size > 1 else ''} ended {ended}"
     verdict = found if within is None else f"{found}; {within} of them within the target"
     return StartSpread(
         starts=energies.size,

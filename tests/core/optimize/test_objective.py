@@ -165,6 +165,12 @@ def test_a_gradient_within_its_noise_does_not_stop_the_search():
     assert objective.iterations == 1
 
 
+def test_a_sampled_energy_that_is_asked_for_again_is_sampled_again():
+    objective, _ = noisy()
+    assert objective.value(np.ones(2)) != objective.value(np.ones(2))
+    assert objective.spent.shots == 200
+
+
 def test_the_shot_limit_stops_the_search():
     objective, _ = noisy(StopRules(gradient=0, shots=250))
     for k in range(3):

@@ -88,7 +88,7 @@ def test_two_sizes_or_large_errors_leave_it_open():
 def test_decays_are_found_along_qubits_and_along_layers():
     points = [point(n, 0.5**n * 0.9**layers, layers) for n in (2, 4, 6) for layers in (1, 2, 3)]
     found = decays_of(points)
-    assert [(d.along, d.other) for d in found[:4]] == [("qubit", "3 layers"), ("qubit", "2 layers"), ("qubit", "1 layers"), ("layer", "6 qubits")]
+    assert [(d.along, d.other) for d in found[:4]] == [("qubit", "3 layers"), ("qubit", "2 layers"), ("qubit", "1 layer"), ("layer", "6 qubits")]
     assert found[0].factor == pytest.approx(0.5)
     assert found[3].factor == pytest.approx(0.9)
 
