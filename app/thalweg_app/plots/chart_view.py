@@ -2,19 +2,31 @@
 
 from __future__ import annotations
 
-from typing import Any
+import importlib
+import threading
+from typing import TYPE_CHECKING, Any
 
-import pyqtgraph as pg
 from PySide6.QtCore import QPointF, Qt, Signal
 from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QLabel, QSizePolicy, QStackedLayout, QVBoxLayout, QWidget
 
 from thalweg_app.colours import LIGHT, Palette
 from thalweg_app.plots.legend import Legend
-from thalweg_app.plots.panel_view import PanelView
 from thalweg_app.presenters.chart import Chart
 
+if TYPE_CHECKING:
+    from thalweg_app.plots.panel_view import PanelView
+
+#: Loads the plotting library, which takes long beside the rest of the window; nothing is drawn before there is a chart.
+DRAWING = "thalweg_app.plots.panel_view"
 ZOOM_STEP, PAN_STEP = 0.8, 0.1
+
+
+def load_ahead() -> threading.Thread:
+    """Loads the plotting library beside the window, so that the first picture finds it."""
+    thread = threading.Thread(target=importlib.import_module, args=(DRAWING,), name="plotting library", daemon=True)
+    thread.start()
+    return thread
 
 
 class ChartView(QWidget):
@@ -38,24 +50,34 @@ class ChartView(QWidget):
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
         self.setAccessibleName(name)
         self.legend = Legend()
-        self.graphics = pg.GraphicsLayoutWidget()
-        self.graphics.setFrameShape(self.graphics.Shape.NoFrame)
-        self.graphics.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        self.graphics.ci.layout.setVerticalSpacing(2)
-        self.graphics.ci.setContentsMargins(2, 2, 10, 2)
+        self._graphics: Any = None
         self._empty = QLabel(alignment=Qt.AlignmentFlag.AlignCenter, wordWrap=True)
         self._empty.setProperty("role", "muted")
         drawn = QWidget()
-        below = QVBoxLayout(drawn)
-        below.setContentsMargins(0, 0, 0, 0)
-        below.setSpacing(2)
-        below.addWidget(self.legend)
-        below.addWidget(self.graphics, 1)
+        self._below = QVBoxLayout(drawn)
+        self._below.setContentsMargins(0, 0, 0, 0)
+        self._below.setSpacing(2)
+        self._below.addWidget(self.legend)
         self._stack = QStackedLayout(self)
         self._stack.addWidget(self._empty)
         self._stack.addWidget(drawn)
-        self._moved = pg.SignalProxy(self.graphics.scene().sigMouseMoved, rateLimit=30, slot=self._on_move)
-        self.graphics.scene().sigMouseClicked.connect(self._on_click)
+
+    @property
+    def graphics(self) -> Any:
+        """The drawing, made when it is needed first."""
+        if self._graphics is None:
+            import pyqtgraph as pg
+
+            self._graphics = graphics = pg.GraphicsLayoutWidget()
+            graphics.setFrameShape(graphics.Shape.NoFrame)
+            graphics.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+            graphics.setBackground(self._palette.paper)
+            graphics.ci.layout.setVerticalSpacing(2)
+            graphics.ci.setContentsMargins(2, 2, 10, 2)
+            self._moved = pg.SignalProxy(graphics.scene().sigMouseMoved, rateLimit=30, slot=self._on_move)
+            graphics.scene().sigMouseClicked.connect(self._on_click)
+            self._below.addWidget(graphics, 1)
+        return self._graphics
 
     @property
     def chart(self) -> Chart:
@@ -81,7 +103,8 @@ class ChartView(QWidget):
 
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
-        self.graphics.setBackground(palette.paper)
+        if self._graphics is not None:
+            self._graphics.setBackground(palette.paper)
         self.show_chart(self._chart)
 
     def fit(self) -> None:
@@ -127,6 +150,8 @@ class ChartView(QWidget):
             self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
 
     def _build_panels(self, chart: Chart) -> None:
+        from thalweg_app.plots.panel_view import PanelView
+
         layout = self.graphics.ci.layout
         self.graphics.clear()
         for row in range(len(self._panels)):  # a row keeps its height when it has become empty

@@ -9,7 +9,7 @@ from PySide6.QtGui import QBrush, QColor, QPainter, QPaintEvent, QPolygonF
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from thalweg_app.colours import LIGHT, Palette, Style, style_of
-from thalweg_app.plots.panel_view import pen_of
+from thalweg_app.plots.pens import pen_of
 from thalweg_app.presenters.chart import Chart
 
 SAMPLE, GAP, PADDING = 26, 6, 16

@@ -8,25 +8,17 @@ from typing import Any
 import numpy as np
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
-from PySide6.QtGui import QBrush, QColor, QFont, QPen
+from PySide6.QtGui import QBrush, QColor, QFont
 
 from thalweg.arrays import FloatArray
-from thalweg_app.colours import Palette, Style, style_of
+from thalweg_app.colours import Palette, style_of
 from thalweg_app.plots.axes import DecadeAxis, NameAxis, PlainAxis, set_axis_colours
+from thalweg_app.plots.pens import pen_of
 from thalweg_app.presenters.chart import Band, Panel, Series
 
-#: Wide antialiased pens are slow on long curves, and marks melt into one another.
-MAX_WIDE_POINTS = 2000
+#: More marks than this melt into one another.
 MAX_MARKS = 300
-_DASHES = {"dash": [5, 3], "dot": [1.2, 2.4], "dashdot": [5, 3, 1.2, 3], "longdash": [9, 4]}
 _MARKS = {"o": "o", "s": "s", "^": "t1", "D": "d", "v": "t", "p": "p", "*": "star"}
-
-
-def pen_of(style: Style, points: int = 0) -> QPen:
-    pen = pg.mkPen(style.colour, width=1 if points > MAX_WIDE_POINTS else style.width)
-    if style.dash in _DASHES and points <= MAX_WIDE_POINTS:
-        pen.setDashPattern(_DASHES[style.dash])
-    return pen
 
 
 class PanelView:

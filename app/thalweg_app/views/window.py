@@ -12,6 +12,7 @@ from thalweg.study.events import Failed
 from thalweg_app.colours import Palette
 from thalweg_app.forms import TextEntry
 from thalweg_app.plots.all_pictures import PICTURES
+from thalweg_app.plots.chart_view import load_ahead
 from thalweg_app.plots.curve import CurvePicture
 from thalweg_app.plots.picture import Picture
 from thalweg_app.presenters.document import Recovery
@@ -30,7 +31,7 @@ REDRAW_MS = 50
 REST_MS = 90
 AUTOSAVE_MS = 20_000
 #: After the start, when the window stands and nobody waits for it.
-PREPARE_MS = 700
+PREPARE_MS = 300
 
 
 class Window(QMainWindow):
@@ -150,7 +151,7 @@ class Window(QMainWindow):
         self._autosave = QTimer(self, interval=AUTOSAVE_MS)
         self._autosave.timeout.connect(self._keep)
         self._autosave.start()
-        QTimer.singleShot(PREPARE_MS, self, self._prepare)
+        QTimer.singleShot(PREPARE_MS, self, self._load_ahead)
 
     def _connect(self) -> None:
         bench = self.workbench
@@ -182,7 +183,14 @@ class Window(QMainWindow):
         self.picture.refresh_live()
         self.status.refresh()
 
+    def _load_ahead(self) -> None:
+        self._loading = load_ahead()
+        self._prepare()
+
     def _prepare(self) -> None:
+        if self._loading.is_alive():
+            QTimer.singleShot(PREPARE_MS, self, self._prepare)
+            return
         for picture in self.pictures:
             picture.prepare()
 

@@ -1,13 +1,13 @@
 import numpy as np
 import pytest
 import studies
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QCoreApplication, Qt
 from PySide6.QtTest import QTest
 
 from thalweg_app.colours import DARK, LIGHT, style_of
 from thalweg_app.plots.chart_view import ChartView
 from thalweg_app.plots.legend import entries_of
-from thalweg_app.plots.panel_view import MAX_WIDE_POINTS
+from thalweg_app.plots.pens import MAX_WIDE_POINTS
 from thalweg_app.presenters.chart import Chart, Panel, Series
 from thalweg_app.presenters.tables import state_chart, terms_chart, terms_of_result
 from thalweg_app.presenters.traces import convergence, shown_result
@@ -98,6 +98,7 @@ def test_the_read_out_of_bars_names_the_category(view):
 def test_every_picture_is_drawn_in_both_appearances(view, chart, palette):
     view.set_palette(palette)
     view.show_chart(chart)
+    QCoreApplication.processEvents()  # the drawing is laid out when it is first needed
     image = view.grab().toImage()
     colours = {image.pixelColor(x, y).name() for x in range(0, image.width(), 7) for y in range(0, image.height(), 7)}
     assert palette.paper.lower() in colours
