@@ -65,3 +65,21 @@ def scan(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
     spec = ScanSpec.model_validate(payload["scan"])
     done = [CurvePoint.model_validate(point) for point in payload["done"]]
     run_scan(spec, lambda: make_executor("local"), emit, should_stop, done=done)
+
+
+def diagnose(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
+    """What the payload's `what` asks: `settings` for trainability and landscape, `result` of a run for curvature and starts."""
+    from pydantic import TypeAdapter
+
+    from thalweg.study.diagnosis import diagnose as run_diagnosis
+    from thalweg.study.diagnosis_spec import AnyDiagnosis
+    from thalweg.study.executors import InProcess
+    from thalweg.study.hessian import curvature_of, spread_of_starts
+    from thalweg.study.result import StudyResult
+
+    if payload["what"] == "starts":
+        return spread_of_starts(StudyResult.model_validate(payload["result"])).model_dump(mode="json")
+    if payload["what"] == "curvature":
+        return curvature_of(StudyResult.model_validate(payload["result"]), watch_into(emit, should_stop)).model_dump(mode="json")
+    settings: Any = TypeAdapter(AnyDiagnosis).validate_python(payload["settings"])
+    return run_diagnosis(settings, InProcess(), emit, should_stop).model_dump(mode="json")

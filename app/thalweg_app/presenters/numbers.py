@@ -55,3 +55,14 @@ def _not_a_number(text: str, wanted: str, field: str) -> StudyError:
     shown = text.strip()
     what = f"'{shown[:40]}' is not a number" if shown else "A number is missing"
     return StudyError(what, "this field holds a number", f"Type {wanted}", field)
+
+
+def parse_wholes(text: str, field: str = "") -> tuple[int, ...]:
+    """`2, 4, 6-8` as whole numbers, nothing as none. StudyError when a part is neither a number nor a range."""
+    found: list[int] = []
+    for part in text.replace(",", " ").split():
+        match = re.fullmatch(r"(\d{1,6})(?:-(\d{1,6}))?", part)
+        if match is None:
+            raise StudyError(f"'{part[:40]}' is no list of numbers", "sizes are whole numbers and ranges", "Write it as 2, 4, 6-8", field)
+        found += range(int(match[1]), int(match[2] or match[1]) + 1)
+    return tuple(found)

@@ -8,6 +8,7 @@ from typing import Any
 from thalweg.study.result import StudyResult
 from thalweg_app.presenters import jobs
 from thalweg_app.presenters.answer import NOTHING_YET, Answer, answer_of, answer_of_check, check_words
+from thalweg_app.presenters.diagnosis_control import DiagnosisControl
 from thalweg_app.presenters.document import Document, RecentFiles
 from thalweg_app.presenters.figures import DerivedFigures
 from thalweg_app.presenters.history import History
@@ -35,6 +36,7 @@ class Workbench:
         self.document = Document(self.setup, self.ledger, self.scans, self.history, recent)
         self.figures = DerivedFigures(starter, inspect)
         self.runs = RunControl(starter, self.figures.of, run, check)
+        self.diagnosis = DiagnosisControl(starter, lambda: self.setup.spec if self.can_run else None, self.ledger)
         self._point: Shown | None = None  # a point of a curve whose convergence is shown
         self._check: CheckOutcome | None = None
         self.answer_changed, self.pictures_changed = Listeners(), Listeners()
@@ -57,6 +59,10 @@ class Workbench:
         self.runs.changed.connect(self.pictures_changed)
         self.scans.told.connect(self.told)
         self.scans.defect.connect(self.defect)
+        self.diagnosis.told.connect(self.told)
+        self.diagnosis.defect.connect(self.defect)
+        self.setup.changed.connect(self.diagnosis.changed)
+        self.ledger.selection_changed.connect(self.diagnosis.changed)
         self.setup.changed.connect(self.scans.changed)
         self.ledger.selection_changed.connect(self._on_selection)
 
