@@ -147,7 +147,9 @@ class OptionsForm(QWidget):
 
     edited = Signal(str, object)
 
-    def __init__(self, options: type[BaseModel], prefix: str = "", *, only: tuple[str, ...] = (), skip: tuple[str, ...] = ()) -> None:
+    def __init__(
+        self, options: type[BaseModel], prefix: str = "", *, only: tuple[str, ...] = (), skip: tuple[str, ...] = (), fold: str = "More settings"
+    ) -> None:
         super().__init__()
         self.options = options
         wanted = [f for f in fields_of(options) if (not only or f.name in only) and f.name not in skip]
@@ -158,7 +160,7 @@ class OptionsForm(QWidget):
         add_rows(layout, plain)
         self.fold: Fold | None = None
         if advanced:
-            self.fold = Fold("More settings")
+            self.fold = Fold(fold)
             inner = QWidget()
             add_rows(form_grid(inner), advanced)
             self.fold.set_content(inner)

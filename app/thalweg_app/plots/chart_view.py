@@ -6,7 +6,7 @@ import importlib
 import threading
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QPointF, Qt, Signal
+from PySide6.QtCore import QPointF, QSize, Qt, Signal
 from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QLabel, QSizePolicy, QStackedLayout, QVBoxLayout, QWidget
 
@@ -78,6 +78,12 @@ class ChartView(QWidget):
             graphics.scene().sigMouseClicked.connect(self._on_click)
             self._below.addWidget(graphics, 1)
         return self._graphics
+
+    def sizeHint(self) -> QSize:  # noqa: N802 - Qt's name
+        return QSize(640, 420)
+
+    def minimumSizeHint(self) -> QSize:  # noqa: N802
+        return QSize(200, 110)
 
     @property
     def chart(self) -> Chart:

@@ -77,7 +77,10 @@ class TrialSection(SectionBody):
         self.figures = FigureGrid()
         self._order = QLabel(wordWrap=True)
         self._order.setProperty("role", "muted")
-        self.forms = [OptionsForm(StudySpec, only=("reference", "continuation")), OptionsForm(DepthLadder, "ladder")]
+        self.forms = [
+            OptionsForm(StudySpec, only=("reference", "continuation"), fold="Reference and continuation"),
+            OptionsForm(DepthLadder, "ladder", fold="Settings of the ladder"),
+        ]
         for form in self.forms:
             form.edited.connect(setup.edit)
         for part in (self.choice, *self.forms, self.figures, self._order):

@@ -123,6 +123,7 @@ class Window(QMainWindow):
         self.tabs = QTabWidget()
         self.tabs.setDocumentMode(True)
         self.tabs.setAccessibleName("Pictures")
+        self.tabs.setMinimumHeight(340)  # a tall picture must not squeeze the ledger of all others
         for i, picture in enumerate(self.pictures):
             self.tabs.addTab(picture, picture.title)
             self.tabs.setTabToolTip(i, f"{picture.about} (Ctrl+{i + 1})")
