@@ -23,8 +23,8 @@ _Row = tuple[int, int, int, float]  # x, z, parameter, factor
 class ExchangeLayers(Options):
     """Settings of the exchange layers.
 
-    exp(-i theta/2 (XX + YY)/2) turns |01> into |10> and leaves |00> and |11>; with the phase exp(-i phi/2 ZZ) it is every two-qubit
-    gate that keeps S_z and is symmetric under exchange of the sites, up to single-qubit phases (Barkoutsos et al. 2018; Foxen et al. 2020).
+    exp(-i theta/2 (XX + YY)/2) turns |01> into |10> and leaves |00> and |11>; with exp(-i phi/2 ZZ) and rotations about Z on both
+    sites it makes every two-qubit gate that keeps S_z (Barkoutsos et al. 2018; Foxen et al. 2020).
     """
 
     title: ClassVar[str] = "Exchange layers"
@@ -32,7 +32,7 @@ class ExchangeLayers(Options):
     depth_field: ClassVar[str] = "depth"
 
     key: Literal["exchange-layers"] = "exchange-layers"
-    depth: int = option(3, "Depth", "Number of layers; each acts once on every bond.", ge=1, le=200)
+    depth: int = option(4, "Depth", "Number of layers; each acts once on every bond.", ge=1, le=200)
     bonds: Literal["model", "line", "ring"] = option(
         "model", "Bonds", "The pairs of sites that the Hamiltonian couples, neighbours along a line, or around a ring in the order of the sites."
     )
@@ -40,6 +40,11 @@ class ExchangeLayers(Options):
         "xx+yy", "Generator", "(XX + YY)/2, or (XY - YX)/2, which keeps amplitudes real and, without the phase, is a free-fermion gate on a line."
     )
     phase: bool = option(True, "ZZ phase", "Follow each exchange by a rotation about ZZ with an angle of its own.")
+    site_phases: bool = option(
+        True,
+        "Site phases",
+        "Begin each layer with a rotation about Z on every site: without it exchange cannot mend a reference that a spin flip changes.",
+    )
     angles: Literal["bond", "set"] = option("bond", "Angles", "One for every bond of a layer, or one for each set of bonds that act at once.")
     start: PlainStart = option("small-random", "Start", PLAIN_START_HELP)
 
@@ -50,6 +55,10 @@ class ExchangeLayers(Options):
         rows: list[_Row] = []
         labels: list[str] = []
         for layer in range(self.depth):
+            if self.site_phases:
+                n = ground.qubits.n_qubits
+                rows += [(0, 1 << q, len(labels) + q, 1.0) for q in range(n)]
+                labels += [f"phase of site {q} in layer {layer + 1}" for q in range(n)]
             for number, bonds in enumerate(sets):
                 self._one_set(bonds, f"in layer {layer + 1}", number, rows, labels)
         kept = reference_program(ground)
@@ -112,7 +121,8 @@ class ExchangeLayers(Options):
         name = self.generator.upper().replace("+", " + ").replace("-", " - ")
         gate = f"({name})/2" + (", then ZZ" if self.phase else "")
         listed = "; ".join(" ".join(f"{a}-{b}" for a, b in bonds) for bonds in sets)
-        return f"{self.depth} times: {gate} on the sets of bonds {listed}"
+        before = "Z on every site, then " if self.site_phases else ""
+        return f"{self.depth} times: {before}{gate} on the sets of bonds {listed}"
 
 
 def disjoint_sets(pairs: list[tuple[int, int]]) -> list[list[tuple[int, int]]]:
