@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from typing import ClassVar
 
-from PySide6.QtWidgets import QLabel
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QLabel, QSplitter
 
 from thalweg_app.forms import QuietCombo, describe
 from thalweg_app.plots.picture import Picture
 from thalweg_app.presenters.chart import Chart, Panel
-from thalweg_app.presenters.traces import ENERGY_SHARE, X_TITLES
+from thalweg_app.presenters.traces import ENERGY_SHARE, X_TITLES, growth_table
 from thalweg_app.presenters.workbench import Workbench
+from thalweg_app.widgets.number_table import NumberTable
 
 #: Has the panels of every convergence chart.
 BLANK = Chart("Convergence", panels=(Panel("Energy", share=ENERGY_SHARE), Panel("Error", log=True)))
@@ -31,13 +33,24 @@ class ConvergencePicture(Picture):
         label.setBuddy(self.axis)
         self.controls.addWidget(label)
         self.controls.addWidget(self.axis)
-        self.body.addWidget(self.view, 1)
+        self.growth = NumberTable("Steps of growth")
+        split = QSplitter(Qt.Orientation.Vertical)
+        split.setChildrenCollapsible(False)
+        split.addWidget(self.view)
+        split.addWidget(self.growth)
+        split.setStretchFactor(0, 3)
+        split.setStretchFactor(1, 1)
+        self.body.addWidget(split, 1)
 
     def prepare(self) -> None:
         self.view.prepare(BLANK)
 
     def refresh(self) -> None:
-        self.view.show_chart(self.workbench.convergence(self.axis.currentData()))
+        self.refresh_live()
+        bench = self.workbench
+        table = growth_table(None if bench.runs.is_running else bench.shown_result, bench.difference_unit)
+        self.growth.show_table(table)
+        self.growth.setVisible(bool(table.rows))
 
     def refresh_live(self) -> None:
-        self.refresh()
+        self.view.show_chart(self.workbench.convergence(self.axis.currentData()))

@@ -9,11 +9,12 @@ from typing import Literal, Protocol
 import numpy as np
 
 from thalweg.arrays import FloatArray
-from thalweg.study.result import StudyResult, Trace
+from thalweg.study.result import GrowthStep, StudyResult, Trace
 from thalweg.units import CHEMICAL_ACCURACY
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.chart import Band, Chart, Level, Panel, Role, Series
 from thalweg_app.presenters.live import LiveRun
+from thalweg_app.presenters.tables import Table
 
 XChoice = Literal["iteration", "evaluations", "circuits", "shots", "seconds"]
 X_TITLES: dict[XChoice, str] = {
@@ -32,6 +33,8 @@ EMPTY = "Press Run to see the energy fall towards the exact one."
 class Columns(Protocol):
     """What `Trace` and `LiveStart` have in common."""
 
+    @property
+    def iteration(self) -> Sequence[int]: ...
     @property
     def energy(self) -> Sequence[float]: ...
     @property
@@ -55,6 +58,7 @@ class Shown:
     starts: tuple[Columns, ...]
     best_start: int
     classical: dict[str, float | None]
+    steps: tuple[GrowthStep, ...] = ()
 
     @property
     def lead(self) -> Columns:
@@ -73,6 +77,7 @@ def shown_result(number: int, result: StudyResult) -> Shown:
         starts,
         result.best_start,
         result.classical,
+        result.growth,
     )
 
 
@@ -94,7 +99,7 @@ def convergence(main: Shown | None, overlays: Sequence[Shown] = (), x: XChoice =
     others = [o for o in overlays if o.unit == main.unit]
     energy = Panel(
         f"Energy / {wording.unit_name(main.unit)}",
-        _curves(main, others, x, lambda run, start: _array(start.energy), bars=True),
+        (*_curves(main, others, x, lambda run, start: _array(start.energy), bars=True), *_steps(main, x)),
         _levels(main),
         share=ENERGY_SHARE,
     )
@@ -133,6 +138,36 @@ def _series(name: str, start: Columns, x: XChoice, y: FloatArray, role: Role, ra
     n = min(along.size, y.size)
     spread = 2 * _array(start.standard_error)[:n] if bars and any(e is not None for e in start.standard_error) else None
     return Series(name, along[:n], y[:n], role, rank, legend=role != "faint", spread=spread)
+
+
+def _steps(main: Shown, x: XChoice) -> tuple[Series, ...]:
+    """Where a trial state grew: the ends of its steps, as marks on the curve of energies."""
+    along = np.asarray(getattr(main.lead, x), dtype=np.float64)
+    iterations = np.asarray(main.lead.iteration)
+    ends = [(int(np.searchsorted(iterations, step.iteration)), step.energy) for step in main.steps]
+    kept = [(along[i], energy) for i, energy in ends if i < along.size]
+    if not kept:
+        return ()
+    places, energies = (np.array(column, dtype=np.float64) for column in zip(*kept, strict=True))
+    return (Series("Steps of growth", places, energies, "overlay", 2, line=False),)
+
+
+def growth_table(result: StudyResult | None, difference_unit: str = "mEh") -> Table:
+    """One row a step of growth or of a depth ladder; empty where the trial state did not grow."""
+    if result is None or not result.growth:
+        return Table((), (), (), ())
+    _, unit = wording.difference_factor(result.energy_unit, difference_unit)
+    rows: list[tuple[str, ...]] = []
+    keys: list[tuple[float | str, ...]] = []
+    for number, step in enumerate(result.growth):
+        added = "; ".join(step.added) or result.reference_name
+        error = wording.difference(step.error, result.energy_unit, difference_unit)
+        rows.append((str(number), added, wording.count(step.parameters), wording.count(step.two_qubit_gates), wording.energy(step.energy), error))
+        keys.append(
+            (float(number), added, step.parameters, float(step.two_qubit_gates or 0), step.energy, np.inf if step.error is None else step.error)
+        )
+    header = ("Step", "Added", "Parameters", "Two-qubit gates", f"Energy / {wording.unit_name(result.energy_unit)}", f"Error / {unit}")
+    return Table(header, tuple(rows), (True, False, True, True, True, True), tuple(keys), "What each step added, and the energy after it.")
 
 
 def _levels(main: Shown) -> tuple[Level, ...]:
