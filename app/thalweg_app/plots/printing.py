@@ -59,8 +59,9 @@ def make_figure(chart: Chart) -> Any:
         figure = Figure(figsize=(6.4, height), layout="constrained")
         shares = [p.share for p in chart.panels] or [1.0]
         axes = figure.subplots(len(shares), 1, sharex=True, squeeze=False, height_ratios=shares)[:, 0]
+        known: set[str] = set()
         for panel, ax in zip(chart.panels, axes, strict=False):
-            _draw_panel(panel, ax)
+            _draw_panel(panel, ax, known)
         axes[-1].set_xlabel(chart.x_title)
         if not chart.panels:
             axes[0].text(0.5, 0.5, chart.empty, ha="center", va="center", transform=axes[0].transAxes)
@@ -74,7 +75,8 @@ def _use_own_font() -> None:
         font_manager.fontManager.addfont(str(file))
 
 
-def _draw_panel(panel: Panel, ax: Any) -> None:
+def _draw_panel(panel: Panel, ax: Any, known: set[str]) -> None:
+    """`known`: names that a panel above explains already."""
     ax.set_ylabel(panel.y_title)
     ax.grid(True, color=LIGHT.grid, linewidth=0.6)
     ax.set_axisbelow(True)
@@ -92,6 +94,7 @@ def _draw_panel(panel: Panel, ax: Any) -> None:
             linewidth=style.width * 0.8,
             marker=style.mark if series.marks and style.mark and series.x.size <= MAX_MARKS else None,
             markersize=4,
+            markerfacecolor=style.colour if style.filled else "white",
             label=series.name if series.legend else None,
         )
         if series.spread is not None:
@@ -102,8 +105,10 @@ def _draw_panel(panel: Panel, ax: Any) -> None:
     _draw_bars(panel, ax)
     if panel.band is not None:
         _draw_band(panel, ax)
-    if len(ax.get_legend_handles_labels()[0]) > 0:
-        ax.legend(frameon=False, fontsize=8)
+    named = {text: handle for handle, text in zip(*ax.get_legend_handles_labels(), strict=True) if text not in known}
+    if named:
+        ax.legend(list(named.values()), list(named), frameon=False, fontsize=8)
+    known.update(named)
 
 
 def _draw_bars(panel: Panel, ax: Any) -> None:
@@ -118,6 +123,7 @@ def _draw_bars(panel: Panel, ax: Any) -> None:
             np.arange(bars.values.size) + shift, bars.values, width, color=fill, edgecolor=style.colour, hatch=hatch, linewidth=0.8, label=bars.name
         )
     if panel.categories:
+        ax.set_xlim(-0.6, len(panel.categories) - 0.4)
         ax.set_xticks(range(len(panel.categories)), panel.categories, rotation=60 if len(panel.categories) > 6 else 0, fontsize=7)
 
 
@@ -130,5 +136,12 @@ def _draw_band(panel: Panel, ax: Any) -> None:
     ax.axhspan(low if band.lower is None else band.lower, band.upper, color=LIGHT.band, zorder=0)
     ax.axhline(band.upper, color=LIGHT.good, linewidth=0.8)
     ax.annotate(
-        band.text, (0.99, band.upper), xycoords=("axes fraction", "data"), xytext=(0, 2), textcoords="offset points", ha="right", fontsize=7.5
+        band.text,
+        (0.99, band.upper),
+        xycoords=("axes fraction", "data"),
+        xytext=(0, -3),
+        textcoords="offset points",
+        ha="right",
+        va="top",
+        fontsize=7.5,
     )
