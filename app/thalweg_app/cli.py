@@ -11,6 +11,7 @@ import click
 
 from thalweg import __version__
 from thalweg.errors import StudyError
+from thalweg_app.compiled import keep_compiled
 from thalweg_app.threads import cap_threads
 
 BAD_INPUT, DEFECT, INTERRUPTED = 2, 3, 130
@@ -18,6 +19,7 @@ BAD_INPUT, DEFECT, INTERRUPTED = 2, 3, 130
 #: Command -> its module, its function, and its line in the list of commands (so that the list loads none of them).
 COMMANDS = {
     "solve": ("thalweg_app.terminal.solve", "solve", "Find the lowest energy of a trial state and judge it against the exact one."),
+    "scan": ("thalweg_app.terminal.scan", "scan", "Run a study along a bond, an angle or a setting, and state what the curve yields."),
     "inspect": ("thalweg_app.terminal.inspection", "inspect", "State qubits, terms, sector and memory of a study without running it."),
     "check": ("thalweg_app.terminal.check", "check", "Repeat every run of a session and state the deviation."),
     "diagnose": ("thalweg_app.terminal.diagnose", "diagnose", "Say why a search fails: vanishing gradients, the landscape, the found point."),
@@ -65,6 +67,7 @@ def thalweg(ctx: click.Context) -> int:
 def main(arguments: list[str] | None = None) -> int:
     """Runs the command line and returns the exit status."""
     cap_threads()
+    keep_compiled()
     try:
         status = thalweg.main(args=arguments, prog_name="thalweg", standalone_mode=False)
         sys.stdout.flush()

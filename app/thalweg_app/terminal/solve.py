@@ -38,8 +38,8 @@ def solve(save: Path | None, figure: Path | None, x_axis: XChoice, json_file: st
     The exit status is 0 when the study ran, whatever its verdict; 2 for bad input; 130 after Ctrl-C, with the best so far kept.
     """
     spec, notes = read_setup(options)
-    session = _session_to_extend(save, spec)
-    _check_targets(figure, json_file)
+    session = session_to_extend(save, spec)
+    check_targets(figure, json_file)
     for note in () if quiet else notes:
         print(note, file=sys.stderr)
 
@@ -57,7 +57,7 @@ def solve(save: Path | None, figure: Path | None, x_axis: XChoice, json_file: st
     return status
 
 
-def _session_to_extend(save: Path | None, spec: StudySpec) -> Session:
+def session_to_extend(save: Path | None, spec: StudySpec) -> Session:
     """The session at `save`, or a new one. StudyError, before any work is done, when something else is there."""
     if save is None or not save.exists():
         if save is not None:
@@ -68,12 +68,14 @@ def _session_to_extend(save: Path | None, spec: StudySpec) -> Session:
     return load_session(save)
 
 
-def _check_targets(figure: Path | None, json_file: str | None) -> None:
+def check_targets(figure: Path | None, *text_files: str | None) -> None:
+    """StudyError, before any work is done, where one of these cannot be written."""
     if figure is not None:
         picture_format(figure)
         ensure_writable(figure)
-    if json_file not in (None, STANDARD_OUTPUT):
-        ensure_writable(Path(json_file))
+    for name in text_files:
+        if name is not None and name != STANDARD_OUTPUT:
+            ensure_writable(Path(name))
 
 
 def _print(result: StudyResult, json_file: str | None) -> None:
