@@ -51,7 +51,9 @@ class ExchangeLayers(Options):
     def build(self, ground: Ground) -> GateProgram:
         """Sets of disjoint bonds, one after another, `depth` times. StudyError for electrons, for all plus and where there is no bond."""
         _refuse_unfit(ground)
-        sets = disjoint_sets(self._pairs(ground))
+        pairs, singlets = self._pairs(ground), {tuple(sorted(pair)) for pair in ground.reference_pairs}
+        # a bond that already holds a singlet does nothing at first, so that it acts last
+        sets = disjoint_sets([p for p in pairs if p not in singlets]) + disjoint_sets([p for p in pairs if p in singlets])
         rows: list[_Row] = []
         labels: list[str] = []
         for layer in range(self.depth):
