@@ -119,6 +119,9 @@ def install(tests: bool) -> None:
     if subprocess.run(command, stdin=subprocess.DEVNULL, stdout=sys.stderr).returncode != 0:
         sys.exit("The libraries could not be installed: see the lines above. Check the network and start again; what is there already is kept.")
     STAMP.write_text(f"{wanted} {levels[0] if tests else 'program'}")
+    if not tests:
+        say("Compiling numerical kernels once for this machine (less than a minute)")
+        subprocess.run([str(PYTHON), "-m", "thalweg_app.rehearsals"], stdin=subprocess.DEVNULL, stdout=sys.stderr)
 
 
 def stamp_text() -> str:

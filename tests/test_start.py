@@ -51,10 +51,11 @@ def use_system(start: ModuleType, monkeypatch, **facts) -> None:
 def test_the_first_start_makes_the_environment_and_installs_the_checkout_into_it(start, monkeypatch):
     use_system(start, monkeypatch)
     assert start.main(["solve", "LiH"]) == 0
-    venv, pip, program = start.commands
+    venv, pip, kernels, program = start.commands
     assert venv[1:3] == ["-m", "venv"]
     assert pip[0] == str(start.PYTHON)
     assert pip[-2:] == ["--editable", str(TOP)]
+    assert kernels == [str(start.PYTHON), "-m", "thalweg_app.rehearsals"]
     assert program == ["replace", "-m", "thalweg_app", "solve", "LiH"]
 
 

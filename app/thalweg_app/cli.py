@@ -21,7 +21,7 @@ COMMANDS = {
     "solve": ("thalweg_app.terminal.solve", "solve", "Find the lowest energy of a trial state and judge it against the exact one."),
     "scan": ("thalweg_app.terminal.scan", "scan", "Run a study along a bond, an angle or a setting, and state what the curve yields."),
     "inspect": ("thalweg_app.terminal.inspection", "inspect", "State qubits, terms, sector and memory of a study without running it."),
-    "check": ("thalweg_app.terminal.check", "check", "Repeat every run of a session and state the deviation."),
+    "check": ("thalweg_app.terminal.check", "check", "Repeat every run and scan of a session and state the deviation."),
     "diagnose": ("thalweg_app.terminal.diagnose", "diagnose", "Say why a search fails: vanishing gradients, the landscape, the found point."),
     "methods": ("thalweg_app.terminal.methods", "methods", "List every key that a study can be made of, with one line each."),
     "samples": ("thalweg_app.terminal.samples", "samples", "List the samples that ship with the program."),

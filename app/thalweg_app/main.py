@@ -64,7 +64,9 @@ def make_application() -> QApplication:
 def make_window(application: QApplication, pool: WorkerPool) -> Window:
     workbench = Workbench(pool, StoredRecent())
     folder = Path(QStandardPaths.writableLocation(QStandardPaths.StandardLocation.AppLocalDataLocation)) / "recovery"
-    return Window(workbench, Theme(application), Recovery(folder))
+    window = Window(workbench, Theme(application), Recovery(folder))
+    pool.changed.connect(lambda: window.status.show_compiling(pool.is_compiling))
+    return window
 
 
 def begin(window: Window, argv: list[str]) -> None:

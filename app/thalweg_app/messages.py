@@ -33,6 +33,13 @@ class Ready(Message):
     say: Literal["ready"] = "ready"
 
 
+class Compiling(Message):
+    """The process compiles kernels, or has done with it."""
+
+    say: Literal["compiling"] = "compiling"
+    on: bool
+
+
 class Events(Message):
     """Events of a job in their order, gathered so that at most about 30 lines a second are sent."""
 
@@ -68,6 +75,6 @@ class JobStopped(Message):
 
 
 Order = Annotated[StartJob | StopJob, Field(discriminator="order")]
-Reply = Annotated[Ready | Events | Noticed | Done | JobFailed | JobStopped, Field(discriminator="say")]
+Reply = Annotated[Ready | Compiling | Events | Noticed | Done | JobFailed | JobStopped, Field(discriminator="say")]
 ORDERS: TypeAdapter[StartJob | StopJob] = TypeAdapter(Order)
-REPLIES: TypeAdapter[Ready | Events | Noticed | Done | JobFailed | JobStopped] = TypeAdapter(Reply)
+REPLIES: TypeAdapter[Ready | Compiling | Events | Noticed | Done | JobFailed | JobStopped] = TypeAdapter(Reply)

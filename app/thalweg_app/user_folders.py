@@ -1,4 +1,4 @@
-"""Where Thalweg keeps what belongs to the person and not to a session: the log of defects."""
+"""Where Thalweg keeps what belongs to the person and not to a session: the log of defects, and what can be made again."""
 
 from __future__ import annotations
 
@@ -29,6 +29,24 @@ def _usual_place() -> Path:
     if sys.platform == "darwin":
         return Path.home() / "Library" / "Logs"
     return Path(os.environ.get("XDG_STATE_HOME") or Path.home() / ".local" / "state")
+
+
+def cache_folder() -> Path | None:
+    """The system's place for what this person's programs can make again; None where nothing can be written there."""
+    folder = _usual_cache() / "thalweg"
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError:
+        return None
+    return folder if os.access(folder, os.W_OK) else None
+
+
+def _usual_cache() -> Path:
+    if sys.platform == "win32":
+        return Path(os.environ.get("LOCALAPPDATA") or Path.home() / "AppData" / "Local")
+    if sys.platform == "darwin":
+        return Path.home() / "Library" / "Caches"
+    return Path(os.environ.get("XDG_CACHE_HOME") or Path.home() / ".cache")
 
 
 def log_defect(error: BaseException) -> Path:

@@ -15,7 +15,7 @@ from PySide6.QtCore import QObject, QProcess, QProcessEnvironment, QTimer, Signa
 import thalweg
 import thalweg_app
 from thalweg.study.events import Failed
-from thalweg_app.messages import REPLIES, Done, Events, JobFailed, JobStopped, Message, Noticed, Ready, StartJob, StopJob
+from thalweg_app.messages import REPLIES, Compiling, Done, Events, JobFailed, JobStopped, Message, Noticed, Ready, StartJob, StopJob
 from thalweg_app.presenters.jobs import JobListener
 
 #: A job that has not noticed a stop after this many ms is ended by force.
@@ -60,7 +60,7 @@ class Worker(QObject):
 
     def __init__(self, arguments: list[str], parent: QObject) -> None:
         super().__init__(parent)
-        self.is_ready = False
+        self.is_ready = self.is_compiling = False
         self.job: PooledJob | None = None
         self.last_used = 0
         self._stderr = b""
@@ -148,6 +148,11 @@ class WorkerPool(QObject):
     def is_warm(self) -> bool:
         return any(worker.is_ready for worker in self.workers)
 
+    @property
+    def is_compiling(self) -> bool:
+        """Whether a process compiles kernels, which happens once for a version on a machine."""
+        return any(worker.is_compiling for worker in self.workers)
+
     def _hire(self) -> None:
         """Starts one process; the next follows when it is ready, so that two do not warm up against each other."""
         spare = ["--rehearse"] if self.workers and "--cold" not in self._arguments else []
@@ -174,6 +179,10 @@ class WorkerPool(QObject):
             if len(self.workers) < self._size:
                 self._hire()
             self._assign()
+            return
+        if isinstance(message, Compiling):
+            worker.is_compiling = message.on
+            self.changed.emit()
             return
         job = worker.job
         if job is None or job.is_over or job.number != getattr(message, "job", None):

@@ -15,6 +15,7 @@ import traceback
 from collections.abc import Callable
 from typing import Any, TextIO
 
+from thalweg_app.compiled import announced, keep_compiled
 from thalweg_app.threads import cap_threads
 
 NICENESS = 10
@@ -78,6 +79,11 @@ class Desk:
             self.outbox.message(Noticed(job=job))
         return True
 
+    def tell_compiling(self, on: bool) -> None:
+        from thalweg_app.messages import Compiling
+
+        self.outbox.message(Compiling(on=on))
+
     def _carry_out(self, order: Any) -> None:
         from thalweg.errors import Stopped
         from thalweg_app.messages import Done, JobFailed, JobStopped
@@ -131,32 +137,26 @@ def warm_up() -> None:
             importlib.import_module(name)
 
 
-def rehearse() -> None:
-    """Runs the smallest molecule once, so that compiled code is loaded before it is needed."""
-    from thalweg.errors import StudyError
-    from thalweg.study.run import run
-    from thalweg.study.spec import StudySpec
-    from thalweg.systems import Molecule
-
-    with contextlib.suppress(StudyError):
-        run(StudySpec(system=Molecule(atoms=(("H", 0.0, 0.0, 0.0), ("H", 0.0, 0.0, 0.74)))))
-
-
 def main() -> None:
     replies = protect_output()
     be_modest()
+    keep_compiled()
     faulthandler.enable(sys.stderr)
     desk = Desk(replies)
     listener = threading.Thread(target=desk.listen, args=(sys.stdin,), name="orders", daemon=True)
     listener.start()
-    if "--cold" not in sys.argv:
+    cold = "--cold" in sys.argv
+    if not cold:
         warm_up()
-    if "--rehearse" in sys.argv:
-        rehearse()
-    from thalweg_app.messages import Ready
+    with contextlib.nullcontext() if cold else announced(desk.tell_compiling):
+        if "--rehearse" in sys.argv:
+            from thalweg_app.rehearsals import rehearse
 
-    desk.outbox.message(Ready())
-    desk.work()
+            rehearse()
+        from thalweg_app.messages import Ready
+
+        desk.outbox.message(Ready())
+        desk.work()
 
 
 if __name__ == "__main__":

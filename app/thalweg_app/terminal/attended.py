@@ -17,7 +17,8 @@ from types import FrameType
 from typing import TypeVar
 
 from thalweg.errors import Stopped
-from thalweg.study.events import AnyEvent
+from thalweg.study.events import AnyEvent, Stage
+from thalweg_app.compiled import COMPILING, announced
 from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.terminal.display import Display
 
@@ -69,7 +70,7 @@ def attend(work: Work[T], display: Display) -> tuple[T | None, int]:
     events: deque[AnyEvent] = deque()
     done, interrupts = threading.Event(), Interrupts()
     with interrupts.listening(), library_prints_to_stderr(), display, ThreadPoolExecutor(1) as pool:
-        future = pool.submit(work, events.append, interrupts.stop.is_set)
+        future = pool.submit(_announcing, work, events.append, interrupts.stop.is_set)
         future.add_done_callback(lambda _: done.set())
         try:
             _show_until(done, events, display, interrupts)
@@ -79,6 +80,23 @@ def attend(work: Work[T], display: Display) -> tuple[T | None, int]:
         return future.result(), interrupts.status
     except Stopped:
         return None, interrupts.status
+
+
+def _announcing(work: Work[T], emit: Emit, should_stop: ShouldStop) -> T:
+    """The work's value. Compiling is a stage of its own, with the stage that it cuts into told again behind it."""
+    stages: list[AnyEvent] = []
+
+    def keep(event: AnyEvent) -> None:
+        if isinstance(event, Stage):
+            stages[:] = [event]
+        emit(event)
+
+    def tell(on: bool) -> None:
+        for event in [Stage(text=COMPILING)] if on else stages:
+            emit(event)
+
+    with announced(tell):
+        return work(keep, should_stop)
 
 
 def _show_until(done: threading.Event, events: deque[AnyEvent], display: Display, interrupts: Interrupts) -> None:

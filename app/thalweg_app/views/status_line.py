@@ -5,6 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QLabel, QMenu, QProgressBar, QSizePolicy, QStatusBar, QToolButton
 
+from thalweg_app.compiled import COMPILING
 from thalweg_app.forms import describe
 from thalweg_app.presenters.progress import estimate
 from thalweg_app.presenters.summaries import system_label
@@ -34,7 +35,7 @@ class StatusLine(QStatusBar):
         self.addWidget(self._text, 1)
         for part in (self._waiting, self._left, self._bar):
             self.addPermanentWidget(part)
-        self._told = ""
+        self._told, self._compiling = "", False
         self._forget = QTimer(self, singleShot=True, interval=TOLD_MS)
         self._forget.timeout.connect(lambda: self.tell(""))
         workbench.told.connect(self.tell)
@@ -53,6 +54,16 @@ class StatusLine(QStatusBar):
             self._forget.start()
         self.refresh()
 
+    def show_compiling(self, on: bool) -> None:
+        """Says so while a process compiles kernels: a first run may wait for it."""
+        if on != self._compiling:
+            self._compiling = on
+            self.refresh()
+
+    @property
+    def _aside(self) -> str:
+        return self._told or (COMPILING if self._compiling else "")
+
     def refresh(self) -> None:
         runs = self._workbench.runs
         live, scan = runs.live, self._workbench.scans.live
@@ -63,14 +74,14 @@ class StatusLine(QStatusBar):
             self._show_work(scan.text, scan.seconds_left, scan.fraction)
             return
         if live is None:
-            self._show(self._told or "Ready")
+            self._show(self._aside or "Ready")
             return
         now = estimate(live)
         what = system_label(live.spec) if live.check_of is None else f"check of run {live.check_of}"
         self._show_work(f"{now.text}  ({what})", now.seconds_left, now.fraction)
 
     def _show_work(self, text: str, seconds_left: float | None, fraction: float | None) -> None:
-        self._show(text + (f"    {self._told}" if self._told else ""))
+        self._show(text + (f"    {self._aside}" if self._aside else ""))
         self._left.setText("" if seconds_left is None else time_left(seconds_left))
         self._bar.setRange(0, 0 if fraction is None else 1000)
         if fraction is not None:
