@@ -56,7 +56,10 @@ def draw(payload: Any, emit: Emit, should_stop: ShouldStop) -> str:
 
 
 def scan(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
-    """Runs the payload's `scan` but for the points in `done`; points leave as events, the curve as `ScanFinished`."""
+    """Runs the payload's `scan` but for the points in `done`; points leave as events, the curve as `ScanFinished`.
+
+    `checked` tells that the points in `done` have been compared with their neighbours already.
+    """
     from thalweg.study.executors import make_executor
     from thalweg.study.scan import run_scan
     from thalweg.study.scan_result import CurvePoint
@@ -64,7 +67,15 @@ def scan(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
 
     spec = ScanSpec.model_validate(payload["scan"])
     done = [CurvePoint.model_validate(point) for point in payload["done"]]
-    run_scan(spec, lambda: make_executor("local"), emit, should_stop, done=done)
+    run_scan(spec, lambda: make_executor("local"), emit, should_stop, done=done, checked=payload["checked"])
+
+
+def foresee(payload: Any, emit: Emit, should_stop: ShouldStop) -> float:
+    """Seconds that the payload's `scan` will take, estimated."""
+    from thalweg.study.scan_foresight import foresee as seconds_of
+    from thalweg.study.scan_spec import ScanSpec
+
+    return seconds_of(ScanSpec.model_validate(payload["scan"]), watch=watch_into(emit, should_stop))
 
 
 def diagnose(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:

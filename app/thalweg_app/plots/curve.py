@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import ClassVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QMenu, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from thalweg_app.colours import Palette
 from thalweg_app.forms import QuietCombo, describe
@@ -20,9 +21,10 @@ from thalweg_app.presenters.curve import (
     nearest_point,
     point_text,
     yield_figures,
+    yield_table,
 )
-from thalweg_app.presenters.scan_control import scan_title
-from thalweg_app.presenters.tables import Table
+from thalweg_app.presenters.curve_numbers import scan_csv
+from thalweg_app.presenters.scan_control import REFINED_BY, REFINEMENTS, scan_title
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.widgets.number_table import NumberTable
 
@@ -66,19 +68,26 @@ class CurvePicture(Picture):
         table = curve_table(self.scans.shown, self.units)
         return list(table.header), [list(row) for row in table.rows]
 
+    def save_numbers(self, path: Path) -> None:
+        """A finished curve goes out under a header of its units and settings."""
+        result = None if self.scans.chosen is None or self.scans.live is not None else self.scans.chosen.result
+        if result is None:
+            super().save_numbers(path)
+            return
+        self.write_text(path, scan_csv(result, self.units))
+
     def _draw(self) -> None:
         shown, units = self.scans.shown, self.units
         self.view.show_chart(curve_chart(shown, units))
         self.table.show_table(curve_table(shown, units))
         self.sentence.setText(curve_sentence(shown, units))
         rows = yield_figures(shown, units)
-        cells = [(r[0], r[1], r[2]) for r in rows]
-        keys: tuple[tuple[float | str, ...], ...] = tuple((float(i),) * 3 for i in range(len(cells)))
-        self.yields.show_table(Table(("Quantity", "Variational", "Exact"), tuple(cells), (False, True, True), keys, "What the curves yield."))
+        self.yields.show_table(yield_table(rows))
         self.yields.setVisible(bool(rows))
         for column, width in enumerate((112, 92, 92)):
             self.yields.setColumnWidth(column, width)
         self.remarks.setText("\n".join(curve_remarks(shown)))
+        self.refine.setVisible(self.scans.live is None and self.scans.chosen is not None)
         self.resume.setVisible(self.scans.live is None and self.scans.chosen is not None and not self.scans.chosen.result.finished)
 
     def _change_unit(self) -> None:
@@ -115,7 +124,13 @@ class CurvePicture(Picture):
         self.resume = QPushButton("Complete")
         describe(self.resume, "Complete", "Runs the points that an interrupted scan still lacks.")
         self.resume.clicked.connect(self.scans.resume)
-        for part in (self.choice, self.length, self.as_table, self.resume):
+        self.refine = QPushButton("Refine")
+        describe(self.refine, "Refine", f"Adds {REFINED_BY} points to the scan and runs only those.")
+        menu = QMenu(self.refine)
+        for where, text in REFINEMENTS.items():
+            menu.addAction(text).triggered.connect(lambda _=False, where=where: self.scans.refine(where))
+        self.refine.setMenu(menu)
+        for part in (self.choice, self.length, self.as_table, self.resume, self.refine):
             self.controls.addWidget(part)
 
     def _split(self) -> QSplitter:

@@ -108,8 +108,12 @@ class Picture(QWidget):
         self.workbench.starter.start(DRAW, data, listener)
 
     def save_numbers(self, path: Path) -> None:
+        self.write_text(path, csv_of(*self.numbers()))
+
+    def write_text(self, path: Path, text: str) -> None:
+        """Writes the file and says so, or why not."""
         try:
-            write_atomically(path, csv_of(*self.numbers()).encode("utf-8"))
+            write_atomically(path, text.encode("utf-8"))
         except StudyError as error:
             self.workbench.told(str(error))
         else:

@@ -4,16 +4,21 @@ from __future__ import annotations
 
 from typing import Any
 
-from PySide6.QtCore import QSize
+from PySide6.QtCore import QSize, QTimer
 from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
 from thalweg.errors import StudyError
 from thalweg.registry import key_of
+from thalweg.study.scan_spec import Literature
 from thalweg_app.colours import LIGHT, Palette
 from thalweg_app.forms import OptionsForm, QuietCombo, TextEntry, describe, form_grid
 from thalweg_app.presenters.scan_control import OFFERED, SPACINGS, ScanControl
 from thalweg_app.presenters.wording import time_left
 from thalweg_app.theme import SPACE, icon
+from thalweg_app.widgets.fold import Fold
+
+#: Rest after an edit before the time is estimated.
+REST_MS = 600
 
 
 class ScanForm(QWidget):
@@ -37,6 +42,8 @@ class ScanForm(QWidget):
         self.trouble.setAccessibleName("Why the scan cannot start")
         column.addWidget(self.trouble)
         column.addLayout(self._buttons())
+        self._rest = QTimer(self, singleShot=True, interval=REST_MS)
+        self._rest.timeout.connect(scans.foresee)
         scans.progressed.connect(self._show_progress)
         self.refresh()
 
@@ -53,6 +60,8 @@ class ScanForm(QWidget):
             self._labels[name].setVisible(shown)
         self.both.setChecked(draft.both_directions)
         self.follow.setChecked(draft.follow_orbitals)
+        self.fixed.setChecked(draft.fixed_spin)
+        self.literature.show_values(lambda dotted: _shown(getattr(draft.literature, dotted.removeprefix("literature."))), self._errors)
         obstacle = self._scans.obstacle
         self.trouble.setText(obstacle)
         self.trouble.setVisible(bool(obstacle))
@@ -60,10 +69,13 @@ class ScanForm(QWidget):
         self.start.setEnabled(not obstacle and not running)
         self.stop.setEnabled(running)
         self._show_progress()
+        if self.isVisible() and not running and not obstacle:
+            self._rest.start()
 
     def set_palette(self, palette: Palette) -> None:
         self.start.setIcon(icon("run", palette.on_accent, 14))
         self.stop.setIcon(icon("stop", palette.ink, 14))
+        self._fold.refresh_icon()
 
     def _path_row(self) -> QHBoxLayout:
         self.path = QuietCombo()
@@ -109,7 +121,9 @@ class ScanForm(QWidget):
         return holder
 
     def _switches(self) -> QVBoxLayout:
-        self.both, self.follow = QCheckBox("From both ends"), QCheckBox("Follow orbitals")
+        self.both, self.follow, self.fixed = QCheckBox("From both ends"), QCheckBox("Follow orbitals"), QCheckBox("Keep the spin")
+        describe(self.fixed, "Keep the spin", "Holds the exact state at the multiplicity asked for, also where another spin lies lower.")
+        self.fixed.clicked.connect(lambda on: self._edit("fixed_spin", bool(on)))
         describe(self.both, "From both ends", "Runs the curve in both directions and keeps the lower energy at each point.")
         describe(self.follow, "Follow orbitals", "Chooses the active orbitals of a point by their overlap with its neighbour's.")
         self.both.clicked.connect(lambda on: self._edit("both_directions", bool(on)))
@@ -117,6 +131,13 @@ class ScanForm(QWidget):
         column = QVBoxLayout()
         column.addWidget(self.follow)
         column.addWidget(self.both)
+        column.addWidget(self.fixed)
+        self.literature = OptionsForm(Literature, "literature")
+        self.literature.edited.connect(self._edit_within)
+        fold = Fold("Values from the literature")
+        fold.set_content(self.literature)
+        column.addWidget(fold)
+        self._fold = fold
         return column
 
     def _buttons(self) -> QHBoxLayout:
@@ -144,7 +165,7 @@ class ScanForm(QWidget):
     def _show_form(self, key: str) -> None:
         if key not in self._forms:
             form = OptionsForm(type(self._scans.draft.path), "path")
-            form.edited.connect(self._edit_path)
+            form.edited.connect(self._edit_within)
             self._forms[key] = form
             self._fields.addWidget(form)
         for name, form in self._forms.items():
@@ -155,15 +176,21 @@ class ScanForm(QWidget):
     def _edit(self, name: str, value: Any) -> None:
         self._scans.edit(name, value)
 
-    def _edit_path(self, dotted: str, value: Any) -> None:
+    def _edit_within(self, dotted: str, value: Any) -> None:
         error = self._scans.edit(dotted, value)
         self._errors = {} if error is None else {dotted: error}
-        self._show_form(key_of(type(self._scans.draft.path)))
+        self.refresh()
 
     def _show_progress(self) -> None:
         live = self._scans.live
         if live is None:
-            self.progress.setText("")
+            ahead = self._scans.seconds_ahead
+            self.progress.setText("" if ahead is None else time_left(ahead).replace(" left", " to run"))
             return
         left = live.seconds_left
         self.progress.setText(live.text + ("" if left is None else f", {time_left(left)}"))
+
+
+def _shown(value: Any) -> Any:
+    """What a field shows: nothing where no value is given."""
+    return "" if value is None else value

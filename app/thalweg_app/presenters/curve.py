@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.study.result import StudyResult
-from thalweg.study.scan_result import FLAGS, CurveFigures, CurvePoint, ScanResult
+from thalweg.study.scan_result import FLAGS, CurvePoint, ScanResult
 from thalweg.units import LENGTH_UNITS
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.chart import Band, Chart, Panel, Series
@@ -120,21 +120,35 @@ def nearest_point(shown: ShownCurve, coordinate: float) -> CurvePoint | None:
 
 
 def yield_figures(shown: ShownCurve | None, units: CurveUnits) -> list[tuple[str, str, str, str]]:
-    """Rows (quantity, variational, exact, help) of what the curves yield; empty while nothing is known."""
+    """Rows (quantity, variational, exact, literature) of what the curves yield; empty while nothing is known."""
     result = shown.result if shown is not None else None
     if shown is None or result is None:
         return []
     factor, unit = units.coordinate(shown.unit)
     energy_unit = wording.unit_name(shown.energy_unit)
-    quantities: list[tuple[str, str, Callable[[CurveFigures], str]]] = [
-        (f"Minimum / {UNIT_SIGNS.get(unit, unit)}" if unit else "Minimum", "Where the fitted curve is lowest.", lambda f: _number(f.r_e, factor, ".5f")),
-        (f"E_min / {energy_unit}", "Energy of the minimum.", lambda f: _number(f.e_min, 1.0, ".6f")),
-        (f"D_e / {energy_unit}", "Depth below the flat far end of the curve.", lambda f: _number(f.d_e, 1.0, ".6f")),
-        ("ω_e / cm⁻¹", "Harmonic frequency of the diatomic.", lambda f: _number(f.omega_e, 1.0, ".1f")),
-        ("ω_e x_e / cm⁻¹", "Anharmonicity of the diatomic.", lambda f: _number(f.omega_e_x_e, 1.0, ".1f")),
+    typed = result.spec.literature
+    quantities = [
+        (f"Minimum / {UNIT_SIGNS.get(unit, unit)}" if unit else "Minimum", "r_e", factor, ".5f", typed.r_e),
+        (f"E_min / {energy_unit}", "e_min", 1.0, ".6f", None),
+        (f"D_e / {energy_unit}", "d_e", 1.0, ".6f", typed.d_e),
+        ("ω_e / cm⁻¹", "omega_e", 1.0, ".1f", typed.omega_e),
+        ("ω_e x_e / cm⁻¹", "omega_e_x_e", 1.0, ".1f", typed.omega_e_x_e),
     ]
-    rows = [(name, show(result.variational), show(result.exact), about) for name, about, show in quantities]
-    return [row for row in rows if row[1] != wording.MISSING or row[2] != wording.MISSING]
+    curves = (result.variational, result.exact)
+    rows: list[tuple[str, str, str, str]] = []
+    for name, key, scale, form, known in quantities:
+        variational, exact = (_number(getattr(figures, key), scale, form) for figures in curves)
+        rows.append((name, variational, exact, _number(known, scale, form)))
+    return [row for row in rows if any(cell != wording.MISSING for cell in row[1:])]
+
+
+def yield_table(rows: list[tuple[str, str, str, str]]) -> Table:
+    """The rows of `yield_figures` as a table; the literature has a column only where something was typed."""
+    typed = any(row[3] != wording.MISSING for row in rows)
+    count = 4 if typed else 3
+    header = ("Quantity", "Variational", "Exact", "Literature")[:count]
+    keys: tuple[tuple[float | str, ...], ...] = tuple((float(i),) * count for i in range(len(rows)))
+    return Table(header, tuple(row[:count] for row in rows), (False, True, True, True)[:count], keys, "What the curves yield.")
 
 
 def curve_sentence(shown: ShownCurve | None, units: CurveUnits) -> str:

@@ -14,8 +14,9 @@ from thalweg.storage.session import ScanRun
 from thalweg.study.events import AnyEvent, Failed, ScanFinished, ScanPoint, ScanStarted, Stage
 from thalweg.study.path import PATHS, ScanPath
 from thalweg.study.path.setting import SettingPath
+from thalweg.study.scan_refine import Place, refined
 from thalweg.study.scan_result import CurvePoint, ScanResult
-from thalweg.study.scan_spec import ScanSpec, geometric_points, linear_points, read_points
+from thalweg.study.scan_spec import Literature, ScanSpec, geometric_points, linear_points, read_points
 from thalweg.study.spec import StudySpec, study_error
 from thalweg_app.presenters.curve import ShownCurve
 from thalweg_app.presenters.jobs import Job, JobListener, JobStarter
@@ -23,6 +24,10 @@ from thalweg_app.presenters.listeners import Listeners
 from thalweg_app.presenters.numbers import parse_number, parse_whole
 
 SCAN = "thalweg_app.jobs:scan"
+FORESEE = "thalweg_app.jobs:foresee"
+#: How many points a refinement adds.
+REFINED_BY = 4
+REFINEMENTS: dict[Place, str] = {"minimum": "Around the minimum", "error": "Where the error is worst"}
 Spacing = Literal["equal", "geometric", "list"]
 SPACINGS: dict[Spacing, str] = {"equal": "Equal spacing", "geometric": "Geometric spacing", "list": "List of values"}
 #: Paths that can be set up in the window; frames come from a file.
@@ -41,6 +46,8 @@ class ScanDraft:
     values: str = ""
     both_directions: bool = False
     follow_orbitals: bool = True
+    fixed_spin: bool = False
+    literature: Literature = field(default_factory=Literature)
 
     def points(self) -> tuple[float, ...]:
         """StudyError naming the field at fault."""
@@ -111,6 +118,7 @@ class ScanControl:
         self.live: LiveScan | None = None
         self.scans: tuple[ScanRun, ...] = ()
         self._chosen: int | None = None
+        self.seconds_ahead: float | None = None
         self.changed, self.progressed = Listeners(), Listeners()
         self.told = Listeners()  # (sentence)
         self.defect = Listeners()  # (Failed)
@@ -152,20 +160,24 @@ class ScanControl:
                 "points": draft.points(),
                 "follow_orbitals": draft.follow_orbitals,
                 "both_directions": draft.both_directions,
+                "spin": "fixed" if draft.fixed_spin else "any",
+                "literature": draft.literature,
             }
         )
         scan.at(scan.points[0])
         return scan
 
     def edit(self, name: str, value: Any) -> StudyError | None:
-        """Sets a field of the draft, `path.FIELD` for one of the path; the error that it then has, if any."""
-        if not name.startswith("path."):
+        """Sets a field of the draft, `path.FIELD` or `literature.FIELD` for one within; the error that it then has, if any."""
+        part, _, last = name.partition(".")
+        if not last:
             setattr(self.draft, name, value)
             self.changed()
             return None
-        data = self.draft.path.model_dump() | {name.removeprefix("path."): value}
+        old = getattr(self.draft, part)
+        data = old.model_dump() | {last: None if value == "" and part == "literature" and last != "source" else value}
         try:
-            self.draft.path = type(self.draft.path).model_validate(data)
+            setattr(self.draft, part, type(old).model_validate(data))
         except ValidationError as error:
             return study_error(error)
         self.changed()
@@ -200,6 +212,34 @@ class ScanControl:
         if kept is not None and not kept.result.finished:
             self._run(kept.result.spec, tuple(p for p in kept.result.points if p.result is not None))
 
+    def refine(self, where: Place) -> None:
+        """Adds points to the chosen scan and runs only those; a sentence when there is nothing to refine."""
+        kept = self.chosen
+        if kept is None:
+            return
+        try:
+            spec = refined(kept.result, REFINED_BY, where)
+        except StudyError as error:
+            self.told(str(error))
+            return
+        self._run(spec, tuple(p for p in kept.result.points if p.result is not None), checked=kept.result.finished)
+
+    def foresee(self) -> None:
+        """Asks how long the scan as set up will take; `seconds_ahead` holds the answer when it comes."""
+        self.seconds_ahead = None
+        try:
+            spec = self.spec()
+        except StudyError:
+            return
+        if self.live is None:
+            listener = JobListener(done=lambda value: self._on_foreseen(spec, value))
+            self._starter.start(FORESEE, {"scan": spec.model_dump(mode="json")}, listener)
+
+    def _on_foreseen(self, spec: ScanSpec, seconds: float) -> None:
+        if self.live is None and not self.obstacle and self.spec() == spec:
+            self.seconds_ahead = seconds
+            self.progressed()
+
     def stop(self) -> None:
         if self._job is not None and self.live is not None and not self.live.is_stopping:
             self.live.is_stopping = True
@@ -221,18 +261,18 @@ class ScanControl:
         self._chosen = self.scans[-1].number if self.scans else None
         self.changed()
 
-    def _run(self, spec: ScanSpec, done: tuple[CurvePoint, ...]) -> None:
+    def _run(self, spec: ScanSpec, done: tuple[CurvePoint, ...], *, checked: bool = False) -> None:
         if self.live is not None:
             self.told("A scan is running; stop it or wait for its end.")
             return
-        live = self.live = LiveScan(spec, spec.path.axis(spec.study), spec.path.unit(spec.study), {p.index: p for p in done}, len(spec.points))
+        live = self.live = LiveScan(spec, spec.path.axis(spec.study), spec.path.unit(spec.study), placed(spec, done), len(spec.points))
         listener = JobListener(
             events=lambda events: self._on_events(live, events),
             done=lambda _: self._on_end(live),
             failed=lambda failure: self._on_failed(live, failure),
             stopped=lambda: self._on_end(live),
         )
-        payload = {"scan": spec.model_dump(mode="json"), "done": [p.model_dump(mode="json") for p in done]}
+        payload = {"scan": spec.model_dump(mode="json"), "done": [p.model_dump(mode="json") for p in done], "checked": checked}
         self._job = self._starter.start(self._function, payload, listener)
         self.changed()
 
@@ -266,12 +306,25 @@ class ScanControl:
         return summarise(live.spec, points, time.monotonic() - live.begun)
 
     def _keep(self, result: ScanResult) -> None:
-        """A resumed scan takes the place of its first part."""
-        same = next((s for s in self.scans if s.result.spec == result.spec and not s.result.finished), None)
+        """A scan that was completed or refined takes the place of what it went on from."""
+        same = next((s for s in self.scans if _continues(result.spec, s.result)), None)
         number = same.number if same is not None else 1 + max((s.number for s in self.scans), default=0)
         kept = ScanRun(number=number, result=result)
         self.scans = (*(s for s in self.scans if s.number != number), kept)
         self._chosen = number
+
+
+def placed(spec: ScanSpec, points: Sequence[CurvePoint]) -> dict[int, CurvePoint]:
+    """Points of an earlier scan under their numbers in this one, which may hold more."""
+    index = {x: i for i, x in enumerate(spec.points)}
+    return {index[p.coordinate]: p.model_copy(update={"index": index[p.coordinate]}) for p in points if p.coordinate in index}
+
+
+def _continues(spec: ScanSpec, earlier: ScanResult) -> bool:
+    """Whether this scan has all points of the earlier one, and more, or completes it."""
+    alike = spec.model_copy(update={"points": ()}) == earlier.spec.model_copy(update={"points": ()})
+    more = set(spec.points) > set(earlier.spec.points)
+    return alike and (more or (spec.points == earlier.spec.points and not earlier.finished))
 
 
 def numeric_settings(study: StudySpec) -> list[str]:

@@ -19,8 +19,9 @@ from thalweg_app.presenters.curve import (
     nearest_point,
     point_text,
     yield_figures,
+    yield_table,
 )
-from thalweg_app.presenters.scan_control import ScanControl, numeric_settings, scan_title
+from thalweg_app.presenters.scan_control import ScanControl, numeric_settings, placed, scan_title
 
 
 def point(index, coordinate, energy, flags=()):
@@ -202,6 +203,66 @@ def test_paths_are_chosen_and_atoms_picked(control):
 def test_no_system_no_scan():
     scans = ScanControl(FakeStarter(), lambda: None)
     assert "nothing to scan" in scans.obstacle
+
+
+def finished(control):
+    control.start()
+    listener, spec = run_scan_events(control, curve())
+    listener.events([ScanFinished(result=summarise(spec, list(curve()), 1.0))])
+    listener.done(None)
+
+
+def test_a_refinement_runs_only_new_points_and_takes_the_place_of_the_curve(control):
+    finished(control)
+    control.refine("minimum")
+    payload = control.starter.last.payload
+    assert payload["checked"]
+    assert len(payload["scan"]["points"]) == 13
+    assert len(payload["done"]) == 9
+    assert len(control.live.points) == 9  # shown at once, under their new numbers
+    spec = control.live.spec
+    points = [placed(spec, curve()).get(i) or point(i, x, -7.9) for i, x in enumerate(spec.points)]
+    control.starter.last.listener.events([ScanFinished(result=summarise(spec, points, 1.0))])
+    control.starter.last.listener.done(None)
+    assert [(s.number, len(s.result.points)) for s in control.scans] == [(1, 13)]
+
+
+def test_another_scan_does_not_replace_the_first(control):
+    finished(control)
+    control.edit("count", "7")
+    control.start()
+    listener = control.starter.last.listener
+    listener.events([ScanFinished(result=summarise(control.live.spec, list(curve(7)), 1.0))])
+    listener.done(None)
+    assert [s.number for s in control.scans] == [1, 2]
+
+
+def test_literature_values_stand_beside_the_fit_and_none_is_invented(control):
+    assert control.edit("literature.r_e", "1.5957") is None
+    assert "r_e" in control.edit("literature.r_e", "-1").field
+    finished(control)
+    rows = yield_figures(control.shown, CurveUnits())
+    assert rows[0][3] == "1.59570"
+    assert {row[3] for row in rows[1:]} == {"–"}
+    assert yield_table(rows).header[-1] == "Literature"
+    control.edit("literature.r_e", "")
+    assert control.draft.literature.r_e is None
+
+
+def test_the_time_is_estimated_before_starting(control):
+    control.foresee()
+    assert control.starter.last.function.endswith(":foresee")
+    control.starter.last.listener.done(12.0)
+    assert control.seconds_ahead == 12.0
+    listener = control.starter.last.listener
+    control.edit("count", "30")
+    listener.done(99.0)  # an answer to an older question
+    assert control.seconds_ahead == 12.0
+
+
+def test_the_spin_can_be_kept(control):
+    control.edit("fixed_spin", True)
+    assert control.spec().spin == "fixed"
 
 
 def test_a_second_scan_waits_for_the_first(control):
