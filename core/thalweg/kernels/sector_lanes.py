@@ -1,7 +1,8 @@
 """Rotations of contiguous runs of doubles, written as LLVM vector instructions because compilers do not find them in plain loops.
 
 A run of equal length in two rows is cut into pieces of 8, 4, 2 and 1 doubles, so that no masked or overlapping access is
-needed. A piece is one integer: first place in the first row | first place in the second row << 32 | sign bit << 63.
+needed. A piece is one integer: first place in the first row | first place in the second row << 32 | sign bit << 63. Pieces
+of one width stand together, those without the sign bit first.
 """
 
 from __future__ import annotations
@@ -47,8 +48,10 @@ class _Lanes:
         times, plus, minus = self.times, self._plus, self._minus
         return minus(times(cosine, first), times(sine, second)), plus(times(cosine, second), times(sine, first))
 
-    def accumulate(self, slot: Any, a: Any, b: Any) -> None:
-        self.builder.store(self._plus(self.builder.load(slot), self.times(a, b)), slot)
+    def accumulate(self, slot: Any, a: Any, b: Any, c: Any, d: Any) -> None:
+        """slot += a b - c d."""
+        total = self._plus(self.builder.load(slot), self.times(a, b))
+        self.builder.store(self._minus(total, self.times(c, d)), slot)
 
     def times(self, a: Any, b: Any) -> Any:
         return self.builder.fmul(a, b, flags=_FUSE)
@@ -114,44 +117,34 @@ def _sweeper(width: int) -> Any:
         row2: Any,
         cosine: Any,
         sine: Any,
-        sign: Any,
         sums: Any,
         slot: Any,
     ) -> Any:
-        """As the rotation, on psi and dual; adds sign (dual2 psi) to sums[slot:] and sign (dual psi2) behind, lane by lane.
-
-        Both are taken from the values before the rotation, which leaves their difference as it is.
-        """
+        """Turns psi and dual, whatever the sign bits; adds dual2 psi - dual psi2, which the rotation keeps, to sums[slot:] lane by lane."""
 
         def emit(context: Any, builder: Any, signature: Any, arguments: Any) -> Any:
             lanes = _Lanes(builder, width)
-            psi_at = _pointer(context, builder, signature.args[0], arguments[0])
-            dual_at = _pointer(context, builder, signature.args[1], arguments[1])
-            table = _pointer(context, builder, signature.args[2], arguments[2])
-            total_at = builder.gep(_pointer(context, builder, signature.args[10], arguments[10]), [arguments[11]])
-            plus = cgutils.alloca_once_value(builder, lanes.load(total_at))
-            minus_at = builder.gep(total_at, [ir.Constant(_INT, width)])
-            minus = cgutils.alloca_once_value(builder, lanes.load(minus_at))
-            c, sine_bits, sign_bits = lanes.splat(arguments[7]), builder.bitcast(arguments[8], _INT), builder.bitcast(arguments[9], _INT)
+            psi_at, dual_at, table = (_pointer(context, builder, signature.args[n], arguments[n]) for n in range(3))
+            sums_at = _pointer(context, builder, signature.args[9], arguments[9])
+            sum_at = builder.gep(sums_at, [arguments[10]])
+            total = cgutils.alloca_once(builder, lanes.vector)
+            builder.store(lanes.load(sum_at), total)
+            c, s = lanes.splat(arguments[7]), lanes.splat(arguments[8])
             with cgutils.for_range(builder, arguments[4], start=arguments[3], intp=_INT) as loop:
-                place, place2, bit = _decode(builder, builder.load(builder.gep(table, [loop.index])))
-                s = lanes.splat(_signed(builder, sine_bits, bit))
-                weight = lanes.splat(_signed(builder, sign_bits, bit))
+                place, place2, _ = _decode(builder, builder.load(builder.gep(table, [loop.index])))
                 i, j = builder.add(arguments[5], place), builder.add(arguments[6], place2)
                 u_at, v_at, p_at, q_at = (builder.gep(at, [k]) for at, k in ((psi_at, i), (psi_at, j), (dual_at, i), (dual_at, j)))
                 u, v, p, q = (lanes.load(at) for at in (u_at, v_at, p_at, q_at))
-                lanes.accumulate(plus, lanes.times(weight, q), u)
-                lanes.accumulate(minus, lanes.times(weight, p), v)
+                lanes.accumulate(total, q, u, p, v)
                 for first_at, second_at, a, b in ((u_at, v_at, u, v), (p_at, q_at, p, q)):
                     a, b = lanes.turn(c, s, a, b)
                     lanes.store(a, first_at)
                     lanes.store(b, second_at)
-            lanes.store(builder.load(plus), total_at)
-            lanes.store(builder.load(minus), minus_at)
+            lanes.store(builder.load(total), sum_at)
             return context.get_dummy_value()
 
         number, place = types.float64, types.int64
-        return types.void(psi, dual, pieces, place, place, place, place, number, number, number, sums, place), emit
+        return types.void(psi, dual, pieces, place, place, place, place, number, number, sums, place), emit
 
     return sweep
 

@@ -87,12 +87,16 @@ def string_space(n_orbitals: int, n_electrons: int, orbital_irreps: IntArray, la
 
 
 def reordering_phases(space: StringSpace, last: int) -> FloatArray:
-    """Sign of each string when orbital `last` is moved behind all higher ones, shape (N,)."""
+    """Sign of each string when orbital `last` is moved behind all higher ones, shape (N,).
+
+    Strings that hold an odd `last` change sign besides: then strings with both or none of two neighbouring orbitals are the same
+    whichever of the two is the last, and need not be touched on the way from one order to the other.
+    """
     if last < 0:
         return np.ones(space.size)
     above = np.bitwise_count(space.strings >> np.uint64(last + 1)).astype(np.int64)
     holds = (space.strings >> np.uint64(last)) & np.uint64(1)
-    return np.where((holds == 1) & (above % 2 == 1), -1.0, 1.0)
+    return np.where((holds == 1) & ((above + last) % 2 == 1), -1.0, 1.0)
 
 
 def _with_last(masks: MaskArray, last: int, n_orbitals: int) -> MaskArray:

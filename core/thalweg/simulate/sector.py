@@ -54,17 +54,18 @@ class SectorEngine:
         symmetric = keeps_point_group(program, hamiltonian.orbital_irreps)
         self._block: SymmetryBlock = self._product.block(self._product.reference_irrep) if symmetric else self._product.whole
         layout = self._block.layout
+        self._dual = np.empty(layout.size)
         small = layout.size * len(excitations) <= SMALL_WORK
         self._runner = SmallRunner(excitations, layout) if small else SectorRunner(excitations, layout)
 
     def energy(self, parameters: FloatArray) -> float:
         psi = self._forward(parameters)
-        return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi))
+        return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi, self._dual))
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         angles = self._angles(parameters)
         psi = self._runner.forward(self._program.reference, angles, self.watch)
-        dual = self._block.apply(psi)
+        dual = self._block.apply(psi, self._dual)
         energy = self._hamiltonian.core_energy + float(psi @ dual)
         slopes = self._runner.backward(psi, dual, angles, self.watch)
         gradient = np.bincount(self._parameter, weights=slopes * self._factor, minlength=self.n_parameters)
@@ -96,7 +97,7 @@ def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) ->
     alpha = {(e.alpha_source, e.alpha_target) for e in program.excitations}
     beta = {(e.beta_source, e.beta_target) for e in program.excitations}
     pairs = _pair_count(sector.n_orbitals, sector.n_alpha, alpha) + _pair_count(sector.n_orbitals, sector.n_beta, beta)
-    return estimated_bytes(sector, order, blocks=1) + 24 * pairs + 7 * 8 * sector.dimension // order
+    return estimated_bytes(sector, order, blocks=1) + 24 * pairs + 5 * 8 * sector.dimension // order
 
 
 def _pair_count(n_orbitals: int, n_electrons: int, excitations: set[OneSpin]) -> int:

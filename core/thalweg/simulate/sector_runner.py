@@ -16,8 +16,10 @@ from thalweg.simulate.sector_plan import order_of, stretches
 from thalweg.simulate.sector_views import Move, View
 from thalweg.watch import SILENT, Watch
 
-#: Bytes of one chunk of columns of a state; psi and its dual together stay in a second-level cache.
+#: Bytes of the amplitudes that factors of one spin pass over again and again: within a second-level cache.
 CHUNK_BYTES = 2**19
+#: Bytes of a set of connected rows that a group of alpha-beta factors passes over: within a first-level cache.
+SET_BYTES = 2**16
 #: Pair rotations in one kernel call, so that a stop is heard in time.
 PAIRS_PER_CALL = 2e7
 
@@ -55,7 +57,7 @@ class SectorRunner:
             self._moves.append(_move(where, following))
             self._returns.append(_move(following, where))
         self._start_view = plan[0].view if plan else home
-        self._buffers = [np.empty(layout.size) for _ in range(4)]
+        self._buffers = [np.empty(layout.size) for _ in range(2)]
 
     def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
         """The state from the determinant with these (alpha, beta) masks, in the home layout; valid until the next call."""
@@ -68,22 +70,22 @@ class SectorRunner:
                 watch.check()
                 kernels.rotate_groups(psi, *s.lists, cosines[s.first : s.last], sines[s.first : s.last])
             if move is not None:
-                move(psi, spare)
-                psi, spare = spare, psi
+                psi, spare = move(psi, spare)
         return psi
 
     def backward(self, psi: FloatArray, dual: FloatArray, angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
-        """2 <dual|A_f|psi> of each factor with the later ones undone, shape (F,); psi comes from `forward` and is used up."""
+        """2 <dual|A_f|psi> of each factor with the later ones undone, shape (F,).
+
+        psi comes from `forward`; psi and dual are used up.
+        """
         spare = self._buffers[1] if psi is self._buffers[0] else self._buffers[0]
-        own, spare_dual = self._buffers[2:]
-        own[:] = dual
+        own = dual
         cosines, sines = np.cos(angles[self.order]), np.sin(angles[self.order])
         slopes = np.zeros(angles.size)
         for segments, move in zip(reversed(self._segments), reversed(self._returns), strict=True):
             if move is not None:
-                move(psi, spare)
-                move(own, spare_dual)
-                psi, spare, own, spare_dual = spare, psi, spare_dual, own
+                psi, spare = move(psi, spare)
+                own, spare = move(own, spare)
             for s in reversed(segments):
                 watch.check()
                 part = slopes[s.first : s.last]
@@ -102,21 +104,55 @@ class SectorRunner:
 
 
 class _RowPairs:
-    """Row pairs of every row excitation of a program in one orientation, shared by all views of that orientation."""
+    """Row pairs of every row excitation of a program in one orientation, and the schedules of its groups."""
 
     def __init__(self, where: View, excitations: list[Excitation]) -> None:
         parts = [part for e in excitations if (part := one_spin(e, where.rows_are_alpha)) != ((), ())]
         self._which = {part: n for n, part in enumerate(dict.fromkeys(parts))}
-        pairs, _ = pair_lists(where.rows, list(self._which), rows=True)
-        start = where.layout.row_start
-        self.lists = (pairs.first, start[pairs.start], start[pairs.end], pairs.sign)
-        self._pairs = np.diff(pairs.first[:, [0, -1]], axis=1)[:, 0] if len(self._which) else np.zeros(0, np.int64)
+        self._pairs, _ = pair_lists(where.rows, list(self._which), rows=True)
+        self._rows, self._row_start = where.rows, where.layout.row_start
+        self._schedules: dict[tuple[int, ...], _Schedule] = {}
 
-    def index(self, part: OneSpin) -> int:
-        return self._which[part]
+    def schedule(self, parts: list[OneSpin]) -> _Schedule:
+        """The schedule of a group of factors with these row excitations, in this order."""
+        ids = tuple(self._which[part] for part in parts)
+        if ids not in self._schedules:
+            self._schedules[ids] = self._scheduled(ids)
+        return self._schedules[ids]
 
-    def count(self, part: OneSpin) -> int:
-        return int(self._pairs[self._which[part]])
+    def _scheduled(self, ids: tuple[int, ...]) -> _Schedule:
+        pairs = self._pairs
+        picked = np.concatenate([np.arange(pairs.first[e, 0], pairs.first[e, -1]) for e in ids])
+        factor = np.repeat(np.arange(len(ids)), [pairs.first[e, -1] - pairs.first[e, 0] for e in ids])
+        start = pairs.start[picked]
+        sets, sizes = kernels.row_sets(start, pairs.end[picked], self._rows.size)
+        irreps = self._rows.irreps[start]
+        order = np.lexsort((factor, sets, irreps))
+        first = np.searchsorted(irreps[order], np.arange(self._rows.n_irreps + 1))
+        picked = picked[order]
+        lists = (self._row_start[pairs.start[picked]], self._row_start[pairs.end[picked]], pairs.sign[picked], factor[order])
+        return _Schedule(len(self._schedules), first, lists, int(sizes.max(initial=1)))
+
+
+@dataclass(frozen=True)
+class _Schedule:
+    """Row pairs of a group, set by set; `first` (G + 1,) by irrep; `largest`: rows of the largest set."""
+
+    number: int
+    first: IntArray
+    lists: tuple[IntArray | FloatArray, ...]
+    largest: int
+
+    @property
+    def size(self) -> int:
+        return int(self.first[-1])
+
+
+def _joined(schedules: list[_Schedule]) -> tuple[IntArray | FloatArray, ...]:
+    """Schedules behind each other, as `rotate_groups` takes them."""
+    shifts = np.concatenate([[0], np.cumsum([s.size for s in schedules])])
+    first = np.stack([s.first + shift for s, shift in zip(schedules, shifts[:-1], strict=True)])
+    return (first, *(np.concatenate(column) for column in zip(*(s.lists for s in schedules), strict=True)))
 
 
 def _move(source: View, target: View) -> Move | None:
@@ -127,28 +163,29 @@ def _move(source: View, target: View) -> Move | None:
 def _segments(where: View, factors: list[Excitation], rows: _RowPairs, begun: int) -> list[_Segment]:
     """The kernel calls of one stretch; groups are neighbours with one column excitation."""
     columns = _ColumnChunks(where, factors)
+    schedules: dict[int, _Schedule] = {}
     calls: list[list[tuple[int, int, int, int]]] = [[]]
-    work = 0.0
-    row_ids, f = [], 0
+    bounds, work, f = [0], 0.0, 0
     for part, members in groupby(factors, key=lambda e: one_spin(e, not where.rows_are_alpha)):
         group = list(members)
-        row_ids += [rows.index(one_spin(e, where.rows_are_alpha)) for e in group]
-        first, last, pairs = columns.chunks(part)
-        cost = sum(rows.count(one_spin(e, where.rows_are_alpha)) for e in group) * pairs / max(where.rows.n_irreps, 1)
+        schedule = rows.schedule([one_spin(e, where.rows_are_alpha) for e in group])
+        schedules[schedule.number] = schedule
+        first, last, pairs = columns.chunks(part, schedule.largest)
+        cost = schedule.size * pairs / max(where.rows.n_irreps, 1)
         if calls[-1] and work + cost > PAIRS_PER_CALL:
             calls.append([])
+            bounds.append(f)
             work = 0.0
-        calls[-1].append((f, f + len(group), first, last))
+        calls[-1].append((f - bounds[-1], schedule.number, first, last))
         work += cost
         f += len(group)
-    chunk_first, pieces = columns.arrays()
+    bounds.append(f)
+    place = {number: n for n, number in enumerate(schedules)}
+    lists = (where.irrep, *_joined(list(schedules.values())), *columns.arrays())
     found = []
-    ids = np.array(row_ids, np.int64)
-    for call in calls:
-        groups = np.array(call, np.int64).reshape(-1, 4)
-        first, last = call[0][0], call[-1][1]
-        groups[:, :2] -= first
-        found.append(_Segment((where.irrep, *rows.lists, chunk_first, pieces, groups, ids[first:last]), begun + first, begun + last))
+    for call, low, high in zip(calls, bounds[:-1], bounds[1:], strict=True):
+        groups = np.array([(first, place[number], *chunks) for first, number, *chunks in call], np.int64)
+        found.append(_Segment((*lists, groups), begun + low, begun + high))
     return found
 
 
@@ -158,38 +195,42 @@ class _ColumnChunks:
     def __init__(self, where: View, factors: list[Excitation]) -> None:
         self._where = where
         parts = list(dict.fromkeys(one_spin(e, not where.rows_are_alpha) for e in factors))
-        pairs, _ = pair_lists(where.columns, parts, rows=False, phase=where.phase)
-        self._tables: list[IntArray] = []
+        self._number = {part: n for n, part in enumerate(parts)}
+        self._pairs, _ = pair_lists(where.columns, parts, rows=False, phase=where.phase)
+        self._tables: list[list[list[int]]] = []
         self._pieces: list[IntArray] = []
         self._total = 0
-        self._chunks = {part: self._cut(part, pairs, n) for n, part in enumerate(parts)}
+        self._cut: dict[tuple[OneSpin, int], tuple[int, int, int]] = {}
 
-    def chunks(self, part: OneSpin) -> tuple[int, int, int]:
-        """(first chunk, last chunk, pairs of columns)."""
-        return self._chunks[part]
+    def chunks(self, part: OneSpin, rows: int) -> tuple[int, int, int]:
+        """(first chunk, last chunk, pairs of columns) of a column excitation for sets of so many rows."""
+        if part == ((), ()):
+            limit = CHUNK_BYTES // (8 * rows)
+        else:
+            limit = SET_BYTES // (16 * rows)  # two columns a pair
+        limit = max(16, limit // 8 * 8)
+        if (part, limit) not in self._cut:
+            self._cut[part, limit] = self._cut_up(self._number[part], limit)
+        return self._cut[part, limit]
 
     def arrays(self) -> tuple[IntArray, IntArray]:
         n_irreps = self._where.columns.n_irreps
         pieces = np.concatenate(self._pieces) if self._pieces else np.empty(0, np.int64)
-        return np.array(self._tables, np.int64).reshape(-1, n_irreps, 5), pieces
+        return np.array(self._tables, np.int64).reshape(-1, n_irreps, 9), pieces
 
-    def _cut(self, part: OneSpin, pairs: SpinPairs, n: int) -> tuple[int, int, int]:
-        columns = self._where.columns
-        limit = max(8, CHUNK_BYTES // (8 * max(self._where.rows.size, 1)) // 8 * 8)
-        if part != ((), ()):
-            limit = max(8, limit // 2)  # two columns a pair
-        first = pairs.first[n]
-        longest = int(np.max(np.diff(first), initial=0))
+    def _cut_up(self, n: int, limit: int) -> tuple[int, int, int]:
+        first = self._pairs.first[n].tolist()
+        longest = max(high - low for low, high in zip(first[:-1], first[1:], strict=True))
+        count = -(-longest // limit)
+        step = -(-longest // max(count, 1))  # chunks of about equal size
         begin = len(self._tables)
-        for start in range(0, longest, limit):
-            table = []
-            for k in range(columns.n_irreps):
-                low, high = min(first[k] + start, first[k + 1]), min(first[k] + start + limit, first[k + 1])
-                table.append(self._cut_piece(pairs, int(low), int(high)))
-            self._tables.append(np.array(table))
-        return begin, len(self._tables), int(first[-1] - first[0])
+        for start in range(0, longest, max(step, 1)):
+            bounds = [(min(low + start, high), min(low + start + step, high)) for low, high in zip(first[:-1], first[1:], strict=True)]
+            self._tables.append([self._cut_pieces(low, high) for low, high in bounds])
+        return begin, len(self._tables), first[-1] - first[0]
 
-    def _cut_piece(self, pairs: SpinPairs, low: int, high: int) -> list[int]:
+    def _cut_pieces(self, low: int, high: int) -> list[int]:
+        pairs = self._pairs
         scratch = np.empty((3, high - low), np.int64)
         bounds = kernels.cut_pieces(pairs.start[low:high], pairs.end[low:high], pairs.sign[low:high], *scratch)
         self._pieces.append(scratch[2, : bounds[-1]].copy())

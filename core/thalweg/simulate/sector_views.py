@@ -68,8 +68,13 @@ class Move:
         else:
             place = source.columns.inverse[target.columns.rank]
             phase = target.phase * source.phase[place]
-            first = target.columns.first
-            self._arguments = (new.offsets, first, target.irrep, source.columns.local[place], phase)
+            cycles = kernels.cycles_of(source.columns.local[place], phase, target.columns.first)
+            self._arguments = (new.offsets, new.widths, target.irrep, *cycles)
 
-    def __call__(self, source: FloatArray, target: FloatArray) -> None:
-        (kernels.transpose if self._transposes else kernels.permute_columns)(source, target, *self._arguments)
+    def __call__(self, psi: FloatArray, spare: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """(the moved amplitudes, the array that is free now)."""
+        if self._transposes:
+            kernels.transpose(psi, spare, *self._arguments)
+            return spare, psi
+        kernels.permute_columns(psi, *self._arguments)
+        return psi, spare
