@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import sys
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -14,6 +15,7 @@ from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.presenters.wording import significant, unit_name
 from thalweg_app.terminal.answer import aligned
 from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.check_scan import check_scan
 from thalweg_app.terminal.display import make_display
 
 if TYPE_CHECKING:
@@ -27,21 +29,22 @@ PAST_TOLERANCE = 1
 @click.option("--tolerance", type=click.FloatRange(min=0.0), default=1e-7, show_default=True, help="Largest deviation allowed, in the energy unit.")
 @click.option("--quiet", is_flag=True, help="Show no progress.")
 def check(session_file: Path, tolerance: float, quiet: bool) -> int:
-    """Repeat every run of SESSION with its own settings and seed, and state how far each answer deviates.
+    """Repeat every run and every scan of SESSION with its own settings and seed, and state how far each answer deviates.
 
     The exit status is 1 when a deviation is past the tolerance, or a run cannot be repeated.
     """
     session = load_session(session_file)
-    if not session.runs:
-        raise StudyError(f"{session_file} has nothing to check", "it holds no run", "Run the study first")
+    if not session.runs and not session.scans:
+        raise StudyError(f"{session_file} has nothing to check", "it holds no run and no scan", "Run the study first")
+    checks = [partial(_check_run, run) for run in session.runs] + [partial(check_scan, scan) for scan in session.scans]
     worst = 0
-    for run in session.runs:
-        good, status = _check_run(run, tolerance, quiet)
+    for repeat_one in checks:
+        good, status = repeat_one(tolerance, quiet)
         if status:
             return status
         worst = max(worst, 0 if good else PAST_TOLERANCE)
-    held = "Every run repeats within" if worst == 0 else "Not every run repeats within"
-    click.echo(f"{held} {tolerance:g}.")
+    what = " and scan" if session.scans else ""
+    click.echo(f"{'Every' if worst == 0 else 'Not every'} run{what} repeats within {tolerance:g}.")
     return worst
 
 

@@ -29,31 +29,40 @@ class SpinCrossing:
         return f"the exact state changes from S^2 = {self.left_s_squared:.2f} at {self.left:g} to {self.right_s_squared:.2f} at {self.right:g}"
 
 
-def jumps(values: Sequence[float | None], tolerance: float) -> tuple[int, ...]:
+def jumps(coordinates: Sequence[float], values: Sequence[float | None], tolerance: float) -> tuple[int, ...]:
     """Indices of points that jump against their neighbours: the higher end of every step that neither side explains.
 
-    `values` are errors (variational minus exact) in order along the curve, None where a point is missing. A step counts when it is
-    larger than `tolerance`, larger than JUMP_RATIO times the steps beside it, and not foreseen by a straight line from either side.
+    `values` are errors (variational minus exact) along the curve, None where a point is missing. A step counts when it is larger than
+    `tolerance`, larger than JUMP_RATIO times what the slopes beside it foresee over the same distance, and off from both by `tolerance`.
     """
-    known = [(i, v) for i, v in enumerate(values) if v is not None]
+    known = [(i, x, v) for i, (x, v) in enumerate(zip(coordinates, values, strict=True)) if v is not None]
+    steps = [_Step(i, j, x1 - x0, y1 - y0) for (i, x0, y0), (j, x1, y1) in itertools.pairwise(known)]
     found: set[int] = set()
-    for n in range(len(known) - 1):
-        (i, y0), (j, y1) = known[n], known[n + 1]
-        step = y1 - y0
-        before = y0 - known[n - 1][1] if n > 0 else None
-        after = known[n + 2][1] - y1 if n + 2 < len(known) else None
-        beside = [abs(s) for s in (before, after) if s is not None]
-        if abs(step) <= tolerance or not beside:
+    for n, step in enumerate(steps):
+        before = steps[n - 1] if n > 0 else None
+        after = steps[n + 1] if n + 1 < len(steps) else None
+        foreseen = [step.width * other.height / other.width for other in _own_jump_left_out(before, step, after)]
+        if abs(step.height) <= tolerance or not (before or after):
             continue
-        spike = after is not None and abs(step + after) < 0.5 * abs(step)  # up and down again: the next step is the same jump
-        if spike:
-            beside = [abs(before)] if before is not None else [0.0]
-        came_down = before is not None and abs(step + before) < 0.5 * abs(step)
-        if came_down:
-            beside = [abs(after)] if after is not None else [0.0]
-        if abs(step) > JUMP_RATIO * max(beside) and all(abs(step - s) > tolerance for s in (before, after) if s is not None):
-            found.add(j if step > 0 else i)
+        unusual = abs(step.height) > JUMP_RATIO * max((abs(f) for f in foreseen), default=0.0)
+        if unusual and all(abs(step.height - f) > tolerance for f in foreseen):
+            found.add(step.last if step.height > 0 else step.first)
     return tuple(sorted(found))
+
+
+@dataclass(frozen=True)
+class _Step:
+    """From one known point to the next."""
+
+    first: int
+    last: int
+    width: float
+    height: float
+
+
+def _own_jump_left_out(before: _Step | None, step: _Step, after: _Step | None) -> list[_Step]:
+    """The steps beside, without one that undoes this step: up and down again is one jump, and explains nothing."""
+    return [other for other in (before, after) if other is not None and abs(step.height + other.height) >= 0.5 * abs(step.height)]
 
 
 def spin_crossings(coordinates: Sequence[float], s_squared: Sequence[float | None]) -> tuple[SpinCrossing, ...]:

@@ -35,8 +35,8 @@ def flagged_points(scan: ScanSpec, outcomes: Sequence[PointOutcome | None], retr
     """One CurvePoint for every point that has an outcome, with its flags."""
     results = [o.result if o is not None else None for o in outcomes]
     tolerance = JUMP_PART * next((r.target_error for r in results if r is not None), scan.study.target.error)
-    jumped = set(jumps([_error(r) for r in results], tolerance))
-    branched = set(jumps([_reference_error(r) for r in results], tolerance)) - jumped
+    jumped = set(jumps(scan.points, [_error(r) for r in results], tolerance))
+    branched = set(jumps(scan.points, [_reference_error(r) for r in results], tolerance)) - jumped
     spins = [r.exact_s_squared if r is not None else None for r in results]
     turned = {crossing.right for crossing in spin_crossings(scan.points, spins)}
     points = []
