@@ -170,10 +170,14 @@ def _active_space(frozen_core: bool, active: str | None) -> str:
 
 def _with_option(spec: StudySpec, path: str, value: Any) -> StudySpec:
     """As `with_setting`, with a sentence of its own where the chosen alternative has no such field."""
-    section, _, field = path.partition(".")
+    section, *fields = path.split(".")
     chosen = getattr(spec, section, None)
-    if field and isinstance(chosen, Options) and field not in type(chosen).model_fields:
-        fields = ", ".join(name for name in type(chosen).model_fields if name != "key")
-        what = f"{chosen.title or section} has no setting '{field}'"
-        raise StudyError(what, f"it has {fields}", f"Leave the option out or choose another {section}", path)
+    for field in fields:  # down to settings within settings, as in `system.lattice.sites`
+        if not isinstance(chosen, Options):
+            break
+        if field not in type(chosen).model_fields:
+            known = ", ".join(name for name in type(chosen).model_fields if name != "key")
+            what = f"{chosen.title or section} has no setting '{field}'"
+            raise StudyError(what, f"it has {known}", f"Leave the option out or choose another {section}", path)
+        section, chosen = field, getattr(chosen, field)
     return with_setting(spec, path, value)
