@@ -14,6 +14,7 @@ from thalweg.errors import StudyError
 from thalweg.options import Options
 from thalweg.storage.session import Session
 from thalweg.study.spec import SECTIONS, StudySpec, suited, with_setting
+from thalweg.systems import LatticeModel
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
@@ -81,6 +82,7 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
     """The settings that the options describe, and notes on how the input was read. StudyError when they do not fit."""
     unit = options["unit"]
     spec, notes = read_input(options["input_name"], unit or "angstrom")
+    read = spec
     given = {path: options[name] for name, path in PLAIN_OPTIONS.items() if options[name] is not None}
     if options["classical"] is not None:
         given["classical"] = [name.strip().lower() for name in options["classical"].split(",") if name.strip()]
@@ -93,7 +95,17 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
             spec = _with_text(spec, f"--{section}-set", f"{section}.", text)
     for text in options["settings"]:
         spec = _with_text(spec, "--set", "", text)
-    return spec, notes
+    return _named_anew(spec, read), notes
+
+
+def _named_anew(spec: StudySpec, read: StudySpec) -> StudySpec:
+    """Without the name of the file's lattice where options have changed what it names: then the name says what is there."""
+    old, new = read.system, spec.system
+    if not isinstance(old, LatticeModel) or not isinstance(new, LatticeModel) or new.name != old.name:
+        return spec
+    if (old.lattice, old.model) == (new.lattice, new.model):
+        return spec
+    return spec.model_copy(update={"system": new.model_copy(update={"name": ""})})
 
 
 def _setting_option(section: str, what: str) -> Callable[[Command], Command]:
