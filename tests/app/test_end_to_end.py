@@ -67,6 +67,7 @@ class Screen:
 
     def keep(self, name):
         """Saves what the screen shows, from the frame buffer that the server keeps in a file (format: XWDFile.h of X11)."""
+        time.sleep(1.0)  # the layout settles after the title has changed
         data = (self._folder / "Xvfb_screen0").read_bytes()
         words = struct.unpack(">25I", data[:100])
         header_size, width, height, bytes_per_line, colours = words[0], words[4], words[5], words[12], words[19]
