@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import groupby
+from itertools import groupby, pairwise
 
 import numpy as np
 
@@ -11,7 +11,7 @@ from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
 from thalweg.kernels import sector_pieces as kernels
 from thalweg.operators.sector_layout import SectorLayout
-from thalweg.simulate.sector_pairs import OneSpin, SpinPairs, one_spin, pair_lists
+from thalweg.simulate.sector_pairs import OneSpin, one_spin, pair_lists
 from thalweg.simulate.sector_plan import order_of, stretches
 from thalweg.simulate.sector_views import Move, View
 from thalweg.watch import SILENT, Watch
@@ -220,12 +220,12 @@ class _ColumnChunks:
 
     def _cut_up(self, n: int, limit: int) -> tuple[int, int, int]:
         first = self._pairs.first[n].tolist()
-        longest = max(high - low for low, high in zip(first[:-1], first[1:], strict=True))
+        longest = max(high - low for low, high in pairwise(first))
         count = -(-longest // limit)
         step = -(-longest // max(count, 1))  # chunks of about equal size
         begin = len(self._tables)
         for start in range(0, longest, max(step, 1)):
-            bounds = [(min(low + start, high), min(low + start + step, high)) for low, high in zip(first[:-1], first[1:], strict=True)]
+            bounds = [(min(low + start, high), min(low + start + step, high)) for low, high in pairwise(first)]
             self._tables.append([self._cut_pieces(low, high) for low, high in bounds])
         return begin, len(self._tables), first[-1] - first[0]
 
