@@ -19,6 +19,8 @@ class Options(BaseModel):
     #: One line for menus, and one line on strengths and weaknesses with its source.
     title: ClassVar[str] = ""
     about: ClassVar[str] = ""
+    #: Other names by which a person may call a setting -> its own name.
+    also_called: ClassVar[dict[str, str]] = {}
 
 
 def option(default: Any, title: str, help: str, *, unit: str = "", advanced: bool = False, **bounds: Any) -> Any:

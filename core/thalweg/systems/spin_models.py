@@ -18,6 +18,7 @@ class Ising(ExchangeModel):
     title: ClassVar[str] = "Ising"
     about: ClassVar[str] = "Ising couplings with a transverse and a longitudinal field (Pfeuty 1970 for the chain)."
     usual_reference: ClassVar[str] = "plus"
+    also_called: ClassVar[dict[str, str]] = {"field": "transverse", "h": "transverse"}
 
     key: Literal["ising"] = "ising"
     j: float = option(1.0, "J", "Coupling of neighbours along z.", unit="J")

@@ -18,10 +18,10 @@ class SettingPath(ScanPath):
     setting: str = option("", "Setting", "Dotted name of the setting, such as `system.model.field`.")
 
     def at(self, spec: StudySpec, value: float) -> StudySpec:
-        current = self._current(spec)
+        name, current = self._found(spec)
         if isinstance(current, int) and value != round(value):
             raise StudyError(f"'{self.setting}' cannot be {value:g}", "it is a whole number", "Choose points that are whole numbers", "path")
-        return with_setting(spec, self.setting, round(value) if isinstance(current, int) else float(value))
+        return with_setting(spec, name, round(value) if isinstance(current, int) else float(value))
 
     def axis(self, spec: StudySpec) -> str:
         return self.setting
@@ -32,12 +32,16 @@ class SettingPath(ScanPath):
 
     def counts_something(self, spec: StudySpec) -> bool:
         """True for whole numbers, such as the sites of a lattice, along which a curve has no derivatives."""
-        return isinstance(self._current(spec), int)
+        return isinstance(self._found(spec)[1], int)
 
-    def _current(self, spec: StudySpec) -> int | float:
+    def _found(self, spec: StudySpec) -> tuple[str, int | float]:
+        """The setting's own dotted name and its present value."""
         node: object = spec
-        for name in self.setting.split("."):
+        names = []
+        for given in self.setting.split("."):
+            name = getattr(type(node), "also_called", {}).get(given, given)
             node = getattr(node, name, None)
+            names.append(name)
         if isinstance(node, bool) or not isinstance(node, int | float):
             raise StudyError(f"'{self.setting}' cannot be varied", "it is not a number of this study", "Name a numeric setting", "path.setting")
-        return node
+        return ".".join(names), node
