@@ -6,7 +6,7 @@ from pathlib import Path
 from typing import ClassVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QMenu, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QCheckBox, QLabel, QMenu, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from thalweg_app.colours import Palette
 from thalweg_app.forms import QuietCombo, describe
@@ -27,6 +27,9 @@ from thalweg_app.presenters.curve_numbers import scan_csv
 from thalweg_app.presenters.scan_control import REFINED_BY, REFINEMENTS, scan_title
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.widgets.number_table import NumberTable
+from thalweg_app.widgets.scrolled import scrolled
+
+SIDE_WIDTH = 330
 
 
 class CurvePicture(Picture):
@@ -153,13 +156,13 @@ class CurvePicture(Picture):
         column.addWidget(self.yields)
         column.addWidget(self.remarks)
         column.addStretch(1)
-        scroll = _scrolled(side)
+        scroll = scrolled(side, SIDE_WIDTH)
         split = QSplitter(Qt.Orientation.Horizontal)
         split.setChildrenCollapsible(False)
         split.addWidget(self.stack)
         split.addWidget(scroll)
         split.setStretchFactor(0, 1)
-        split.setSizes([640, 330])
+        split.setSizes([640, SIDE_WIDTH])
         return split
 
     def _fill_choices(self) -> None:
@@ -171,18 +174,3 @@ class CurvePicture(Picture):
         self.choice.setCurrentIndex(-1 if chosen is None else self.choice.findData(chosen.number))
         self.choice.setEnabled(self.scans.live is None and bool(self.scans.scans))
         self.choice.blockSignals(False)
-
-
-def _scrolled(inner: QWidget) -> QWidget:
-    from PySide6.QtWidgets import QScrollArea
-
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setMinimumWidth(330)
-    holder = QWidget()
-    row = QHBoxLayout(holder)
-    row.setContentsMargins(12, 0, 4, 0)
-    row.addWidget(inner)
-    area.setWidget(holder)
-    return area

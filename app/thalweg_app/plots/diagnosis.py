@@ -19,6 +19,9 @@ from thalweg_app.presenters.tables import Table
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import SPACE, icon
 from thalweg_app.widgets.number_table import NumberTable
+from thalweg_app.widgets.scrolled import scrolled
+
+SIDE_WIDTH = 330
 
 EMPTY = Chart("Diagnosis", "", (), "Ask why a search fails: choose a question and press Diagnose.")
 _ASKS: dict[str, tuple[str, ...]] = {
@@ -56,9 +59,9 @@ class DiagnosisPicture(Picture):
         split = QSplitter(Qt.Orientation.Horizontal)
         split.setChildrenCollapsible(False)
         split.addWidget(self.stack)
-        split.addWidget(self._side())
+        split.addWidget(scrolled(self._side(), SIDE_WIDTH))
         split.setStretchFactor(0, 1)
-        split.setSizes([640, 330])
+        split.setSizes([640, SIDE_WIDTH])
         self.body.addWidget(split, 1)
         self.control.changed.connect(self.refresh)
         self.control.progressed.connect(self._show_progress)
@@ -120,9 +123,8 @@ class DiagnosisPicture(Picture):
 
     def _side(self) -> QWidget:
         side = QWidget()
-        side.setMinimumWidth(330)
         column = QVBoxLayout(side)
-        column.setContentsMargins(12, 0, 4, 0)
+        column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(SPACE)
         self.what = QuietCombo()
         for key, (title, _) in QUESTIONS.items():
@@ -139,6 +141,7 @@ class DiagnosisPicture(Picture):
         self.table.horizontalHeader().setStretchLastSection(True)
         for part in (self.what, self.about_what, self._form(), self.trouble, self._buttons(), self.progress, self.sentence):
             column.addWidget(part)
+        self.table.setMinimumHeight(150)
         column.addWidget(self.table, 1)
         column.addStretch(1)
         return side
