@@ -34,6 +34,7 @@ class ConvergencePicture(Picture):
         self.controls.addWidget(label)
         self.controls.addWidget(self.axis)
         self.growth = NumberTable("Steps of growth")
+        self.growth.setMinimumHeight(112)
         split = QSplitter(Qt.Orientation.Vertical)
         split.setChildrenCollapsible(False)
         split.addWidget(self.view)
