@@ -10,7 +10,6 @@ import pytest
 from thalweg.paths import data_folder
 from thalweg.storage.session import load_session
 from thalweg.study.result import StudyResult
-from thalweg_app import cli
 
 SAMPLES = data_folder("sample_systems")
 
@@ -41,23 +40,6 @@ PROMISED = {
     "versions",
     "spec",
 }
-
-
-@pytest.fixture
-def thalweg(capfd, tmp_path, monkeypatch):
-    """Runs the command line in an empty folder; gives (exit status, standard output, standard error)."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-
-    def run(*words: str, stdin: bytes | None = None) -> tuple[int, str, str]:
-        capfd.readouterr()
-        if stdin is not None:
-            (tmp_path / "stdin").write_bytes(stdin)
-            monkeypatch.setattr("sys.stdin", (tmp_path / "stdin").open())
-        status = cli.main(list(words))
-        return (status, *capfd.readouterr())
-
-    return run
 
 
 def solved(thalweg, *words: str, **more) -> dict:

@@ -7,25 +7,10 @@ import json
 import pytest
 
 from thalweg.systems.samples import list_samples
-from thalweg_app import cli
 
 LATTICES = [sample.name for sample in list_samples() if sample.file.suffix == ".toml"]
 #: The sample of 16 sites takes as long as all others together.
 LARGE = "square_16_j1j2"
-
-
-@pytest.fixture
-def thalweg(capfd, tmp_path, monkeypatch):
-    """Runs the command line in an empty folder; gives (exit status, standard output, standard error)."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-
-    def run(*words: str) -> tuple[int, str, str]:
-        capfd.readouterr()
-        status = cli.main(list(words))
-        return (status, *capfd.readouterr())
-
-    return run
 
 
 def test_the_ring_of_twelve_reaches_the_target(thalweg):

@@ -9,23 +9,8 @@ import pytest
 from thalweg.registry import key_of
 from thalweg.study.diagnosis_result import Curvature, LandscapeResult, StartSpread, TrainabilityResult
 from thalweg.study.result import StudyResult
-from thalweg_app import cli
 from thalweg_app.terminal.diagnose import whole_numbers
 from thalweg_app.terminal.methods import HEADINGS, registries
-
-
-@pytest.fixture
-def thalweg(capfd, tmp_path, monkeypatch):
-    """Runs the command line in an empty folder; gives (exit status, standard output, standard error)."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-
-    def run(*words: str) -> tuple[int, str, str]:
-        capfd.readouterr()
-        status = cli.main(list(words))
-        return (status, *capfd.readouterr())
-
-    return run
 
 
 def found(thalweg, record, *words: str):

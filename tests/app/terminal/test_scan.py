@@ -15,26 +15,11 @@ from pathlib import Path
 import pytest
 
 from thalweg.storage.session import load_session
-from thalweg_app import cli
 
 H2 = ["H2", "--from", "0.6", "--to", "1.0", "--points", "5", "--executor", "serial"]
 #: What a reader of the JSON may rely on.
 PROMISED_POINT = {"coordinate", "unit", "energy", "exact_energy", "reference_energy", "error", "flags"}
 PROMISED_CURVE = {"r_e", "e_min", "d_e", "omega_e"}
-
-
-@pytest.fixture
-def thalweg(capfd, tmp_path, monkeypatch):
-    """Runs the command line in an empty folder; gives (exit status, standard output, standard error)."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-
-    def run(*words: str) -> tuple[int, str, str]:
-        capfd.readouterr()
-        status = cli.main(list(words))
-        return (status, *capfd.readouterr())
-
-    return run
 
 
 def scanned(thalweg, *words: str) -> dict:
