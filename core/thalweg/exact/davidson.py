@@ -27,16 +27,16 @@ def lowest_pairs(
     apply: Callable[[FloatArray], FloatArray],
     diagonal: FloatArray,
     guesses: FloatArray,
-    count: int,
-    tolerance: float,
+    tolerances: FloatArray,
     watch: Watch,
     max_products: int = 4000,
 ) -> Eigenpairs:
-    """The `count` lowest pairs until every residual norm is at most `tolerance`.
+    """The lowest pairs, as many as there are `tolerances`, until the residual norm of each is at most its own.
 
     guesses: (g, n), g >= count, rows need not be orthonormal. The best pairs are returned, with the residuals that were
     reached, also when `max_products` products did not suffice.
     """
+    count = tolerances.size
     limit = max(SPACE_PER_PAIR * count, guesses.shape[0] + count)
     space = _Space(apply, min(limit, diagonal.size), diagonal.size)
     products = sum(space.grow(guess) for guess in guesses)
@@ -47,7 +47,7 @@ def lowest_pairs(
         ritz = coefficients.T @ space.vectors
         residual_vectors = coefficients.T @ space.products - values[:, None] * ritz
         residuals = np.linalg.norm(residual_vectors, axis=1)
-        open_pairs = np.flatnonzero(residuals > tolerance)
+        open_pairs = np.flatnonzero(residuals > tolerances)
         if open_pairs.size == 0 or products >= max_products or space.size >= diagonal.size:
             return Eigenpairs(values, ritz, residuals)
         if space.size + open_pairs.size > limit:

@@ -21,8 +21,8 @@ from thalweg.watch import SILENT, Watch
 
 #: Blocks up to this size are diagonalised densely.
 DENSE_LIMIT = 400
-#: Residual norms, Eh: of the first look at every irrep, and of a converged level.
-ROUGH, CONVERGED = 3e-2, 1e-7
+#: Residual norms, Eh: of the first look at every irrep, of a level whose energy alone matters (it errs by the square), and of a converged one.
+ROUGH, NEARLY, CONVERGED = 3e-2, 2e-5, 1e-7
 #: Levels closer than this are one level, Eh.
 SAME_LEVEL = 1e-7
 #: <S^2> nearer than this is the same spin.
@@ -30,7 +30,7 @@ SAME_SPIN = 0.05
 #: Levels that are worked out at most in the search for one of a given spin.
 MOST_LEVELS = 64
 #: Determinants of lowest energy from which Davidson's guesses are made.
-GUESS_SPACE = 200
+GUESS_SPACE = 100
 
 
 @dataclass(frozen=True)
@@ -169,6 +169,7 @@ class _Search:
             exhausted = np.isinf(ceiling)
             if exhausted or (len(complete) == count and len(groups) > count):
                 following = groups[len(complete)][0][0] + self._hamiltonian.core_energy if len(groups) > len(complete) else None
+                self._finish(complete)
                 return tuple(self._level(group) for group in complete), following
             wanted *= 2
 
@@ -190,11 +191,11 @@ class _Search:
                 self._found.append(_Found(irrep, block, _dense(block), True, "dense"))
                 continue
             guesses = _guesses(block, self._hamiltonian, count)
-            pairs = lowest_pairs(block.apply, block.diagonal, guesses, count, ROUGH, self._watch)
+            pairs = self._solved(block, guesses, np.full(count, ROUGH))
             self._found.append(_Found(irrep, block, pairs, False, "Davidson"))
 
     def _converge(self, wanted: int, count: int) -> None:
-        """Converges `wanted` states in each irrep, in ascending order, until the rest lies above the levels wanted."""
+        """Nearly converges `wanted` states in each irrep, in ascending order, until the rest lies above the levels wanted."""
         for found in sorted(self._found, key=lambda f: float(f.pairs.values[0])):
             groups, _ = self._groups(count + 1)
             bound = float(found.pairs.values[0] - found.pairs.residuals[0])
@@ -206,8 +207,20 @@ class _Search:
             start = found.pairs.vectors
             if len(start) < states:
                 start = np.concatenate([start, _guesses(found.block, self._hamiltonian, states)])
-            found.pairs = lowest_pairs(found.block.apply, found.block.diagonal, start, states, CONVERGED, self._watch)
+            found.pairs = self._solved(found.block, start, np.full(states, NEARLY))
             found.complete = True
+
+    def _finish(self, groups: list[list[tuple[float, int, int]]]) -> None:
+        """Converges every state of these levels."""
+        for i in {i for group in groups for _, i, _ in group}:
+            found = self._found[i]
+            tolerances = np.full(len(found.pairs.values), NEARLY)
+            tolerances[[k for group in groups for _, j, k in group if j == i]] = CONVERGED
+            if np.any(found.pairs.residuals > tolerances):
+                found.pairs = self._solved(found.block, found.pairs.vectors, tolerances)
+
+    def _solved(self, block: SymmetryBlock, guesses: FloatArray, tolerances: FloatArray) -> Eigenpairs:
+        return lowest_pairs(lambda v: block.apply(v, None, self._watch), block.diagonal, guesses, tolerances, self._watch)
 
     def _groups(self, limit: int) -> tuple[list[list[tuple[float, int, int]]], float]:
         """The lowest `limit` levels among the converged states, ascending, each a list of (energy, index of irrep, index of state); and a ceiling.
@@ -243,7 +256,8 @@ class _Search:
             squares += s_squares
             irreps += [found.irrep] * len(members)
             residuals += [float(found.pairs.residuals[k]) for k in members]
-        return Level(group[0][0] + self._hamiltonian.core_energy, tuple(irreps), np.stack(vectors), tuple(squares), max(residuals))
+        lowest = min(float(self._found[i].pairs.values[k]) for _, i, k in group)
+        return Level(lowest + self._hamiltonian.core_energy, tuple(irreps), np.stack(vectors), tuple(squares), max(residuals))
 
 
 def _pure_spins(block: SymmetryBlock, sector: Sector, states: FloatArray) -> tuple[FloatArray, list[float]]:

@@ -19,11 +19,12 @@ from thalweg.kernels import sector_product as product_kernels
 from thalweg.kernels import spin_strings
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.sector_layout import SectorLayout, StringSpace, sector_layout, sector_spaces
+from thalweg.watch import SILENT, Watch
 
 #: Largest block, in determinants, that becomes a sparse matrix.
 SPARSE_LIMIT = 10_000
 #: Multiplications in one kernel call.
-WORK_PER_CALL = 4e8
+WORK_PER_CALL = 1e9
 
 
 @dataclass(frozen=True)
@@ -123,23 +124,35 @@ class SymmetryBlock:
         matrix[np.repeat(np.arange(self.layout.size), np.diff(pointer)), column] = value
         return matrix
 
-    def apply(self, vector: FloatArray, out: FloatArray | None = None) -> FloatArray:
-        """H vector, shape (size,)."""
+    def apply(self, vector: FloatArray, out: FloatArray | None = None, watch: Watch = SILENT) -> FloatArray:
+        """H vector, shape (size,), written to `out` where it is given; may raise Stopped."""
         out = np.empty(self.layout.size) if out is None else out
         if self.is_sparse:
             matrix_kernels.multiply_rows(*self.rows, vector, out)
             return out
-        layout = self.layout
-        for h in range(layout.n_irreps):
-            block, target = layout.block(vector, h), layout.block(out, h)
-            if target.size:
-                np.matmul(self._alpha.dense[h], block, out=target)
-                target += block @ self._beta.dense[h ^ layout.irrep]
+        self._apply_one_spin(vector, out, watch)
         pairs = self._pair_integrals.shape[0]
         for first in range(0, pairs, self._pairs_per_call):
+            watch.check()
             last = min(first + self._pairs_per_call, pairs)
             product_kernels.add_pairs(vector, out, first, last, *self._cross)
         return out
+
+    def _apply_one_spin(self, vector: FloatArray, out: FloatArray, watch: Watch) -> None:
+        """out = H_alpha vector + vector H_beta, block by block and some rows at a time."""
+        layout = self.layout
+        for h in range(layout.n_irreps):
+            block, target = layout.block(vector, h), layout.block(out, h)
+            rows, columns = target.shape
+            if target.size == 0:
+                continue
+            step = max(1, int(WORK_PER_CALL / (columns * (rows + columns))))
+            alpha, beta = self._alpha.dense[h], self._beta.dense[h ^ layout.irrep]
+            for first in range(0, rows, step):
+                watch.check()
+                part = slice(first, first + step)
+                np.matmul(alpha[part], block, out=target[part])
+                target[part] += block[part] @ beta
 
     @cached_property
     def _cross(self) -> tuple[Any, ...]:

@@ -8,13 +8,15 @@ group there is one block, which is the whole sector.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray, MaskArray
 from thalweg.kernels.bits import binomials, fill_strings
 from thalweg.operators.fermion import Sector
+
+SectorKey = tuple[int, int, int, tuple[int, ...], int]
 
 
 @dataclass(frozen=True)
@@ -68,10 +70,16 @@ class StringSpace:
 
 
 def string_space(n_orbitals: int, n_electrons: int, orbital_irreps: IntArray, last: int = -1) -> StringSpace:
-    """All strings of `n_electrons` on `n_orbitals`, sorted by irrep, then ascending.
+    """All strings of `n_electrons` on `n_orbitals`, sorted by irrep, then ascending. Recent ones are kept.
 
     With `last`, that orbital counts as the highest in the order of the strings; phases then go with `reordering_phases`.
     """
+    return _string_space(n_orbitals, n_electrons, tuple(np.asarray(orbital_irreps).tolist()), last)
+
+
+@lru_cache(maxsize=16)
+def _string_space(n_orbitals: int, n_electrons: int, irreps_of_orbitals: tuple[int, ...], last: int) -> StringSpace:
+    orbital_irreps = np.array(irreps_of_orbitals, np.int64)
     size = int(binomials(n_orbitals)[n_orbitals, n_electrons])
     ascending = np.zeros(size, dtype=np.uint64)
     fill_strings(ascending, n_electrons)
@@ -83,7 +91,7 @@ def string_space(n_orbitals: int, n_electrons: int, orbital_irreps: IntArray, la
     inverse[rank] = np.arange(size)
     n_irreps = 1 << int(np.max(orbital_irreps, initial=0)).bit_length()
     first = np.concatenate([[0], np.cumsum(np.bincount(irreps, minlength=n_irreps))]).astype(np.int64)
-    return StringSpace(n_orbitals, n_electrons, ascending[rank], rank, inverse, first, np.asarray(orbital_irreps, np.int64))
+    return StringSpace(n_orbitals, n_electrons, ascending[rank], rank, inverse, first, orbital_irreps)
 
 
 def reordering_phases(space: StringSpace, last: int) -> FloatArray:
@@ -133,6 +141,12 @@ class SectorLayout:
     @property
     def shape(self) -> tuple[int, int]:
         return self.alpha.size, self.beta.size
+
+    @property
+    def key(self) -> SectorKey:
+        """What determines the layout: orbitals, alpha and beta electrons, orbital irreps, total irrep."""
+        alpha = self.alpha
+        return alpha.n_orbitals, alpha.n_electrons, self.beta.n_electrons, tuple(alpha.orbital_irreps.tolist()), self.irrep
 
     @cached_property
     def widths(self) -> IntArray:
@@ -203,3 +217,9 @@ def sector_spaces(sector: Sector, orbital_irreps: IntArray) -> tuple[StringSpace
     alpha = string_space(sector.n_orbitals, sector.n_alpha, orbital_irreps)
     same = sector.n_alpha == sector.n_beta
     return alpha, alpha if same else string_space(sector.n_orbitals, sector.n_beta, orbital_irreps)
+
+
+def layout_of(key: SectorKey) -> SectorLayout:
+    """The layout with this key, strings in natural order."""
+    n_orbitals, n_alpha, n_beta, irreps, irrep = key
+    return sector_layout(*sector_spaces(Sector(n_orbitals, n_alpha, n_beta), np.array(irreps, np.int64)), irrep)

@@ -60,12 +60,12 @@ class SectorEngine:
 
     def energy(self, parameters: FloatArray) -> float:
         psi = self._forward(parameters)
-        return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi, self._dual))
+        return self._hamiltonian.core_energy + float(psi @ self._block.apply(psi, self._dual, self.watch))
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         angles = self._angles(parameters)
         psi = self._runner.forward(self._program.reference, angles, self.watch)
-        dual = self._block.apply(psi, self._dual)
+        dual = self._block.apply(psi, self._dual, self.watch)
         energy = self._hamiltonian.core_energy + float(psi @ dual)
         slopes = self._runner.backward(psi, dual, angles, self.watch)
         gradient = np.bincount(self._parameter, weights=slopes * self._factor, minlength=self.n_parameters)
@@ -76,7 +76,7 @@ class SectorEngine:
         return self._block.layout.to_matrix(self._forward(parameters))
 
     def facts(self, parameters: FloatArray, exact_vectors: FloatArray | None) -> StateFacts:
-        return state_facts(self._block, self._program.sector, self._forward(parameters).copy(), exact_vectors)
+        return state_facts(self._block, self._program.sector, self._forward(parameters).copy(), exact_vectors, self.watch)
 
     def memory_bytes(self) -> int:
         return self._bytes

@@ -11,15 +11,16 @@ from thalweg.operators.fermion import Sector
 from thalweg.operators.sector_hamiltonian import SymmetryBlock
 from thalweg.operators.spin_square import s_squared
 from thalweg.simulate.engine import LeadingState, StateFacts
+from thalweg.watch import SILENT, Watch
 
 #: How many determinants are listed.
 MAX_LEADING = 12
 
 
-def state_facts(block: SymmetryBlock, sector: Sector, psi: FloatArray, exact_vectors: FloatArray | None) -> StateFacts:
+def state_facts(block: SymmetryBlock, sector: Sector, psi: FloatArray, exact_vectors: FloatArray | None, watch: Watch = SILENT) -> StateFacts:
     """Facts of the normalised state `psi` (flat, in the block's layout). exact_vectors: (D, Na, Nb), strings ascending."""
     layout = block.layout
-    applied = block.apply(psi)
+    applied = block.apply(psi, None, watch)
     residual = applied - float(psi @ applied) * psi
     grid = layout.to_grid(psi)
     alpha = spin_density(grid, layout.alpha.strings, block.alpha_singles, sector.n_orbitals)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import groupby, pairwise
 
 import numpy as np
@@ -10,7 +11,7 @@ import numpy as np
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
 from thalweg.kernels import sector_pieces as kernels
-from thalweg.operators.sector_layout import SectorLayout
+from thalweg.operators.sector_layout import SectorKey, SectorLayout, layout_of
 from thalweg.simulate.sector_pairs import OneSpin, one_spin, pair_lists
 from thalweg.simulate.sector_plan import order_of, stretches
 from thalweg.simulate.sector_views import Move, View
@@ -33,39 +34,61 @@ class _Segment:
     last: int
 
 
+@dataclass(frozen=True)
+class _Compiled:
+    """A program as kernel calls; the same for all geometries of a scan.
+
+    Attributes:
+        order: positions in the program in the order of the calls, shape (F,).
+        start: the first view.
+        segments: kernel calls of each stretch.
+        moves, returns: to the view of the next stretch (after the last: home) and back; None where the views agree.
+    """
+
+    order: IntArray
+    start: View
+    segments: tuple[tuple[_Segment, ...], ...]
+    moves: tuple[Move | None, ...]
+    returns: tuple[Move | None, ...]
+
+
+@lru_cache(maxsize=4)
+def compiled(excitations: tuple[Excitation, ...], key: SectorKey) -> _Compiled:
+    """The program on the sector with this key; recent ones are kept."""
+    layout = layout_of(key)
+    plan = stretches(list(excitations), layout.alpha, layout.beta, layout.irrep)
+    home = View(layout.alpha, layout.beta, layout.irrep, True)
+    views = [stretch.view for stretch in plan]
+    segments = []
+    row_pairs: dict[bool, _RowPairs] = {}
+    begun = 0
+    for stretch in plan:
+        where = stretch.view
+        factors = [excitations[f] for f in stretch.factors]
+        if where.rows_are_alpha not in row_pairs:
+            row_pairs[where.rows_are_alpha] = _RowPairs(where, list(excitations))
+        segments.append(tuple(_segments(where, factors, row_pairs[where.rows_are_alpha], begun)))
+        begun += len(factors)
+    steps = list(pairwise([*views, home]))
+    moves, returns = tuple(_move(a, b) for a, b in steps), tuple(_move(b, a) for a, b in steps)
+    return _Compiled(order_of(plan), views[0] if views else home, tuple(segments), moves, returns)
+
+
 class SectorRunner:
     """One program on one block of amplitudes. Two buffers a state are kept and used again."""
 
     def __init__(self, excitations: list[Excitation], layout: SectorLayout) -> None:
-        plan = stretches(excitations, layout.alpha, layout.beta, layout.irrep)
-        self.order = order_of(plan)
-        self._layout = layout
-        home = View(layout.alpha, layout.beta, layout.irrep, True)
-        self._segments: list[list[_Segment]] = []
-        self._moves: list[Move | None] = []
-        self._returns: list[Move | None] = []
-        row_pairs: dict[bool, _RowPairs] = {}
-        begun = 0
-        for n, stretch in enumerate(plan):
-            where = stretch.view
-            factors = [excitations[f] for f in stretch.factors]
-            if where.rows_are_alpha not in row_pairs:
-                row_pairs[where.rows_are_alpha] = _RowPairs(where, excitations)
-            self._segments.append(_segments(where, factors, row_pairs[where.rows_are_alpha], begun))
-            begun += len(factors)
-            following = plan[n + 1].view if n + 1 < len(plan) else home
-            self._moves.append(_move(where, following))
-            self._returns.append(_move(following, where))
-        self._start_view = plan[0].view if plan else home
+        self._program = compiled(tuple(excitations), layout.key)
         self._buffers = [np.empty(layout.size) for _ in range(2)]
 
     def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
         """The state from the determinant with these (alpha, beta) masks, in the home layout; valid until the next call."""
         psi, spare = self._buffers[:2]
         psi[:] = 0.0
-        psi[self._start_place(start)] = self._start_sign(start)
-        cosines, sines = np.cos(angles[self.order]), np.sin(angles[self.order])
-        for segments, move in zip(self._segments, self._moves, strict=True):
+        place, sign = self._place(start)
+        psi[place] = sign
+        cosines, sines = np.cos(angles[self._program.order]), np.sin(angles[self._program.order])
+        for segments, move in zip(self._program.segments, self._program.moves, strict=True):
             for s in segments:
                 watch.check()
                 kernels.rotate_groups(psi, *s.lists, cosines[s.first : s.last], sines[s.first : s.last])
@@ -80,9 +103,9 @@ class SectorRunner:
         """
         spare = self._buffers[1] if psi is self._buffers[0] else self._buffers[0]
         own = dual
-        cosines, sines = np.cos(angles[self.order]), np.sin(angles[self.order])
+        cosines, sines = np.cos(angles[self._program.order]), np.sin(angles[self._program.order])
         slopes = np.zeros(angles.size)
-        for segments, move in zip(reversed(self._segments), reversed(self._returns), strict=True):
+        for segments, move in zip(reversed(self._program.segments), reversed(self._program.returns), strict=True):
             if move is not None:
                 psi, spare = move(psi, spare)
                 own, spare = move(own, spare)
@@ -91,16 +114,15 @@ class SectorRunner:
                 part = slopes[s.first : s.last]
                 kernels.sweep_groups(psi, own, *s.lists, cosines[s.first : s.last], sines[s.first : s.last], part)
         ordered = np.empty_like(slopes)
-        ordered[self.order] = slopes
+        ordered[self._program.order] = slopes
         return ordered
 
-    def _start_place(self, start: tuple[int, int]) -> int:
-        rows, columns = start if self._start_view.rows_are_alpha else start[::-1]
-        return self._start_view.layout.index(rows, columns)
-
-    def _start_sign(self, start: tuple[int, int]) -> float:
-        columns = start[1] if self._start_view.rows_are_alpha else start[0]
-        return float(self._start_view.phase[self._start_view.columns.strings == np.uint64(columns)][0])
+    def _place(self, start: tuple[int, int]) -> tuple[int, float]:
+        """Where the determinant stands in the first view, and its sign there."""
+        view = self._program.start
+        rows, columns = start if view.rows_are_alpha else start[::-1]
+        sign = view.phase[view.columns.strings == np.uint64(columns)][0]
+        return view.layout.index(rows, columns), float(sign)
 
 
 class _RowPairs:
@@ -204,11 +226,8 @@ class _ColumnChunks:
 
     def chunks(self, part: OneSpin, rows: int) -> tuple[int, int, int]:
         """(first chunk, last chunk, pairs of columns) of a column excitation for sets of so many rows."""
-        if part == ((), ()):
-            limit = CHUNK_BYTES // (8 * rows)
-        else:
-            limit = SET_BYTES // (16 * rows)  # two columns a pair
-        limit = max(16, limit // 8 * 8)
+        bytes_a_row = CHUNK_BYTES // rows if part == ((), ()) else SET_BYTES // (2 * rows)  # two columns a pair
+        limit = max(16, bytes_a_row // 64 * 8)
         if (part, limit) not in self._cut:
             self._cut[part, limit] = self._cut_up(self._number[part], limit)
         return self._cut[part, limit]

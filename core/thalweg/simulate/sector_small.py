@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 
-from thalweg.arrays import FloatArray
+from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
 from thalweg.kernels import sector as kernels
-from thalweg.operators.sector_layout import SectorLayout
+from thalweg.operators.sector_layout import SectorKey, SectorLayout, layout_of
 from thalweg.simulate.sector_pairs import SpinPairs, one_spin, pair_lists
 from thalweg.watch import SILENT, Watch
 
@@ -17,10 +19,7 @@ class SmallRunner:
 
     def __init__(self, excitations: list[Excitation], layout: SectorLayout) -> None:
         self._layout = layout
-        alpha, alpha_ids = pair_lists(layout.alpha, [one_spin(e, True) for e in excitations], rows=True)
-        beta, beta_ids = pair_lists(layout.beta, [one_spin(e, False) for e in excitations], rows=False)
-        factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
-        self._lists = kernels.amplitude_pairs(layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), factors)
+        self._lists = _lists(tuple(excitations), layout.key)
         self._start: tuple[tuple[int, int], int] | None = None
 
     def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
@@ -37,6 +36,17 @@ class SmallRunner:
         slopes = np.empty(angles.size)
         kernels.sweep_back(psi, dual, *self._lists, angles, slopes)
         return slopes
+
+
+@lru_cache(maxsize=4)
+def _lists(excitations: tuple[Excitation, ...], key: SectorKey) -> tuple[IntArray, np.ndarray]:
+    """Amplitude pairs of every factor; the same for all geometries of a scan."""
+    layout = layout_of(key)
+    alpha, alpha_ids = pair_lists(layout.alpha, [one_spin(e, True) for e in excitations], rows=True)
+    beta, beta_ids = pair_lists(layout.beta, [one_spin(e, False) for e in excitations], rows=False)
+    factors = np.stack([alpha_ids, beta_ids], axis=1).astype(np.int64).reshape(-1, 2)
+    found: tuple[IntArray, np.ndarray] = kernels.amplitude_pairs(layout.row_start, layout.irrep, *_plain(alpha), *_plain(beta), factors)
+    return found
 
 
 def _plain(pairs: SpinPairs) -> tuple[np.ndarray, ...]:

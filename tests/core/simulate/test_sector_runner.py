@@ -73,6 +73,7 @@ def test_planned_and_plain_runs_agree_forward_and_back(case, worth, chunk, monke
     monkeypatch.setattr(sector_runner, "CHUNK_BYTES", chunk)
     monkeypatch.setattr(sector_runner, "SET_BYTES", chunk // 16)
     monkeypatch.setattr(sector_runner, "PAIRS_PER_CALL", 50.0 if chunk == 64 else 2e7)
+    sector_runner.compiled.cache_clear()
     h, layout = layout_of(*case)
     rng = np.random.default_rng(3)
     for excitations in programs(h):
@@ -84,6 +85,7 @@ def test_planned_and_plain_runs_agree_forward_and_back(case, worth, chunk, monke
             dual = rng.normal(size=layout.size)
             slopes, plain_slopes = planned.backward(psi, dual.copy(), angles), plain.backward(expected, dual.copy(), angles)
             assert np.allclose(slopes, plain_slopes, rtol=0, atol=1e-12)
+    sector_runner.compiled.cache_clear()
 
 
 def test_factors_run_in_program_order_up_to_commuting_neighbours():
