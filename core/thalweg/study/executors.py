@@ -19,8 +19,9 @@ T = TypeVar("T")
 EXECUTORS = ("local", "serial", "dask")
 _THREAD_LIMITS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "NUMBA_NUM_THREADS")
 #: Loaded once by the process that the workers are forked from.
-_PRELOADED = ("thalweg.study.scan_task", "thalweg.simulate.sector", "thalweg.exact.determinant", "scipy.optimize", "pyscf.scf", "pyscf.ao2mo")
-#: Seconds that a pool takes before its first point: it loads the numerical libraries anew (measured 1.5 to 3 on two cores).
+_PRELOADED = ("thalweg.study.scan_task", "thalweg.study.rehearsal")
+#: Seconds that a pool takes before its first point: it loads the numerical libraries anew (measured 1.5 to 3 on two cores, the first
+#: pool of a process; 0.3 for the next).
 START_UP = 2.5
 #: Seconds that a scheduler and its workers have to answer.
 PATIENCE = 10

@@ -34,7 +34,7 @@ def foresee(scan: ScanSpec, workers: int = 0, watch: Watch = SILENT) -> float:
     preparing = time.perf_counter() - begun
     if preparing < LOADING and middle:  # the first one may have loaded the numerical libraries
         begun = time.perf_counter()
-        problem = prepare(scan.at(scan.points[middle - 1]), watch)
+        problem = prepare(scan.at(scan.points[middle - 1]), watch, problem.prepared.seed)
         preparing = time.perf_counter() - begun
     engine = make_engine(problem, watch)
     point = np.full(engine.n_parameters, 1e-3)

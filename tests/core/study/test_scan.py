@@ -1,21 +1,30 @@
 """Scans: the same curve from every executor, kept points on stop, resumed scans, lost workers, and curves known from outside."""
 
+import itertools
 import os
-from concurrent.futures import ProcessPoolExecutor
+import signal
+from concurrent.futures import Executor
 from concurrent.futures.process import BrokenProcessPool
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
+from thalweg.ansatz import HardwareEfficient
 from thalweg.errors import StudyError
-from thalweg.study import scan_tasks
-from thalweg.study.executors import InProcess, local_pool, make_executor
-from thalweg.study.path import BondPath, BreathePath, SettingPath, StretchPath
+from thalweg.study import executors
+from thalweg.study.executors import InProcess, Local, local_pool, make_executor
+from thalweg.study.path import AnglePath, BondPath, BreathePath, SettingPath, StretchPath
 from thalweg.study.scan import run_scan
+from thalweg.study.scan_foresight import foresee
+from thalweg.study.scan_refine import refined
 from thalweg.study.scan_spec import ScanSpec, linear_points
 from thalweg.study.spec import Molecule, StudySpec, with_setting
+from thalweg.systems import LatticeModel
+from thalweg.systems.lattice import Chain
 from thalweg.systems.molecular_data import read_molecular_data
+from thalweg.systems.spin_models import Heisenberg, Ising
 
 H2 = StudySpec(system=Molecule(name="H2", atoms=(("H", 0, 0, 0), ("H", 0, 0, 0.7414))))
 LIH = StudySpec(system=Molecule(name="LiH", atoms=(("Li", 0, 0, 0), ("H", 0, 0, 1.5957))))
@@ -54,8 +63,9 @@ def test_h2_equals_the_stored_full_ci_at_every_bundled_distance():
     [("sto-3g", 0.73487, -1.13730605, 5001.8), ("6-31g", 0.74620, -1.15169785, 4367.1), ("cc-pvtz", 0.74262, -1.17233669, 4409.4)],
 )
 def test_constants_of_the_hydrogen_molecule(basis, r_e, e_min, omega_e):
-    study = with_setting(with_setting(H2, "system.basis", basis), "stop.evaluations", 1)  # only the exact curve is of interest
-    result = serial(ScanSpec(study=study, points=linear_points(0.55, 0.95, 9)))
+    study = with_setting(with_setting(H2, "system.basis", basis), "ansatz", "number-conserving")
+    study = with_setting(study, "stop.gradient", 1e3)  # only the exact curve is of interest: every start is as good as converged
+    result = serial(ScanSpec(study=study, points=linear_points(0.65, 0.85, 7)))
     assert result.exact.r_e == pytest.approx(r_e, rel=5e-4)
     assert result.exact.e_min == pytest.approx(e_min, abs=2e-6)
     assert result.exact.omega_e == pytest.approx(omega_e, rel=5e-3)
@@ -82,11 +92,85 @@ def test_a_local_pool_gives_the_same_curve_to_the_last_digit():
 
 
 def test_a_dask_cluster_of_two_processes_gives_the_same_curve():
-    distributed = pytest.importorskip("distributed")
+    from distributed import LocalCluster
+
     scan = ScanSpec(study=H2, points=linear_points(0.6, 2.0, 9))
-    with distributed.LocalCluster(n_workers=2, threads_per_worker=1, processes=True, dashboard_address=None) as cluster:
+    with LocalCluster(n_workers=2, threads_per_worker=1, processes=True, dashboard_address=None) as cluster:
         result = run_scan(scan, lambda: make_executor("dask", scheduler=cluster.scheduler_address))
     assert energies(result) == energies(serial(scan))
+
+
+def test_a_cluster_that_does_not_answer_is_refused_in_one_sentence(monkeypatch):
+    monkeypatch.setattr(executors, "PATIENCE", 0.2)
+    for scheduler, word in (
+        ("", "No Dask scheduler is named"),
+        ("tcp://127.0.0.1:9", "No Dask scheduler answers"),
+        ("nonsense", "No Dask scheduler"),
+    ):
+        with pytest.raises(StudyError, match=word):
+            make_executor("dask", scheduler=scheduler)
+
+
+class Workers:
+    """Stands for the client of a cluster."""
+
+    def __init__(self, versions, arrive=True):
+        self._versions, self._arrive = versions, arrive
+
+    def wait_for_workers(self, count, timeout):
+        if not self._arrive:
+            raise TimeoutError
+
+    def run(self, function):
+        if isinstance(self._versions, Exception):
+            raise self._versions
+        return self._versions
+
+
+@pytest.mark.parametrize(
+    ("client", "word"),
+    [
+        (Workers({}, arrive=False), "has no workers"),
+        (Workers({"a": "0.0.1"}), "run thalweg 0.0.1"),
+        (Workers(ModuleNotFoundError("No module named 'thalweg'")), "cannot run scan points"),
+    ],
+)
+def test_workers_that_cannot_run_points_are_refused_before_the_scan(client, word):
+    with pytest.raises(StudyError, match=word):
+        executors._check_workers(client, "tcp://host:1")
+
+
+def test_a_pool_is_started_only_where_it_pays():
+    local = Local(workers=4)
+    assert not local.pays(1000)  # nothing is known yet
+    local.took(executors.START_UP + 0.5)  # the first point loads libraries
+    assert not local.pays(6)
+    assert local.pays(10)
+    local.took(0.01)
+    assert not local.pays(100)
+    assert local.pays(1000)
+    assert not Local(workers=1).pays(10**6)
+
+
+def test_a_long_scan_moves_to_a_pool_and_keeps_its_curve(monkeypatch):
+    monkeypatch.setattr(executors, "START_UP", 0.0)
+    scan = ScanSpec(study=H2, points=linear_points(0.6, 1.4, 6))
+    made = []
+    pool = Local.pool
+    monkeypatch.setattr(Local, "pool", lambda self: made.append(pool(self)) or made[-1])
+    assert energies(run_scan(scan, lambda: Local(workers=2))) == energies(serial(scan))
+    assert made
+
+
+def test_workers_are_deaf_to_ctrl_c_and_take_one_thread():
+    with local_pool(1) as pool:
+        handler, threads = pool.submit(surroundings).result()
+    assert handler == signal.SIG_IGN
+    assert threads == ["1"] * len(threads)
+
+
+def surroundings():
+    return signal.getsignal(signal.SIGINT), [os.environ.get(name, "") for name in executors._THREAD_LIMITS]
 
 
 def test_stopping_keeps_finished_points_and_a_resumed_scan_completes_them():
@@ -104,50 +188,48 @@ def test_stopping_keeps_finished_points_and_a_resumed_scan_completes_them():
     assert energies(resumed) == pytest.approx(energies(serial(scan)), abs=1e-7)
 
 
-def end_process_once(folder, *_):
+class Lossy(Executor):
+    """A pool of one process, which ends itself instead of running `victim` while there is no marker of that."""
+
+    def __init__(self, victim, folder):
+        self._pool, self._victim, self._folder = local_pool(1), victim, folder
+
+    def submit(self, fn, /, *args):
+        if args[1] == self._victim:
+            return self._pool.submit(end_process_once, str(self._folder), fn, *args)
+        return self._pool.submit(fn, *args)
+
+    def shutdown(self, wait=True, *, cancel_futures=False):
+        self._pool.shutdown(wait=wait)
+
+
+def end_process_once(folder, fn, *args):
     marker = Path(folder) / "ended"
     if not marker.exists():
         marker.touch()
         os._exit(9)
+    return fn(*args)
 
 
 def test_a_killed_worker_costs_one_retried_point(tmp_path):
     scan = ScanSpec(study=H2, points=linear_points(0.6, 1.0, 4))
-    killed = []
-
-    class Pool(ProcessPoolExecutor):
-        def submit(self, fn, /, *args, **kwargs):
-            if not killed and args[1] == scan.points[2]:
-                killed.append(args[1])
-                return super().submit(end_process_once, str(tmp_path))
-            return super().submit(fn, *args, **kwargs)
-
-    result = run_scan(scan, lambda: Pool(1, mp_context=local_context()))
-    assert killed
+    result = run_scan(scan, lambda: Lossy(scan.points[2], tmp_path))
+    assert (tmp_path / "ended").exists()
     assert result.finished
     assert energies(result) == energies(serial(scan))
 
 
-def local_context():
-    import multiprocessing
-
-    return multiprocessing.get_context("spawn")
-
-
-def test_a_worker_lost_twice_fails_its_point_with_a_sentence():
-    tasks = scan_tasks.PointTasks(InProcess, lambda: False)
-
+def test_a_worker_lost_twice_fails_its_point_alone_with_a_sentence():
     class Broken(InProcess):
         def submit(self, fn, /, *args, **kwargs):
-            return super().submit(raise_broken)
+            return super().submit(raise_broken if args[1] == 0.8 else fn, *args, **kwargs)
 
-    tasks = scan_tasks.PointTasks(Broken, lambda: False)
-    tasks.submit((0, []), ScanSpec(study=H2, points=(1.0,)), 1.0, None)
-    ((_, outcome),) = list(tasks.results())
-    assert "ended twice" in outcome.failure
+    result = run_scan(ScanSpec(study=H2, points=(0.7, 0.8, 0.9)), Broken)
+    assert "ended twice" in result.points[1].failure
+    assert [p.flags for p in result.points] == [(), ("failed",), ()]
 
 
-def raise_broken():
+def raise_broken(*_):
     raise BrokenProcessPool
 
 
@@ -176,6 +258,135 @@ def test_a_breathing_scan_has_a_minimum_and_no_frequency():
 def test_a_setting_is_varied():
     result = serial(ScanSpec(study=H2, path=SettingPath(setting="target.error"), points=(1e-4, 1e-3)))
     assert [p.result.target_error for p in result.points] == [1e-4, 1e-3]
+
+
+def test_the_transition_of_an_ising_ring_shows_along_its_field():
+    # Transverse-field Ising ring, Pfeuty 1970: E = -sum_k sqrt(1 + h^2 - 2 h cos k), k = (2m + 1) pi / N.
+    n = 10
+    study = StudySpec(system=LatticeModel(lattice=Chain(sites=n), model=Ising()), ansatz=HardwareEfficient(depth=1))
+    study = with_setting(study, "stop.evaluations", 1)
+    result = serial(ScanSpec(study=study, path=SettingPath(setting="system.model.field"), points=linear_points(0.2, 2.0, 19)))
+    k = (2 * np.arange(n) + 1) * np.pi / n
+    for point in result.points:
+        closed = -np.sqrt(1 + point.coordinate**2 - 2 * point.coordinate * np.cos(k)).sum()
+        assert point.result.exact_energy == pytest.approx(closed, abs=1e-9)
+        assert point.energy_per_site == point.result.energy / n
+    assert result.transition == pytest.approx(1.0, abs=0.15)  # of a ring this small; 1 for an infinite one
+    assert result.level_crossings == ()
+    assert result.exact.r_e is None
+
+
+def test_the_number_of_sites_is_varied_without_derivatives():
+    study = with_setting(
+        StudySpec(system=LatticeModel(lattice=Chain(), model=Heisenberg()), ansatz=HardwareEfficient(depth=1)), "stop.evaluations", 1
+    )
+    result = serial(ScanSpec(study=study, path=SettingPath(setting="system.lattice.sites"), points=(4, 6, 8)))
+    # Heisenberg rings, energies per site: exact diagonalisation, recomputed.
+    assert [p.result.exact_energy / p.coordinate for p in result.points] == pytest.approx([-0.5, -0.467129273, -0.456386676], abs=1e-8)
+    assert result.transition is None
+
+
+def test_the_spin_of_the_exact_state_is_flagged_where_it_changes_or_is_kept_fixed():
+    # Methylene in STO-3G: a triplet when it is open, a singlet when it is bent far enough.
+    study = StudySpec(system=Molecule(atoms=(("C", 0, 0, 0), ("H", 0, 0.98, 0.3), ("H", 0, -0.98, 0.3)), active_space="frozen-core"))
+    scan = ScanSpec(study=study, path=AnglePath(first=2, vertex=1, last=3), points=(70, 80, 95, 110))
+    free, fixed = serial(scan), serial(scan.model_copy(update={"spin": "fixed"}))
+    assert [round(p.result.exact_s_squared, 6) for p in free.points] == [0.0, 2.0, 2.0, 2.0]
+    assert [p.flags for p in free.points] == [(), ("spin-changed",), (), ()]
+    assert "The exact state changes from S^2 = 0.00 at 70 to 2.00 at 80." in free.remarks
+    assert free.verdict.startswith("In a state of other symmetry or spin than the exact one at 3 of 4 points (80 to 110)")
+    assert [round(p.result.exact_s_squared, 6) for p in fixed.points] == [0.0] * 4
+    assert fixed.verdict.startswith("Reaches the target at all 4 points")
+    gaps = [b.result.exact_energy - a.result.exact_energy for a, b in zip(free.points, fixed.points, strict=True)]
+    assert gaps[0] == pytest.approx(0.0, abs=1e-9)
+    assert all(gap > 5e-3 for gap in gaps[1:])
+    assert "lies 10.1 mEh lower" in fixed.points[1].result.remarks[0]
+
+
+def test_points_are_added_where_they_are_wanted_and_the_others_are_not_run_again():
+    scan = ScanSpec(study=LIH, points=linear_points(1.0, 4.0, 7))
+    first = serial(scan)
+    for where, low, high in (("minimum", 1.0, 2.0), ("error", 2.5, 4.0)):
+        wider = refined(first, 4, where)
+        added = set(wider.points) - set(scan.points)
+        assert len(added) == 4
+        assert all(low <= x <= high for x in added)
+    wider, seen = refined(first, 4, "minimum"), []
+    again = serial(wider, emit=seen.append, done=first.points, checked=first.finished)
+    assert {e.point.coordinate for e in seen if e.kind == "scan-point"} == set(wider.points) - set(scan.points)
+    assert [p.result for p in again.points if p.coordinate in scan.points] == [p.result for p in first.points]
+    assert again.exact.r_e == pytest.approx(1.54752, abs=2e-4)
+    assert energies(again) == pytest.approx(energies(serial(wider)), abs=1e-7)
+    with pytest.raises(StudyError, match="more points"):
+        refined(first, 0, "error")
+    whole = serial(ScanSpec(study=H2, path=SettingPath(setting="starts"), points=(1, 2)))
+    with pytest.raises(StudyError, match="No room"):
+        refined(whole, 1, "minimum")
+
+
+def test_a_curve_built_to_jump_is_flagged_retried_and_mended(monkeypatch):
+    # The parameters that one point would take over are spoilt on the way, and its search may not last: it stays far above its neighbours.
+    from thalweg.study import scan_task
+
+    def short_at_one_point(spec, seed, **kwargs):
+        first = spec.system.atoms[1][3] == 2.0 and not calls
+        if first:
+            calls.append(spec)
+            spec = with_setting(spec, "stop.gradient", 1.0)
+            seed = replace(seed, parameters=tuple(0.3 for _ in seed.parameters))
+        return whole(spec, seed, **kwargs)
+
+    calls, seen, whole = [], [], scan_task.run_from
+    monkeypatch.setattr(scan_task, "run_from", short_at_one_point)
+    result = serial(ScanSpec(study=LIH, points=linear_points(1.2, 2.8, 9)), emit=seen.append)
+    told = [e.point for e in seen if e.kind == "scan-point" and e.point.coordinate == 2.0]
+    assert told[0].result.error > 1e-2
+    mended = next(p for p in result.points if p.coordinate == 2.0)
+    assert mended.flags == ("retried",)
+    assert mended.result.error < 1e-4
+
+
+def test_a_point_that_no_start_mends_stays_marked(monkeypatch):
+    from thalweg.study import scan_task
+
+    def spoilt(spec, *args, **kwargs):
+        result, seed = whole(spec, *args, **kwargs)
+        if spec.system.atoms[1][3] != 1.0:
+            return result, seed
+        return result.model_copy(update={"energy": result.energy + 5e-3, "error": result.error + 5e-3}), seed
+
+    whole = scan_task.run_from
+    monkeypatch.setattr(scan_task, "run_from", spoilt)
+    seen = []
+    result = serial(ScanSpec(study=H2, points=linear_points(0.6, 1.4, 9)), emit=seen.append)
+    assert [p.coordinate for p in result.points if "jump" in p.flags] == [1.0]
+    assert result.points[4].flags == ("jump", "retried")
+    assert any(e.kind == "stage" and e.text.startswith("Trying 4 starts") for e in seen)
+
+
+def test_both_directions_keep_the_lower_energy_of_each_point():
+    scan = ScanSpec(study=H2, points=linear_points(0.6, 1.4, 4))
+    both = serial(scan.model_copy(update={"both_directions": True}))
+    assert energies(both) == pytest.approx(energies(serial(scan)), abs=1e-8)
+    assert both.finished
+
+
+def test_the_time_foretold_grows_with_the_points_and_shrinks_with_the_workers(monkeypatch):
+    clock = itertools.count()  # every reading of it is a second later
+    monkeypatch.setattr("thalweg.study.scan_foresight.time.perf_counter", lambda: float(next(clock)))
+    scan = ScanSpec(study=H2, points=linear_points(0.6, 1.4, 16))
+    longer = scan.model_copy(update={"points": linear_points(0.6, 1.4, 160)})
+    alone = foresee(scan, 1)
+    assert alone > 16 * (1 + 30)  # a second to prepare each point, and thirty evaluations of a second
+    assert foresee(longer, 1) == pytest.approx(10 * alone)
+    assert foresee(longer, 4) == pytest.approx(executors.START_UP + 10 * alone / 4)
+    assert foresee(scan, 16) == pytest.approx(executors.START_UP + alone / 2)  # two blocks of neighbours
+    assert foresee(scan.model_copy(update={"both_directions": True}), 1) > 1.8 * alone
+
+
+def test_a_scan_without_points_is_refused():
+    with pytest.raises(StudyError, match="No points to scan"):
+        serial(ScanSpec(study=H2))
 
 
 def test_an_active_space_that_swaps_is_followed_or_flagged():
