@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from math import comb
 from typing import Any
 
 import numpy as np
@@ -19,15 +20,9 @@ def count_bits(typing_context: Any, mask: Any) -> Any:
     return types.uint64(types.uint64), emit
 
 
-@njit(cache=True, nogil=True)
 def binomials(size: int) -> np.ndarray:
-    """Pascal's triangle, shape (size + 1, size + 1), int64."""
-    table = np.zeros((size + 1, size + 1), dtype=np.int64)
-    for n in range(size + 1):
-        table[n, 0] = 1
-        for k in range(1, n + 1):
-            table[n, k] = table[n - 1, k - 1] + table[n - 1, k]
-    return table
+    """C(n, k) up to n = size, shape (size + 1, size + 1), int64; what `rank_of` looks up."""
+    return np.array([[comb(n, k) for k in range(size + 1)] for n in range(size + 1)], dtype=np.int64)
 
 
 @njit(cache=True, nogil=True)

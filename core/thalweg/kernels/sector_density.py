@@ -14,13 +14,21 @@ def spin_density(matrix: np.ndarray, strings: np.ndarray, singles: Any, m: int) 
     first, end, pq, sign, _ = singles
     gamma = np.zeros(m * m)
     for i in range(strings.size):
-        weight = matrix[i] @ matrix[i]
+        weight = _overlap(matrix, i, i)
         for p in range(m):
             if (strings[i] >> np.uint64(p)) & np.uint64(1):
                 gamma[p * (m + 1)] += weight
         for x in range(first[i, first.shape[1] - 1]):
-            gamma[pq[i, x]] += sign[i, x] * (matrix[i] @ matrix[end[i, x]])
+            gamma[pq[i, x]] += sign[i, x] * _overlap(matrix, i, end[i, x])
     return gamma.reshape(m, m)
+
+
+@njit(cache=True, nogil=True, fastmath={"reassoc", "contract"})
+def _overlap(matrix: np.ndarray, i: int, j: int) -> float:
+    total = 0.0
+    for c in range(np.uint64(matrix.shape[1])):
+        total += matrix[i, c] * matrix[j, c]
+    return total
 
 
 @njit(cache=True, nogil=True)

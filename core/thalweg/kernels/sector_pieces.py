@@ -102,7 +102,9 @@ def sweep_groups(
 @njit(cache=True, nogil=True)
 def row_sets(start: np.ndarray, end: np.ndarray, n_rows: int) -> tuple[np.ndarray, np.ndarray]:
     """A number of the set of connected rows that each pair belongs to, shape (P,), and the size of each set, shape (rows,)."""
-    parent = np.arange(n_rows)
+    parent = np.empty(n_rows, np.int64)
+    for r in range(n_rows):
+        parent[r] = r
     for x in range(start.size):
         a, b = start[x], end[x]
         while parent[a] != a:
@@ -119,7 +121,10 @@ def row_sets(start: np.ndarray, end: np.ndarray, n_rows: int) -> tuple[np.ndarra
             a = parent[a]
         parent[r] = a
         sizes[a] += 1
-    return parent[start], sizes
+    sets = np.empty(start.size, np.int64)
+    for x in range(start.size):
+        sets[x] = parent[start[x]]
+    return sets, sizes
 
 
 @njit(cache=True, nogil=True)

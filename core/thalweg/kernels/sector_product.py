@@ -149,7 +149,10 @@ def add_pairs(
     for k in range(n_irreps):
         widest = max(widest, column_first[k + 1] - column_first[k])
     source, target = _aligned(widest * LANES), _aligned(widest * LANES)
-    values = np.empty(np.max(bounds[:, -1] - bounds[:, 0]))
+    most = 0
+    for g in range(n_irreps):
+        most = max(most, bounds[g, n_irreps] - bounds[g, 0])
+    values = np.empty(most)
     starts, ends, signs = np.zeros(LANES, np.int64), np.zeros(LANES, np.int64), np.zeros(LANES)
     for x in range(pair_first, pair_last):
         g = pair_irrep[x]
