@@ -39,6 +39,9 @@ def figures_lines(figures: StudyFigures) -> list[str]:
     rows += [("Parameters", f"{figures.parameters:,} ({counted(figures.factors, 'factor')})")]
     if figures.two_qubit_gates is not None:
         rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
+    if figures.measurement_sets is not None:
+        step = "" if figures.circuits_a_step is None else f"; {counted(figures.circuits_a_step, 'circuit')} an iteration on a device"
+        rows.append(("Measurement sets", f"{figures.measurement_sets:,}{step}"))
     rows += [("Memory", bytes_text(figures.memory_bytes)), ("Operator order", figures.operator_order)]
     facts = [(_words(name), _fact(name, value, unit)) for name, value in figures.facts.items()]
     warnings = [f"Warning: {text}" for text in figures.warnings]

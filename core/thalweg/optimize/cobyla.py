@@ -7,6 +7,7 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
 from thalweg.optimize.objective import Objective
 from thalweg.optimize.scipy_bridge import minimise_with_scipy
 from thalweg.optimize.settings import OptimizerSettings
@@ -20,6 +21,9 @@ class COBYLA(OptimizerSettings):
     key: Literal["cobyla"] = "cobyla"
     first_step: float = option(0.3, "First step", "Radius of the first simplex.", unit="rad", gt=0)
     tolerance: float = option(1e-6, "Tolerance", "Radius at which the search ends.", unit="rad", gt=0)
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        return 1
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         limits = {"maxiter": self.max_iterations, "rhobeg": self.first_step, "tol": self.tolerance}

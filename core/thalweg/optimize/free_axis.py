@@ -7,6 +7,7 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
+from thalweg.circuit.structure import Structure
 from thalweg.estimate import AXES, HARMONICS
 from thalweg.optimize.objective import Objective
 from thalweg.optimize.sequential_minimal import SequentialMinimal, lowest_along
@@ -29,6 +30,12 @@ class FreeAxis(SequentialMinimal):
     needs: ClassVar[frozenset[str]] = frozenset({AXES, HARMONICS})
 
     key: Literal["free-axis"] = "free-axis"  # type: ignore[assignment]
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        gates, degrees = len(structure.triples), structure.degree.copy()
+        degrees[[k for triple in structure.triples for k in triple]] = 0
+        degrees = degrees[degrees > 0]
+        return 9 * gates + 2 * int(degrees.sum()) + (1 if self.reuse else gates + degrees.size)
 
     def sweep(self, objective: Objective, x: FloatArray, rng: np.random.Generator) -> tuple[FloatArray, float]:
         triples = objective.structure.triples

@@ -8,6 +8,7 @@ from typing import ClassVar
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
 from thalweg.errors import StudyError
 from thalweg.estimate import SHOTS
 from thalweg.optimize.objective import Objective
@@ -51,6 +52,9 @@ class ShotFrugal(OptimizerSettings):
     def next_shots(self, known: Knowledge) -> FloatArray:
         """Shots of each energy of every component, shape (K,), before rounding up and before the limits of the settings."""
         raise AssertionError(f"{type(self).__name__} gives no shots")
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        return gradient
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         steepness = self.steepness or objective.structure.steepness

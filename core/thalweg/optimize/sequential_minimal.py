@@ -7,6 +7,7 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
 from thalweg.estimate import HARMONICS
 from thalweg.optimize.objective import Objective
 from thalweg.optimize.settings import OptimizerSettings
@@ -30,6 +31,10 @@ class SequentialMinimal(OptimizerSettings):
     order: Order = option("in-turn", "Order", "Parameters one after another, or in a random order that changes with each sweep.")
     reuse: bool = option(True, "Reuse the minimum", "Take the energy that the last step predicts as known within a sweep, which saves an evaluation.")
     tolerance: float = option(1e-10, "Tolerance", "Stop when two sweeps in a row change the energy by less than this.", unit="Eh", gt=0)
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        degrees = structure.degree[structure.degree > 0]
+        return 2 * int(degrees.sum()) + (1 if self.reuse else degrees.size)
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         x, last, small = start.copy(), np.inf, 0

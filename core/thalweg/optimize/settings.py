@@ -7,6 +7,7 @@ from typing import ClassVar
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
 from thalweg.errors import StudyError
 from thalweg.estimate import AXES, HARMONICS, METRIC, SHOTS
 from thalweg.optimize.objective import Objective
@@ -36,6 +37,10 @@ class OptimizerSettings(Options):
     needs: ClassVar[frozenset[str]] = frozenset()
 
     max_iterations: int = option(2000, "Iterations", "Stop after this many iterations.", ge=1)
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        """Energies that a device would measure for one iteration; `gradient`: those of a gradient by shift rules."""
+        return 1 + gradient
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         """Runs until its own rule or `Stopped`; returns the reason, a key of STOP_REASONS.

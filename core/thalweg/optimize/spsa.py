@@ -7,6 +7,7 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.circuit.structure import Structure
 from thalweg.optimize.objective import Objective
 from thalweg.optimize.settings import OptimizerSettings
 from thalweg.options import option
@@ -26,6 +27,9 @@ class SPSA(OptimizerSettings):
     stability: float = option(0.1, "Stability A", "Part of the iterations by which the gains are delayed.", ge=0, le=1, advanced=True)
     step_exponent: float = option(0.602, "Step exponent", "Decay of a_k.", gt=0, le=1, advanced=True)
     perturbation_exponent: float = option(0.101, "Perturbation exponent", "Decay of c_k.", ge=0, le=1, advanced=True)
+
+    def energies_a_step(self, structure: Structure, gradient: int) -> int:
+        return 2
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         x, step = start.copy(), self.step or self.calibrated(objective, start, rng)

@@ -46,3 +46,5 @@ class StudyFigures(Record):
     warnings: tuple[str, ...]
     ladder: tuple[Rung, ...]
     pauli_terms: tuple[tuple[str, float], ...]
+    measurement_sets: int | None = None  # of strings read together, qubit by qubit; None where there are too many strings to sort at once
+    circuits_a_step: int | None = None  # that a device would run for one iteration of the search

@@ -2,20 +2,28 @@
 
 from __future__ import annotations
 
+from thalweg.circuit.angles import angles_of
 from thalweg.circuit.compile import excitation_gates
 from thalweg.circuit.program import GateProgram
+from thalweg.circuit.structure import structure_of
 from thalweg.cost.gates import GateCounts, gate_counts
+from thalweg.cost.groups import qubit_wise_groups
 from thalweg.encoding.encoded import EncodedSystem
+from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
 from thalweg.study.problem import Problem, Recent, make_engine, prepare
+from thalweg.study.simulator import measured_register
 from thalweg.study.spec import StudySpec
 from thalweg.watch import SILENT, Watch
 
 #: How many Pauli terms a result lists; the session keeps the settings that give all of them.
 MAX_LISTED_TERMS = 200
 
-_gates = Recent(8)
+#: Sorting more strings than this would hold up the figures.
+MOST_SORTED_TERMS = 20_000
+
+_gates, _set_counts = Recent(8), Recent(4)
 
 
 def inspect(spec: StudySpec, watch: Watch = SILENT) -> StudyFigures:
@@ -54,7 +62,21 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
         warnings=warnings_of(problem),
         ladder=tuple(Rung(**vars(row)) for row in prepared.ladder),
         pauli_terms=heaviest_terms(encoded.working),
+        **_measurement_figures(problem, watch),
     )
+
+
+def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int]:
+    """Measurement sets, and the circuits of one iteration: energies times sets."""
+    expansion, program = measured_register(problem).working, problem.program
+    if len(expansion) > MOST_SORTED_TERMS:
+        return {}
+    watch.stage("Sorting the Pauli strings into measurement sets")
+    key = (id(expansion),)
+    sets: int = _set_counts.get(key, lambda: (expansion, len(qubit_wise_groups(expansion, largest_first=True, watch=watch))))[1]
+    gradient = sum(SHIFT_RULES[highest].evaluations for highest in angles_of(program).highest.tolist())
+    energies = problem.spec.optimizer.energies_a_step(structure_of(program, expansion.one_norm), gradient)
+    return {"measurement_sets": sets, "circuits_a_step": sets * energies}
 
 
 def program_gates(problem: Problem) -> GateCounts:

@@ -103,15 +103,8 @@ class StudySimulator:
 
     @cached_property
     def register(self) -> EncodedSystem:
-        """The register that is measured: the full one where an excitation leaves the tapered sector, as for gates."""
-        encoded, program = self._problem.encoded, self._problem.program
-        if isinstance(program, ExcitationProgram) and encoded.symmetries:
-            from thalweg.circuit.compile import generator_strings
-
-            assert encoded.linear is not None
-            if not encoded.tapering.keeps(generator_strings(program.excitations, encoded.linear)[0]).all():
-                encoded = replace(encoded, working=encoded.full, tapering=Tapering(encoded.full.n_qubits), symmetries=())
-        return encoded
+        """The register that is measured."""
+        return measured_register(self._problem)
 
     @cached_property
     def _sets(self) -> Any:
@@ -130,6 +123,18 @@ class StudySimulator:
         if getattr(self._problem.spec.evaluation, "sets", "qubit-wise") == "single-terms":
             return MeasuredSets(expansion, tuple(np.flatnonzero((expansion.x | expansion.z) != 0)[:, None]))
         return MeasuredSets(expansion, qubit_wise_groups(expansion, largest_first=True, watch=self._watch))  # this order needs fewer shots
+
+
+def measured_register(problem: Problem) -> EncodedSystem:
+    """The working register, or the full one where an excitation leaves the tapered sector, as for gates."""
+    encoded, program = problem.encoded, problem.program
+    if isinstance(program, ExcitationProgram) and encoded.symmetries:
+        from thalweg.circuit.compile import generator_strings
+
+        assert encoded.linear is not None
+        if not encoded.tapering.keeps(generator_strings(program.excitations, encoded.linear)[0]).all():
+            encoded = replace(encoded, working=encoded.full, tapering=Tapering(encoded.full.n_qubits), symmetries=())
+    return encoded
 
 
 def search_source(problem: Problem, engine: Engine, rng: np.random.Generator, watch: Watch = SILENT) -> Source:

@@ -14,6 +14,7 @@ from thalweg.optimize import COBYLA, ICANS, OPTIMIZERS, SPSA, Adam, FreeAxis, Im
 from thalweg.optimize.natural_gradient import regularised_solution
 from thalweg.optimize.objective import CountedObjective, StopRules
 from thalweg.study.events import Iteration
+from thalweg.study.figures import inspect
 from thalweg.study.problem import make_engine, prepare
 from thalweg.study.run import run
 from thalweg.study.simulator import StudySimulator, search_source
@@ -234,6 +235,24 @@ def test_imaginary_time_follows_the_evolved_state_where_the_trial_states_hold_it
     evolved /= np.linalg.norm(evolved)
     reached = encoded.from_sector(engine.state(x)[None])[0]
     assert abs(np.vdot(evolved, reached)) ** 2 == pytest.approx(1.0, abs=2e-4)
+
+
+@pytest.mark.parametrize("optimizer", [Adam(), SPSA(step=0.1), SequentialMinimal(), SequentialMinimal(reuse=False), ICANS()], ids=lambda o: o.key)
+def test_the_circuits_of_a_step_are_foretold(optimizer):
+    """For the second iteration, past calibration and the like."""
+    spec = study(ansatz=UCCSD(spin_tied=True, point_group=False), evaluation=Shots(shots=100))
+    two = run(spec.model_copy(update={"optimizer": optimizer.model_copy(update={"max_iterations": 2})})).trace
+    figures = inspect(spec.model_copy(update={"optimizer": optimizer}))
+    assert two.circuits[2] - two.circuits[1] == figures.circuits_a_step
+    assert figures.measurement_sets == 5
+
+
+@pytest.mark.parametrize("reuse", [True, False])
+def test_the_circuits_of_a_step_with_free_axes_are_foretold(reuse):
+    optimizer = FreeAxis(max_iterations=2, reuse=reuse)
+    spec = study(ansatz=HardwareEfficient(depth=1), encoding=JordanWigner(taper=False), evaluation=Shots(shots=100), optimizer=optimizer)
+    trace = run(spec).trace
+    assert trace.circuits[2] - trace.circuits[1] == inspect(spec).circuits_a_step
 
 
 @pytest.mark.parametrize("key", sorted(set(OPTIMIZERS.keys()) - {"free-axis"}))

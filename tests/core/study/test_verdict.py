@@ -65,3 +65,35 @@ def test_an_interrupted_search_inside_the_target_says_so():
 
 def test_another_target_and_unit_are_named():
     assert "the target of 0.01 J" in judge(replace(GOOD, unit="J", target=0.01, error=0.002)).sentence
+
+
+SAMPLED = {"standard_error": 2e-4, "measured_error": 1.5e-4}
+
+
+def test_a_measured_energy_is_stated_with_its_error_bar():
+    verdict = judge(replace(GOOD, **SAMPLED))
+    assert verdict.reached
+    assert verdict.sentence.endswith("; measured 0.15 mEh above exact, with an error bar of 0.4 mEh (two standard errors)")
+    below = judge(replace(GOOD, standard_error=2e-4, measured_error=-3e-4))
+    assert below.reached
+    assert "measured 0.3 mEh below exact" in below.sentence
+
+
+def test_an_error_bar_wider_than_the_target_shows_nothing():
+    verdict = judge(replace(GOOD, standard_error=CHEMICAL_ACCURACY / 1.9, measured_error=0.0))
+    assert (verdict.kind, verdict.reached) == ("uncertain", False)
+    assert "the error bar of 1.68 mEh (two standard errors) is wider than chemical accuracy" in verdict.sentence
+    assert judge(replace(GOOD, standard_error=CHEMICAL_ACCURACY / 2.1, measured_error=0.0)).reached
+
+
+def test_a_state_outside_the_target_is_outside_however_wide_the_error_bar():
+    verdict = judge(replace(GOOD, error=0.02, standard_error=0.1, measured_error=-0.01))
+    assert verdict.kind == "outside"
+    assert "error bar of 200 mEh" in verdict.sentence
+
+
+def test_the_error_that_shots_would_have_counts_like_a_measured_one():
+    verdict = judge(replace(GOOD, standard_error=1e-4))
+    assert verdict.reached
+    assert verdict.sentence.endswith("; shots would have an error bar of 0.2 mEh (two standard errors)")
+    assert judge(replace(GOOD, standard_error=0.01)).kind == "uncertain"
