@@ -10,9 +10,10 @@ from typing import Any
 import numpy as np
 
 from thalweg import __version__
+from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import GateProgram
-from thalweg.evaluate import Shots
+from thalweg.evaluate import Exact, Shots
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
@@ -41,7 +42,7 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
     two_qubit = program_gates(problem).two_qubit
     evidence = _evidence(exact, end, energy, norm, facts, two_qubit)
     verdict = judge(evidence)
-    remarks += classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome)
+    remarks += classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome) + _pool_remark(problem)
     prepared, encoded, program = problem.prepared, problem.encoded, problem.program
     sector = prepared.fermions.sector if prepared.fermions is not None else None
     return StudyResult(
@@ -169,6 +170,12 @@ def _spread_remark(outcome: Outcome) -> tuple[str, ...]:
     if len(energies) < 2:
         return ()
     return (f"{len(energies)} starts end between {min(energies):.9f} and {max(energies):.9f}; the lowest counts.",)
+
+
+def _pool_remark(problem: Problem) -> tuple[str, ...]:
+    if not isinstance(problem.spec.ansatz, Adaptive) or isinstance(problem.spec.evaluation, Exact):
+        return ()
+    return ("The slopes of the pool are those of the simulation, without noise, and no circuits are counted for them.",)
 
 
 def _exact_fields(exact: ExactAnswer | None) -> dict[str, Any]:

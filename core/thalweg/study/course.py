@@ -85,13 +85,15 @@ class Course:
         should_stop: Callable[[], bool],
         index: int,
     ) -> None:
-        self.problem, self.index, self.watch = problem, index, watch_into(emit, should_stop)
+        self._is_concluding = False
+        self._should_stop = lambda: not self._is_concluding and should_stop()
+        self.problem, self.index, self.watch = problem, index, watch_into(emit, self._should_stop)
         self.seed = problem.spec.seed + index
         self.rng = np.random.default_rng(self.seed)
         self.steps: list[GrowthStep] = []
         self.exact_energy = None if exact is None else exact.energy
         self.target_energy = None if exact is None else exact.energy + target_error(problem, exact)
-        self._emit, self._should_stop = emit, should_stop
+        self._emit = emit
         self._columns: list[Progress] = []
         self._iterations, self._spent = 0, FREE
         self._draws = np.random.default_rng([self.seed, SAMPLING])
@@ -124,8 +126,7 @@ class Course:
         first: list[Progress] = []
         objective = self._objective(problem, engine, self._rules(), self.target_energy, self._reporting(first))
         reason = self._search(objective, start)
-        if np.isfinite(objective.best_energy):
-            objective.conclude()
+        self._conclude(objective)
         self._iterations += objective.iterations
         self._spent += objective.spent
         begin = first[0] if first else Progress(0, 0, np.inf, None, 0.0)
@@ -141,6 +142,15 @@ class Course:
             begin.gradient_norm or 0.0,
             objective.best_standard_error,
         )
+
+    def _conclude(self, objective: CountedObjective) -> None:
+        """The last estimate of the point that is kept; it is taken even where someone has asked to stop."""
+        self._is_concluding = True
+        try:
+            if np.isfinite(objective.best_energy):
+                objective.conclude()
+        finally:
+            self._is_concluding = False
 
     def aside(self, problem: Problem, start: FloatArray, gradient: float) -> FloatArray:
         """The best parameters for another Hamiltonian, to a gradient of `gradient` at best. Its cost is counted, its iterates are not shown."""

@@ -25,7 +25,10 @@ from thalweg.watch import SILENT, Watch
 
 
 class StudySimulator:
-    """See `evaluate.simulator.Simulator`. Everything beyond energy and gradient is prepared when it is first asked for."""
+    """See `evaluate.simulator.Simulator`. Everything beyond energy and gradient is prepared when it is first asked for.
+
+    A gradient by shifts takes many energies, so that each of them asks the watch whether to stop.
+    """
 
     def __init__(self, problem: Problem, engine: Engine, watch: Watch = SILENT) -> None:
         self._problem, self._engine, self._watch = problem, engine, watch
@@ -59,6 +62,7 @@ class StudySimulator:
         return self._engine.energy_and_gradient(parameters)
 
     def energy_at(self, angles: FloatArray) -> float:
+        self._watch.check()
         return self._by_angle.energy(self._settings_of(angles))
 
     def sample(self, angles: FloatArray, shots: IntArray, rng: np.random.Generator) -> SetSums:
@@ -95,6 +99,7 @@ class StudySimulator:
         return settings
 
     def _register_state(self, angles: FloatArray) -> ComplexArray:
+        self._watch.check()
         state = self._by_angle.state(self._settings_of(angles))
         if isinstance(self._problem.program, ExcitationProgram):
             return self.register.from_sector(state[None])[0]

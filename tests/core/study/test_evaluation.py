@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from support.dense import expansion_matrix
 
-from thalweg.ansatz import UCCSD, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import JordanWigner
 from thalweg.errors import StudyError
 from thalweg.evaluate import Exact, ExactWithError, Shots
@@ -179,6 +179,27 @@ def test_the_shot_limit_ends_a_search():
     result = run(study(stop=StopRules(shots=100_000), optimizer=SPSA(max_iterations=500)))
     assert result.stop_reason == "shots"
     assert 100_000 <= result.shots <= 104_000
+
+
+def test_a_stop_is_obeyed_in_the_middle_of_a_gradient():
+    """The chain has a gradient of more than a hundred energies; the stop is asked for after the first iterates were seen."""
+    asked = []
+
+    def should_stop() -> bool:
+        asked.append(None)
+        return len(asked) > 30
+
+    result = run(study(system=CHAIN, ansatz=UCCSD()), should_stop=should_stop)
+    assert result.stop_reason == "stopped-by-person"
+    assert len(asked) < 35
+    assert result.iterations == 0
+
+
+def test_growth_under_shots_says_that_its_slopes_are_exact():
+    result = run(study(ansatz=Adaptive(max_operators=1), optimizer=SPSA(max_iterations=2)))
+    assert any("slopes of the pool" in remark for remark in result.remarks)
+    assert result.measured_energy == result.starts[0].energy
+    assert not any("slopes of the pool" in remark for remark in run(study(ansatz=Adaptive(max_operators=1), evaluation=Exact())).remarks)
 
 
 @pytest.mark.parametrize(
