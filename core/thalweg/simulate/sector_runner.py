@@ -20,7 +20,7 @@ from thalweg.watch import SILENT, Watch
 #: Bytes of the amplitudes that factors of one spin pass over again and again: within a second-level cache.
 CHUNK_BYTES = 2**19
 #: Bytes of a set of connected rows that a group of alpha-beta factors passes over: within a first-level cache.
-SET_BYTES = 2**16
+SET_BYTES = 2**15
 #: Pair rotations in one kernel call, so that a stop is heard in time.
 PAIRS_PER_CALL = 2e7
 
