@@ -34,7 +34,7 @@ def b13_start() -> list[Row]:
         pairs = [(seconds_to_line([sys.executable, str(HERE / "bench_window.py"), "start"], folder), bare_seconds(folder)) for _ in range(ROUNDS)]
     ours, bare = min(seconds for (seconds, _), _ in pairs), min(seconds for _, seconds in pairs)
     loaded = json.loads(pairs[0][0][1])
-    text = f"start to a usable window {ours:.2f} s / a bare process with Qt and numpy {bare:.2f} s (0.25 s on a quiet machine of the class, where 1.0 s is the bar), at most"
+    text = f"start to a usable window {ours:.2f} s / a bare process with Qt and numpy {bare:.2f} s (0.25 s where 1.0 s is the bar), at most"
     return [
         row("B13", text, ours / bare, 4.0),
         row("B13", f"of {', '.join(HEAVY)} imported before the window shows: {', '.join(loaded) or 'none'}", len(loaded), 0),
