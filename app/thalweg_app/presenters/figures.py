@@ -104,4 +104,4 @@ class DerivedFigures:
 
 def key_of(spec: StudySpec) -> Any:
     """What the figures depend on; an edit of the search leaves them fresh."""
-    return spec.system, spec.encoding, spec.ansatz, spec.memory_gib
+    return spec.system, spec.encoding, spec.ansatz, spec.memory_gib, spec.exact

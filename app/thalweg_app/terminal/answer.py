@@ -42,7 +42,8 @@ def figures_lines(figures: StudyFigures) -> list[str]:
     if figures.measurement_sets is not None:
         step = "" if figures.circuits_a_step is None else f"; {counted(figures.circuits_a_step, 'circuit')} an iteration on a device"
         rows.append(("Measurement sets", f"{figures.measurement_sets:,}{step}"))
-    rows += [("Memory", bytes_text(figures.memory_bytes)), ("Operator order", figures.operator_order)]
+    exact = f"; exact energy {bytes_text(figures.exact_bytes)}" if figures.exact_bytes else ""
+    rows += [("Memory", bytes_text(figures.memory_bytes) + exact), ("Operator order", figures.operator_order)]
     facts = [(_words(name), _fact(name, value, unit)) for name, value in figures.facts.items()]
     warnings = [f"Warning: {text}" for text in figures.warnings]
     return [*aligned(rows), "", *aligned(facts), *_ladder(figures), *([""] if warnings else []), *warnings]

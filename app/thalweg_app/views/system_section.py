@@ -199,7 +199,9 @@ def _figures(figures: StudyFigures) -> list[Figure]:
         found.append(Figure("Sites", wording.count(figures.qubits_before_tapering), "Sites that carry a spin."))
     if figures.sector_dimension is not None:
         found.append(Figure("Sector", wording.count(figures.sector_dimension), "Number of determinants with these electrons of each spin."))
-    found.append(Figure("Memory", wording.bytes_text(figures.memory_bytes), "Largest amount of memory that a run needs, estimated."))
+    found.append(Figure("Memory", wording.bytes_text(figures.memory_bytes), "Memory that the trial state and its search need, estimated."))
+    if figures.exact_bytes:
+        found.append(Figure("Memory, exact", wording.bytes_text(figures.exact_bytes), "Memory that the exact energy needs, estimated."))
     found.append(
         Figure(
             f"{_short(figures.reference_name)} / {unit}",

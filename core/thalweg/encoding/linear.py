@@ -85,6 +85,11 @@ def map_hamiltonian(hamiltonian: FermionHamiltonian, encoding: LinearEncoding, c
     return PauliExpansion(n, x[order], z[order], coefficients[order], cut)
 
 
+def mapping_bytes(n_orbitals: int) -> int:
+    """What `map_hamiltonian` takes at most, bytes: strings as they are found, cut, sorted, and the order."""
+    return 4 * 24 * int(kernels.count_bound.py_func(n_orbitals))
+
+
 def number_operator(encoding: LinearEncoding) -> PauliExpansion:
     """N = sum_p n_p, n_p = (1 - Z^F_p) / 2."""
     n = encoding.n_qubits

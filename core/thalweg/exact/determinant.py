@@ -13,6 +13,7 @@ from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
 from thalweg.exact.davidson import Eigenpairs, lowest_pairs
+from thalweg.exact.memory import FIRST_STATES, determinant_bytes
 from thalweg.kernels.spin_strings import small_matrix
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.sector_hamiltonian import SectorHamiltonian, SymmetryBlock
@@ -147,19 +148,24 @@ class _Search:
     def __init__(self, hamiltonian: FermionHamiltonian, watch: Watch, budget_bytes: int, product: SectorHamiltonian | None) -> None:
         self._hamiltonian, self._watch = hamiltonian, watch
         self.product = SectorHamiltonian(hamiltonian) if product is None else product
-        needed = self.product.memory_bytes() + 8 * hamiltonian.sector.dimension * 30
-        if needed > budget_bytes:
+        self._budget_bytes = budget_bytes
+        self._refuse_beyond_budget(FIRST_STATES)
+        self._found: list[_Found] = []
+
+    def _refuse_beyond_budget(self, states: int) -> None:
+        needed, sector = determinant_bytes(self._hamiltonian, states), self._hamiltonian.sector
+        if needed > self._budget_bytes:
             raise StudyError(
                 "The exact energy does not fit the memory budget",
-                f"{hamiltonian.sector} make {hamiltonian.sector.dimension:,} determinants, which need about {needed / 2**30:.1f} GiB",
+                f"{sector} make {sector.dimension:,} determinants, which need about {needed / 2**30:.3g} GiB for {states} states of each symmetry",
                 "Choose a smaller active space, raise the memory budget, or switch the exact energy off",
                 "exact",
             )
-        self._found: list[_Found] = []
 
     def levels(self, count: int) -> tuple[tuple[Level, ...], float | None]:
         """The lowest levels with all their states, and the energy of the one after them (None where there is none)."""
         wanted = count + 1
+        self._refuse_beyond_budget(wanted)
         if not self._found:
             self._look(wanted)
         while True:
@@ -172,6 +178,7 @@ class _Search:
                 self._finish(complete)
                 return tuple(self._level(group) for group in complete), following
             wanted *= 2
+            self._refuse_beyond_budget(wanted)
 
     def method(self, level: Level) -> str:
         names = self._hamiltonian.irrep_names

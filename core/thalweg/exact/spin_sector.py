@@ -10,6 +10,7 @@ import numpy as np
 
 from thalweg.errors import StudyError
 from thalweg.exact.answer import ExactAnswer
+from thalweg.exact.memory import STATE_BYTES
 from thalweg.exact.spin_basis import SortedStrings, SpinBasis, basis_of, sector_size, sorted_strings
 from thalweg.exact.spin_blocks import Block, OrbitBlock, RegisterBlock, RunsBlock, constant_exchange, orbit_tables, refuse_beyond
 from thalweg.exact.spin_diagonal import lowest_basis_states
@@ -20,9 +21,6 @@ from thalweg.operators.conserved import conserves_parity, conserves_total_spin_a
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.operators.product import product_bytes
 from thalweg.watch import Watch
-
-#: Bytes that each basis state takes in the tables of a sector.
-STATE_BYTES = 24
 
 
 def lowest_level_spins(

@@ -105,6 +105,8 @@ def exact_vectors(problem: Problem, exact: ExactAnswer | None) -> tuple[Any, tup
     if not isinstance(problem.program, GateProgram):
         return exact.vectors, ()
     encoded = problem.encoded
+    if exact.vectors.shape[0] * 16 << encoded.working.n_qubits > problem.budget_bytes // 2:
+        return None, ("The exact ground states do not fit the memory budget on the register, so that the fidelity is not stated.",)
     vectors = encoded.from_sector(exact.vectors) if problem.prepared.fermions is not None else encoded.from_register(exact.vectors)
     lost = 1.0 - float(np.min(np.sum(np.abs(vectors) ** 2, axis=-1)))
     if lost < LOST_WEIGHT:

@@ -41,6 +41,7 @@ class StudyFigures(Record):
     two_qubit_gates: int | None
     depth: int | None
     memory_bytes: int
+    exact_bytes: int = 0
     operator_order: str
     facts: dict[str, Any]
     warnings: tuple[str, ...]

@@ -12,7 +12,7 @@ from thalweg.encoding.encoded import EncodedSystem
 from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
-from thalweg.study.problem import Problem, Recent, make_engine, prepare
+from thalweg.study.problem import GIB, Problem, Recent, make_engine, prepare
 from thalweg.study.simulator import measured_register
 from thalweg.study.spec import StudySpec
 from thalweg.watch import SILENT, Watch
@@ -57,9 +57,10 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
         two_qubit_gates=gates.two_qubit,
         depth=gates.depth,
         memory_bytes=make_engine(problem, watch).memory_bytes(),
+        exact_bytes=exact_bytes(problem),
         operator_order=program.order,
         facts=prepared.facts,
-        warnings=warnings_of(problem),
+        warnings=warnings_of(problem) + _exact_warnings(problem),
         ladder=tuple(Rung(**vars(row)) for row in prepared.ladder),
         pauli_terms=heaviest_terms(encoded.working),
         **_measurement_figures(problem, watch),
@@ -77,6 +78,25 @@ def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int]:
     gradient = sum(SHIFT_RULES[highest].evaluations for highest in angles_of(program).highest.tolist())
     energies = problem.spec.optimizer.energies_a_step(structure_of(program, expansion.one_norm), gradient)
     return {"measurement_sets": sets, "circuits_a_step": sets * energies}
+
+
+def exact_bytes(problem: Problem) -> int:
+    """What the exact answer would take, estimated, bytes."""
+    from thalweg.exact.memory import determinant_bytes, spin_bytes
+
+    prepared = problem.prepared
+    if prepared.fermions is not None:
+        return determinant_bytes(prepared.fermions)
+    assert prepared.spins is not None
+    return spin_bytes(prepared.spins, problem.budget_bytes)
+
+
+def _exact_warnings(problem: Problem) -> tuple[str, ...]:
+    """A sentence where the run would be refused for its exact energy. Symmetries of a lattice may make it smaller: there the run decides."""
+    needed, budget = exact_bytes(problem), problem.budget_bytes
+    if not problem.spec.exact or problem.prepared.fermions is None or needed <= budget:
+        return ()
+    return (f"The exact energy needs about {needed / GIB:.3g} GiB and {budget / GIB:.3g} GiB are allowed: switch it off or raise the memory budget",)
 
 
 def program_gates(problem: Problem) -> GateCounts:

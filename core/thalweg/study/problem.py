@@ -127,9 +127,23 @@ def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldS
 
 def _encode(spec: StudySpec, prepared: PreparedSystem) -> EncodedSystem:
     if prepared.fermions is not None:
+        _refuse_mapping(spec, prepared.fermions.n_orbitals)
         return encode_fermions(prepared.fermions, spec.encoding)
     assert prepared.spins is not None
     return encode_spins(prepared.spins, spec.encoding, prepared.reference_bits)
+
+
+def _refuse_mapping(spec: StudySpec, n_orbitals: int) -> None:
+    from thalweg.encoding.linear import mapping_bytes
+
+    needed = mapping_bytes(n_orbitals)
+    if needed > spec.memory_gib * GIB:
+        raise StudyError(
+            f"{2 * n_orbitals} spin orbitals cannot be written on qubits",
+            f"the Pauli strings may need {needed / GIB:.3g} GiB of memory and {spec.memory_gib:.3g} GiB are allowed",
+            "Allow more memory or choose a smaller active space",
+            "memory_gib",
+        )
 
 
 def make_engine(problem: Problem, watch: Watch = SILENT) -> Engine:
