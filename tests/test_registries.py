@@ -10,7 +10,7 @@ import pytest
 from support.sources import PlainSource
 
 from thalweg.errors import Stopped, StudyError
-from thalweg.estimate import AXES, HARMONICS, METRIC, SHOTS
+from thalweg.estimate import AXES, HARMONICS, SHOTS
 from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import CountedObjective, StopRules
 from thalweg.optimize.settings import refuse_unless_offered
@@ -215,8 +215,8 @@ def test_every_optimiser_finds_the_minimum_of_every_smooth_problem(key, problem)
 
 
 def offers_of(degree: int = -1, steepness: float = 1.0, triples: tuple = ()) -> frozenset[str]:
-    """What the sources of these problems give beside values and gradients: shots and metric always."""
-    return frozenset([SHOTS, METRIC] + [HARMONICS] * (degree >= 0) + [AXES] * bool(triples))
+    """What the sources of these problems give beside values, gradients and the metric: shots always."""
+    return frozenset([SHOTS] + [HARMONICS] * (degree >= 0) + [AXES] * bool(triples))
 
 
 def test_every_optimiser_has_a_problem_that_offers_what_it_needs():

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Literal
 
 from thalweg.arrays import FloatArray
 
@@ -51,6 +52,19 @@ class Slopes:
     shots: FloatArray | None = None
 
 
-#: What an optimiser may need and an evaluation may offer beside values and gradients: gradients from a given number of shots; the
-#: metric tensor; the frequencies of the energy in every parameter; gates with free axes.
-SHOTS, METRIC, HARMONICS, AXES = "shots", "metric", "harmonics", "axes"
+#: All of the tensor, its blocks of parameters that commute and follow each other, or its diagonal.
+MetricPart = Literal["full", "block-diagonal", "diagonal"]
+
+
+@dataclass(frozen=True)
+class Metric:
+    """The quantum metric tensor, shape (K, K), with the standard error of its least certain element; 0 where it is exact."""
+
+    tensor: FloatArray
+    standard_error: float = 0.0
+    cost: Cost = FREE
+
+
+#: What an optimiser may need and an evaluation may offer beside values, gradients and the metric: gradients from a given number of
+#: shots; the frequencies of the energy in every parameter; gates with free axes.
+SHOTS, HARMONICS, AXES = "shots", "harmonics", "axes"

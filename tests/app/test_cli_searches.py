@@ -55,7 +55,6 @@ def test_the_figure_is_drawn_against_any_count(thalweg, tmp_path, axis):
         (["--optimizer-set", "foo=1"], "L-BFGS-B has no setting 'foo'"),
         (["--optimizer-set", "history"], "--optimizer-set history has no value"),
         (["--optimizer", "icans"], "iCANS cannot search here"),
-        (["--evaluation", "shots", "--optimizer", "natural-gradient"], "needs the metric tensor"),
         (["--evaluation", "shots", "--shots", "1"], "too few"),
         (["--start", "somewhere"], "ansatz.start"),
     ],

@@ -7,7 +7,7 @@ from collections.abc import Callable
 import numpy as np
 
 from thalweg.circuit.structure import Structure
-from thalweg.estimate import Cost, Estimate, Slopes
+from thalweg.estimate import Cost, Estimate, Metric, Slopes
 
 Function = Callable[[np.ndarray], tuple[float, np.ndarray]]
 
@@ -37,8 +37,8 @@ class PlainSource:
     def sampled_gradient(self, x: np.ndarray, shots: np.ndarray, *, random_terms: bool) -> Slopes:
         return Slopes(self._function(x)[1], np.zeros(x.size), Cost(1, 1, int(2 * shots.sum())), shots)
 
-    def metric(self, x: np.ndarray) -> np.ndarray:
-        return np.eye(x.size)
+    def metric(self, x: np.ndarray, part: str) -> Metric:
+        return Metric(np.eye(x.size))
 
     def exact_energy(self, x: np.ndarray) -> float:
         return self._function(x)[0]

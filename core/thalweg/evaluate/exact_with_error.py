@@ -37,7 +37,7 @@ class ExpectedSource(Source):
     def __init__(self, simulator: Simulator, settings: ExactWithError) -> None:
         super().__init__(simulator)
         self.begins_by_simulation = settings.gradient == "shift-rule"
-        self._settings = settings
+        self._settings, self._shots_a_circuit = settings, settings.shots
         self._cost = Cost(1, simulator.set_weights.size, settings.shots)
 
     def energy(self, parameters: FloatArray) -> Estimate:

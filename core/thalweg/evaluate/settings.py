@@ -9,7 +9,8 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.circuit.structure import Structure
-from thalweg.estimate import AXES, HARMONICS, METRIC, Cost, Estimate, Slopes
+from thalweg.estimate import AXES, HARMONICS, Cost, Estimate, Metric, MetricPart, Slopes
+from thalweg.evaluate.metric import metric_circuits, part_of
 from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.evaluate.simulator import Simulator
 from thalweg.options import Options
@@ -24,8 +25,8 @@ class EvaluationSettings(Options):
     """A way to evaluate is its settings plus `offers` and `source`."""
 
     def offers(self, structure: Structure) -> frozenset[str]:
-        """What an optimiser gets beside values and gradients, known before the run."""
-        return _of_program(structure) | {METRIC}
+        """What an optimiser gets beside values, gradients and the metric, known before the run."""
+        return frozenset([HARMONICS] * structure.has_harmonics + [AXES] * bool(structure.triples))
 
     def source(self, simulator: Simulator, rng: np.random.Generator) -> Source:
         """What a search draws its numbers from. `rng`: of the sampling alone. StudyError where the settings do not fit."""
@@ -43,6 +44,7 @@ class Source:
 
     is_sampled = False
     begins_by_simulation = False
+    _shots_a_circuit = 0  # of an overlap
 
     def __init__(self, simulator: Simulator) -> None:
         self.simulator = simulator
@@ -67,8 +69,11 @@ class Source:
         """Without noise, and counted nowhere."""
         return self.simulator.energy_and_gradient(parameters)
 
-    def metric(self, parameters: FloatArray) -> FloatArray:
-        return self.simulator.metric(parameters)
+    def metric(self, parameters: FloatArray, part: MetricPart) -> Metric:
+        """The part of the tensor, exact; circuits are counted where gradients go by shifts."""
+        tensor = part_of(self.simulator.metric(parameters), part, self.structure.layer)
+        circuits = metric_circuits(self.simulator.angles, part, self.structure.layer) if self.begins_by_simulation else 0
+        return Metric(tensor, 0.0, Cost(0, circuits, circuits * self._shots_a_circuit))
 
     def sampled_gradient(self, parameters: FloatArray, shots: FloatArray, *, random_terms: bool) -> Slopes:
         raise AssertionError("this evaluation draws no shots")
@@ -93,7 +98,3 @@ class Source:
                     shots[k] += estimate.cost.shots
                     count[k] += 1
         return Slopes(by_parameter, None if is_exact else variance, cost, shots / np.maximum(count, 1))
-
-
-def _of_program(structure: Structure) -> frozenset[str]:
-    return frozenset([HARMONICS] * structure.has_harmonics + [AXES] * bool(structure.triples))

@@ -9,8 +9,9 @@ import numpy as np
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.structure import Structure
 from thalweg.errors import StudyError
-from thalweg.estimate import METRIC, SHOTS, Cost, Estimate, Slopes
+from thalweg.estimate import SHOTS, Cost, Estimate, Metric, MetricPart, Slopes
 from thalweg.evaluate.allocation import LEAST, smoothed_variance, spread
+from thalweg.evaluate.metric import sampled_metric
 from thalweg.evaluate.settings import ALLOCATION_HELP, Allocation, EvaluationSettings, Source
 from thalweg.evaluate.simulator import SetSums, Simulator
 from thalweg.options import option
@@ -31,7 +32,7 @@ class Shots(EvaluationSettings):
     sets: MeasurementSets = option("qubit-wise", "Measurement sets", SETS_HELP)
 
     def offers(self, structure: Structure) -> frozenset[str]:
-        return super().offers(structure) - {METRIC} | {SHOTS}
+        return super().offers(structure) | {SHOTS}
 
     def source(self, simulator: Simulator, rng: np.random.Generator) -> Source:
         """StudyError where the shots do not go round."""
@@ -53,6 +54,10 @@ class SampledSource(Source):
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[Estimate, Slopes]:
         return self.energy(parameters), self._shifted(parameters, lambda angles, k: self._measured(angles, self._settings.shots))
+
+    def metric(self, parameters: FloatArray, part: MetricPart) -> Metric:
+        """From overlaps of the state with its shifted copies, each with the shots of one energy."""
+        return sampled_metric(self.simulator, parameters, part, self._settings.shots, self._rng)
 
     def sampled_gradient(self, parameters: FloatArray, shots: FloatArray, *, random_terms: bool) -> Slopes:
         """The gradient with shots[k] for each energy that component k needs, shape (K,), raised where the sets need more.

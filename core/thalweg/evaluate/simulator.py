@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 
@@ -66,6 +66,10 @@ class Simulator(Protocol):
 
     def set_variances(self, angles: FloatArray) -> FloatArray:
         """Exact variance of one shot of each set, shape (G,)."""
+        ...
+
+    def state(self, angles: FloatArray) -> Any:
+        """Amplitudes in some fixed order, any shape."""
         ...
 
     def metric(self, parameters: FloatArray) -> FloatArray:

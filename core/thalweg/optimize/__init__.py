@@ -1,6 +1,6 @@
 """Optimisers: one file each, each seeing only the `Objective`. The list order is the menu order.
 
-One that needs more of the objective than values and gradients says so in `needs`, and is refused where that is not offered.
+One that needs more of the objective than values, gradients and the metric says so in `needs`, and is refused where that is not offered.
 """
 
 from thalweg.optimize.adam import Adam

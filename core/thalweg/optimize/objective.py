@@ -12,14 +12,14 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.circuit.structure import Structure
 from thalweg.errors import Stopped
-from thalweg.estimate import FREE, Cost, Estimate, Slopes
+from thalweg.estimate import FREE, Cost, Estimate, Metric, MetricPart, Slopes
 from thalweg.options import Options, option
 
 
 class Objective(Protocol):
     """Values are energies minus a fixed offset (so that tolerances act on the interesting digits); parameters have shape (K,).
 
-    `sampled_gradient`, `metric` and parts of `structure` exist where the optimiser's `needs` ask for them.
+    `sampled_gradient` and parts of `structure` exist where the optimiser's `needs` ask for them.
     """
 
     n_parameters: int
@@ -27,6 +27,11 @@ class Objective(Protocol):
     @property
     def structure(self) -> Structure:
         """What is known of the energy from the program alone."""
+        ...
+
+    @property
+    def noise(self) -> float:
+        """Standard error of the latest value; 0 where values are exact."""
         ...
 
     def value(self, parameters: FloatArray) -> float: ...
@@ -37,8 +42,8 @@ class Objective(Protocol):
         """The gradient with shots[k] for each energy that component k needs, its variances and the shots taken."""
         ...
 
-    def metric(self, parameters: FloatArray) -> FloatArray:
-        """Quantum metric tensor, shape (K, K)."""
+    def metric(self, parameters: FloatArray, part: MetricPart = "full") -> Metric:
+        """All of the quantum metric tensor, its blocks of parameters of one layer, or its diagonal; the rest is 0."""
         ...
 
     def iterate(self, parameters: FloatArray) -> None:
@@ -67,7 +72,7 @@ class EnergySource(Protocol):
 
     def sampled_gradient(self, parameters: FloatArray, shots: FloatArray, *, random_terms: bool) -> Slopes: ...
 
-    def metric(self, parameters: FloatArray) -> FloatArray: ...
+    def metric(self, parameters: FloatArray, part: MetricPart) -> Metric: ...
 
     def exact_energy(self, parameters: FloatArray) -> float: ...
 
@@ -191,8 +196,11 @@ class CountedObjective:
         self._after(_Seen(parameters.copy(), Estimate(energy, None, FREE), None, *_norm(slopes)))
         return slopes
 
-    def metric(self, parameters: FloatArray) -> FloatArray:
-        return self._source.metric(parameters)
+    def metric(self, parameters: FloatArray, part: MetricPart = "full") -> Metric:
+        self._before()
+        metric = self._source.metric(parameters, part)
+        self.spent += metric.cost
+        return metric
 
     def iterate(self, parameters: FloatArray) -> None:
         seen = self._seen
@@ -213,6 +221,10 @@ class CountedObjective:
     @property
     def structure(self) -> Structure:
         return self._source.structure
+
+    @property
+    def noise(self) -> float:
+        return (self._seen.estimate.standard_error or 0.0) if self._source.is_sampled else 0.0
 
     @property
     def evaluations(self) -> int:

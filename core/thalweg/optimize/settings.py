@@ -9,14 +9,13 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.circuit.structure import Structure
 from thalweg.errors import StudyError
-from thalweg.estimate import AXES, HARMONICS, METRIC, SHOTS
+from thalweg.estimate import AXES, HARMONICS, SHOTS, MetricPart
 from thalweg.optimize.objective import Objective
 from thalweg.options import Options, option
 
 #: What an optimiser may need -> why it may be missing, and what to do then.
 MISSING = {
     SHOTS: ("it chooses the number of shots itself, and {evaluation} draws none", "Choose the evaluation by shots, or another optimiser"),
-    METRIC: ("it needs the metric tensor of the state, which {evaluation} does not give", "Evaluate exactly, or choose another optimiser"),
     HARMONICS: (
         "the angles of a parameter are not multiples of a common one, so that the energy along it is no short sum of sines",
         "Choose another optimiser or trial state",
@@ -31,7 +30,7 @@ MISSING = {
 class OptimizerSettings(Options):
     """An optimiser is its settings plus `minimise`; it sees only the objective.
 
-    `needs`: what the objective must offer beside values and gradients, words of `thalweg.estimate`.
+    `needs`: what the objective must offer beside values, gradients and the metric, words of `thalweg.estimate`.
     """
 
     needs: ClassVar[frozenset[str]] = frozenset()
@@ -41,6 +40,10 @@ class OptimizerSettings(Options):
     def energies_a_step(self, structure: Structure, gradient: int) -> int:
         """Energies that a device would measure for one iteration; `gradient`: those of a gradient by shift rules."""
         return 1 + gradient
+
+    def metric_a_step(self) -> MetricPart | None:
+        """What of the metric one iteration takes; None for nothing."""
+        return None
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
         """Runs until its own rule or `Stopped`; returns the reason, a key of STOP_REASONS.
@@ -52,7 +55,7 @@ class OptimizerSettings(Options):
 
 def refuse_unless_offered(optimizer: OptimizerSettings, offers: frozenset[str], evaluation: str) -> None:
     """StudyError where the optimiser needs what is not offered. `evaluation`: title of the way to evaluate."""
-    for need in (AXES, HARMONICS, SHOTS, METRIC):
+    for need in (AXES, HARMONICS, SHOTS):
         if need in optimizer.needs - offers:
             why, fix = MISSING[need]
             raise StudyError(f"{optimizer.title} cannot search here", why.format(evaluation=f"'{evaluation}'"), fix, "optimizer")

@@ -9,6 +9,7 @@ from thalweg.circuit.structure import structure_of
 from thalweg.cost.gates import GateCounts, gate_counts
 from thalweg.cost.groups import qubit_wise_groups
 from thalweg.encoding.encoded import EncodedSystem
+from thalweg.evaluate.metric import metric_circuits
 from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
@@ -75,9 +76,11 @@ def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int]:
     watch.stage("Sorting the Pauli strings into measurement sets")
     key = (id(expansion),)
     sets: int = _set_counts.get(key, lambda: (expansion, len(qubit_wise_groups(expansion, largest_first=True, watch=watch))))[1]
-    gradient = sum(SHIFT_RULES[highest].evaluations for highest in angles_of(program).highest.tolist())
-    energies = problem.spec.optimizer.energies_a_step(structure_of(program, expansion.one_norm), gradient)
-    return {"measurement_sets": sets, "circuits_a_step": sets * energies}
+    angles, structure, optimizer = angles_of(program), structure_of(program, expansion.one_norm), problem.spec.optimizer
+    gradient = sum(SHIFT_RULES[highest].evaluations for highest in angles.highest.tolist())
+    part = optimizer.metric_a_step()
+    overlaps = 0 if part is None else metric_circuits(angles, part, structure.layer)
+    return {"measurement_sets": sets, "circuits_a_step": sets * optimizer.energies_a_step(structure, gradient) + overlaps}
 
 
 def exact_bytes(problem: Problem) -> int:

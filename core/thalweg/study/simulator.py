@@ -73,6 +73,10 @@ class StudySimulator:
         variances: FloatArray = self._sets.moments(self._register_state(angles))[1]
         return variances
 
+    def state(self, angles: FloatArray) -> Any:
+        self._watch.check()
+        return self._by_angle.state(self._settings_of(angles))
+
     def metric(self, parameters: FloatArray) -> FloatArray:
         from thalweg.simulate.metric import metric_tensor
 
@@ -99,8 +103,7 @@ class StudySimulator:
         return settings
 
     def _register_state(self, angles: FloatArray) -> ComplexArray:
-        self._watch.check()
-        state = self._by_angle.state(self._settings_of(angles))
+        state = self.state(angles)
         if isinstance(self._problem.program, ExcitationProgram):
             return self.register.from_sector(state[None])[0]
         register_state: ComplexArray = state

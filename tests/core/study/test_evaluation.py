@@ -10,7 +10,7 @@ from thalweg.ansatz import UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberC
 from thalweg.encoding import JordanWigner
 from thalweg.errors import StudyError
 from thalweg.evaluate import Exact, ExactWithError, Shots
-from thalweg.optimize import COBYLA, ICANS, OPTIMIZERS, SPSA, Adam, FreeAxis, ImaginaryTime, NaturalGradient, SequentialMinimal
+from thalweg.optimize import COBYLA, ICANS, OPTIMIZERS, SPSA, Adam, FreeAxis, GradientDescent, ImaginaryTime, NaturalGradient, SequentialMinimal
 from thalweg.optimize.natural_gradient import regularised_solution
 from thalweg.optimize.objective import CountedObjective, StopRules
 from thalweg.study.events import Iteration
@@ -123,6 +123,30 @@ def test_exact_energies_carry_the_error_that_shots_have_on_average():
     assert np.mean([sampled.energy(x).standard_error for _ in range(30)]) == pytest.approx(estimate.standard_error, rel=0.03)
 
 
+@pytest.mark.parametrize("trial", ["uccsd-tied", "number-conserving", "hardware-efficient"])
+@pytest.mark.parametrize("part", ["full", "block-diagonal", "diagonal"])
+def test_sampled_metrics_lie_around_the_exact_one_and_every_overlap_is_counted(trial, part):
+    """From overlaps with shifted copies (Mari, Bromley and Killoran 2021), also of excitations and of gates that share a parameter."""
+    sampled, exact = source_of(trial, Shots(shots=100_000)), source_of(trial, Exact(gradient="shift-rule"))
+    x = some_parameters(sampled.n_parameters)
+    found, expected = sampled.metric(x, part), exact.metric(x, part)
+    assert np.all(np.abs(found.tensor - expected.tensor) < 5 * found.standard_error + 1e-12)
+    assert 0 < found.standard_error < 0.02
+    assert found.cost.circuits == expected.cost.circuits > 0
+    assert found.cost.shots == 100_000 * found.cost.circuits
+    if part == "diagonal":
+        assert np.count_nonzero(expected.tensor - np.diag(np.diag(expected.tensor))) == 0
+
+
+def test_a_layer_of_rotations_takes_one_overlap_an_angle_and_four_a_pair():
+    exact = source_of("hardware-efficient", Exact(gradient="shift-rule"))
+    gates = 16  # two layers of RY and RZ on four qubits
+    x = some_parameters(exact.n_parameters)
+    assert exact.metric(x, "diagonal").cost.circuits == gates
+    assert exact.metric(x, "full").cost.circuits == gates + 4 * gates * (gates - 1) // 2
+    assert exact.metric(x, "block-diagonal").cost.circuits == gates + 4 * 4 * 6  # four layers of four
+
+
 def study(**changes) -> StudySpec:
     base = {"system": PAIR, "ansatz": UCCSD(point_group=False), "evaluation": Shots(shots=2000), "optimizer": Adam(max_iterations=15, step=0.1)}
     return StudySpec(**(base | changes))
@@ -206,8 +230,6 @@ def test_growth_under_shots_says_that_its_slopes_are_exact():
     ("changes", "words"),
     [
         ({"optimizer": ICANS(), "evaluation": Exact()}, "chooses the number of shots itself"),
-        ({"optimizer": NaturalGradient()}, "needs the metric tensor"),
-        ({"optimizer": ImaginaryTime()}, "needs the metric tensor"),
         ({"optimizer": FreeAxis(), "evaluation": Exact()}, "no single-qubit rotations"),
     ],
 )
@@ -258,7 +280,9 @@ def test_imaginary_time_follows_the_evolved_state_where_the_trial_states_hold_it
     assert abs(np.vdot(evolved, reached)) ** 2 == pytest.approx(1.0, abs=2e-4)
 
 
-@pytest.mark.parametrize("optimizer", [Adam(), SPSA(step=0.1), SequentialMinimal(), SequentialMinimal(reuse=False), ICANS()], ids=lambda o: o.key)
+@pytest.mark.parametrize(
+    "optimizer", [Adam(), SPSA(step=0.1), SequentialMinimal(), SequentialMinimal(reuse=False), ICANS(), NaturalGradient()], ids=lambda o: o.key
+)
 def test_the_circuits_of_a_step_are_foretold(optimizer):
     """For the second iteration, past calibration and the like."""
     spec = study(ansatz=UCCSD(spin_tied=True, point_group=False), evaluation=Shots(shots=100))
@@ -282,6 +306,16 @@ def test_every_optimiser_lowers_the_energy_of_a_molecule(key):
     evaluation = Shots(shots=2000) if "shots" in cls.needs else Exact()
     result = run(study(optimizer=cls(max_iterations=60), evaluation=evaluation))
     assert result.error < 0.3 * (result.reference_energy - result.exact_energy)
+
+
+@pytest.mark.parametrize(
+    "optimizer", [NaturalGradient(max_iterations=15), NaturalGradient(max_iterations=15, metric="diagonal"), ImaginaryTime(max_iterations=15)]
+)
+def test_the_metric_is_sampled_too_where_energies_are(optimizer):
+    result = run(study(optimizer=optimizer, evaluation=Shots(shots=5000)))
+    assert result.error < 0.3 * (result.reference_energy - result.exact_energy)
+    plain = run(study(optimizer=GradientDescent(max_iterations=15), evaluation=Shots(shots=5000)))
+    assert result.circuits / result.iterations > plain.circuits / plain.iterations
 
 
 def test_free_axes_reach_what_fixed_axes_cannot():
