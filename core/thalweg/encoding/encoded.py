@@ -24,6 +24,7 @@ from thalweg.operators.conserved import conserves_total_spin_along
 from thalweg.operators.fermion import FermionHamiltonian, Sector
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.operators.total_spin import total_s_squared, total_s_z
+from thalweg.watch import SILENT, Watch
 
 DEGENERATE_NOTE = (
     "Some orbitals are degenerate: numbers of Pauli terms, measurement groups and symmetries depend on how the degenerate pair is oriented."
@@ -100,18 +101,21 @@ class EncodedSystem:
         return placed
 
 
-def encode_fermions(hamiltonian: FermionHamiltonian, settings: EncodingSettings) -> EncodedSystem:
+def encode_fermions(hamiltonian: FermionHamiltonian, settings: EncodingSettings, watch: Watch = SILENT) -> EncodedSystem:
     """A fermionic Hamiltonian on 2 M qubits, and on fewer inside the sector of its reference determinant.
 
-    Raises StudyError past 62 qubits.
+    Raises StudyError past 62 qubits, Stopped when asked to stop.
     """
     linear = linear_encoding(settings, 2 * hamiltonian.n_orbitals)
-    full = map_hamiltonian(hamiltonian, linear, settings.cut)
+    full = map_hamiltonian(hamiltonian, linear, settings.cut, watch)
+    watch.check()
     flips = full.x[np.diff(full.x, prepend=full.x[:1] ^ ONE) != 0]  # terms are sorted by x
     irreps = tuple(hamiltonian.orbital_irreps.tolist())
     frame = _frame(linear, settings.taper, hamiltonian.reference, irreps, hamiltonian.irrep_names, flips.tobytes())
+    watch.check()
     working = frame.tapering.expansion(full)
     assert working is not None
+    watch.check()
     return EncodedSystem(
         full,
         working,

@@ -13,6 +13,7 @@ from thalweg.errors import StudyError
 from thalweg.kernels import pauli as kernels
 from thalweg.operators.fermion import FermionHamiltonian
 from thalweg.operators.pauli import MAX_QUBITS, PauliExpansion, collect_terms
+from thalweg.watch import SILENT, Watch
 
 ONE = np.uint64(1)
 
@@ -69,8 +70,8 @@ def _linear_encoding(kind: type[EncodingSettings], n_qubits: int) -> LinearEncod
     return LinearEncoding(n_qubits, update, flip, parity)
 
 
-def map_hamiltonian(hamiltonian: FermionHamiltonian, encoding: LinearEncoding, cut: float = 0.0) -> PauliExpansion:
-    """The Hamiltonian on qubits; terms with |c| <= cut are dropped."""
+def map_hamiltonian(hamiltonian: FermionHamiltonian, encoding: LinearEncoding, cut: float = 0.0, watch: Watch = SILENT) -> PauliExpansion:
+    """The Hamiltonian on qubits; terms with |c| <= cut are dropped. Raises Stopped when asked to stop."""
     x, z, coefficients = kernels.map_hamiltonian(
         float(hamiltonian.core_energy),
         np.ascontiguousarray(hamiltonian.one_body, float),
@@ -80,8 +81,10 @@ def map_hamiltonian(hamiltonian: FermionHamiltonian, encoding: LinearEncoding, c
         encoding.parity,
         cut,
     )
+    watch.check()
     n = encoding.n_qubits
     order = np.argsort(x << np.uint64(n) | z) if 2 * n <= 64 else np.lexsort((z, x))
+    watch.check()
     return PauliExpansion(n, x[order], z[order], coefficients[order], cut)
 
 

@@ -88,7 +88,7 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     if spec.reference:
         prepared = _references.get((id(prepared), spec.reference), lambda: (prepared, with_reference(prepared, spec.reference)))[1]
     watch.stage("Encoding")
-    encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared)))[1]
+    encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared, watch)))[1]
     watch.stage("Building the trial state")
     kind, pairs = prepared.reference_kind, prepared.reference_pairs
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
@@ -125,10 +125,10 @@ def prepare_system(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldS
     return prepared
 
 
-def _encode(spec: StudySpec, prepared: PreparedSystem) -> EncodedSystem:
+def _encode(spec: StudySpec, prepared: PreparedSystem, watch: Watch) -> EncodedSystem:
     if prepared.fermions is not None:
         _refuse_mapping(spec, prepared.fermions.n_orbitals)
-        return encode_fermions(prepared.fermions, spec.encoding)
+        return encode_fermions(prepared.fermions, spec.encoding, watch)
     assert prepared.spins is not None
     return encode_spins(prepared.spins, spec.encoding, prepared.reference_bits)
 
