@@ -39,6 +39,7 @@ class PanelView:
         self._curves: dict[str, Any] = {}
         self._levels: dict[str, Any] = {}
         self._bars: list[Any] = []
+        self._whiskers: list[Any] = []
         self._band: Any = None
         self._banded: tuple[Band | None, Palette] | None = None
         self._framed: tuple[str, Palette] | None = None
@@ -122,6 +123,26 @@ class PanelView:
                 self.item.addItem(self._curves[name])
             self._draw(self._curves[name], series)
             self._curves[name].setZValue(10 + order)
+        self._show_error_bars()
+
+    def _show_error_bars(self) -> None:
+        """Whiskers of `Series.spread`, too short to be seen where the axis is in decades and the bar reaches below zero."""
+        for whiskers in self._whiskers:
+            self.item.removeItem(whiskers)
+        self._whiskers = []
+        for series in self._panel.series:
+            if series.spread is None:
+                continue
+            middle, low, high = (self.height_of(series.y + shift * series.spread) for shift in (0, -1, 1))
+            low = np.where(np.isfinite(low), low, middle)
+            kept = np.isfinite(middle) & np.isfinite(high)
+            colour = style_of(series.role, series.rank, self._palette).colour
+            item = pg.ErrorBarItem(
+                x=series.x[kept], y=middle[kept], top=(high - middle)[kept], bottom=(middle - low)[kept], beam=0.0, pen=pg.mkPen(colour, width=1)
+            )
+            item.setZValue(9)
+            self.item.addItem(item, ignoreBounds=True)
+            self._whiskers.append(item)
 
     def _draw(self, curve: Any, series: Series) -> None:
         style = style_of(series.role, series.rank, self._palette)

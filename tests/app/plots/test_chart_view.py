@@ -138,3 +138,15 @@ def test_text_stands_out_from_the_paper(palette, name):
 
     high, low = sorted((luminance(getattr(palette, name)), luminance(palette.paper)), reverse=True)
     assert (high + 0.05) / (low + 0.05) >= 4.5
+
+
+def test_error_bars_are_drawn_and_stay_on_a_log_axis_when_they_reach_below_zero(view):
+    x, y, spread = np.arange(3.0), np.array([1e-2, 1e-3, 1e-4]), np.array([1e-3, 2e-3, np.nan])
+    series = Series("measured", x, y, spread=spread)
+    view.show_chart(Chart("Measured", "x", (Panel("linear", (series,)), Panel("log", (series,), log=True))))
+    plain, log = (panel._whiskers[0].opts for panel in view._panels)
+    assert plain["top"] == pytest.approx([1e-3, 2e-3])
+    assert log["bottom"][1] == 0.0  # 1e-3 - 2e-3 has no place in decades
+    assert log["top"][1] == pytest.approx(np.log10(3))
+    view.show_chart(Chart("Measured", "x", (Panel("linear", (Series("exact", x, y),)), Panel("log", (Series("exact", x, y),), log=True))))
+    assert view._panels[0]._whiskers == []
