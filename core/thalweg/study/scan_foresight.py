@@ -43,7 +43,7 @@ def foresee(scan: ScanSpec, workers: int = 0, watch: Watch = SILENT) -> float:
     followed = isinstance(spec.system, Molecule) and spec.system.active_space.strip().lower() not in ("", "all")
     each = preparing + searching + (_diagonalising(problem) if spec.exact else 0.0)
     runs = len(scan.points) * (2 if scan.both_directions else 1) + len(scan.points) // BLOCK
-    alone = runs * each + (2 * len(scan.points) * preparing if followed else 0.0)
+    alone = runs * each + (len(scan.points) * preparing if followed else 0.0)
     count = min(workers or usable_cores(), -(-len(scan.points) // BLOCK))
     return min(alone, START_UP + alone / count)
 

@@ -30,11 +30,26 @@ class CurveField:
     notes: tuple[str, ...]
 
 
+class _Silent(Watch):
+    """Hears the wish to stop and says nothing of each single mean field."""
+
+    def __init__(self, outer: Watch) -> None:
+        super().__init__()
+        self._outer = outer
+
+    def stage(self, text: str, fraction: float | None = None) -> None:
+        self.check()
+
+    def check(self) -> None:
+        self._outer.check()
+
+
 def curve_fields(scan: ScanSpec, watch: Watch) -> list[CurveField | None]:
     """One entry a point; None where the point cannot be prepared (it fails later with its own sentence) or nothing needs to be followed."""
     system = scan.study.system
     if not isinstance(system, Molecule) or system.active_space.strip().lower() in ("", "all"):
         return [None] * len(scan.points)
+    outer, watch = watch, _Silent(watch)
     fields: list[CurveField | None] = [None] * len(scan.points)
     start = _nearest_point(scan, system)
     own = _prepared(scan, None, system, watch)
@@ -42,8 +57,9 @@ def curve_fields(scan: ScanSpec, watch: Watch) -> list[CurveField | None]:
     for walk in (ahead, behind):
         last = own if walk is ahead or fields[start] is None else fields[start]
         for i in walk:
-            watch.stage("Following the mean field", sum(f is not None for f in fields) / len(fields))
+            outer.stage("Following the mean field", sum(f is not None for f in fields) / len(fields))
             fields[i] = last = _step(scan, i, last, watch)
+    outer.stage("Looking for lower mean fields")
     for walk in (ahead[-2::-1], behind[-2::-1]):
         _walk_back(scan, fields, walk, 1 if walk and walk[0] >= start else -1, watch)
     return fields
@@ -55,7 +71,6 @@ def _walk_back(scan: ScanSpec, fields: list[CurveField | None], walk: list[int],
         old, neighbour = fields[i], fields[i + side]
         if old is None or neighbour is None:
             continue
-        watch.stage("Looking for lower mean fields")
         again = _step(scan, i, replace(neighbour, seed=_as_known(neighbour.seed, old.seed)), watch)
         if again is not None and again.seed.energy < old.seed.energy - BRANCH:
             fall = 1e3 * (old.seed.energy - again.seed.energy)

@@ -21,6 +21,8 @@ JUMP_PART = 0.1
 #: Flags of points that are run again from their neighbours, and of those that then get several starts.
 DOUBTFUL = frozenset({"jump", "stalled", "not-converged", "mean-field-branch"})
 STUCK = frozenset({"jump", "stalled"})
+#: How remarks on classical methods begin.
+CLASSICAL_REMARKS = ("Classical", "MP2", "CCSD")
 #: Kind of a verdict -> what is said of the points that have it.
 KINDS = {
     "outside": "outside the target",
@@ -57,6 +59,13 @@ def flagged_points(scan: ScanSpec, outcomes: Sequence[PointOutcome | None], retr
             )
         )
     return points
+
+
+def with_classical(result: StudyResult, other: StudyResult) -> StudyResult:
+    """The result with the classical figures of another on the same mean field, and with what was said of them."""
+    told = tuple(remark for remark in other.remarks if remark.startswith(CLASSICAL_REMARKS))
+    spec = result.spec.model_copy(update={"classical": other.spec.classical})
+    return result.model_copy(update={"classical": other.classical, "remarks": (*result.remarks, *told), "spec": spec})
 
 
 def needs_healing(points: Sequence[CurvePoint], flags: frozenset[str] = DOUBTFUL) -> list[int]:

@@ -37,6 +37,7 @@ class PointTasks:
         self._second_pool: Executor | None = None
         self._waiting: dict[Future[PointOutcome], tuple[_Entry, Executor]] = {}
         self._second: Future[PointOutcome] | None = None
+        self.left = 0  # points still to come, as far as is foreseen
         self._in_line: deque[_Entry] = deque()  # this process takes one point after another, so that each is told of when it is done
         self._suspects: deque[_Entry] = deque()
 
@@ -88,11 +89,12 @@ class PointTasks:
         if not self._in_line or self._pool is None:
             return
         here = self._pool
-        if isinstance(here, Local) and here.pays(sum(1 + len(tag[1]) for tag, *_ in self._in_line)):
+        if isinstance(here, Local) and here.pays(self.left):
             self._pool = here.pool()
             while self._in_line:
                 self._start(self._pool, self._in_line.popleft())
             return
+        self.left -= 1
         begun = time.perf_counter()
         self._start(here, self._in_line.popleft())
         if isinstance(here, Local):
