@@ -33,6 +33,12 @@ def rehearse() -> None:
         mark.touch()
 
 
+def is_rehearsed() -> bool:
+    """Whether every rehearsal was compiled for this processor."""
+    mark = finished_mark()
+    return mark is not None and mark.exists()
+
+
 def run_quietly(spec: StudySpec) -> None:
     """A library that is missing is reported by the job that needs it."""
     from thalweg.errors import StudyError

@@ -19,6 +19,8 @@ from thalweg_app.compiled import announced, keep_compiled
 from thalweg_app.threads import cap_threads
 
 NICENESS = 10
+#: Seconds without an order after which the process looks for something to prepare.
+REST = 0.2
 
 
 def protect_output() -> TextIO:
@@ -62,12 +64,19 @@ class Desk:
                 self._changed.notify()
         os._exit(0)
 
-    def work(self) -> None:
+    def work(self, at_rest: Callable[[], None] | None = None) -> None:
+        """Carries out orders for ever. `at_rest` is called once, when a job is done and no other has followed for a moment."""
+        pause: float | None = None
         while True:
             with self._changed:
-                self._changed.wait_for(lambda: bool(self._orders))
-                order = self._orders.pop(0)
-            self._carry_out(order)
+                has_order = self._changed.wait_for(lambda: bool(self._orders), pause)
+                order = self._orders.pop(0) if has_order else None
+            if order is not None:
+                self._carry_out(order)
+                pause = None if at_rest is None else REST
+            elif at_rest is not None:
+                at_rest()
+                at_rest = pause = None
 
     def should_stop(self, job: int) -> bool:
         if job not in self._stopped:
@@ -130,11 +139,22 @@ def warm_up() -> None:
         "thalweg.study.run",
         "thalweg.study.figures",
         "scipy.optimize",
+        "thalweg.systems.molecular",
+        "thalweg.simulate.sector",
+        "thalweg.exact.determinant",
         "scipy.sparse.linalg",
-        "pyscf.scf",
+        "pyscf.scf.stability",
     ):
         with contextlib.suppress(ImportError):
             importlib.import_module(name)
+
+
+def load_kernels() -> None:
+    """Reads what a run needs where it is compiled; elsewhere the spare process compiles it now, and twice would take longer."""
+    from thalweg_app.rehearsals import is_rehearsed, rehearse
+
+    if is_rehearsed():
+        rehearse()
 
 
 def main() -> None:
@@ -156,7 +176,7 @@ def main() -> None:
         from thalweg_app.messages import Ready
 
         desk.outbox.message(Ready())
-        desk.work()
+        desk.work(None if cold else load_kernels)
 
 
 if __name__ == "__main__":

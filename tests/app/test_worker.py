@@ -1,9 +1,13 @@
+import io
 import os
+import threading
 import time
 
 import pytest
 
 from thalweg.study.events import Iteration, Stage
+from thalweg_app import worker_process
+from thalweg_app.messages import Compiling
 from thalweg_app.presenters.jobs import JobListener
 from thalweg_app.worker import MAX_FAILED_STARTS, WorkerPool
 
@@ -184,4 +188,40 @@ def test_a_worker_that_never_starts_is_told_with_what_it_printed(qtbot, monkeypa
     assert heard.ends[0][0] == "failed"
     assert "does not start" in heard.ends[0][1].why
     assert pool._failed_starts == MAX_FAILED_STARTS
+    pool.shut_down()
+
+
+def test_a_process_prepares_once_when_it_rests_behind_a_job(monkeypatch):
+    monkeypatch.setattr(worker_process, "REST", 0.01)
+    desk, happened = worker_process.Desk(io.StringIO()), []
+
+    def carry_out(order):
+        happened.append(order)
+        if order == "last":
+            raise EOFError
+
+    def at_rest():
+        happened.append("prepared")
+        desk._orders.extend(["second"])
+        threading.Timer(0.1, come_late).start()
+
+    def come_late():
+        with desk._changed:
+            desk._orders.append("last")
+            desk._changed.notify()
+
+    monkeypatch.setattr(desk, "_carry_out", carry_out)
+    desk._orders.append("first")
+    with pytest.raises(EOFError):
+        desk.work(at_rest)
+    assert happened == ["first", "prepared", "second", "last"]
+
+
+def test_compiling_in_a_process_is_known_to_the_pool_until_it_is_done(qtbot):
+    pool = WorkerPool(arguments=["--cold"], size=1)
+    both = []
+    pool.changed.connect(lambda: both.append(pool.is_compiling))
+    for on in (True, False):
+        pool._on_reply(pool.workers[0], Compiling(on=on))
+    assert both == [True, False]
     pool.shut_down()
