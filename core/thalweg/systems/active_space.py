@@ -23,7 +23,7 @@ _RANGE = re.compile(r"(\d{1,4})(?:-(\d{1,4}))?", re.ASCII)
 
 @dataclass(frozen=True)
 class ActiveSpace:
-    """Orbitals counted from 0, ascending.
+    """Orbitals counted from 0; ascending, unless the active ones keep the order of a neighbouring geometry.
 
     Attributes:
         core: doubly occupied and frozen.

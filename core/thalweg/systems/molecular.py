@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -45,7 +45,7 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
     field = solve(mole, watch, usable_density(neighbour, n_functions), neighbour)
     watch.stage("integrals")
     n_core = sum(max(0, core_orbitals(e.number) - mole.atom_nelec_core(i) // 2) for i, e in enumerate(elements))
-    space, following = follow(neighbour, field, choose_active_space(spec.active_space, field.occupation, field.energies, n_core))
+    space, field, following = follow(neighbour, field, choose_active_space(spec.active_space, field.occupation, field.energies, n_core))
     _check_memory(n_functions, len(space.active), budget_bytes, "system.active_space")
     core_energy, one_body, pairs = _active_integrals(field, space)
     dropped = _drop_forbidden(one_body, pairs, field.irreps[list(space.active)])
@@ -61,12 +61,20 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
         energy_unit="hartree",
         reference_name="Hartree-Fock" if mole.spin == 0 else "Hartree-Fock (restricted open shell)",
         reference_energy=fermions.reference_energy,
-        facts=facts_of(spec, elements, mole, field, space, core_energy, dropped) | ({FOLLOWING: list(following)} if following else {}),
+        facts=facts_of(spec, elements, mole, field, space, core_energy, dropped) | _followed_facts(space, following),
         warnings=warnings_of(spec, field, space),
         ladder=ladder_of(field, space),
         mean_field=field.solver,
         seed=seed_of(field, space),
     )
+
+
+def _followed_facts(space: ActiveSpace, following: tuple[str, ...]) -> dict[str, Any]:
+    """What the neighbour's orbitals changed: sentences, and the order of the active orbitals where it is not that of their energies."""
+    facts: dict[str, Any] = {FOLLOWING: list(following)} if following else {}
+    if list(space.active) != sorted(space.active):
+        facts["active_orbital_order"] = [p + 1 for p in space.active]
+    return facts
 
 
 def _electrons(elements: tuple[Element, ...], charge: int, multiplicity: int) -> tuple[int, int]:

@@ -41,18 +41,20 @@ def usable_density(seed: MeanFieldSeed | None, n_functions: int) -> FloatArray |
     return seed.density if seed is not None and seed.density.shape[-1] == n_functions else None
 
 
-def follow(seed: MeanFieldSeed | None, field: MeanField, chosen: ActiveSpace) -> tuple[ActiveSpace, tuple[str, ...]]:
-    """The active space nearest the neighbour's, and what is to be said of it.
+def follow(seed: MeanFieldSeed | None, field: MeanField, chosen: ActiveSpace) -> tuple[ActiveSpace, MeanField, tuple[str, ...]]:
+    """The active space nearest the neighbour's, the mean field in phase with it, and what is to be said of it.
 
-    `chosen` is the space that its description picks here. With `seed.follow` the orbitals of the neighbour's space are picked instead,
-    as many from each occupation; without it `chosen` stays. A space that is not the neighbour's is reported as changed.
+    `chosen` is the space that its description picks here. With `seed.follow` the orbitals of the neighbour's space are picked instead, as
+    many from each occupation, in the neighbour's order and with its signs: then parameters keep their meaning from one geometry to the
+    next, and a product keeps the order of its factors where orbital energies cross. Without it `chosen` stays. A space that is not the
+    neighbour's is reported as changed.
     """
     if seed is None or seed.orbitals.shape != field.orbitals.shape or len(seed.active) != len(chosen.active):
-        return chosen, ()
+        return chosen, field, ()
     overlap = seed.orbitals.T @ _orthogonalised(field)
     space = _nearest(seed, overlap, field.occupation, chosen) if seed.follow else chosen
     notes = []
-    if space.active != chosen.active:
+    if set(space.active) != set(chosen.active):
         came = sorted(set(space.active) - set(chosen.active))
         gone = sorted(set(chosen.active) - set(space.active))
         notes.append(f"{FOLLOWED}: orbitals {_numbers(came)} kept by overlap instead of {_numbers(gone)}, which the energies would choose")
@@ -61,7 +63,26 @@ def follow(seed: MeanFieldSeed | None, field: MeanField, chosen: ActiveSpace) ->
     if lost:
         remedy = "enlarge the active space" if seed.follow else "follow the orbitals or enlarge the active space"
         notes.append(f"{CHANGED}: orbitals {_numbers(lost)} are not those of the neighbour (overlap {weight.min():.2f}); {remedy}")
-    return space, tuple(notes)
+    if seed.follow and np.array_equal(seed.occupation[list(seed.active)], field.occupation[list(chosen.active)]):
+        space, field = _in_order_and_phase(seed, overlap, space, field)
+    return space, field, tuple(notes)
+
+
+def _in_order_and_phase(seed: MeanFieldSeed, overlap: FloatArray, space: ActiveSpace, field: MeanField) -> tuple[ActiveSpace, MeanField]:
+    """Each active orbital in the place and with the sign of the neighbour's that it overlaps with most, occupation by occupation."""
+    from scipy.optimize import linear_sum_assignment
+
+    occupation = seed.occupation[list(seed.active)]
+    active = list(space.active)
+    for occupied in np.unique(occupation):
+        places = np.flatnonzero(occupation == occupied)
+        members = [p for p in space.active if field.occupation[p] == occupied]
+        before = [seed.active[k] for k in places]
+        weights = overlap[np.ix_(before, members)] ** 2
+        for k, column in zip(places.tolist(), linear_sum_assignment(-weights)[1].tolist(), strict=True):
+            active[k] = members[column]
+    turned = [p for k, p in enumerate(active) if overlap[seed.active[k], p] < 0]
+    return replace(space, active=tuple(active)), field.with_signs_changed(turned) if turned else field
 
 
 def _nearest(seed: MeanFieldSeed, overlap: FloatArray, occupation: FloatArray, chosen: ActiveSpace) -> ActiveSpace:

@@ -48,6 +48,15 @@ class MeanField:
         """The same orbitals without labels, and the reason among the warnings."""
         return replace(self, irreps=np.zeros_like(self.irreps), irrep_names=(), warnings=(*self.warnings, why))
 
+    def with_signs_changed(self, orbitals: list[int]) -> MeanField:
+        """The same orbitals, these with the other sign, in the solver too."""
+        signs = np.ones(self.energies.size)
+        signs[orbitals] = -1.0
+        changed = self.orbitals * signs
+        lib = pyscf_module("lib")
+        self.solver.mo_coeff = lib.tag_array(changed, orbsym=self.solver.mo_coeff.orbsym) if self.solver.mol.symmetry else changed
+        return replace(self, orbitals=changed)
+
 
 def settled(solver: Any, stability: str, iterations: int, warnings: tuple[str, ...], breaks_group: bool = False) -> MeanField:
     """Brings the orbitals into the order and phases that `MeanField` promises, in the solver too."""
