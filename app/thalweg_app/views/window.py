@@ -181,8 +181,8 @@ class Window(QMainWindow):
         show_defect(self, failure)
 
     def _redraw_live(self) -> None:
+        self.status.refresh()  # first: a progress bar paints at once all that waits to be painted
         self.picture.refresh_live()
-        self.status.refresh()
 
     def _load_ahead(self) -> None:
         self._loading = load_ahead()
