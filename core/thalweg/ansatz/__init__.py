@@ -1,7 +1,8 @@
 """Trial states. Each is one options class with `build(ground) -> Program` and `start_parameters(ground, program, rng)`.
 
 One whose settings hold a depth names that field in `depth_field` and offers `from_shallower(parameters, n_parameters)`, the
-parameters that give the state of one layer less or continue its schedule of angles, so that a depth ladder can climb. One that needs electrons says `electrons_only`.
+parameters that give the state of one layer less or continue its schedule of angles, so that a depth ladder can climb.
+One that needs electrons says `electrons_only`.
 """
 
 from thalweg.ansatz.adaptive import Adaptive
