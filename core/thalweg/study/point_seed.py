@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 
@@ -16,14 +18,18 @@ class PointSeed:
     """Plain data, so that it travels between processes.
 
     Attributes:
-        mean_field: density and orbitals; None for systems without a mean field.
+        mean_field: density and orbitals; None for systems without a mean field, and for points that a session has kept.
         parameters: of the trial state.
         labels: of those parameters.
+        kept_at: coordinate of a point that a session has kept, whose mean field can be worked out anew; None otherwise.
+        kept_facts: what the session knows of that mean field.
     """
 
     mean_field: MeanFieldSeed | None
     parameters: tuple[float, ...]
     labels: tuple[str, ...]
+    kept_at: float | None = None
+    kept_facts: Mapping[str, Any] = field(default_factory=dict)
 
     def parameters_for(self, program: Program) -> FloatArray | None:
         """The parameters, shape (K,), where the program has the same ones by label; None otherwise."""

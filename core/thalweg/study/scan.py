@@ -233,7 +233,9 @@ def _with_study(scan: ScanSpec, **changes: Any) -> ScanSpec:
 
 
 def _taken_over(point: CurvePoint | None) -> PointOutcome | None:
-    """The outcome of a point taken over from a session: its parameters seed the neighbours, its mean field is not stored."""
+    """The outcome of a point taken over from a session: its parameters seed the neighbours, its mean field is worked out anew for them."""
     if point is None or point.result is None:
         return None
-    return PointOutcome(point.result, PointSeed(None, point.result.final_parameters, point.result.parameter_labels), point.notes)
+    result = point.result
+    seed = PointSeed(None, result.final_parameters, result.parameter_labels, point.coordinate, result.system_facts)
+    return PointOutcome(result, seed, point.notes)

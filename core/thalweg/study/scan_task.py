@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
+from typing import Any
 
 from thalweg.errors import Stopped, StudyError
 from thalweg.study.point_seed import PointSeed
+from thalweg.study.problem import prepare_system
 from thalweg.study.result import StudyResult
 from thalweg.study.run import never, run_from
 from thalweg.study.scan_spec import ScanSpec
+from thalweg.systems.orbital_following import as_told
+from thalweg.systems.prepared import MeanFieldSeed
 
 
 @dataclass(frozen=True)
@@ -40,6 +44,16 @@ def solve_point(scan: ScanSpec, value: float, seed: PointSeed | None, should_sto
 
 
 def _following(scan: ScanSpec, seed: PointSeed | None) -> PointSeed | None:
-    if seed is None or seed.mean_field is None:
-        return seed
-    return replace(seed, mean_field=replace(seed.mean_field, follow=scan.follow_orbitals))
+    if seed is None:
+        return None
+    mean_field = seed.mean_field if seed.kept_at is None else _worked_out_anew(scan, seed.kept_at, seed.kept_facts)
+    return seed if mean_field is None else replace(seed, mean_field=replace(mean_field, follow=scan.follow_orbitals))
+
+
+def _worked_out_anew(scan: ScanSpec, value: float, facts: Mapping[str, Any]) -> MeanFieldSeed | None:
+    """The mean field of a point that a session has kept, in the order and with the signs that its parameters belong to."""
+    try:
+        seed = prepare_system(scan.at(value)).seed
+    except StudyError:
+        return None
+    return None if seed is None else as_told(seed, facts)

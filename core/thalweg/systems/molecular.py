@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -15,7 +15,7 @@ from thalweg.systems.gaussian_basis import build_mole, count_functions
 from thalweg.systems.geometry import check_geometry, coordinates_in_bohr, elements_of
 from thalweg.systems.mean_field import solve
 from thalweg.systems.molecular_facts import basis_title, charged_formula, facts_of, ladder_of, warnings_of
-from thalweg.systems.orbital_following import follow, seed_of, usable_density
+from thalweg.systems.orbital_following import follow, order_facts, seed_of, usable_density
 from thalweg.systems.orbital_order import MeanField
 from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem, masks, read_only
 from thalweg.systems.wording import counted
@@ -61,20 +61,14 @@ def prepare_molecule(spec: Molecule, watch: Watch, budget_bytes: int, neighbour:
         energy_unit="hartree",
         reference_name="Hartree-Fock" if mole.spin == 0 else "Hartree-Fock (restricted open shell)",
         reference_energy=fermions.reference_energy,
-        facts=facts_of(spec, elements, mole, field, space, core_energy, dropped) | _followed_facts(space, following),
+        facts=facts_of(spec, elements, mole, field, space, core_energy, dropped)
+        | order_facts(field, space)
+        | ({FOLLOWING: list(following)} if following else {}),
         warnings=warnings_of(spec, field, space),
         ladder=ladder_of(field, space),
         mean_field=field.solver,
         seed=seed_of(field, space),
     )
-
-
-def _followed_facts(space: ActiveSpace, following: tuple[str, ...]) -> dict[str, Any]:
-    """What the neighbour's orbitals changed: sentences, and the order of the active orbitals where it is not that of their energies."""
-    facts: dict[str, Any] = {FOLLOWING: list(following)} if following else {}
-    if list(space.active) != sorted(space.active):
-        facts["active_orbital_order"] = [p + 1 for p in space.active]
-    return facts
 
 
 def _electrons(elements: tuple[Element, ...], charge: int, multiplicity: int) -> tuple[int, int]:

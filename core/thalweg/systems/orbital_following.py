@@ -6,6 +6,7 @@ atoms, so orbitals of the same character overlap by nearly 1 at neighbouring geo
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
 from typing import Any
 
@@ -19,6 +20,8 @@ from thalweg.systems.prepared import MeanFieldSeed
 #: An active space that keeps less than this of any of its orbitals' weight is another space.
 KEPT_WEIGHT = 0.5
 CHANGED, FOLLOWED = "active-space-changed", "followed"
+#: Facts of a prepared molecule.
+ORDER, TURNED = "active_orbital_order", "orbitals_of_other_sign"
 
 
 def seed_of(field: MeanField, space: ActiveSpace) -> MeanFieldSeed:
@@ -34,6 +37,20 @@ def seed_of(field: MeanField, space: ActiveSpace) -> MeanFieldSeed:
         warnings=field.warnings,
         breaks_group=field.breaks_group,
     )
+
+
+def order_facts(field: MeanField, space: ActiveSpace) -> dict[str, list[int]]:
+    """Orbitals counted from 1: the active ones where they are not in the order of their energies, and those of other than standard sign."""
+    facts = {ORDER: [p + 1 for p in space.active]} if list(space.active) != sorted(space.active) else {}
+    return facts | ({TURNED: [p + 1 for p in field.turned]} if field.turned else {})
+
+
+def as_told(seed: MeanFieldSeed, facts: Mapping[str, Any]) -> MeanFieldSeed:
+    """The seed of a mean field that was worked out anew, with the order and signs that `order_facts` told of it before."""
+    signs = np.ones(seed.orbitals.shape[1])
+    signs[[p - 1 for p in facts.get(TURNED, ())]] = -1.0
+    order = tuple(p - 1 for p in facts.get(ORDER, ())) or seed.active
+    return replace(seed, orbitals=seed.orbitals * signs, active=order) if sorted(order) == sorted(seed.active) else seed
 
 
 def usable_density(seed: MeanFieldSeed | None, n_functions: int) -> FloatArray | None:
@@ -81,7 +98,7 @@ def _in_order_and_phase(seed: MeanFieldSeed, overlap: FloatArray, space: ActiveS
         weights = overlap[np.ix_(before, members)] ** 2
         for k, column in zip(places.tolist(), linear_sum_assignment(-weights)[1].tolist(), strict=True):
             active[k] = members[column]
-    turned = [p for k, p in enumerate(active) if overlap[seed.active[k], p] < 0]
+    turned = tuple(p for k, p in enumerate(active) if overlap[seed.active[k], p] < 0)
     return replace(space, active=tuple(active)), field.with_signs_changed(turned) if turned else field
 
 

@@ -29,6 +29,7 @@ class MeanField:
         irrep_names: name of each label, empty without a point group.
         iterations: of all solutions together.
         breaks_group: whether a lower solution outside the point group was told of.
+        turned: orbitals, counted from 0, whose sign is not the standard one.
     """
 
     solver: Any
@@ -43,19 +44,20 @@ class MeanField:
     stability: str
     warnings: tuple[str, ...]
     breaks_group: bool = False
+    turned: tuple[int, ...] = ()
 
     def without_point_group(self, why: str) -> MeanField:
         """The same orbitals without labels, and the reason among the warnings."""
         return replace(self, irreps=np.zeros_like(self.irreps), irrep_names=(), warnings=(*self.warnings, why))
 
-    def with_signs_changed(self, orbitals: list[int]) -> MeanField:
+    def with_signs_changed(self, orbitals: tuple[int, ...]) -> MeanField:
         """The same orbitals, these with the other sign, in the solver too."""
         signs = np.ones(self.energies.size)
-        signs[orbitals] = -1.0
+        signs[list(orbitals)] = -1.0
         changed = self.orbitals * signs
         lib = pyscf_module("lib")
         self.solver.mo_coeff = lib.tag_array(changed, orbsym=self.solver.mo_coeff.orbsym) if self.solver.mol.symmetry else changed
-        return replace(self, orbitals=changed)
+        return replace(self, orbitals=changed, turned=tuple(sorted(set(self.turned) ^ set(orbitals))))
 
 
 def settled(solver: Any, stability: str, iterations: int, warnings: tuple[str, ...], breaks_group: bool = False) -> MeanField:

@@ -95,7 +95,7 @@ def test_a_dask_cluster_of_two_processes_gives_the_same_curve():
     from distributed import LocalCluster
 
     scan = ScanSpec(study=H2, points=linear_points(0.6, 2.0, 9))
-    with LocalCluster(n_workers=2, threads_per_worker=1, processes=True, dashboard_address=None) as cluster:
+    with LocalCluster(n_workers=2, threads_per_worker=1, processes=True, dashboard_address=":0") as cluster:
         result = run_scan(scan, lambda: make_executor("dask", scheduler=cluster.scheduler_address))
     assert energies(result) == energies(serial(scan))
 

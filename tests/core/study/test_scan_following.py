@@ -11,6 +11,7 @@ from thalweg.study.scan import run_scan
 from thalweg.study.scan_mean_fields import curve_fields
 from thalweg.study.scan_spec import ScanSpec, linear_points
 from thalweg.study.spec import Molecule, StudySpec
+from thalweg.systems.orbital_following import as_told
 from thalweg.watch import SILENT
 
 
@@ -76,3 +77,21 @@ def test_a_broken_point_group_is_told_at_every_point_but_worked_out_once():
     next_one = nitrogen(2.05).prepare(neighbour=far.seed)
     assert any("A lower mean field breaks the point group D2h, as at the neighbouring geometry" in text for text in next_one.warnings)
     assert next_one.fermions.reference_energy == pytest.approx(nitrogen(2.05).prepare().fermions.reference_energy, abs=1e-8)
+
+
+def test_a_resumed_scan_goes_on_in_the_order_and_with_the_signs_of_the_points_it_has():
+    scan = ScanSpec(study=StudySpec(system=nitrogen(1.1, active_space="3-9")), points=linear_points(0.9, 1.5, 7))
+    whole = run_scan(scan, InProcess)
+    kept = whole.points[:4]
+    assert "active_orbital_order" in kept[3].result.system_facts  # the order is not that of the energies there
+    resumed = run_scan(scan, InProcess, done=kept)
+    assert [p.result.energy for p in resumed.points] == pytest.approx([p.result.energy for p in whole.points], abs=1e-8)
+    assert [p.result.parameter_labels for p in resumed.points] == [p.result.parameter_labels for p in whole.points]
+
+
+def test_what_is_told_of_order_and_signs_brings_back_the_seed():
+    first = nitrogen(0.9).prepare()
+    followed = nitrogen(1.3).prepare(neighbour=nitrogen(1.1).prepare(neighbour=first.seed).seed)
+    again = as_told(nitrogen(1.3).prepare().seed, followed.facts)
+    assert again.active == followed.seed.active
+    assert np.allclose(again.orbitals, followed.seed.orbitals, atol=1e-5)
