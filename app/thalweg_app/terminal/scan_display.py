@@ -20,23 +20,30 @@ def make_scan_display(units: CurveUnits, known: int, *, quiet: bool) -> Display:
 
 
 class Pace:
-    """How far a scan is, and how long it may still take: points that were known before cost nothing."""
+    """How far a scan is, and how long it may still take.
+
+    Points that were known before cost nothing, and what came before the first new one (libraries, mean fields) does not come again.
+    """
 
     def __init__(self, known: int) -> None:
-        self._known, self._begun = known, time.monotonic()
+        self._first_at, self._first_done = 0.0, 0
         self.done, self.total, self.unit = known, 0, ""
 
     def take(self, event: AnyEvent) -> None:
         if isinstance(event, ScanStarted):
-            self.total, self.unit, self._begun = len(event.points), event.unit, time.monotonic()
+            self.total, self.unit, self._first_done = len(event.points), event.unit, 0
         elif isinstance(event, ScanPoint):
             self.done = event.done
+            if not self._first_done:
+                self._first_at, self._first_done = time.monotonic(), event.done
 
     @property
     def seconds_left(self) -> float | None:
-        """None before the first new point, and while points are looked at a second time."""
-        new = self.done - self._known
-        return None if new < 1 or self.done >= self.total else (time.monotonic() - self._begun) * (self.total - self.done) / new
+        """None before the second new point, and while points are looked at a second time."""
+        new = self.done - self._first_done
+        if not self._first_done or new < 1 or self.done >= self.total:
+            return None
+        return (time.monotonic() - self._first_at) * (self.total - self.done) / new
 
     @property
     def left_text(self) -> str:

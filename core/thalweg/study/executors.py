@@ -46,11 +46,14 @@ class Local(InProcess):
 
     def __init__(self, workers: int = 0) -> None:
         self.workers = workers or usable_cores()
-        self._shortest = float("inf")
+        self._first, self._shortest = True, float("inf")
 
     def took(self, seconds: float) -> None:
-        """A point was run here. The first may have loaded libraries, which a pool would load as well."""
-        self._shortest = min(self._shortest, max(0.0, seconds - START_UP) if self._shortest == float("inf") else seconds)
+        """A point was run here. The first may have loaded libraries, which a pool would load as well: what is left of it counts."""
+        if self._first:
+            self._first = False
+            seconds = seconds - START_UP if seconds > START_UP else float("inf")
+        self._shortest = min(self._shortest, seconds)
 
     def pays(self, points_left: int) -> bool:
         """Whether the time that a pool saves on these points is more than its start takes."""

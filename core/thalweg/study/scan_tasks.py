@@ -8,6 +8,7 @@ from collections import deque
 from collections.abc import Callable, Iterable
 from concurrent.futures import FIRST_COMPLETED, Executor, Future, wait
 from concurrent.futures.process import BrokenProcessPool
+from typing import Any
 
 from thalweg.errors import Stopped
 from thalweg.study.executors import InProcess, Local
@@ -129,14 +130,20 @@ class PointTasks:
             return PointOutcome(None, None, failure=f"A defect of the program: {type(error).__name__}: {error}", details=details)
 
     def _abandon(self) -> None:
-        for future in self._waiting:
-            future.cancel()
+        """Ends what is under way: elsewhere a point cannot be asked to stop, and its result is not wanted."""
+        for future, (_, pool) in self._waiting.items():
+            if not _processes(pool):
+                future.cancel()  # a pool whose processes end finds a cancelled point in its way
         self._waiting.clear()
         self._suspects.clear()
         self._in_line.clear()
         for pool in (self._pool, self._second_pool):
-            for process in list((getattr(pool, "_processes", None) or {}).values()):
-                process.kill()  # a point under way cannot be asked to stop from here, and its result is not wanted
+            for process in _processes(pool):
+                process.kill()
+
+
+def _processes(pool: Executor | None) -> list[Any]:
+    return list((getattr(pool, "_processes", None) or {}).values())
 
 
 def _apart(pool: Executor) -> Executor:

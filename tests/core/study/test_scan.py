@@ -150,6 +150,11 @@ def test_a_pool_is_started_only_where_it_pays():
     assert not local.pays(100)
     assert local.pays(1000)
     assert not Local(workers=1).pays(10**6)
+    warm = Local(workers=2)
+    warm.took(0.01)  # as short as it may be, the first says nothing
+    assert not warm.pays(10**6)
+    warm.took(0.2)
+    assert warm.pays(40)
 
 
 def test_a_long_scan_moves_to_a_pool_and_keeps_its_curve(monkeypatch):
