@@ -137,8 +137,8 @@ class PointTasks:
         self._waiting.clear()
         self._suspects.clear()
         self._in_line.clear()
-        for pool in (self._pool, self._second_pool):
-            for process in _processes(pool):
+        for ended in (self._pool, self._second_pool):
+            for process in _processes(ended):
                 process.kill()
 
 
