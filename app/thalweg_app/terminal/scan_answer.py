@@ -39,11 +39,13 @@ def _what(result: ScanResult, units: CurveUnits) -> Rows:
     spec, points = result.spec, result.spec.points
     study = spec.study
     span = f"{place(points[0], result.unit, units)} to {place(points[-1], result.unit, units)}" if points else ""
+    has_electrons = any(p.result is not None and p.result.n_electrons is not None for p in result.points)
+    encoding = f", {study.encoding.title}" if has_electrons else ""
     spin = "; exact state at the multiplicity asked for" if spec.spin == "fixed" else ""
     return [
         ("System", result.label),
         ("Path", f"{result.axis}, {span}, {counted(len(points), 'point')}"),
-        ("Method", f"{study.ansatz.title}, {study.optimizer.title}, {study.encoding.title}{spin}"),
+        ("Method", f"{study.ansatz.title}, {study.optimizer.title}{encoding}{spin}"),
         ("Time", f"{result.seconds:.1f} s"),
     ]
 
@@ -56,7 +58,8 @@ def _errors(result: ScanResult, units: CurveUnits) -> Rows:
         ("Error at the minimum", result.error_at_minimum),
     )
     scale, unit = difference_factor(result.energy_unit, units.difference)
-    target = f"  (target {significant(result.target_error * scale)} {unit})"
+    relative = f"{100 * result.spec.study.target.relative:g} % of |E|"
+    target = f"  (target {significant(result.target_error * scale) + ' ' + unit if result.energy_unit == 'hartree' else relative})"
     rows = [(name, f"{significant(value * scale)} {unit}") for name, value in names if value is not None]
     return [(name, text + (target if i == 0 else "")) for i, (name, text) in enumerate(rows)]
 

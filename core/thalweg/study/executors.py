@@ -20,9 +20,9 @@ EXECUTORS = ("local", "serial", "dask")
 _THREAD_LIMITS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "NUMBA_NUM_THREADS")
 #: Loaded once by the process that the workers are forked from.
 _PRELOADED = ("thalweg.study.scan_task", "thalweg.study.rehearsal")
-#: Seconds that a pool takes before its first point: it loads the numerical libraries anew (measured 1.5 to 3 on two cores, the first
-#: pool of a process; 0.3 for the next).
-START_UP = 2.5
+#: Seconds that the first pool of a process takes before its first point, for it loads the numerical libraries anew, and that later ones
+#: take, which find them loaded (measured on two cores: 2.0 and 0.12, up to three times that on a busy machine).
+START_UP, START_AGAIN = 2.5, 0.3
 #: Seconds that a scheduler and its workers have to answer.
 PATIENCE = 10
 
@@ -58,7 +58,8 @@ class Local(InProcess):
     def pays(self, points_left: int) -> bool:
         """Whether the time that a pool saves on these points is more than its start takes."""
         workers = min(self.workers, points_left)
-        return workers > 1 and self._shortest < float("inf") and self._shortest * points_left * (1.0 - 1.0 / workers) > START_UP
+        start = START_AGAIN if _server_runs() else START_UP
+        return workers > 1 and self._shortest < float("inf") and self._shortest * points_left * (1.0 - 1.0 / workers) > start
 
     def pool(self) -> Executor:
         return local_pool(self.workers)
@@ -88,11 +89,21 @@ def local_pool(workers: int = 0) -> ProcessPoolExecutor:
     They are forked from a server that has the libraries loaded but no threads, where the system has such servers. This process itself is
     not forked: that would copy the threads of numba and Qt in an unknown state.
     """
-    forked = "forkserver" in multiprocessing.get_all_start_methods()
-    context = multiprocessing.get_context("forkserver" if forked else "spawn")
-    if forked:
+    context = multiprocessing.get_context("forkserver" if _has_server() else "spawn")
+    if _has_server():
         context.set_forkserver_preload(list(_PRELOADED))
     return _Pool(workers or usable_cores(), mp_context=context, initializer=_enter_worker)
+
+
+def _has_server() -> bool:
+    return "forkserver" in multiprocessing.get_all_start_methods()
+
+
+def _server_runs() -> bool:
+    """Whether a pool of this process has loaded the libraries already."""
+    from multiprocessing import forkserver
+
+    return _has_server() and getattr(forkserver._forkserver, "_forkserver_pid", None) is not None
 
 
 class _Pool(ProcessPoolExecutor):

@@ -73,9 +73,19 @@ class Recent:
                 self._kept.popitem(last=False)
         return made
 
+    def clear(self) -> None:
+        with self._lock:
+            self._kept.clear()
+
 
 _systems, _references, _encodings, _answers = Recent(4), Recent(4), Recent(4), Recent(4)
 _products, _engines = Recent(2), Recent(1)
+
+
+def forget_everything() -> None:
+    """Lets go of all that is kept for the next study, such as before a process is forked."""
+    for recent in (_systems, _references, _encodings, _answers, _products, _engines):
+        recent.clear()
 
 
 def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | None = None) -> Problem:

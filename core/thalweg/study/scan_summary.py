@@ -92,7 +92,7 @@ def summarise(scan: ScanSpec, points: Sequence[CurvePoint], seconds: float) -> S
         max_error=measures.maximum if measures else None,
         mean_error=measures.mean if measures else None,
         npe=measures.npe if measures else None,
-        error_at_minimum=measures.at_minimum if measures else None,
+        error_at_minimum=measures.at_minimum if measures and scan.path.has_equilibrium else None,
         exact=curve_figures(scan, exact, mass),
         variational=curve_figures(scan, [(p.coordinate, r.energy) for p, r in done], mass),
         reduced_mass=mass,

@@ -140,7 +140,8 @@ def test_workers_that_cannot_run_points_are_refused_before_the_scan(client, word
         executors._check_workers(client, "tcp://host:1")
 
 
-def test_a_pool_is_started_only_where_it_pays():
+def test_a_pool_is_started_only_where_it_pays(monkeypatch):
+    monkeypatch.setattr(executors, "_server_runs", lambda: False)
     local = Local(workers=4)
     assert not local.pays(1000)  # nothing is known yet
     local.took(executors.START_UP + 0.5)  # the first point loads libraries
@@ -153,12 +154,15 @@ def test_a_pool_is_started_only_where_it_pays():
     warm = Local(workers=2)
     warm.took(0.01)  # as short as it may be, the first says nothing
     assert not warm.pays(10**6)
-    warm.took(0.2)
+    warm.took(0.05)
+    assert not warm.pays(40)
+    monkeypatch.setattr(executors, "_server_runs", lambda: True)  # a second pool finds the libraries loaded
     assert warm.pays(40)
 
 
 def test_a_long_scan_moves_to_a_pool_and_keeps_its_curve(monkeypatch):
     monkeypatch.setattr(executors, "START_UP", 0.0)
+    monkeypatch.setattr(executors, "START_AGAIN", 0.0)
     scan = ScanSpec(study=H2, points=linear_points(0.6, 1.4, 6))
     made = []
     pool = Local.pool
