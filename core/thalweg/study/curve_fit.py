@@ -148,7 +148,7 @@ def _fit(r: FloatArray, e: FloatArray, r0: float, logarithmic: bool) -> CurveMin
         degree=degree,
         points=int(r.size),
         residual=residual,
-        variable="ln r" if logarithmic else "r",
+        variable="ln r" if logarithmic else "the coordinate",
         r_e_spread=abs(other_place - place),
         curvature_spread=spread,
     )

@@ -6,6 +6,7 @@ import contextlib
 import multiprocessing
 import os
 import signal
+import sys
 import threading
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
@@ -96,7 +97,8 @@ def local_pool(workers: int = 0) -> ProcessPoolExecutor:
 
 
 def _has_server() -> bool:
-    return "forkserver" in multiprocessing.get_all_start_methods()
+    """Linux only: elsewhere system libraries that are loaded do not survive a fork."""
+    return sys.platform == "linux" and "forkserver" in multiprocessing.get_all_start_methods()
 
 
 def _server_runs() -> bool:
