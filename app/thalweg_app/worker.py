@@ -145,10 +145,6 @@ class WorkerPool(QObject):
                 worker.process.waitForFinished(1000)
 
     @property
-    def is_warm(self) -> bool:
-        return any(worker.is_ready for worker in self.workers)
-
-    @property
     def is_compiling(self) -> bool:
         """Whether a process compiles kernels, which happens once for a version on a machine."""
         return any(worker.is_compiling for worker in self.workers)

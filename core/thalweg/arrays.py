@@ -14,3 +14,8 @@ FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 MaskArray = NDArray[np.uint64]
+
+
+def plain(values: FloatArray) -> tuple[float, ...]:
+    """The numbers of an array of one axis, as records hold them."""
+    return tuple(float(v) for v in values)

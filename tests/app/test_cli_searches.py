@@ -9,7 +9,7 @@ import pytest
 from thalweg.registry import key_of
 from thalweg.study.diagnosis_result import Curvature, LandscapeResult, StartSpread, TrainabilityResult
 from thalweg.study.result import StudyResult
-from thalweg_app.terminal.diagnose import whole_numbers
+from thalweg_app.presenters.numbers import parse_wholes
 from thalweg_app.terminal.methods import HEADINGS, registries
 
 
@@ -138,5 +138,5 @@ def test_a_diagnosis_that_cannot_be_is_refused_in_a_sentence(thalweg, words, sen
 
 
 def test_lists_of_numbers_hold_ranges():
-    assert whole_numbers("2,4,6-8") == (2, 4, 6, 7, 8)
-    assert whole_numbers(None) == ()
+    assert parse_wholes("2,4,6-8") == (2, 4, 6, 7, 8)
+    assert parse_wholes("") == ()

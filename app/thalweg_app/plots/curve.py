@@ -49,7 +49,7 @@ class CurvePicture(Picture):
         self.view.read_out.disconnect()
         self.view.pointed.connect(self._read)
         self.view.chosen.connect(self._open_point)
-        self.scans.changed.connect(self.refresh)
+        self.scans.changed.connect(self.refresh_shown)
 
     @property
     def units(self) -> CurveUnits:

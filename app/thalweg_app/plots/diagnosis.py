@@ -63,7 +63,7 @@ class DiagnosisPicture(Picture):
         split.setStretchFactor(0, 1)
         split.setSizes([640, SIDE_WIDTH])
         self.body.addWidget(split, 1)
-        self.control.changed.connect(self.refresh)
+        self.control.changed.connect(self.refresh_shown)
         self.control.progressed.connect(self._show_progress)
 
     def refresh(self) -> None:

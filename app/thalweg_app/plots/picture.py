@@ -73,6 +73,11 @@ class Picture(QWidget):
         for chart in self.charts:
             chart.fit()
 
+    def refresh_shown(self) -> None:
+        """As `refresh` while the picture is in sight; it is drawn anew whenever it comes into sight."""
+        if self.isVisible():
+            self.refresh()
+
     def refresh_live(self) -> None:
         """Draws what a run under way has told; pictures that show only results have nothing to do."""
 

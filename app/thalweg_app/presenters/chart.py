@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from collections.abc import Sequence
 from dataclasses import asdict, dataclass, field
 from typing import Any, Literal
 
@@ -126,8 +127,8 @@ def chart_from_data(data: dict[str, Any]) -> Chart:
     """The chart of `chart_data`."""
     panels = []
     for panel in data["panels"]:
-        series = tuple(Series(**{**s, **{k: _array(s[k]) for k in ("x", "y", "spread") if s[k] is not None}}) for s in panel["series"])
-        bars = tuple(Bars(**{**b, "values": _array(b["values"])}) for b in panel["bars"])
+        series = tuple(Series(**{**s, **{k: column(s[k]) for k in ("x", "y", "spread") if s[k] is not None}}) for s in panel["series"])
+        bars = tuple(Bars(**{**b, "values": column(b["values"])}) for b in panel["bars"])
         levels = tuple(Level(**level) for level in panel["levels"])
         band = None if panel["band"] is None else Band(**panel["band"])
         kept = {"y_title": panel["y_title"], "log": panel["log"], "share": panel["share"], "categories": tuple(panel["categories"])}
@@ -135,7 +136,8 @@ def chart_from_data(data: dict[str, Any]) -> Chart:
     return Chart(data["title"], data["x_title"], tuple(panels), data["empty"], data["description"])
 
 
-def _array(values: list[float | None]) -> FloatArray:
+def column(values: Sequence[float | None]) -> FloatArray:
+    """The values as an array, NaN where there is none."""
     return np.array([np.nan if v is None else v for v in values], dtype=np.float64)
 
 

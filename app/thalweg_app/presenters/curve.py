@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -12,7 +11,7 @@ from thalweg.study.result import StudyResult
 from thalweg.study.scan_result import FLAGS, CurvePoint, ScanResult
 from thalweg.units import LENGTH_UNITS
 from thalweg_app.presenters import wording
-from thalweg_app.presenters.chart import Band, Chart, Panel, Series
+from thalweg_app.presenters.chart import Band, Chart, Panel, Series, column
 from thalweg_app.presenters.tables import Table
 from thalweg_app.presenters.traces import CLASSICAL_NAMES
 
@@ -178,18 +177,18 @@ def curve_remarks(shown: ShownCurve | None) -> tuple[str, ...]:
 
 def _energies(shown: ShownCurve, x: FloatArray) -> tuple[Series, ...]:
     results = [r for _, r in shown.done]
-    series = [Series(results[0].reference_name, x, _array([r.reference_energy for r in results]), "reference", marks=False)]
+    series = [Series(results[0].reference_name, x, column([r.reference_energy for r in results]), "reference", marks=False)]
     methods = dict.fromkeys(key for r in results for key in r.classical)
     for rank, key in enumerate(methods):
-        series.append(Series(CLASSICAL_NAMES.get(key, key), x, _array([r.classical.get(key) for r in results]), "classical", rank, marks=False))
+        series.append(Series(CLASSICAL_NAMES.get(key, key), x, column([r.classical.get(key) for r in results]), "classical", rank, marks=False))
     if any(r.exact_energy is not None for r in results):
-        series.append(Series("Exact", x, _array([r.exact_energy for r in results]), "exact", marks=False))
-    return (*series, Series(shown.name, x, _array([r.energy for r in results]), "variational"))
+        series.append(Series("Exact", x, column([r.exact_energy for r in results]), "exact", marks=False))
+    return (*series, Series(shown.name, x, column([r.energy for r in results]), "variational"))
 
 
 def _errors(shown: ShownCurve, x: FloatArray, units: CurveUnits) -> Panel:
     scale, unit = wording.difference_factor(shown.energy_unit, units.difference)
-    errors = _array([r.error for _, r in shown.done]) * scale
+    errors = column([r.error for _, r in shown.done]) * scale
     flagged = np.array([bool(set(p.flags) - {"retried"}) for p, _ in shown.done])
     positive = np.where(errors > 0, errors, np.nan)
     series = [Series(shown.name, x, positive, "variational")]
@@ -207,10 +206,6 @@ def _row_values(point: CurvePoint) -> tuple[float | None, float | None, float | 
 
 def _number(value: float | None, factor: float, form: str) -> str:
     return wording.MISSING if value is None else wording.minus(format(value * factor, form))
-
-
-def _array(values: Sequence[float | None]) -> FloatArray:
-    return np.array([np.nan if v is None else v for v in values], dtype=np.float64)
 
 
 def _describe(shown: ShownCurve) -> str:

@@ -13,6 +13,7 @@ from thalweg.storage.session import Run
 from thalweg.study.diagnosis_result import Curvature, LandscapeResult, StartSpread, TrainabilityResult
 from thalweg.study.diagnosis_spec import Direction, Landscape, Trainability
 from thalweg.study.events import AnyEvent, Failed, Stage
+from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec, study_error
 from thalweg_app.presenters.diagnosis import Finding
 from thalweg_app.presenters.jobs import Job, JobListener, JobStarter
@@ -71,7 +72,7 @@ class DiagnosisControl:
     def obstacle(self) -> str:
         """Why it cannot be started; empty when it can."""
         try:
-            self.payload()
+            self._question()
         except StudyError as error:
             return str(error)
         return ""
@@ -82,11 +83,15 @@ class DiagnosisControl:
 
     def payload(self) -> dict[str, Any]:
         """What the job is given. StudyError when something does not fit."""
-        what = self.draft.what
-        if what in ("curvature", "starts"):
-            return {"what": what, "result": self._selected().result.model_dump(mode="json")}
-        spec = self._trainability() if what == "trainability" else self._landscape()
-        return {"what": what, "settings": spec.model_dump(mode="json")}
+        question = self._question()
+        name = "result" if isinstance(question, StudyResult) else "settings"
+        return {"what": self.draft.what, name: question.model_dump(mode="json")}
+
+    def _question(self) -> StudyResult | Trainability | Landscape:
+        """The run to look at, or the settings of what is worked out. StudyError when something does not fit."""
+        if self.draft.what in ("curvature", "starts"):
+            return self._selected().result
+        return self._trainability() if self.draft.what == "trainability" else self._landscape()
 
     def start(self) -> None:
         if self.is_running:

@@ -60,11 +60,6 @@ class DerivedFigures:
         )
         self._job = self._starter.start(self._function, spec.model_dump(mode="json"), listener)
 
-    def forget(self) -> None:
-        """Shows nothing, as for another document."""
-        self._withdraw()
-        self._set(None, False)
-
     def of(self, spec: StudySpec) -> StudyFigures | None:
         """Figures of these settings where they are known."""
         return self._kept.get(key_of(spec))

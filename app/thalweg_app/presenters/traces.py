@@ -12,7 +12,7 @@ from thalweg.arrays import FloatArray
 from thalweg.study.result import GrowthStep, StudyResult, Trace
 from thalweg.units import CHEMICAL_ACCURACY
 from thalweg_app.presenters import wording
-from thalweg_app.presenters.chart import Band, Chart, Level, Panel, Role, Series
+from thalweg_app.presenters.chart import Band, Chart, Level, Panel, Role, Series, column
 from thalweg_app.presenters.live import LiveRun
 from thalweg_app.presenters.tables import Table
 
@@ -99,7 +99,7 @@ def convergence(main: Shown | None, overlays: Sequence[Shown] = (), x: XChoice =
     others = [o for o in overlays if o.unit == main.unit]
     energy = Panel(
         f"Energy / {wording.unit_name(main.unit)}",
-        (*_curves(main, others, x, lambda run, start: _array(start.energy), bars=True), *_steps(main, x)),
+        (*_curves(main, others, x, lambda run, start: column(start.energy), bars=True), *_steps(main, x)),
         _levels(main),
         share=ENERGY_SHARE,
     )
@@ -108,14 +108,14 @@ def convergence(main: Shown | None, overlays: Sequence[Shown] = (), x: XChoice =
 
 def _lower(main: Shown, others: list[Shown], x: XChoice, factor: float, unit: str) -> Panel:
     if main.exact_energy is None:
-        curves = _curves(main, others, x, lambda run, start: _positive(_array(start.gradient_norm)))
+        curves = _curves(main, others, x, lambda run, start: _positive(column(start.gradient_norm)))
         return Panel("Largest gradient component", curves, log=True)
 
     def error(run: Shown, start: Columns) -> FloatArray:
         """Of the simulated state, as a measured error may well be negative."""
         exact = np.nan if run.exact_energy is None else run.exact_energy
         noiseless = [e if n is None else n for e, n in zip(start.energy, start.noiseless, strict=False)] or start.energy
-        return _positive((_array(noiseless) - exact) * factor)
+        return _positive((column(noiseless) - exact) * factor)
 
     band = Band(main.target * factor, f"{_target_name(main)}, {wording.significant(main.target * factor)} {unit}")
     return Panel(f"Error against exact / {unit}", _curves(main, others, x, error), band=band, log=True)
@@ -136,7 +136,7 @@ def _curves(main: Shown, others: list[Shown], x: XChoice, values: object, *, bar
 def _series(name: str, start: Columns, x: XChoice, y: FloatArray, role: Role, rank: int, *, bars: bool) -> Series:
     along = np.asarray(getattr(start, x), dtype=np.float64)
     n = min(along.size, y.size)
-    spread = 2 * _array(start.standard_error)[:n] if bars and any(e is not None for e in start.standard_error) else None
+    spread = 2 * column(start.standard_error)[:n] if bars and any(e is not None for e in start.standard_error) else None
     return Series(name, along[:n], y[:n], role, rank, legend=role != "faint", spread=spread)
 
 
@@ -192,10 +192,6 @@ def _describe(main: Shown) -> str:
     unit = wording.unit_name(main.unit)
     last = f"{main.name}: energy {energies[-1]:.6f} {unit} after {len(energies) - 1} iterations"
     return last if main.exact_energy is None else f"{last}, exact {main.exact_energy:.6f} {unit}"
-
-
-def _array(values: Sequence[float | None]) -> FloatArray:
-    return np.array([np.nan if v is None else v for v in values], dtype=np.float64)
 
 
 def _positive(values: FloatArray) -> FloatArray:

@@ -6,6 +6,7 @@ from dataclasses import replace
 from typing import Any
 
 from thalweg.study.result import StudyResult
+from thalweg.study.spec import StudySpec
 from thalweg_app.presenters import jobs
 from thalweg_app.presenters.answer import NOTHING_YET, Answer, answer_of, answer_of_check, check_words
 from thalweg_app.presenters.diagnosis_control import DiagnosisControl
@@ -32,11 +33,11 @@ class Workbench:
         self.history = History()
         self.setup = SetupEditing(self.history)
         self.ledger = Ledger(self.history)
-        self.scans = ScanControl(starter, lambda: self.setup.spec if self.can_run else None, scan)
+        self.scans = ScanControl(starter, self._usable_study, scan)
         self.document = Document(self.setup, self.ledger, self.scans, self.history, recent)
         self.figures = DerivedFigures(starter, inspect)
         self.runs = RunControl(starter, self.figures.of, run, check)
-        self.diagnosis = DiagnosisControl(starter, lambda: self.setup.spec if self.can_run else None, self.ledger)
+        self.diagnosis = DiagnosisControl(starter, self._usable_study, self.ledger)
         self._point: Shown | None = None  # a point of a curve whose convergence is shown
         self._check: CheckOutcome | None = None
         self.answer_changed, self.pictures_changed = Listeners(), Listeners()
@@ -69,6 +70,9 @@ class Workbench:
     @property
     def can_run(self) -> bool:
         return not self.setup.obstacle
+
+    def _usable_study(self) -> StudySpec | None:
+        return self.setup.spec if self.can_run else None
 
     @property
     def answer(self) -> Answer:

@@ -18,6 +18,7 @@ from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.presenters.diagnosis import Finding, chart_of, table_of_finding
+from thalweg_app.presenters.numbers import parse_wholes
 from thalweg_app.terminal.answer import aligned
 from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
@@ -97,8 +98,8 @@ def _trainability(study: StudySpec, options: dict[str, Any]) -> Trainability:
     settings = {
         "study": study,
         "cost": options["cost"],
-        "qubits": whole_numbers(options["qubits"]),
-        "layers": whole_numbers(options["layers"]),
+        "qubits": parse_wholes(options["qubits"] or "", "qubits"),
+        "layers": parse_wholes(options["layers"] or "", "layers"),
         "samples": options["samples"],
         "component": options["component"],
         "starts": options["angles"],
@@ -142,18 +143,6 @@ def _run_of(name: str, number: int) -> StudyResult:
         if run.number == number:
             return run.result
     raise StudyError(f"There is no run {number} in {name}", "the session does not hold it", "Give the number of one of its runs")
-
-
-def whole_numbers(text: str | None) -> tuple[int, ...]:
-    """`2,4,6-8` as numbers; empty for nothing."""
-    found: list[int] = []
-    for part in (text or "").replace(" ", "").split(","):
-        first, dash, last = part.partition("-")
-        if first.isdigit() and (last.isdigit() if dash else True):
-            found += range(int(first), int(last if dash else first) + 1)
-        elif part:
-            raise StudyError(f"'{part}' is no list of numbers", "sizes are whole numbers and ranges", "Write it as 2,4,6-8")
-    return tuple(found)
 
 
 def _print(found: Finding, json_file: str | None) -> None:

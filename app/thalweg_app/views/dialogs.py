@@ -56,36 +56,30 @@ def show_about(parent: QWidget) -> QMessageBox:
 def ask_unsaved(parent: QWidget, name: str, has_results: bool, save: Callable[[], None], discard: Callable[[], None]) -> QMessageBox:
     """Save, discard or cancel."""
     what = "results and changes" if has_results else "changes"
-    box = _box(parent, QMessageBox.Icon.Question, f"Save the {what} in “{name}”?", "Otherwise they are lost.")
-    save_button = box.addButton("Save", QMessageBox.ButtonRole.AcceptRole)
-    discard_button = box.addButton("Do not save", QMessageBox.ButtonRole.DestructiveRole)
-    box.addButton("Cancel", QMessageBox.ButtonRole.RejectRole)
-    box.setDefaultButton(save_button)
-
-    def answered() -> None:
-        if box.clickedButton() is save_button:
-            save()
-        elif box.clickedButton() is discard_button:
-            discard()
-
-    box.finished.connect(lambda _: answered())
-    box.open()
-    return box
+    return _ask(parent, f"Save the {what} in “{name}”?", "Otherwise they are lost.", ("Save", save), ("Do not save", discard), "Cancel")
 
 
 def ask_recovery(parent: QWidget, names: list[str], restore: Callable[[], None], drop: Callable[[], None]) -> QMessageBox:
     """What to do with a session that a crash left behind."""
-    box = _box(parent, QMessageBox.Icon.Question, "An unsaved session was left behind", f"“{names[0]}” was open when the program ended unexpectedly.")
-    restore_button = box.addButton("Restore", QMessageBox.ButtonRole.AcceptRole)
-    drop_button = box.addButton("Throw away", QMessageBox.ButtonRole.DestructiveRole)
-    box.addButton("Later", QMessageBox.ButtonRole.RejectRole)
-    box.setDefaultButton(restore_button)
+    below = f"“{names[0]}” was open when the program ended unexpectedly."
+    return _ask(parent, "An unsaved session was left behind", below, ("Restore", restore), ("Throw away", drop), "Later")
+
+
+def _ask(
+    parent: QWidget, text: str, below: str, keep: tuple[str, Callable[[], None]], lose: tuple[str, Callable[[], None]], neither: str
+) -> QMessageBox:
+    """A question with a way that keeps, the default, one that loses, and one that does neither."""
+    box = _box(parent, QMessageBox.Icon.Question, text, below)
+    keep_button = box.addButton(keep[0], QMessageBox.ButtonRole.AcceptRole)
+    lose_button = box.addButton(lose[0], QMessageBox.ButtonRole.DestructiveRole)
+    box.addButton(neither, QMessageBox.ButtonRole.RejectRole)
+    box.setDefaultButton(keep_button)
 
     def answered() -> None:
-        if box.clickedButton() is restore_button:
-            restore()
-        elif box.clickedButton() is drop_button:
-            drop()
+        if box.clickedButton() is keep_button:
+            keep[1]()
+        elif box.clickedButton() is lose_button:
+            lose[1]()
 
     box.finished.connect(lambda _: answered())
     box.open()

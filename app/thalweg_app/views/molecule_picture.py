@@ -17,6 +17,7 @@ from thalweg.systems.elements import find_element
 from thalweg.systems.geometry import Atoms, bonds, coordinates_in_bohr
 from thalweg.units import BOHR_IN_ANGSTROM
 from thalweg_app.colours import LIGHT, Palette
+from thalweg_app.widgets.framed import framed_painter, write_in_the_middle
 
 #: Colours by element as usual in the trade (common practice); others are drawn in a stone colour.
 ELEMENT_COLOURS = {
@@ -122,14 +123,9 @@ class MoleculePicture(QWidget):
         return f"{names}: {length * BOHR_IN_ANGSTROM:.4f} Å = {length:.4f} bohr"
 
     def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
-        painter = QPainter(self)
-        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        painter.setPen(QPen(QColor(self._palette.accent if self.hasFocus() else self._palette.border)))
-        painter.setBrush(QColor(self._palette.raised))
-        painter.drawRoundedRect(QRectF(self.rect()).adjusted(0.5, 0.5, -0.5, -0.5), 4, 4)
+        painter = framed_painter(self, self._palette)
         if not self._atoms:
-            painter.setPen(QColor(self._palette.muted))
-            painter.drawText(self.rect(), Qt.AlignmentFlag.AlignCenter, "Open, paste or drop a geometry, or take a sample")
+            write_in_the_middle(painter, self, self._palette, "Open, paste or drop a geometry, or take a sample")
             return
         balls = self._balls()
         parts: list[tuple[float, tuple[int, int] | int]] = [(b.depth, b.number) for b in balls]

@@ -101,9 +101,6 @@ class SetupColumn(QWidget):
         self.stop_button.setIcon(icon("stop", palette.ink, 14))
         self.refresh_answer()
 
-    def open_sections(self) -> list[str]:
-        return [name for name, section in self.sections.items() if section.is_open]
-
     def _reveal(self, path: str) -> None:
         """Opens the section that holds a field with an error."""
         first = path.partition(".")[0]

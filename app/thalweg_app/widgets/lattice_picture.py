@@ -12,6 +12,7 @@ from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 from thalweg.arrays import FloatArray
 from thalweg.systems.lattice_graph import Bond, LatticeGraph
 from thalweg_app.colours import LIGHT, OKABE_ITO, Palette
+from thalweg_app.widgets.framed import framed_painter, write_in_the_middle
 
 #: Line styles in the order in which classes of bonds appear; the colours go along, so that grey print tells them apart too.
 STYLES = (Qt.PenStyle.SolidLine, Qt.PenStyle.DashLine, Qt.PenStyle.DotLine, Qt.PenStyle.DashDotLine, Qt.PenStyle.DashDotDotLine)
@@ -40,6 +41,7 @@ class LatticePicture(QWidget):
         super().__init__(parent)
         self._graph: LatticeGraph | None = None
         self._kinds: tuple[str, ...] = ()
+        self._looks: dict[str, BondLook] = {}
         self._bond_values: dict[tuple[int, int], float] = {}
         self._site_values: tuple[float, ...] = ()
         self._palette = LIGHT
@@ -60,6 +62,7 @@ class LatticePicture(QWidget):
     def show_graph(self, graph: LatticeGraph | None, kinds: tuple[str, ...] | None = None) -> None:
         """`kinds`: the classes of bonds that the model couples; all of them when None."""
         self._graph = graph
+        self._looks = {} if graph is None else bond_looks(graph)
         self._kinds = kinds if kinds is not None else tuple(graph.bonds_per_class()) if graph is not None else ()
         self._bond_values, self._site_values = {}, ()
         counts = "" if graph is None else ", ".join(f"{n} {kind}" for kind, n in graph.bonds_per_class().items() if kind in self._kinds)
@@ -72,22 +75,17 @@ class LatticePicture(QWidget):
         self.update()
 
     def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
-        painter = QPainter(self)
-        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        painter.setPen(QPen(QColor(self._palette.accent if self.hasFocus() else self._palette.border)))
-        painter.setBrush(QColor(self._palette.raised))
-        painter.drawRoundedRect(QRectF(self.rect()).adjusted(0.5, 0.5, -0.5, -0.5), 4, 4)
+        painter = framed_painter(self, self._palette)
         graph = self._graph
         if graph is None or graph.n_sites == 0:
-            painter.setPen(QColor(self._palette.muted))
-            painter.drawText(self.rect(), Qt.AlignmentFlag.AlignCenter, "No lattice to draw")
+            write_in_the_middle(painter, self, self._palette, "No lattice to draw")
             return
         places = self._places(graph)
         for bond in graph.bonds:
             if bond.kind in self._kinds:
                 self._draw_bond(painter, graph, bond, places)
         self._draw_sites(painter, graph, places)
-        self._draw_legend(painter, graph)
+        self._draw_legend(painter)
 
     def mouseMoveEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         text = self.told_at(event.position())
@@ -131,7 +129,7 @@ class LatticePicture(QWidget):
         return float(np.clip(0.24 * gaps.min(), 2.5, 10.0))
 
     def _draw_bond(self, painter: QPainter, graph: LatticeGraph, bond: Bond, places: FloatArray) -> None:
-        look = bond_looks(graph)[bond.kind]
+        look = self._looks[bond.kind]
         value = self._bond_values.get((bond.first, bond.second))
         width = 1.6 if value is None else 1.0 + 5.0 * min(1.0, abs(value))
         colour = look.colour if value is None else OKABE_ITO[0] if value < 0 else OKABE_ITO[1]
@@ -175,10 +173,10 @@ class LatticePicture(QWidget):
                 painter.setPen(QColor(self._palette.ink if fill.lightnessF() > 0.5 else self._palette.paper))
                 painter.drawText(box, Qt.AlignmentFlag.AlignCenter, graph.site_name(site)[:3])
 
-    def _draw_legend(self, painter: QPainter, graph: LatticeGraph) -> None:
+    def _draw_legend(self, painter: QPainter) -> None:
         painter.setFont(self.font())
         x, y = 10.0, self.height() - 11.0
-        for kind, look in bond_looks(graph).items():
+        for kind, look in self._looks.items():
             if kind not in self._kinds:
                 continue
             painter.setPen(QPen(QColor(look.colour), 1.8, look.style))

@@ -11,7 +11,7 @@ import numpy as np
 
 from thalweg import __version__
 from thalweg.ansatz.adaptive import Adaptive
-from thalweg.arrays import FloatArray
+from thalweg.arrays import plain
 from thalweg.circuit.program import GateProgram
 from thalweg.evaluate import Exact, Shots
 from thalweg.exact.answer import ExactAnswer
@@ -21,7 +21,7 @@ from thalweg.study.lattice_facts import best_string, exact_s_z, facts_with_energ
 from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import LeadingWeight, StudyResult
-from thalweg.study.site_figures import site_figures
+from thalweg.study.site_figures import has_site_figures, site_figures
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import constants_record
 
@@ -80,12 +80,12 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
         starts=tuple(outcome.starts),
         best_start=outcome.best,
         growth=end.growth,
-        final_parameters=_plain(parameters),
-        start_parameters=_plain(end.start_parameters),
+        final_parameters=plain(parameters),
+        start_parameters=plain(end.start_parameters),
         parameter_labels=program.labels(),
         operator_order=program.order,
         pauli_terms=heaviest_terms(encoded.working),
-        sites=site_figures(problem, np.asarray(engine.state(parameters))[None]),
+        sites=site_figures(problem, np.asarray(engine.state(parameters))[None]) if has_site_figures(problem) else None,
         exact_sites=None if exact is None else site_figures(problem, exact.vectors),
         system_facts=facts_with_energies(problem, energy, exact),
         best_string=best_string(problem, engine, parameters),
@@ -196,7 +196,3 @@ def _state_fields(facts: StateFacts) -> dict[str, Any]:
         "leading": tuple(LeadingWeight(**vars(state)) for state in facts.leading),
         "natural_occupations": facts.natural_occupations,
     }
-
-
-def _plain(values: FloatArray) -> tuple[float, ...]:
-    return tuple(float(v) for v in values)

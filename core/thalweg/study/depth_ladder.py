@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -67,15 +68,6 @@ def _rung(course: Course, ansatz: Any, below: Descent | None) -> Descent:
 
 def _end(course: Course, kept: list[Descent], reason: str) -> SearchEnd:
     first, best = kept[0], kept[-1]
-    return SearchEnd(
-        problem=best.problem,
-        parameters=best.parameters,
-        energy=best.energy,
-        gradient_norm=best.gradient_norm,
-        reason=reason,
-        start_parameters=np.array(first.start),
-        start_energy=first.start_energy,
-        start_gradient_norm=first.start_gradient_norm,
-        growth=tuple(course.steps),
-        standard_error=best.standard_error,
-    )
+    end = best.end(reason, tuple(course.steps))
+    start = np.array(first.start)
+    return replace(end, start_parameters=start, start_energy=first.start_energy, start_gradient_norm=first.start_gradient_norm)

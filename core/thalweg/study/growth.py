@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -34,18 +35,8 @@ def grow(course: Course, ansatz: Adaptive) -> SearchEnd:
         reason = stop.reason
     first = growing.descents[0]
     best = min(growing.descents, key=lambda descent: descent.energy)
-    return SearchEnd(
-        problem=best.problem,
-        parameters=best.parameters,
-        energy=best.energy,
-        gradient_norm=best.gradient_norm,
-        reason=reason,
-        start_parameters=first.start,
-        start_energy=first.start_energy,
-        start_gradient_norm=growing.first_slope,
-        growth=tuple(course.steps),
-        standard_error=best.standard_error,
-    )
+    end = best.end(reason, tuple(course.steps))
+    return replace(end, start_parameters=first.start, start_energy=first.start_energy, start_gradient_norm=growing.first_slope)
 
 
 class _Growing:

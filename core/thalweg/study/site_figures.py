@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 
-from thalweg.arrays import FloatArray
+from thalweg.arrays import FloatArray, plain
 from thalweg.study.problem import Problem
 from thalweg.study.result import SiteFigures
 from thalweg.systems.hubbard import Hubbard
@@ -21,22 +21,29 @@ MAX_SITES = 20
 LONGEST_MOMENTUM = 2 * np.pi + 1e-6
 
 
+def has_site_figures(problem: Problem) -> bool:
+    """Whether the states of this study can be looked at site by site: a lattice that is not too large, its sites on the whole register."""
+    system = problem.spec.system
+    if not isinstance(system, LatticeModel):
+        return False
+    if isinstance(system.model, Hubbard):
+        return system.graph().n_sites <= MAX_SITES
+    qubits = problem.encoded.full.n_qubits
+    return problem.encoded.working.n_qubits == qubits == system.graph().n_sites and qubits <= MAX_SITES
+
+
 def site_figures(problem: Problem, vectors: Any, watch: Watch = SILENT) -> SiteFigures | None:
-    """Figures of a state, or averaged over an orthonormal set of states, first axis; None where the system is no lattice or too large.
+    """Figures of a state, or averaged over an orthonormal set of states, first axis; None where there are none or they cannot be had.
 
     Spin systems take register amplitudes (states, 2^n) of the untapered register, Hubbard systems sector amplitudes (states, Na, Nb).
     """
     system = problem.spec.system
-    if not isinstance(system, LatticeModel) or vectors is None or len(vectors) == 0:
+    if not has_site_figures(problem) or not isinstance(system, LatticeModel) or vectors is None or len(vectors) == 0:
         return None
     if isinstance(system.model, Hubbard):
-        fits = np.ndim(vectors) == 3 and system.graph().n_sites <= MAX_SITES
-        return _electron_figures(problem, system.model, system.graph(), np.asarray(vectors)) if fits else None
-    graph = system.graph()
-    untapered = problem.encoded.working.n_qubits == problem.encoded.full.n_qubits
-    if graph.n_sites > MAX_SITES or not untapered or graph.n_sites != problem.encoded.full.n_qubits:
-        return None
-    return _spin_figures(graph, np.asarray(vectors), watch)
+        in_sector = np.ndim(vectors) == 3  # a circuit of electrons on the register has no such amplitudes
+        return _electron_figures(problem, system.model, system.graph(), np.asarray(vectors)) if in_sector else None
+    return _spin_figures(system.graph(), np.asarray(vectors), watch)
 
 
 def _spin_figures(graph: LatticeGraph, vectors: np.ndarray, watch: Watch) -> SiteFigures:
@@ -55,9 +62,9 @@ def _spin_figures(graph: LatticeGraph, vectors: np.ndarray, watch: Watch) -> Sit
                 spin[i, j] += (0.5 * pair_swaps(real, imag, i, j) - 0.25) / len(vectors)  # S_i.S_j = P_ij / 2 - 1/4
     spin = spin + spin.T + 0.75 * np.eye(n)
     return SiteFigures(
-        magnetisation=_plain(0.5 * single),
-        z_correlations=tuple(_plain(row) for row in 0.25 * double),
-        spin_correlations=tuple(_plain(row) for row in spin),
+        magnetisation=plain(0.5 * single),
+        z_correlations=tuple(plain(row) for row in 0.25 * double),
+        spin_correlations=tuple(plain(row) for row in spin),
         structure_factor=structure_factor(graph, spin),
     )
 
@@ -102,8 +109,4 @@ def _electron_figures(problem: Problem, model: Hubbard, graph: LatticeGraph, vec
         block = SectorHamiltonian(pair).whole
         states = [block.layout.from_matrix(np.asarray(vector, dtype=float)) for vector in vectors]
         occupancy[site] = np.mean([state @ block.apply(state) for state in states])
-    return SiteFigures(double_occupancy=_plain(occupancy))
-
-
-def _plain(values: FloatArray) -> tuple[float, ...]:
-    return tuple(float(v) for v in values)
+    return SiteFigures(double_occupancy=plain(occupancy))
