@@ -14,6 +14,7 @@ from thalweg.errors import StudyError
 from thalweg_app.presenters.fields import FieldFacts, choice_words, fields_of, help_text
 from thalweg_app.presenters.numbers import number_text
 from thalweg_app.presenters.wording import unit_name
+from thalweg_app.theme import mark
 from thalweg_app.widgets.fold import Fold
 
 LABEL_WIDTH = 104
@@ -82,6 +83,7 @@ class FieldRow:
         self.error.setWordWrap(True)
         self.error.hide()
         self.editor, self._show = self._make()
+        self.editor.setProperty("bad", False)
         describe(self.editor, facts.title, help_text(facts))
         self.label.setToolTip(self.editor.toolTip())
         if isinstance(self.editor, QWidget):
@@ -91,10 +93,7 @@ class FieldRow:
         self._show(value)
         self.error.setVisible(error is not None)
         self.error.setText(str(error) if error else "")
-        if self.editor.property("bad") != (error is not None):
-            self.editor.setProperty("bad", error is not None)
-            self.editor.style().unpolish(self.editor)
-            self.editor.style().polish(self.editor)
+        mark(self.editor, "bad", error is not None)
         self.editor.setAccessibleDescription(f"{help_text(self.facts)} {error or ''}".strip())
 
     def _make(self) -> tuple[QWidget, Callable[[Any], None]]:

@@ -52,7 +52,7 @@ def open_window(argv: list[str]) -> int:
 def make_application() -> QApplication:
     application = QApplication.instance()
     if not isinstance(application, QApplication):
-        application = QApplication(["thalweg"])
+        application = QApplication(["thalweg", "-style", "fusion"])  # `setStyle` would hand the style to Python, which takes 30 ms
     application.setApplicationName("Thalweg")
     application.setOrganizationName("Thalweg")
     application.setApplicationDisplayName("Thalweg")

@@ -8,7 +8,7 @@ from typing import Literal
 from PySide6.QtCore import QByteArray, QObject, QRectF, QSettings, QSize, Qt, Signal
 from PySide6.QtGui import QColor, QFont, QFontDatabase, QIcon, QPainter, QPalette, QPixmap
 from PySide6.QtSvg import QSvgRenderer
-from PySide6.QtWidgets import QApplication
+from PySide6.QtWidgets import QApplication, QLabel, QWidget
 
 from thalweg.paths import data_folder
 from thalweg_app.colours import DARK, LIGHT, Palette
@@ -35,7 +35,7 @@ def base_font(factor: float = 1.0) -> QFont:
 
 
 class Theme(QObject):
-    """Holds the palette in force and tells when it changes."""
+    """Holds the palette in force and tells when it changes. The style sheet comes with `dress`."""
 
     changed = Signal(object)
 
@@ -44,7 +44,7 @@ class Theme(QObject):
         self._application = application
         stored = str(QSettings().value("appearance", "desktop"))
         self.appearance: Appearance = "light" if stored == "light" else "dark" if stored == "dark" else "desktop"
-        application.setStyle("Fusion")
+        self._dressed: Palette | None = None  # of the style sheet in force
         application.setFont(base_font())
         application.styleHints().colorSchemeChanged.connect(lambda _: self._apply())
         self.palette = LIGHT
@@ -55,13 +55,20 @@ class Theme(QObject):
         QSettings().setValue("appearance", appearance)
         self._apply()
 
+    def dress(self) -> None:
+        """Puts the style sheet in force; called once a window is built, since under a sheet Qt styles a widget anew with each move into another."""
+        if self._dressed != self.palette:
+            self._dressed = self.palette
+            self._application.setStyleSheet(style_sheet(self.palette))
+
     def _apply(self) -> None:
         dark = self.appearance == "dark"
         if self.appearance == "desktop":
             dark = self._application.styleHints().colorScheme() == Qt.ColorScheme.Dark
         self.palette = DARK if dark else LIGHT
         self._application.setPalette(qt_palette(self.palette))
-        self._application.setStyleSheet(style_sheet(self.palette))
+        if self._dressed is not None:
+            self.dress()
         self.changed.emit(self.palette)
 
 
@@ -167,15 +174,34 @@ def style_sheet(p: Palette) -> str:
     QStatusBar {{ background: {p.sunken}; border-top: 1px solid {p.border}; }}
     QStatusBar::item {{ border: none; }}
     QLabel[role="muted"] {{ color: {p.muted}; }}
-    QLabel[role="stale"] {{ color: {p.muted}; font-style: italic; }}
     QLabel[role="error"] {{ color: {p.bad}; }}
     QLabel[role="warning"] {{ color: {p.warning}; }}
-    QLabel[role="figure"] {{ color: {p.ink}; }}
     QLabel[role="heading"] {{ color: {p.muted}; font-weight: 600; }}
     QFrame[role="card"] {{ background: {p.raised}; border: 1px solid {p.border}; border-radius: 4px; }}
     QFrame[role="footer"] {{ background: {p.sunken}; border: none; border-top: 1px solid {p.border}; }}
     QFrame[role="help"] {{ background: {p.raised}; border: 1px solid {p.accent}; border-radius: 4px; }}
     """
+
+
+def mark(widget: QWidget, name: str, value: object) -> None:
+    """Sets a property that the style sheet looks at, and styles the widget anew where it has been styled."""
+    if widget.property(name) == value:
+        return
+    widget.setProperty(name, value)
+    if widget.testAttribute(Qt.WidgetAttribute.WA_WState_Polished):
+        widget.style().unpolish(widget)
+        widget.style().polish(widget)
+
+
+def show_fresh(label: QLabel, is_fresh: bool) -> None:
+    """A figure in ink, or dimmed and slanted while it is worked out again. By palette and font, since these labels change often."""
+    role = "figure" if is_fresh else "stale"
+    if label.property("role") != role:
+        label.setProperty("role", role)
+        label.setForegroundRole(QPalette.ColorRole.WindowText if is_fresh else QPalette.ColorRole.PlaceholderText)
+        font = label.font()
+        font.setItalic(not is_fresh)
+        label.setFont(font)
 
 
 @lru_cache(maxsize=256)

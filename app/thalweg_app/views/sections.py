@@ -15,7 +15,7 @@ from thalweg_app.forms import OptionsForm
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Figure
-from thalweg_app.theme import SPACE
+from thalweg_app.theme import SPACE, show_fresh
 from thalweg_app.views.alternatives import AlternativeBox
 from thalweg_app.widgets.figure_grid import FigureGrid
 from thalweg_app.widgets.fold import Fold
@@ -65,9 +65,7 @@ class EncodingSection(SectionBody):
         lines = [] if figures is None else list(figures.symmetries)
         self._symmetries.setVisible(bool(lines))
         self._symmetries.setText(f"{wording.counted(len(lines), 'symmetry').replace('symmetrys', 'symmetries')} used:\n" + "\n".join(lines))
-        self._symmetries.setProperty("role", "figure" if is_fresh else "stale")
-        self._symmetries.style().unpolish(self._symmetries)
-        self._symmetries.style().polish(self._symmetries)
+        show_fresh(self._symmetries, is_fresh)
 
 
 class TrialSection(SectionBody):

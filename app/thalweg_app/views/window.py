@@ -53,6 +53,7 @@ class Window(QMainWindow):
         self.menus = Menus(self)
         self._restore_place()
         self._apply_palette(theme.palette)
+        theme.dress()
         self.refresh_title()
         self.redraw()
 

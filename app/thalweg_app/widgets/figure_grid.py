@@ -8,6 +8,7 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QGridLayout, QLabel, QWidget
 
 from thalweg_app.presenters.tables import Figure
+from thalweg_app.theme import show_fresh
 
 
 class FigureGrid(QWidget):
@@ -34,7 +35,7 @@ class FigureGrid(QWidget):
                 value.setAccessibleName(f"{figures[i].name}: {figures[i].value}{'' if is_fresh else ', being worked out again'}")
                 for label in (name, value):
                     label.setToolTip(figures[i].help)
-                _set_role(value, "figure" if is_fresh else "stale")
+                show_fresh(value, is_fresh)
 
     def _add_pair(self) -> None:
         row, column = divmod(len(self._labels), self._columns)
@@ -46,10 +47,3 @@ class FigureGrid(QWidget):
         self._grid.addWidget(name, row, 2 * column)
         self._grid.addWidget(value, row, 2 * column + 1)
         self._labels.append((name, value))
-
-
-def _set_role(label: QLabel, role: str) -> None:
-    if label.property("role") != role:
-        label.setProperty("role", role)
-        label.style().unpolish(label)
-        label.style().polish(label)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtWidgets import QApplication, QLabel, QSizePolicy, QToolButton, QVBoxLayout, QWidget
 
-from thalweg_app.theme import icon
+from thalweg_app.theme import icon, show_fresh
 
 
 class Fold(QWidget):
@@ -63,16 +63,11 @@ class Section(Fold):
         super().__init__(f"{number}  {title}", section=True)
         self.line = QLabel()
         self.line.setWordWrap(True)
-        self.line.setProperty("role", "muted")
         self.line.setContentsMargins(30, 3, 8, 7)
         self.line.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
         self._layout.addWidget(self.line)
 
     def show_summary(self, text: str, is_fresh: bool) -> None:
         self.line.setText(text)
-        role = "figure" if is_fresh else "stale"
-        if self.line.property("role") != role:
-            self.line.setProperty("role", role)
-            self.line.style().unpolish(self.line)
-            self.line.style().polish(self.line)
+        show_fresh(self.line, is_fresh)
         self.head.setAccessibleDescription(text)
