@@ -138,7 +138,7 @@ class Run:
         self._work = self._dual.copy()
 
     def forward(self) -> np.ndarray:
-        return self._runner.forward(self.program.reference, self.theta)
+        return self._runner.forward(self.program.begins, self.theta)
 
     def forward_and_back(self) -> np.ndarray:
         np.copyto(self._work, self._dual)

@@ -54,13 +54,17 @@ def lowest_energy(expansion: PauliExpansion) -> float:
 
 
 def gate_state(program: GateProgram, parameters: np.ndarray) -> np.ndarray:
-    """The state of a program of Pauli rotations, shape (2^n,)."""
-    state = np.zeros(1 << program.n_qubits, complex)
+    """The state of a program of Pauli rotations and CNOTs, shape (2^n,)."""
+    n, index = program.n_qubits, np.arange(1 << program.n_qubits)
+    state = np.zeros(index.size, complex)
     state[program.reference] = 1
     for kind, x, z, k, factor in zip(program.kind, program.x, program.z, program.parameter, program.factor, strict=True):
+        if kind == Gate.CNOT:
+            state = state[np.where(index & int(x), index ^ int(z), index)]
+            continue
         assert kind == Gate.ROTATION
-        angle = factor * (parameters[k] if k >= 0 else 1.0)
-        state = np.cos(angle / 2) * state - 1j * np.sin(angle / 2) * (string_matrix(program.n_qubits, int(x), int(z)) @ state)
+        angle = factor if k < 0 else factor * parameters[k]
+        state = np.cos(angle / 2) * state - 1j * np.sin(angle / 2) * (string_matrix(n, int(x), int(z)) @ state)
     return state
 
 

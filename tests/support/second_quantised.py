@@ -77,7 +77,8 @@ def program_state(program: ExcitationProgram, parameters: np.ndarray) -> np.ndar
     sector = program.sector
     masks = [[s for s in range(1 << sector.n_orbitals) if s.bit_count() == n] for n in (sector.n_alpha, sector.n_beta)]
     psi = np.zeros(sector.shape)
-    psi[masks[0].index(program.reference[0]), masks[1].index(program.reference[1])] = 1.0
+    for amplitude, alpha, beta in program.begins:
+        psi[masks[0].index(alpha), masks[1].index(beta)] = amplitude
     psi = psi.ravel()
     for e, k, factor in zip(program.excitations, program.parameter, program.factor, strict=True):
         t = excitation_matrix(e, sector)

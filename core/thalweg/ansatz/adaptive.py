@@ -53,8 +53,16 @@ class Adaptive(Options):
         if self.pool in ON_QUBITS:
             return reference_program(ground, self._order())
         hamiltonian = fermions_of(ground, f"pool of {self.pool.replace('-', ' ')} operators")
-        nothing = np.empty(0)
-        return ExcitationProgram(hamiltonian.sector, hamiltonian.reference, (), nothing.astype(np.int64), nothing, 0, self._order())
+        return ExcitationProgram(
+            sector=hamiltonian.sector,
+            reference=hamiltonian.reference,
+            excitations=(),
+            parameter=np.empty(0, np.int64),
+            factor=np.empty(0),
+            n_parameters=0,
+            order=self._order(),
+            reference_terms=hamiltonian.reference_terms,
+        )
 
     def operators(self, ground: Ground) -> ExcitationPool | StringPool:
         """The pool. StudyError where it does not fit the system or is too large."""

@@ -78,20 +78,17 @@ class AlternatingOperators(Options):
         turns = self._turns(ground)
         numbers = self._angle_numbers(turns)
         a_layer = sum(self._angles_a_block(turns))
-        kept = reference_program(self._initial(ground))
         x = np.concatenate([turn.group.x for turn in turns])
         z = np.concatenate([turn.group.z for turn in turns])
         factor = np.concatenate([turn.factors for turn in turns])
-        return replace(
-            kept,
-            kind=np.concatenate([kept.kind, np.full(x.size * self.depth, Gate.ROTATION, np.uint8)]),
-            x=np.concatenate([kept.x, np.tile(x, self.depth)]),
-            z=np.concatenate([kept.z, np.tile(z, self.depth)]),
-            parameter=np.concatenate([kept.parameter, *(numbers + layer * a_layer for layer in range(self.depth))]),
-            factor=np.concatenate([kept.factor, np.tile(factor, self.depth)]),
-            n_parameters=a_layer * self.depth,
-            order=self._order(ground, turns),
-            parameter_labels=tuple(f"{label} in layer {layer + 1}" for layer in range(self.depth) for label in self._labels(turns)),
+        return reference_program(self._initial(ground)).followed_by(
+            Gate.ROTATION,
+            np.tile(x, self.depth),
+            np.tile(z, self.depth),
+            np.concatenate([numbers + layer * a_layer for layer in range(self.depth)]),
+            np.tile(factor, self.depth),
+            [f"{label} in layer {layer + 1}" for layer in range(self.depth) for label in self._labels(turns)],
+            self._order(ground, turns),
         )
 
     def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
@@ -176,7 +173,9 @@ class AlternatingOperators(Options):
             return ground
         if self._has_mixer(ground):
             if self.mixer == "transverse":
-                return replace(ground, reference_kind="plus", reference_pairs=())
+                return replace(ground, reference_kind="plus", reference_pairs=(), reference_terms=())
+            if ground.begins_combined:
+                return ground
             bits = ground.reference_bits if ground.reference_kind == "bits" else sum(1 << q for q in range(1, n, 2))
             if bits.bit_count() in (0, n):
                 raise _nothing_to_mix()
@@ -186,8 +185,9 @@ class AlternatingOperators(Options):
 
     def _order(self, ground: Ground, turns: list[_Turn]) -> str:
         state = self._initial(ground)
-        begins = {"plus": "all plus", "singlets": "dimer singlets"}.get(state.reference_kind, "the basis state of the reference")
-        if self._has_mixer(ground) and self.mixer == "ring" and self.initial == "fitting":
+        whole = "the combination of the reference" if state.begins_combined else "the basis state of the reference"
+        begins = {"plus": "all plus", "singlets": "dimer singlets"}.get(state.reference_kind, whole)
+        if self._has_mixer(ground) and self.mixer == "ring" and self.initial == "fitting" and not state.begins_combined:
             begins = f"the bit string {''.join(str(state.reference_bits >> q & 1) for q in range(ground.qubits.n_qubits))}"
         named = [turn.group.label for turn in turns[:NAMED_PARTS]]
         named += [f"{len(turns) - NAMED_PARTS} more parts"] if len(turns) > NAMED_PARTS else []
@@ -218,6 +218,8 @@ def _largest_on_a_site(ground: Ground) -> float:
 
 def _is_kept(group: TermGroup, state: Ground) -> bool:
     """Whether the initial state is an eigenstate of every string of the group."""
+    if state.begins_combined:
+        return False
     if state.reference_kind == "plus":
         return not group.z.any()
     if state.reference_kind != "singlets":

@@ -70,6 +70,7 @@ class ClusterProduct(Options):
         return ExcitationProgram(
             sector=hamiltonian.sector,
             reference=hamiltonian.reference,
+            reference_terms=hamiltonian.reference_terms,
             excitations=tuple(e for _, e, _ in places),
             parameter=np.array([k for k, _, _ in places], np.int64),
             factor=np.array([weight for _, _, weight in places], float),

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
 from typing import ClassVar, Literal
 
 import numpy as np
@@ -63,19 +62,8 @@ class ExchangeLayers(Options):
                 labels += [f"phase of site {q} in layer {layer + 1}" for q in range(n)]
             for number, bonds in enumerate(sets):
                 self._one_set(bonds, f"in layer {layer + 1}", number, rows, labels)
-        kept = reference_program(ground)
-        x, z, parameter, factor = (np.array(column) for column in zip(*rows, strict=True))
-        return replace(
-            kept,
-            kind=np.concatenate([kept.kind, np.full(len(rows), Gate.ROTATION, np.uint8)]),
-            x=np.concatenate([kept.x, x.astype(np.uint64)]),
-            z=np.concatenate([kept.z, z.astype(np.uint64)]),
-            parameter=np.concatenate([kept.parameter, parameter.astype(np.int64)]),
-            factor=np.concatenate([kept.factor, factor.astype(float)]),
-            n_parameters=len(labels),
-            order=self._order(sets),
-            parameter_labels=tuple(labels),
-        )
+        x, z, parameter, factor = zip(*rows, strict=True)
+        return reference_program(ground).followed_by(Gate.ROTATION, x, z, parameter, factor, labels, self._order(sets))
 
     def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
         """Angles in radians, shape (K,)."""

@@ -21,7 +21,8 @@ class Ground:
         qubits: the Hamiltonian on the register that a gate program runs on (tapered where tapering is on).
         reference_bits: the reference state as a basis state of that register.
         encoded: how operators of the system are written on that register; None where no one asks.
-        reference_kind, reference_pairs: a spin model's reference where it is no basis state, as in `systems.prepared.PreparedSystem`.
+        reference_kind, reference_pairs, reference_terms: a spin model's reference where it is no basis state, as in
+            `systems.prepared.PreparedSystem`.
     """
 
     fermions: FermionHamiltonian | None
@@ -30,3 +31,9 @@ class Ground:
     encoded: EncodedSystem | None = None
     reference_kind: str = ""
     reference_pairs: tuple[tuple[int, int], ...] = ()
+    reference_terms: tuple[tuple[float, int], ...] = ()
+
+    @property
+    def begins_combined(self) -> bool:
+        """Whether the reference is a combination of determinants or of basis states."""
+        return bool(self.reference_terms if self.fermions is None else self.fermions.reference_terms)

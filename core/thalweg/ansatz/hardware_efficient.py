@@ -8,12 +8,11 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from thalweg.ansatz.ground import Ground
+from thalweg.ansatz.preparation import reference_program
 from thalweg.ansatz.starts import PLAIN_START_HELP, PlainStart, start_angles
 from thalweg.arrays import FloatArray
-from thalweg.circuit.program import Gate, GateProgram
+from thalweg.circuit.program import Gate, GateProgram, GateRow
 from thalweg.options import Options, option
-
-_Row = tuple[Gate, int, int, int, float]  # kind, x, z, parameter, factor
 
 
 class HardwareEfficient(Options):
@@ -32,29 +31,18 @@ class HardwareEfficient(Options):
     def build(self, ground: Ground) -> GateProgram:
         """Rotations on every qubit before the first and after each entangling layer, each with its own parameter.
 
-        At zero angles the reference comes out unchanged up to its sign, because CZ is diagonal.
+        At zero angles a basis state as reference comes out unchanged up to its sign, because CZ is diagonal.
         """
         n = ground.qubits.n_qubits
         pairs = entangled_pairs(n, self.entangler)
-        rows: list[_Row] = []
+        rows: list[GateRow] = []
         labels: list[str] = []
         for layer in range(self.depth + 1):
             if layer:
                 rows += [(Gate.CZ, 1 << a, 1 << b, -1, 0.0) for a, b in pairs]
             self._rotation_layer(n, layer, rows, labels)
-        kind, x, z, parameter, factor = zip(*rows, strict=True) if rows else ((),) * 5
-        return GateProgram(
-            n_qubits=n,
-            reference=ground.reference_bits,
-            kind=np.array(kind, dtype=np.uint8),
-            x=np.array(x, dtype=np.uint64),
-            z=np.array(z, dtype=np.uint64),
-            parameter=np.array(parameter, dtype=np.int64),
-            factor=np.array(factor, dtype=np.float64),
-            n_parameters=len(labels),
-            order=self._order(),
-            parameter_labels=tuple(labels),
-        )
+        kind, x, z, parameter, factor = zip(*rows, strict=True)
+        return reference_program(ground).followed_by(kind, x, z, parameter, factor, labels, self._order())
 
     def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
         """Angles in radians, shape (K,)."""
@@ -64,7 +52,7 @@ class HardwareEfficient(Options):
         """Parameters that give the state of fewer layers up to its sign: the new ones act first, where CZ leaves the reference alone."""
         return np.concatenate([np.zeros(n_parameters - parameters.size), parameters])
 
-    def _rotation_layer(self, n: int, layer: int, rows: list[_Row], labels: list[str]) -> None:
+    def _rotation_layer(self, n: int, layer: int, rows: list[GateRow], labels: list[str]) -> None:
         where = f"after entangling layer {layer}" if layer else "before the first entangling layer"
         for axis in self.rotations.upper().split("-"):
             for q in range(n):

@@ -51,6 +51,7 @@ class NumberConserving(Options):
         return ExcitationProgram(
             sector=hamiltonian.sector,
             reference=hamiltonian.reference,
+            reference_terms=hamiltonian.reference_terms,
             excitations=tuple(excitations),
             parameter=np.array(parameter, np.int64),
             factor=np.ones(len(excitations)),

@@ -1,11 +1,10 @@
-"""Fixed gates that prepare a spin model's reference from a basis state."""
+"""Fixed gates that prepare the reference from a basis state."""
 
 from __future__ import annotations
 
-import numpy as np
-
 from thalweg.ansatz.ground import Ground
-from thalweg.circuit.program import Gate, GateProgram
+from thalweg.circuit.program import Gate, GateProgram, GateRow, gate_program
+from thalweg.circuit.sparse_state import preparation
 from thalweg.errors import StudyError
 
 
@@ -13,36 +12,50 @@ def reference_program(ground: Ground, order: str = "") -> GateProgram:
     """The reference as a program without parameters, for rotations to be appended.
 
     `plus`: a Hadamard on every qubit. `singlets`: (|01> - |10>) / sqrt 2 of each pair, from |11> by a Hadamard and a CNOT.
-    StudyError where the state does not lie in the sector that tapering kept.
+    A combination of basis states: see `circuit.sparse_state`. StudyError where the state does not lie in the sector that tapering kept.
     """
-    bits, rows = ground.reference_bits, []
-    if ground.reference_kind in ("plus", "singlets"):
-        _refuse_tapering(ground)
-        bits = 0
+    bits, rows = _gates(ground)
+    return gate_program(ground.qubits.n_qubits, bits, rows, order=order)
+
+
+def _gates(ground: Ground) -> tuple[int, list[GateRow]]:
+    """The basis state to begin with, and the gates that act on it."""
+    if ground.begins_combined:
+        return preparation(_combination(ground))
+    if ground.reference_kind in ("plus", "singlets") and ground.encoded is not None and ground.encoded.symmetries:
+        raise _outside_tapering()
     if ground.reference_kind == "plus":
-        rows = [(Gate.HADAMARD, 1 << q, 0) for q in range(ground.qubits.n_qubits)]
-    elif ground.reference_kind == "singlets":
-        for a, b in ground.reference_pairs:
-            bits |= 1 << a | 1 << b
-            rows += [(Gate.HADAMARD, 1 << a, 0), (Gate.CNOT, 1 << a, 1 << b)]
-    return GateProgram(
-        n_qubits=ground.qubits.n_qubits,
-        reference=bits,
-        kind=np.array([kind for kind, _, _ in rows], np.uint8),
-        x=np.array([x for _, x, _ in rows], np.uint64),
-        z=np.array([z for _, _, z in rows], np.uint64),
-        parameter=np.full(len(rows), -1, np.int64),
-        factor=np.zeros(len(rows)),
-        n_parameters=0,
-        order=order,
+        return 0, [_fixed(Gate.HADAMARD, 1 << q) for q in range(ground.qubits.n_qubits)]
+    if ground.reference_kind == "singlets":
+        pairs = ground.reference_pairs
+        gates = [gate for a, b in pairs for gate in (_fixed(Gate.HADAMARD, 1 << a), _fixed(Gate.CNOT, 1 << a, 1 << b))]
+        return sum(1 << a | 1 << b for a, b in pairs), gates
+    return ground.reference_bits, []
+
+
+def _combination(ground: Ground) -> dict[int, float]:
+    """Amplitudes by basis state of the register."""
+    if ground.fermions is None:
+        return {bits: amplitude for amplitude, bits in ground.reference_terms}
+    from thalweg.encoding.combination import basis_states
+
+    encoded = ground.encoded
+    assert encoded is not None
+    assert encoded.linear is not None
+    found = basis_states(ground.fermions.reference_terms, encoded.linear, encoded.tapering)
+    if found is None:
+        raise _outside_tapering()
+    return found
+
+
+def _fixed(kind: Gate, x: int, z: int = 0) -> GateRow:
+    return kind, x, z, -1, 0.0
+
+
+def _outside_tapering() -> StudyError:
+    return StudyError(
+        "The reference cannot be prepared on the tapered register",
+        "it is a superposition of several sectors of the symmetries that were removed",
+        "Switch tapering off, or choose a reference that is a basis state",
+        "encoding.taper",
     )
-
-
-def _refuse_tapering(ground: Ground) -> None:
-    if ground.encoded is not None and ground.encoded.symmetries:
-        raise StudyError(
-            "The reference cannot be prepared on the tapered register",
-            "it is a superposition of several sectors of the symmetries that were removed",
-            "Switch tapering off, or choose a reference that is a basis state",
-            "encoding.taper",
-        )

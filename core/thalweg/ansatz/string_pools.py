@@ -45,16 +45,9 @@ class StringPool:
         rows = [np.flatnonzero(self.owner == i) for i in chosen]
         numbers = np.arange(program.n_parameters, program.n_parameters + len(chosen))
         place = np.concatenate(rows)
-        return replace(
-            program,
-            kind=np.concatenate([program.kind, np.full(place.size, Gate.ROTATION, np.uint8)]),
-            x=np.concatenate([program.x, self.x[place]]),
-            z=np.concatenate([program.z, self.z[place]]),
-            parameter=np.concatenate([program.parameter, np.repeat(numbers, [r.size for r in rows])]),
-            factor=np.concatenate([program.factor, self.weights[place]]),
-            n_parameters=program.n_parameters + len(chosen),
-            parameter_labels=program.parameter_labels + tuple(self.labels[i] for i in chosen),
-        )
+        parameter = np.repeat(numbers, [r.size for r in rows])
+        labels = [self.labels[i] for i in chosen]
+        return program.followed_by(Gate.ROTATION, self.x[place], self.z[place], parameter, self.weights[place], labels)
 
 
 def qubit_excitations(ground: Ground) -> StringPool:

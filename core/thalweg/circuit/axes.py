@@ -4,9 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from thalweg.circuit.program import Gate, GateProgram
-
-_Row = tuple[int, int, int, int, float]  # kind, x, z, parameter, factor
+from thalweg.circuit.program import Gate, GateProgram, GateRow, gate_program
 
 
 def with_free_axes(program: GateProgram) -> GateProgram:
@@ -16,7 +14,7 @@ def with_free_axes(program: GateProgram) -> GateProgram:
     """
     own = _own_parameters(program)
     open_gate: dict[int, int] = {}  # qubit -> its latest gate, while nothing else has touched the qubit
-    rows: list[_Row] = []
+    rows: list[GateRow] = []
     labels: list[str] = []
     names, known, gates = program.labels(), dict[int, int](), 0
     for kind, x, z, parameter, factor in _rows(program):
@@ -59,23 +57,11 @@ def _own_parameters(program: GateProgram) -> set[int]:
     return set(np.flatnonzero(np.bincount(turned, minlength=1) == 1).tolist())
 
 
-def _rows(program: GateProgram) -> list[_Row]:
+def _rows(program: GateProgram) -> list[GateRow]:
     columns = (program.kind, program.x, program.z, program.parameter, program.factor)
     return list(zip(*(column.tolist() for column in columns), strict=True))
 
 
-def _program(program: GateProgram, rows: list[_Row], labels: tuple[str, ...]) -> GateProgram:
-    kind, x, z, parameter, factor = zip(*rows, strict=True) if rows else ((),) * 5
+def _program(program: GateProgram, rows: list[GateRow], labels: tuple[str, ...]) -> GateProgram:
     text = "single-qubit rotations with free axes, R_z R_y R_z"
-    return GateProgram(
-        n_qubits=program.n_qubits,
-        reference=program.reference,
-        kind=np.array(kind, np.uint8),
-        x=np.array(x, np.uint64),
-        z=np.array(z, np.uint64),
-        parameter=np.array(parameter, np.int64),
-        factor=np.array(factor, float),
-        n_parameters=len(labels),
-        order=f"{program.order}; {text}" if program.order else text,
-        parameter_labels=labels,
-    )
+    return gate_program(program.n_qubits, program.reference, rows, labels, f"{program.order}; {text}" if program.order else text)

@@ -9,14 +9,15 @@ from __future__ import annotations
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray, MaskArray
-from thalweg.circuit.program import Excitation, ExcitationProgram, Gate, GateProgram
+from thalweg.circuit.program import Excitation, ExcitationProgram, Gate, GateProgram, gate_program
+from thalweg.circuit.sparse_state import preparation
+from thalweg.encoding.combination import basis_states
 from thalweg.encoding.encoded import EncodedSystem
 from thalweg.encoding.linear import LinearEncoding
-from thalweg.encoding.occupations import interleave
 from thalweg.encoding.symmetry import Tapering
 from thalweg.kernels import pauli as kernels
 
-FULL_REGISTER = "on the full register: an excitation leaves the tapered symmetry sector"
+FULL_REGISTER = "on the full register: an excitation or the reference leaves the tapered symmetry sector"
 
 
 def excitation_gates(program: ExcitationProgram, encoded: EncodedSystem) -> GateProgram:
@@ -28,22 +29,28 @@ def excitation_gates(program: ExcitationProgram, encoded: EncodedSystem) -> Gate
     assert encoded.linear is not None
     x, z, weights, factor = generator_strings(program.excitations, encoded.linear)
     tapering, order = encoded.tapering, program.order
-    if not tapering.keeps(x).all():
+    if not _stays_inside(program, x, encoded):
         tapering = Tapering(encoded.full.n_qubits)
         order = f"{order}; {FULL_REGISTER}" if order else FULL_REGISTER
+    begins = basis_states(program.begins, encoded.linear, tapering)
+    assert begins is not None
+    reference, gates = preparation(begins)
     x, z, weights, factor = _on_register(tapering, x, z, weights, factor)
-    return GateProgram(
-        n_qubits=tapering.n_working,
-        reference=_reference(program, encoded.linear, tapering),
-        kind=np.full(weights.size, Gate.ROTATION, np.uint8),
-        x=x,
-        z=z,
-        parameter=np.asarray(program.parameter, np.int64)[factor],
-        factor=-2.0 * weights * np.asarray(program.factor, float)[factor],  # exp(theta i c P) = exp(-i (-2 c theta)/2 P)
-        n_parameters=program.n_parameters,
-        order=order,
-        parameter_labels=program.labels(),
-    )
+    parameter = np.asarray(program.parameter, np.int64)[factor]
+    turns = -2.0 * weights * np.asarray(program.factor, float)[factor]  # exp(theta i c P) = exp(-i (-2 c theta)/2 P)
+    fixed = gate_program(tapering.n_working, reference, gates)
+    return fixed.followed_by(Gate.ROTATION, x, z, parameter, turns, program.labels(), order)
+
+
+def leaves_sector(program: ExcitationProgram, encoded: EncodedSystem) -> bool:
+    """Whether the tapered register does not hold the state, so that the circuit is written on the full one."""
+    assert encoded.linear is not None
+    return not _stays_inside(program, generator_strings(program.excitations, encoded.linear)[0], encoded)
+
+
+def _stays_inside(program: ExcitationProgram, x: MaskArray, encoded: EncodedSystem) -> bool:
+    assert encoded.linear is not None
+    return bool(encoded.tapering.keeps(x).all()) and basis_states(program.begins, encoded.linear, encoded.tapering) is not None
 
 
 def generator_strings(excitations: tuple[Excitation, ...], linear: LinearEncoding) -> tuple[MaskArray, MaskArray, FloatArray, IntArray]:
@@ -83,9 +90,3 @@ def _on_register(
     lasting = np.abs(summed) > 1e-12
     kept = starts[lasting]
     return x[kept], z[kept], summed[lasting], factor[kept]
-
-
-def _reference(program: ExcitationProgram, linear: LinearEncoding, tapering: Tapering) -> int:
-    masks = interleave(np.array(program.reference, np.uint64))
-    occupied = masks[0] | masks[1] << np.uint64(1)
-    return int(tapering.strip(linear.encode(np.array([occupied], np.uint64)))[0])

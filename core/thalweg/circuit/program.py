@@ -7,13 +7,14 @@ angle from one parameter times a fixed number, so that parameters may be shared 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from enum import IntEnum
+from typing import Any
 
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray, MaskArray
-from thalweg.operators.fermion import Sector
+from thalweg.operators.fermion import Sector, WeightedDeterminant
 
 
 @dataclass(frozen=True)
@@ -60,6 +61,7 @@ class ExcitationProgram:
         n_parameters: K.
         order: one line that states the factor order, recorded with every result.
         parameter_labels: K texts, or empty: then the labels of each parameter's factors are joined.
+        reference_terms: where the reference is a normalised combination of determinants; `reference` is one of them.
     """
 
     sector: Sector
@@ -70,6 +72,12 @@ class ExcitationProgram:
     n_parameters: int
     order: str = ""
     parameter_labels: tuple[str, ...] = ()
+    reference_terms: tuple[WeightedDeterminant, ...] = ()
+
+    @property
+    def begins(self) -> tuple[WeightedDeterminant, ...]:
+        """The state that the first factor acts on."""
+        return self.reference_terms or (WeightedDeterminant(1.0, *self.reference),)
 
     def labels(self) -> tuple[str, ...]:
         """One label a parameter."""
@@ -112,6 +120,42 @@ class GateProgram:
 
     def labels(self) -> tuple[str, ...]:
         return self.parameter_labels or tuple(f"theta{k}" for k in range(self.n_parameters))
+
+    def followed_by(self, kind: Any, x: Any, z: Any, parameter: Any, factor: Any, labels: Sequence[str], order: str = "") -> GateProgram:
+        """With these gates after its own: columns of equal length, or one kind for all; `labels` are those of the parameters that are new."""
+        kind = np.full(len(x), kind, np.uint8) if np.ndim(kind) == 0 else kind
+        return replace(
+            self,
+            kind=np.concatenate([self.kind, np.asarray(kind, np.uint8)]),
+            x=np.concatenate([self.x, np.asarray(x, np.uint64)]),
+            z=np.concatenate([self.z, np.asarray(z, np.uint64)]),
+            parameter=np.concatenate([self.parameter, np.asarray(parameter, np.int64)]),
+            factor=np.concatenate([self.factor, np.asarray(factor, float)]),
+            n_parameters=self.n_parameters + len(labels),
+            order=order or self.order,
+            parameter_labels=(*self.parameter_labels, *labels),
+        )
+
+
+#: kind, x, z, parameter, factor of one gate.
+GateRow = tuple[Gate, int, int, int, float]
+
+
+def gate_program(n_qubits: int, reference: int, rows: Sequence[GateRow] = (), labels: Sequence[str] = (), order: str = "") -> GateProgram:
+    """A program from its gates one by one; `labels`: one a parameter."""
+    kind, x, z, parameter, factor = zip(*rows, strict=True) if rows else ((),) * 5
+    return GateProgram(
+        n_qubits=n_qubits,
+        reference=reference,
+        kind=np.array(kind, np.uint8),
+        x=np.array(x, np.uint64),
+        z=np.array(z, np.uint64),
+        parameter=np.array(parameter, np.int64),
+        factor=np.array(factor, float),
+        n_parameters=len(labels),
+        order=order,
+        parameter_labels=tuple(labels),
+    )
 
 
 Program = ExcitationProgram | GateProgram

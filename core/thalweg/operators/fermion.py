@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import comb
+from typing import NamedTuple
 
 import numpy as np
 
 from thalweg.arrays import FloatArray, IntArray
+from thalweg.operators.slater_condon import determinant_matrix
 
 
 @dataclass(frozen=True)
@@ -39,6 +41,14 @@ class Sector:
         return f"{self.n_alpha} alpha + {self.n_beta} beta electrons in {self.n_orbitals} orbitals"
 
 
+class WeightedDeterminant(NamedTuple):
+    """One term of a combination: its real amplitude, and occupied (alpha, beta) orbital masks."""
+
+    amplitude: float
+    alpha: int
+    beta: int
+
+
 @dataclass(frozen=True)
 class FermionHamiltonian:
     """H = core + sum_pq,s h[p,q] a+_ps a_qs + 1/2 sum_pqrs,st (pq|rs) a+_ps a+_rt a_st a_qs.
@@ -52,6 +62,8 @@ class FermionHamiltonian:
         sector: the electrons of the state asked for.
         reference: occupied (alpha, beta) orbital masks of the reference determinant.
         orbital_energies: shape (M,), Eh; used by MP2 starts. May be empty.
+        reference_terms: a reference that is a normalised combination of determinants of one symmetry, `reference` the one that
+            excitations are counted from; empty where `reference` is all of it.
     """
 
     core_energy: float
@@ -62,6 +74,7 @@ class FermionHamiltonian:
     reference: tuple[int, int]
     orbital_energies: FloatArray
     irrep_names: tuple[str, ...] = ()
+    reference_terms: tuple[WeightedDeterminant, ...] = ()
 
     @property
     def n_orbitals(self) -> int:
@@ -83,7 +96,18 @@ class FermionHamiltonian:
 
     @property
     def reference_energy(self) -> float:
-        return self.determinant_energy(*self.reference)
+        """<reference|H|reference>, Eh."""
+        if not self.reference_terms:
+            return self.determinant_energy(*self.reference)
+        amplitudes = np.array([term.amplitude for term in self.reference_terms])
+        return float(amplitudes @ determinant_matrix(self, [term[1:] for term in self.reference_terms]) @ amplitudes)
+
+    def irrep_of(self, alpha: int, beta: int) -> int:
+        """Irrep of the determinant with these occupied masks."""
+        product = 0
+        for p, label in enumerate(self.orbital_irreps.tolist()):
+            product ^= label if (alpha ^ beta) >> p & 1 else 0
+        return product
 
     def orbitals_are_degenerate(self, tolerance: float = 1e-6) -> bool:
         """True when two orbital energies coincide: Pauli term counts then depend on the orientation of the pair."""

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
 
-from thalweg.arrays import FloatArray, MaskArray
+from thalweg.arrays import ComplexArray, FloatArray, MaskArray
 
 MAX_QUBITS = 62
 
@@ -78,3 +78,14 @@ def collect_terms(n_qubits: int, x: MaskArray, z: MaskArray, coefficients: Float
     summed = np.add.reduceat(coefficients, starts)
     keep = np.abs(summed) > cut
     return PauliExpansion(n_qubits, x[starts][keep].astype(np.uint64), z[starts][keep].astype(np.uint64), summed[keep], cut)
+
+
+def basis_matrix(expansion: PauliExpansion, states: Sequence[int]) -> ComplexArray:
+    """<b_i|H|b_j> between a few basis states, shape (L, L)."""
+    matrix = np.zeros((len(states), len(states)), complex)
+    phases = expansion.coefficients * np.array([1, 1j, -1, -1j])[np.bitwise_count(expansion.x & expansion.z) % 4]
+    for j, ket in enumerate(states):
+        values = np.where(np.bitwise_count(expansion.z & np.uint64(ket)) % 2 == 1, -phases, phases)
+        for i, bra in enumerate(states):
+            matrix[i, j] = values[expansion.x == np.uint64(bra ^ ket)].sum()
+    return matrix

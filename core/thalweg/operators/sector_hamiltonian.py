@@ -212,11 +212,7 @@ class SectorHamiltonian:
     @property
     def reference_irrep(self) -> int:
         """Irrep of the reference determinant."""
-        product = 0
-        for mask in self.hamiltonian.reference:
-            for p, label in enumerate(self.hamiltonian.orbital_irreps.tolist()):
-                product ^= label if mask >> p & 1 else 0
-        return product
+        return self.hamiltonian.irrep_of(*self.hamiltonian.reference)
 
     def memory_bytes(self) -> int:
         """What all irreps together would take, estimated from the sector alone, bytes."""

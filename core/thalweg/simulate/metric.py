@@ -50,8 +50,9 @@ def _excitations(program: ExcitationProgram, parameters: FloatArray) -> tuple[An
     parameter, factor = np.asarray(program.parameter, np.int64)[live], np.asarray(program.factor, float)[live]
     columns, order = _columns(parameter, program.n_parameters)
     psi = np.zeros(sector.dimension)
-    rows = [int(np.flatnonzero(s.strings == np.uint64(m))[0]) for s, m in zip((alpha_space, beta_space), program.reference, strict=True)]
-    psi[rows[0] * beta_space.size + rows[1]] = 1.0
+    for amplitude, *masks in program.begins:
+        row, column = (int(np.flatnonzero(s.strings == np.uint64(m))[0]) for s, m in zip((alpha_space, beta_space), masks, strict=True))
+        psi[row * beta_space.size + column] = amplitude
     slopes = np.zeros((psi.size, program.n_parameters))
     factors = np.stack([alpha_of, beta_of], axis=1)[live]
     kernels.excitation_slopes(psi, slopes, columns, beta_space.size, alpha, beta, factors, factor * parameters[parameter], factor)

@@ -46,7 +46,7 @@ class SectorEngine:
         if budget_bytes is not None and self._bytes > budget_bytes:
             raise _over_budget(hamiltonian, self._bytes)
         self._product = SectorHamiltonian(hamiltonian) if product is None else product
-        self.n_parameters = program.n_parameters
+        self.n_parameters, self._begins = program.n_parameters, program.begins
         live = [f for f, e in enumerate(program.excitations) if not _is_null(e)]
         excitations = [program.excitations[f] for f in live]
         self._parameter = np.asarray(program.parameter, np.int64)[live]
@@ -64,7 +64,7 @@ class SectorEngine:
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[float, FloatArray]:
         angles = self._angles(parameters)
-        psi = self._runner.forward(self._program.reference, angles, self.watch)
+        psi = self._runner.forward(self._begins, angles, self.watch)
         dual = self._block.apply(psi, self._dual, self.watch)
         energy = self._hamiltonian.core_energy + float(psi @ dual)
         slopes = self._runner.backward(psi, dual, angles, self.watch)
@@ -86,7 +86,7 @@ class SectorEngine:
         return angles
 
     def _forward(self, parameters: FloatArray) -> FloatArray:
-        return self._runner.forward(self._program.reference, self._angles(parameters), self.watch)
+        return self._runner.forward(self._begins, self._angles(parameters), self.watch)
 
 
 def engine_bytes(hamiltonian: FermionHamiltonian, program: ExcitationProgram) -> int:

@@ -11,6 +11,7 @@ import numpy as np
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
 from thalweg.kernels import sector_pieces as kernels
+from thalweg.operators.fermion import WeightedDeterminant
 from thalweg.operators.sector_layout import SectorKey, SectorLayout, layout_of
 from thalweg.simulate.sector_pairs import OneSpin, one_spin, pair_lists
 from thalweg.simulate.sector_plan import order_of, stretches
@@ -81,12 +82,13 @@ class SectorRunner:
         self._program = compiled(tuple(excitations), layout.key)
         self._buffers = [np.empty(layout.size) for _ in range(2)]
 
-    def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
-        """The state from the determinant with these (alpha, beta) masks, in the home layout; valid until the next call."""
+    def forward(self, begins: tuple[WeightedDeterminant, ...], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
+        """The state from this combination of determinants, in the home layout; valid until the next call."""
         psi, spare = self._buffers[:2]
         psi[:] = 0.0
-        place, sign = self._place(start)
-        psi[place] = sign
+        for term in begins:
+            place, sign = self._place((term.alpha, term.beta))
+            psi[place] = sign * term.amplitude
         cosines, sines = np.cos(angles[self._program.order]), np.sin(angles[self._program.order])
         for segments, move in zip(self._program.segments, self._program.moves, strict=True):
             for s in segments:
@@ -117,10 +119,10 @@ class SectorRunner:
         ordered[self._program.order] = slopes
         return ordered
 
-    def _place(self, start: tuple[int, int]) -> tuple[int, float]:
+    def _place(self, masks: tuple[int, int]) -> tuple[int, float]:
         """Where the determinant stands in the first view, and its sign there."""
         view = self._program.start
-        rows, columns = start if view.rows_are_alpha else start[::-1]
+        rows, columns = masks if view.rows_are_alpha else masks[::-1]
         sign = view.phase[view.columns.strings == np.uint64(columns)][0]
         return view.layout.index(rows, columns), float(sign)
 

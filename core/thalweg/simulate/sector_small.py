@@ -9,6 +9,7 @@ import numpy as np
 from thalweg.arrays import FloatArray, IntArray
 from thalweg.circuit.program import Excitation
 from thalweg.kernels import sector as kernels
+from thalweg.operators.fermion import WeightedDeterminant
 from thalweg.operators.sector_layout import SectorKey, SectorLayout, layout_of
 from thalweg.simulate.sector_pairs import SpinPairs, one_spin, pair_lists
 from thalweg.watch import SILENT, Watch
@@ -20,14 +21,16 @@ class SmallRunner:
     def __init__(self, excitations: list[Excitation], layout: SectorLayout) -> None:
         self._layout = layout
         self._lists = _lists(tuple(excitations), layout.key)
-        self._start: tuple[tuple[int, int], int] | None = None
+        self._begins: tuple[WeightedDeterminant, ...] = ()
+        self._places: list[int] = []
 
-    def forward(self, start: tuple[int, int], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
-        """The state from the determinant with these (alpha, beta) masks."""
-        if self._start is None or self._start[0] != start:
-            self._start = (start, self._layout.index(*start))
+    def forward(self, begins: tuple[WeightedDeterminant, ...], angles: FloatArray, watch: Watch = SILENT) -> FloatArray:
+        """The state from this combination of determinants."""
+        if self._begins != begins:
+            self._begins, self._places = begins, [self._layout.index(term.alpha, term.beta) for term in begins]
         psi = np.zeros(self._layout.size)
-        psi[self._start[1]] = 1.0
+        for place, term in zip(self._places, begins, strict=True):
+            psi[place] = term.amplitude
         kernels.rotate_all(psi, *self._lists, angles)
         return psi
 

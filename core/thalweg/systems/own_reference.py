@@ -1,11 +1,17 @@
-"""A reference determinant or basis state typed by the person, in place of the system's own."""
+"""A reference typed by the person, in place of the system's own: one determinant or basis state, or a small combination of them."""
 
 from __future__ import annotations
 
 from dataclasses import replace
 
+import numpy as np
+
+from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
-from thalweg.operators.fermion import FermionHamiltonian, Sector
+from thalweg.operators.fermion import FermionHamiltonian, Sector, WeightedDeterminant
+from thalweg.operators.pauli import basis_matrix
+from thalweg.operators.slater_condon import determinant_matrix
+from thalweg.systems.combination import Combination, combination_text, read_combination
 from thalweg.systems.prepared import PreparedSystem
 from thalweg.systems.spin_reference import SpinReference, bit_text, parse_bits
 
@@ -16,27 +22,82 @@ def with_reference(prepared: PreparedSystem, text: str) -> PreparedSystem:
     """The system with the reference that `text` names; its energy replaces that of the mean field as the reference energy.
 
     Electrons: one sign an active orbital, orbital 0 first, as in `22ab00`; or one bit a spin orbital, alpha before beta.
-    Spins: one bit a site, site 0 first; 1 is spin down. Raises StudyError where the text does not fit the system or its sector.
+    Spins: one bit a site, site 0 first; 1 is spin down. A combination is a sum of these with amplitudes, as in
+    `0.9*2200 - 0.4*2020`, which is normalised, or a list, as in `2200, 2020`: the lowest state of H among those listed.
+    Raises StudyError where the text does not fit the system or its sector.
     """
     if prepared.fermions is not None:
-        return _with_determinant(prepared, prepared.fermions, text)
-    assert prepared.spins is not None
-    count = prepared.spins.n_qubits
+        return _of_electrons(prepared, prepared.fermions, text)
+    return _of_spins(prepared, text)
+
+
+def _of_electrons(prepared: PreparedSystem, hamiltonian: FermionHamiltonian, text: str) -> PreparedSystem:
+    sector = hamiltonian.sector
+    found = read_combination(text, lambda part: read_determinant(part, sector))
+    if found.is_single:
+        changed = replace(hamiltonian, reference=found.states[0], reference_terms=())
+        name = f"determinant {determinant_text(found.states[0], sector.n_orbitals)}"
+        return replace(prepared, fermions=changed, reference_name=name, reference_energy=changed.reference_energy)
+    _refuse_mixed_symmetries(hamiltonian, found.states)
+    amplitudes = found.amplitudes_in(determinant_matrix(hamiltonian, found.states))
+    terms = tuple(WeightedDeterminant(float(c), *masks) for c, masks in zip(amplitudes, found.states, strict=True) if c)
+    changed = replace(hamiltonian, reference=terms[0][1:], reference_terms=terms)
+    shown = combination_text([(t.amplitude, determinant_text((t.alpha, t.beta), sector.n_orbitals)) for t in terms])
+    return replace(prepared, fermions=changed, reference_name=shown, reference_energy=changed.reference_energy)
+
+
+def _of_spins(prepared: PreparedSystem, text: str) -> PreparedSystem:
+    expansion = prepared.spins
+    assert expansion is not None
+    count = expansion.n_qubits
+    found = read_combination(text, lambda part: _read_bits(part, count))
+    bare = replace(prepared, reference_bits=found.states[0], reference_pairs=(), reference_terms=())
+    if found.is_single:
+        name = f"basis state {bit_text(found.states[0], count)}"
+        energy = SpinReference(name, "bits", found.states[0]).energy(expansion)
+        return replace(bare, reference_name=name, reference_energy=energy, reference_kind="bits")
+    matrix = basis_matrix(expansion, found.states)
+    amplitudes = found.amplitudes_in(_real(matrix, found))
+    energy = float((amplitudes @ matrix @ amplitudes).real)
+    terms = tuple((float(c), bits) for c, bits in zip(amplitudes, found.states, strict=True) if c)
+    shown = combination_text([(c, bit_text(bits, count)) for c, bits in terms])
+    return replace(bare, reference_name=shown, reference_energy=energy, reference_kind="combination", reference_terms=terms)
+
+
+def _refuse_mixed_symmetries(hamiltonian: FermionHamiltonian, states: tuple[tuple[int, int], ...]) -> None:
+    names = hamiltonian.irrep_names
+    irreps = [hamiltonian.irrep_of(*masks) for masks in states]
+    if len(set(irreps)) == 1:
+        return
+    other = next(i for i, irrep in enumerate(irreps) if irrep != irreps[0])
+    shown = [names[irreps[i]] if irreps[i] < len(names) else f"irrep {irreps[i] + 1}" for i in (0, other)]
+    texts = [determinant_text(states[i], hamiltonian.n_orbitals) for i in (0, other)]
+    raise StudyError(
+        "The determinants have different symmetries",
+        f"{texts[0]} has {shown[0]} and {texts[1]} has {shown[1]}, which no eigenstate mixes",
+        "Leave out those of the other symmetry",
+        "reference",
+    )
+
+
+def _real(matrix: np.ndarray, found: Combination[int]) -> FloatArray:
+    """The real part; StudyError where amplitudes are to be found and would be complex."""
+    if not found.amplitudes and np.abs(matrix.imag).max(initial=0.0) > 1e-12:
+        raise StudyError(
+            "The amplitudes of this reference would be complex",
+            "the Hamiltonian couples the listed basis states by imaginary numbers, and references are real",
+            "Write the amplitudes, as in 0.8*0110 - 0.6*1001",
+            "reference",
+        )
+    real: FloatArray = np.ascontiguousarray(matrix.real)
+    return real
+
+
+def _read_bits(text: str, count: int) -> int:
     try:
-        bits = parse_bits(text, count)
+        return parse_bits(text, count)
     except StudyError as error:
         raise StudyError(error.what, error.why, error.fix, "reference") from None
-    name = f"basis state {bit_text(bits, count)}"
-    energy = SpinReference(name, "bits", bits).energy(prepared.spins)
-    return replace(prepared, reference_name=name, reference_energy=energy, reference_bits=bits, reference_kind="bits", reference_pairs=())
-
-
-def _with_determinant(prepared: PreparedSystem, hamiltonian: FermionHamiltonian, text: str) -> PreparedSystem:
-    sector = hamiltonian.sector
-    masks = read_determinant(text, sector)
-    changed = replace(hamiltonian, reference=masks)
-    name = f"determinant {determinant_text(masks, sector.n_orbitals)}"
-    return replace(prepared, fermions=changed, reference_name=name, reference_energy=changed.reference_energy)
 
 
 def read_determinant(text: str, sector: Sector) -> tuple[int, int]:

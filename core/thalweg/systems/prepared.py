@@ -71,8 +71,10 @@ class PreparedSystem:
         mean_field: the PySCF object for classical reference methods; never serialised.
         seed: what a neighbouring geometry may take over; None where there is no mean field.
         reference_bits: basis state that a spin model's circuit starts from, bit q = 1 is spin down (Z = -1) on qubit q.
-        reference_kind: what is prepared from those bits: `bits`, `plus` (every qubit in |+>), `singlets` (dimer singlets); empty for fermions.
+        reference_kind: what is prepared from those bits: `bits`, `plus` (every qubit in |+>), `singlets` (dimer singlets), `combination`;
+            empty for fermions.
         reference_pairs: the pairs of sites that form singlets when `reference_kind` is `singlets`.
+        reference_terms: (amplitude, bits) of each basis state when `reference_kind` is `combination`, normalised.
         translations: site permutations (site i moves to entry i) of the lattice, candidates for symmetries of the exact solver.
     """
 
@@ -90,6 +92,7 @@ class PreparedSystem:
     reference_bits: int = 0
     reference_kind: str = ""
     reference_pairs: tuple[tuple[int, int], ...] = ()
+    reference_terms: tuple[tuple[float, int], ...] = ()
     translations: tuple[tuple[int, ...], ...] = ()
 
 

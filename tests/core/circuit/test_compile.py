@@ -11,11 +11,11 @@ from support.dense import excitation_matrix, gate_state
 from support.molecules import computed_molecule, random_hamiltonian
 
 from thalweg.circuit import Excitation, ExcitationProgram
-from thalweg.circuit.compile import FULL_REGISTER, excitation_gates
+from thalweg.circuit.compile import FULL_REGISTER, excitation_gates, leaves_sector
 from thalweg.encoding import ENCODINGS
 from thalweg.encoding.encoded import encode_fermions
 from thalweg.encoding.occupations import determinant_masks, interleave, order_signs
-from thalweg.operators.fermion import FermionHamiltonian
+from thalweg.operators.fermion import FermionHamiltonian, WeightedDeterminant
 
 ALL = list(ENCODINGS)
 
@@ -34,7 +34,8 @@ def sector_state(program: ExcitationProgram, parameters: np.ndarray) -> np.ndarr
     index = (interleave(alpha)[:, None] | interleave(beta)[None, :] << np.uint64(1)).astype(int)
     signs = order_signs(alpha, beta)
     start = np.zeros(sector.shape)
-    start[np.searchsorted(alpha, program.reference[0]), np.searchsorted(beta, program.reference[1])] = 1
+    for amplitude, *masks in program.begins:
+        start[np.searchsorted(alpha, masks[0]), np.searchsorted(beta, masks[1])] = amplitude
     state = np.zeros(1 << n)
     state[index] = start * signs
     for excitation, k, factor in zip(program.excitations, program.parameter, program.factor, strict=True):
@@ -111,3 +112,34 @@ def test_open_shell_reference_and_empty_programs():
     nothing = excitation_gates(replace(program, excitations=(), parameter=np.empty(0, np.int64), factor=np.empty(0), n_parameters=0), encoded)
     assert nothing.kind.size == 0
     assert nothing.reference == encoded.reference_bits
+
+
+TERMS = ((0.7, 0b0011, 0b0011), (-0.5, 0b0101, 0b0101), (0.4, 0b1001, 0b0110), (0.1**0.5, 0b1100, 0b1100))
+
+
+@pytest.mark.parametrize("kind", ALL, ids=lambda k: k().key)
+@pytest.mark.parametrize("taper", [False, True])
+def test_gates_prepare_a_combination_of_determinants_first(kind, taper):
+    hamiltonian = random_hamiltonian(4, 2, 2, 1)
+    encoded = encode_fermions(hamiltonian, kind(taper=taper))
+    program = replace(program_of(hamiltonian, MIXED), reference_terms=tuple(WeightedDeterminant(*term) for term in TERMS))
+    parameters = np.random.default_rng(2).normal(size=program.n_parameters)
+    gates = excitation_gates(program, encoded)
+    assert gates.n_qubits == encoded.working.n_qubits
+    expected = encoded.from_sector(sector_state(program, parameters)[None])[0]
+    assert close_up_to_phase(gate_state(gates, parameters), expected)
+
+
+def test_a_reference_that_mixes_a_removed_symmetry_goes_to_the_full_register():
+    hamiltonian = computed_molecule("H2")
+    encoded = encode_fermions(hamiltonian, ALL[0]())
+    terms = (WeightedDeterminant(0.8, 1, 1), WeightedDeterminant(0.6, 1, 2))
+    program = replace(program_of(hamiltonian, [Excitation((0,), (1,), (0,), (1,))]), reference_terms=terms)
+    assert leaves_sector(program, encoded)
+    gates = excitation_gates(program, encoded)
+    assert gates.n_qubits == 4
+    assert FULL_REGISTER in gates.order
+    whole = encode_fermions(hamiltonian, ALL[0](taper=False))
+    assert not leaves_sector(program, whole)
+    expected = whole.from_sector(sector_state(program, np.array([0.4]))[None])[0]
+    assert close_up_to_phase(gate_state(gates, np.array([0.4])), expected)

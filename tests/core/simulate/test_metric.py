@@ -1,5 +1,7 @@
 """The metric tensor of circuits whose metric is known, and of any circuit by finite differences."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from support.dense import gate_state
@@ -8,6 +10,7 @@ from support.hamiltonians import random_molecule
 from thalweg.ansatz import UCCSD, Ground, HardwareEfficient, KUpCCGSD
 from thalweg.circuit.program import Gate, GateProgram
 from thalweg.errors import StudyError
+from thalweg.operators.fermion import WeightedDeterminant
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.simulate.metric import metric_tensor
 from thalweg.simulate.register import RegisterEngine
@@ -88,3 +91,12 @@ def test_the_metric_is_refused_past_the_budget():
     program = program_of(10, [(Gate.ROTATION, 1 << q, 1 << q, q, 1.0) for q in range(10)])
     with pytest.raises(StudyError, match="metric tensor does not fit"):
         metric_tensor(program, np.zeros(10), budget_bytes=2**16)
+
+
+def test_a_combination_as_reference_agrees_with_differences_of_the_state():
+    h = random_molecule(4, 2, 2)
+    terms = (WeightedDeterminant(0.8, 0b0011, 0b0011), WeightedDeterminant(-0.6, 0b0101, 0b0101))
+    program = UCCSD().build(Ground(replace(h, reference_terms=terms), None, 0))
+    x = np.random.default_rng(5).normal(0.0, 0.4, program.n_parameters)
+    metric = metric_tensor(program, x, budget_bytes=BUDGET)
+    assert np.allclose(metric, by_differences(SectorEngine(h, program).state, x), atol=1e-8)

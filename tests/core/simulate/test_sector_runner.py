@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from itertools import pairwise
+from itertools import pairwise, product
 
 import numpy as np
 import pytest
@@ -12,6 +12,7 @@ from thalweg.ansatz.coupled_cluster import UCCSD
 from thalweg.ansatz.ground import Ground
 from thalweg.circuit.program import Excitation
 from thalweg.errors import Stopped
+from thalweg.operators.fermion import WeightedDeterminant
 from thalweg.operators.sector_layout import sector_layout, sector_spaces
 from thalweg.simulate import sector_plan, sector_runner
 from thalweg.simulate.sector_plan import stretches
@@ -35,11 +36,7 @@ CASES = [
 def layout_of(m, n_alpha, n_beta, irreps):
     h = random_molecule(m, n_alpha, n_beta, irreps)
     alpha, beta = sector_spaces(h.sector, h.orbital_irreps)
-    total = 0
-    for mask in h.reference:
-        for p, label in enumerate(h.orbital_irreps.tolist()):
-            total ^= label if mask >> p & 1 else 0
-    return h, sector_layout(alpha, beta, total)
+    return h, sector_layout(alpha, beta, h.irrep_of(*h.reference))
 
 
 def symmetric_factors(h, seed, count=40):
@@ -65,6 +62,17 @@ def programs(h):
     yield symmetric_factors(h, seed=5)
 
 
+def alone(h):
+    return (WeightedDeterminant(1.0, *h.reference),)
+
+
+def begins_of(h, layout):
+    """The reference alone, and a combination of determinants of its irrep."""
+    positions = np.random.default_rng(8).choice(layout.size, min(4, layout.size), replace=False)
+    alpha, beta = layout.masks(positions)
+    return [alone(h), tuple(WeightedDeterminant(0.9 - 0.4 * i, int(a), int(b)) for i, (a, b) in enumerate(zip(alpha, beta, strict=True)))]
+
+
 @pytest.mark.parametrize("case", CASES)
 @pytest.mark.parametrize("worth", [0, 1e9])
 @pytest.mark.parametrize("chunk", [64, 2**19])
@@ -76,11 +84,11 @@ def test_planned_and_plain_runs_agree_forward_and_back(case, worth, chunk, monke
     sector_runner.compiled.cache_clear()
     h, layout = layout_of(*case)
     rng = np.random.default_rng(3)
-    for excitations in programs(h):
+    for excitations, begins in product(programs(h), begins_of(h, layout)):
         angles = rng.normal(0.0, 0.5, len(excitations))
         planned, plain = SectorRunner(excitations, layout), SmallRunner(excitations, layout)
         for _ in range(2):  # buffers are used again
-            psi, expected = planned.forward(h.reference, angles), plain.forward(h.reference, angles)
+            psi, expected = planned.forward(begins, angles), plain.forward(begins, angles)
             assert np.allclose(psi, expected, rtol=0, atol=1e-12)
             dual = rng.normal(size=layout.size)
             slopes, plain_slopes = planned.backward(psi, dual.copy(), angles), plain.backward(expected, dual.copy(), angles)
@@ -114,4 +122,4 @@ def test_a_stop_is_heard_between_kernel_calls():
     excitations = list(UCCSD().build(Ground(h, None, 0)).excitations)
     runner = SectorRunner(excitations, layout)
     with pytest.raises(Stopped):
-        runner.forward(h.reference, np.zeros(len(excitations)), Watch(should_stop=lambda: True))
+        runner.forward(alone(h), np.zeros(len(excitations)), Watch(should_stop=lambda: True))

@@ -7,8 +7,11 @@ import pytest
 
 from thalweg.errors import StudyError
 from thalweg.operators import Sector
+from thalweg.operators.slater_condon import determinant_matrix
 from thalweg.systems import LatticeModel, Molecule
+from thalweg.systems.lattice import Chain
 from thalweg.systems.own_reference import determinant_text, read_determinant, with_reference
+from thalweg.systems.spin_models import Heisenberg
 from thalweg.watch import SILENT
 
 SECTOR = Sector(4, 2, 2)
@@ -87,3 +90,39 @@ def test_a_bit_string_of_another_length_is_refused_at_its_field():
     with pytest.raises(StudyError) as error:
         with_reference(prepared, "0101")
     assert error.value.field == "reference"
+
+
+def test_a_list_of_determinants_becomes_the_lowest_state_among_them(four):
+    own = with_reference(four, "2200, 2020, 2002")
+    matrix = determinant_matrix(four.fermions, [(t.alpha, t.beta) for t in own.fermions.reference_terms])
+    assert own.reference_energy == pytest.approx(np.linalg.eigvalsh(matrix)[0], abs=1e-12)
+    assert own.reference_energy < four.reference_energy - 1e-3
+    assert own.fermions.reference == four.fermions.reference  # excitations count from the first
+    assert sum(t.amplitude**2 for t in own.fermions.reference_terms) == pytest.approx(1.0)
+
+
+def test_an_open_shell_singlet_is_two_determinants_half_an_exchange_integral_apart(four):
+    """Textbook (Szabo and Ostlund, Modern Quantum Chemistry, 2.5.2): singlet and triplet lie 2 K apart around the single determinant."""
+    h = four.fermions
+    exchange = h.two_body[0, 2, 2, 0]
+    middle = h.determinant_energy(0b0011, 0b0110)
+    # with alpha left of beta in every determinant the singlet is the sum
+    assert with_reference(four, "a2b0 + b2a0").reference_energy == pytest.approx(middle + exchange, abs=1e-10)
+    assert with_reference(four, "a2b0 - b2a0").reference_energy == pytest.approx(middle - exchange, abs=1e-10)
+
+
+def test_determinants_of_different_symmetries_are_refused(four):
+    with pytest.raises(StudyError, match="2200 has Ag and 2ab0 has B1u") as error:
+        with_reference(four, "2200, 2ab0")
+    assert error.value.field == "reference"
+
+
+def test_basis_states_of_spins_combine_to_a_singlet():
+    pair = LatticeModel(lattice=Chain(sites=2, periodic=False), model=Heisenberg()).prepare(SILENT, budget_bytes=2**31)
+    singlet, triplet = with_reference(pair, "01 - 10"), with_reference(pair, "01 + 10")
+    assert singlet.reference_energy == pytest.approx(-0.75)  # S.S of a singlet and of a triplet
+    assert triplet.reference_energy == pytest.approx(0.25)
+    found = with_reference(pair, "01, 10").reference_terms
+    assert [bits for _, bits in found] == [bits for _, bits in singlet.reference_terms]
+    assert [c for c, _ in found] == pytest.approx([c for c, _ in singlet.reference_terms])
+    assert (singlet.reference_kind, singlet.reference_name) == ("combination", "0.7071*01 - 0.7071*10")
