@@ -134,13 +134,12 @@ class StudySimulator:
 
 
 def measured_register(problem: Problem) -> EncodedSystem:
-    """The working register, or the full one where an excitation leaves the tapered sector, as for gates."""
+    """The working register, or the full one where the state leaves the tapered sector, as for gates."""
     encoded, program = problem.encoded, problem.program
     if isinstance(program, ExcitationProgram) and encoded.symmetries:
-        from thalweg.circuit.compile import generator_strings
+        from thalweg.circuit.compile import leaves_sector
 
-        assert encoded.linear is not None
-        if not encoded.tapering.keeps(generator_strings(program.excitations, encoded.linear)[0]).all():
+        if leaves_sector(program, encoded):
             encoded = replace(encoded, working=encoded.full, tapering=Tapering(encoded.full.n_qubits), symmetries=())
     return encoded
 
@@ -152,8 +151,15 @@ def search_source(problem: Problem, engine: Engine, rng: np.random.Generator, wa
 
 
 def refuse_unfit(problem: Problem) -> None:
-    """StudyError where the optimiser needs what neither the evaluation nor the trial state offers."""
+    """StudyError where parts of the settings do not go together: what the optimiser needs, the evaluation and the trial state, the reference."""
     spec, program = problem.spec, problem.program
+    if spec.continuation > 1 and problem.ground.begins_combined:
+        raise StudyError(
+            "Continuation cannot begin at a combination",
+            "it needs an easy Hamiltonian of which the reference is an eigenstate",
+            "Choose one determinant or basis state as the reference, or no continuation steps",
+            "continuation",
+        )
     if spec.optimizer.needs and program.n_parameters:
         offers = spec.evaluation.offers(structure_of(program, problem.encoded.working.one_norm))
         refuse_unless_offered(spec.optimizer, offers, spec.evaluation.title)
