@@ -29,8 +29,8 @@ from thalweg.units import constants_record
 LOST_WEIGHT = 1e-6
 
 
-def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
-    """The result of a finished or stopped search."""
+def assemble(exact: ExactAnswer | None, outcome: Outcome, begins: tuple[str, ...] = ()) -> StudyResult:
+    """The result of a finished or stopped search; `begins` says where it began, in words."""
     best, end = outcome.starts[outcome.best], outcome.ends[outcome.best]
     problem, parameters = end.problem, end.parameters
     engine = make_engine(problem)
@@ -42,7 +42,7 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome) -> StudyResult:
     two_qubit = program_gates(problem).two_qubit
     evidence = _evidence(exact, end, energy, norm, facts, two_qubit)
     verdict = judge(evidence)
-    remarks += classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome) + _pool_remark(problem)
+    remarks += begins + classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome) + _pool_remark(problem)
     prepared, encoded, program = problem.prepared, problem.encoded, problem.program
     sector = prepared.fermions.sector if prepared.fermions is not None else None
     return StudyResult(

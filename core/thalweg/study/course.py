@@ -18,6 +18,7 @@ from thalweg.optimize.objective import CountedObjective, Progress, StopRules
 from thalweg.simulate.engine import Engine
 from thalweg.study.events import AnyEvent, Iteration, StepTaken, watch_into
 from thalweg.study.figures import program_gates
+from thalweg.study.neighbour import begun_at
 from thalweg.study.outcome import SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import GrowthStep, StartRecord, Trace
@@ -110,9 +111,11 @@ class Course:
         return self.parameters_of(self.problem.spec.ansatz, self.problem.program)
 
     def parameters_of(self, ansatz: Any, program: Any) -> FloatArray:
-        """The start of this trial state (each takes the kind of program that it builds), displaced for later starts."""
-        start: FloatArray = ansatz.start_parameters(self.problem.ground, program, self.rng)
-        if self.index and ansatz.start in ("zero", "mp2", "ramp"):
+        """The start of this trial state (each takes the kind of program that it builds), at the parameters of another run where the
+        settings name one; displaced for later starts."""
+        own: FloatArray = ansatz.start_parameters(self.problem.ground, program, self.rng)
+        start = begun_at(self.problem, ansatz, program, own)
+        if self.index and (self.problem.spec.neighbour.is_given or ansatz.start in ("zero", "mp2", "ramp")):
             start = self.displaced(start)
         return start
 

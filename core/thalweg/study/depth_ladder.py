@@ -1,4 +1,7 @@
-"""Depth ladder: a layered trial state with 1, 2, 3 ... layers, each searched from the best of the last."""
+"""Depth ladder: a layered trial state with 1, 2, 3 ... layers, each searched from the best of the last.
+
+Where the study starts from another run of the same circuit, the first rung is that run's depth.
+"""
 
 from __future__ import annotations
 
@@ -8,10 +11,11 @@ from typing import Any
 import numpy as np
 
 from thalweg.arrays import FloatArray
-from thalweg.circuit.program import Program
 from thalweg.errors import Stopped, StudyError
 from thalweg.study.course import Course, Descent
+from thalweg.study.neighbour import first_depth
 from thalweg.study.outcome import SearchEnd
+from thalweg.study.problem import trial_state
 
 
 def climb(course: Course) -> SearchEnd:
@@ -25,7 +29,7 @@ def climb(course: Course) -> SearchEnd:
     kept: list[Descent] = []
     reason = ""
     try:
-        for depth in range(1, getattr(ansatz, name) + 1):
+        for depth in range(first_depth(course.problem), getattr(ansatz, name) + 1):
             course.watch.stage(f"Depth {depth}")
             descent = _rung(course, ansatz.model_copy(update={name: depth}), kept[-1] if kept else None)
             if kept and descent.energy > kept[-1].energy - course.problem.spec.ladder.least_gain:
@@ -55,7 +59,7 @@ def depth_field(ansatz: Any) -> str:
 
 
 def _rung(course: Course, ansatz: Any, below: Descent | None) -> Descent:
-    program: Program = ansatz.build(course.problem.ground)
+    program = trial_state(course.problem.spec, ansatz, course.problem.ground)
     if below is None:
         return course.minimise(program, course.parameters_of(ansatz, program))
     start: FloatArray = ansatz.from_shallower(below.parameters, program.n_parameters)

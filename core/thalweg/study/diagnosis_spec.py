@@ -42,6 +42,7 @@ class Direction(Options):
     )
     parameter: int = option(0, "Parameter", "Number of the parameter, from 0.", ge=0)
     point: tuple[float, ...] = option((), "Point", "Parameters of the other point, which lies at 1.")
+    labels: tuple[str, ...] = option((), "Labels", "The label of each of them; empty: those of the centre.")
 
 
 class Landscape(Options):
@@ -53,6 +54,7 @@ class Landscape(Options):
     key: Literal["landscape"] = "landscape"
     study: StudySpec
     centre: tuple[float, ...] = option((), "Centre", "Parameters of the point; empty: the start of the trial state.")
+    labels: tuple[str, ...] = option((), "Labels", "The label of each of them, from which a grown trial state is built; empty: as they are numbered.")
     directions: tuple[Direction, ...] = option((Direction(),), "Directions", "One for a curve, two for a map.", min_length=1, max_length=2)
     reach: float = option(3.141592653589793, "Reach", "How far to go on both sides.", unit="rad", gt=0)
     points: int = option(41, "Points", "Energies along each direction.", ge=3, le=1001)

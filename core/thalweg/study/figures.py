@@ -13,6 +13,7 @@ from thalweg.evaluate.metric import metric_circuits
 from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
+from thalweg.study.neighbour import refuse_unfit_start, start_words
 from thalweg.study.problem import GIB, Problem, Recent, make_engine, prepare
 from thalweg.study.simulator import measured_register
 from thalweg.study.spec import StudySpec
@@ -34,6 +35,7 @@ def inspect(spec: StudySpec, watch: Watch = SILENT) -> StudyFigures:
 
 def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
     prepared, encoded, program = problem.prepared, problem.encoded, problem.program
+    refuse_unfit_start(problem)
     sector = prepared.fermions.sector if prepared.fermions is not None else None
     watch.stage("Counting gates")
     gates = program_gates(problem)
@@ -61,7 +63,7 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
         exact_bytes=exact_bytes(problem),
         operator_order=program.order,
         facts=prepared.facts,
-        warnings=warnings_of(problem) + _exact_warnings(problem),
+        warnings=start_words(problem) + warnings_of(problem) + _exact_warnings(problem),
         ladder=tuple(Rung(**vars(row)) for row in prepared.ladder),
         pauli_terms=heaviest_terms(encoded.working),
         **_measurement_figures(problem, watch),

@@ -1,4 +1,7 @@
-"""Adaptive growth: append the operators with the largest slopes, search all parameters again, and so on (Grimsley et al. 2019)."""
+"""Adaptive growth: append the operators with the largest slopes, search all parameters again, and so on (Grimsley et al. 2019).
+
+It begins with the reference, or with what another run had grown where the study starts from one.
+"""
 
 from __future__ import annotations
 
@@ -50,10 +53,11 @@ class _Growing:
         course.watch.stage("Making the pool of operators")
         pool = ansatz.operators(course.problem.ground)
         slopes_at = pool_slopes(course.problem, pool, course.watch)
-        descent = course.minimise(course.problem.program, np.zeros(0))
+        begun = course.problem.program
+        descent = course.minimise(begun, course.parameters_of(ansatz, begun))
         self.descents.append(descent)
-        added: tuple[str, ...] = ()
-        barred: tuple[int, ...] = ()
+        added = begun.labels()
+        barred = tuple(pool.labels.index(label) for label in added[-ansatz.at_once :])
         while True:
             slopes = slopes_at(descent.engine.state(descent.parameters))
             self._take_step(descent, added, float(np.abs(slopes).max(initial=0.0)))

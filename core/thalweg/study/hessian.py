@@ -5,8 +5,10 @@ from __future__ import annotations
 import numpy as np
 
 from thalweg.arrays import FloatArray
+from thalweg.errors import StudyError
 from thalweg.simulate.engine import Engine
 from thalweg.study.diagnosis_result import Curvature, StartSpread
+from thalweg.study.neighbour import as_found
 from thalweg.study.problem import make_engine, prepare
 from thalweg.study.result import StudyResult
 from thalweg.study.verdict import amount
@@ -25,12 +27,10 @@ SAME = 1e-6
 
 
 def curvature_of(result: StudyResult, watch: Watch = SILENT) -> Curvature:
-    """The Hessian at the found parameters of a run. A grown trial state cannot be rebuilt from settings alone: StudyError."""
-    from thalweg.errors import StudyError
-
-    problem = prepare(result.spec, watch)
+    """The Hessian at the found parameters of a run, in the trial state that it ended with. StudyError where they are not known."""
+    problem = prepare(as_found(result.spec, result.final_parameters, result.parameter_labels, watch), watch)
     if problem.program.n_parameters != len(result.final_parameters):
-        raise StudyError("The trial state of this run cannot be rebuilt", "it grew during the search", "Run one with a fixed trial state", "ansatz")
+        raise StudyError("There is no found point", "the parameters of this run were not handed over", "Run it again to its end", "ansatz")
     return curvature(make_engine(problem, watch), np.array(result.final_parameters), result.parameter_labels, result.energy_unit, watch)
 
 

@@ -9,6 +9,7 @@ from collections.abc import Callable, Hashable
 from dataclasses import dataclass, replace
 from typing import Any
 
+from thalweg.ansatz.adaptive import Adaptive
 from thalweg.ansatz.ground import Ground
 from thalweg.circuit.axes import with_free_axes
 from thalweg.circuit.program import ExcitationProgram, GateProgram, Program
@@ -17,6 +18,7 @@ from thalweg.errors import StudyError
 from thalweg.estimate import AXES
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import Engine
+from thalweg.study.regrowth import regrown
 from thalweg.study.spec import StudySpec
 from thalweg.systems.own_reference import with_reference
 from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
@@ -102,10 +104,18 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     watch.stage("Building the trial state")
     kind, pairs = prepared.reference_kind, prepared.reference_pairs
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
-    program = spec.ansatz.build(ground)
-    if AXES in spec.optimizer.needs and isinstance(program, GateProgram):
-        program = with_free_axes(program)
+    program = trial_state(spec, spec.ansatz, ground)
+    if isinstance(spec.ansatz, Adaptive) and spec.neighbour.is_given:
+        program = regrown(spec.ansatz, ground, program, spec.neighbour.labels)
     return Problem(spec, prepared, encoded, program, ground, time.perf_counter() - begun)
+
+
+def trial_state(spec: StudySpec, ansatz: Any, ground: Ground) -> Program:
+    """The program of `ansatz` as the optimiser of the study takes it. StudyError where it does not fit the system."""
+    program: Program = ansatz.build(ground)
+    if AXES in spec.optimizer.needs and isinstance(program, GateProgram):
+        return with_free_axes(program)
+    return program
 
 
 def with_system(problem: Problem, prepared: PreparedSystem) -> Problem:

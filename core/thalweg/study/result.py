@@ -106,9 +106,10 @@ class SiteFigures(Record):
 
 
 class GrowthStep(Record):
-    """One step of adaptive growth or of a depth ladder, after its minimisation. The first is the reference or the shallowest circuit."""
+    """One step of adaptive growth or of a depth ladder, after its minimisation. The first is the reference, what another run had grown, or
+    the shallowest circuit."""
 
-    added: tuple[str, ...]  # what this step appended: operators, or the depth in words; empty for the reference
+    added: tuple[str, ...]  # what this step appended, or began with: operators, or the depth in words; empty for the reference
     parameters: int
     two_qubit_gates: int | None
     energy: float

@@ -14,6 +14,7 @@ from thalweg.study.depth_ladder import climb
 from thalweg.study.events import AnyEvent, Finished, Started, Warned, watch_into
 from thalweg.study.figures import warnings_of
 from thalweg.study.growth import grow
+from thalweg.study.neighbour import refuse_unfit_start, start_words
 from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.point_seed import PointSeed
 from thalweg.study.problem import Problem, exact_answer, prepare, target_error
@@ -46,14 +47,21 @@ def run_from(
     watch = watch_into(emit, should_stop)
     problem = prepare(spec, watch, seed.mean_field if seed is not None else None)
     refuse_unfit(problem)
-    for text in warnings_of(problem):
+    refuse_unfit_start(problem)
+    initial = None if seed is None else seed.parameters_for(problem.program)
+    begins = () if _takes(spec, initial) else start_words(problem)
+    for text in warnings_of(problem) + begins:
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)
     emit(_started(problem, exact))
     watch.stage("Minimising")
-    initial = None if seed is None else seed.parameters_for(problem.program)
-    result = assemble(exact, _from_every_start(problem, exact, initial, emit, should_stop))
+    result = assemble(exact, _from_every_start(problem, exact, initial, emit, should_stop), begins)
     return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
+
+
+def _takes(spec: StudySpec, initial: FloatArray | None) -> bool:
+    """Whether the first start begins at `initial`: what grows or climbs begins at its own beginning."""
+    return initial is not None and not isinstance(spec.ansatz, Adaptive) and not spec.ladder.on
 
 
 def search(course: Course, initial: FloatArray | None) -> SearchEnd:

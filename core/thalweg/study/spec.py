@@ -8,7 +8,7 @@ from __future__ import annotations
 import json
 from typing import Annotated, Any, Literal
 
-from pydantic import Field, ValidationError, field_validator
+from pydantic import Field, ValidationError, field_validator, model_validator
 
 from thalweg.ansatz import (
     ANSATZE,
@@ -116,6 +116,33 @@ class DepthLadder(Options):
     least_gain: float = option(1e-6, "Least gain", "Stop climbing when one layer more lowers the energy by less.", unit="Eh", ge=0, advanced=True)
 
 
+class Neighbour(Options):
+    """Another run at whose final parameters a search begins; empty: none.
+
+    The numbers themselves, so that the study runs again without the ledger that they came from. A label may repeat, because a
+    growing trial state takes an operator as often as it helps.
+    """
+
+    parameters: tuple[float, ...] = option((), "Parameters", "Final parameters of the other run.", unit="rad")
+    labels: tuple[str, ...] = option((), "Labels", "The label of each, by which parameters find their place.")
+    source: str = option("", "Source", "Which run that was, as in `run 3, LiH, STO-3G, UCCSD`.")
+
+    @property
+    def is_given(self) -> bool:
+        return bool(self.parameters)
+
+    @model_validator(mode="after")
+    def _every_parameter_has_a_label(self) -> Neighbour:
+        if len(self.parameters) != len(self.labels):
+            raise StudyError(
+                f"The start has {len(self.parameters)} parameters and {len(self.labels)} labels",
+                "a parameter finds its place by its label",
+                "Give one label for each parameter",
+                "neighbour",
+            )
+        return self
+
+
 REFERENCE_HELP = (
     "Empty: that of the system, such as the Hartree-Fock determinant. Otherwise the occupation of each active orbital, as in `22ab00` "
     "(2 pair, a or b one electron, 0 empty), or one bit for each spin orbital or site."
@@ -137,6 +164,7 @@ class StudySpec(Options):
     stop: StopRules = StopRules()
     target: Target = Target()
     ladder: DepthLadder = DepthLadder()
+    neighbour: Neighbour = Neighbour()
     reference: str = option("", "Reference", REFERENCE_HELP, advanced=True)
     continuation: int = option(0, "Continuation steps", CONTINUATION_HELP, ge=0, le=1000, advanced=True)
     classical: tuple[ClassicalMethod, ...] = option((), "Classical methods", "Reference figures to compute beside the exact one.")
