@@ -110,7 +110,7 @@ def program_gates(problem: Problem) -> GateCounts:
     if isinstance(program, GateProgram):
         return gate_counts(program)
     # Counts depend on the structure alone, which the points of a scan share.
-    key = (program.excitations, program.reference, program.parameter.tobytes(), program.factor.tobytes(), encoded.linear, encoded.tapering)
+    key = (program.excitations, program.begins, program.parameter.tobytes(), program.factor.tobytes(), encoded.linear, encoded.tapering)
     counts: GateCounts = _gates.get(key, lambda: gate_counts(excitation_gates(program, encoded)))
     return counts
 

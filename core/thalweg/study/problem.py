@@ -102,8 +102,8 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
     watch.stage("Encoding")
     encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared, watch)))[1]
     watch.stage("Building the trial state")
-    kind, pairs = prepared.reference_kind, prepared.reference_pairs
-    ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs)
+    kind, pairs, terms = prepared.reference_kind, prepared.reference_pairs, prepared.reference_terms
+    ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs, terms)
     program = trial_state(spec, spec.ansatz, ground)
     if isinstance(spec.ansatz, Adaptive) and spec.neighbour.is_given:
         program = regrown(spec.ansatz, ground, program, spec.neighbour.labels)

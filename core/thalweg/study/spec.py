@@ -145,7 +145,8 @@ class Neighbour(Options):
 
 REFERENCE_HELP = (
     "Empty: that of the system, such as the Hartree-Fock determinant. Otherwise the occupation of each active orbital, as in `22ab00` "
-    "(2 pair, a or b one electron, 0 empty), or one bit for each spin orbital or site."
+    "(2 pair, a or b one electron, 0 empty), or one bit for each spin orbital or site. A combination is a sum, as in `0.9*2200 - 0.4*2020`, "
+    "or a list, as in `2200, 2020`: the lowest state among those listed. Excitations count from the first."
 )
 CONTINUATION_HELP = (
     "Come to the full Hamiltonian in this many steps from the mean-field one (for spins from the terms that the reference minimises), each "

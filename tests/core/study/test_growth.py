@@ -192,11 +192,20 @@ def test_a_reference_without_any_slope_is_called_stationary():
     assert (result.verdict_kind, result.parameters, result.stop_reason) == ("stationary", 0, "pool-slope")
 
 
-def test_a_pool_of_electrons_is_refused_for_spins():
+@pytest.mark.parametrize("pool", ["qubit-excitations", "spin-adapted"])
+def test_a_pool_of_electrons_is_refused_for_spins(pool):
     spec = spins("ising", "plus", 4)
     with pytest.raises(StudyError) as error:
-        run(with_setting(spec, "ansatz.pool", "qubit-excitations"))
+        run(with_setting(spec, "ansatz.pool", pool))
     assert error.value.field == "ansatz.pool"
+
+
+def test_the_pool_fits_the_system_until_one_is_chosen():
+    assert Adaptive().pool == "auto"
+    on_spins = run(with_setting(spins("ising", "plus", 4), "ansatz.pool", "auto"))
+    assert on_spins.reached_target
+    assert "`hamiltonian-terms`" in on_spins.operator_order
+    assert "`spin-adapted`" in inspect(FOUR).operator_order
 
 
 def test_figures_before_a_run_are_those_of_the_reference():
