@@ -10,9 +10,8 @@ from typing import Any
 import click
 
 from thalweg.errors import StudyError
-from thalweg.storage.files import ensure_writable, read_limited, write_atomically
+from thalweg.storage.files import ensure_writable, write_atomically
 from thalweg.storage.plain_json import json_text
-from thalweg.storage.session import is_session, load_session
 from thalweg.study.diagnosis_spec import Direction, Landscape, Trainability
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
@@ -22,6 +21,7 @@ from thalweg_app.presenters.numbers import parse_wholes
 from thalweg_app.terminal.answer import aligned
 from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
+from thalweg_app.terminal.runs import run_of
 from thalweg_app.terminal.setup import read_setup, setup_options
 from thalweg_app.terminal.solve import STANDARD_OUTPUT
 
@@ -54,7 +54,7 @@ def diagnose(what: str, figure: Path | None, json_file: str | None, quiet: bool,
     spec, notes = read_setup(options)
     if json_file not in (None, STANDARD_OUTPUT):
         ensure_writable(Path(json_file))
-    result = None if options["number"] is None else _run_of(options["input_name"], options["number"])
+    result = None if options["number"] is None else run_of(options["input_name"], options["number"]).result
     study = spec if result is None else result.spec
     for note in () if quiet or result is not None else notes:
         print(note, file=sys.stderr)
@@ -109,8 +109,8 @@ def _trainability(study: StudySpec, options: dict[str, Any]) -> Trainability:
 
 def _landscape(study: StudySpec, result: StudyResult | None, options: dict[str, Any]) -> Landscape:
     directions = tuple(_direction(text, options["input_name"]) for text in options["along"] or ("random",))
-    centre = () if result is None else result.final_parameters
-    return _made(Landscape, {"study": study, "centre": centre, "directions": directions, "reach": options["reach"], "points": options["points"]})
+    centre = {} if result is None else {"centre": result.final_parameters, "labels": result.parameter_labels}
+    return _made(Landscape, {"study": study, **centre, "directions": directions, "reach": options["reach"], "points": options["points"]})
 
 
 def _made(cls: Any, settings: dict[str, Any]) -> Any:
@@ -131,18 +131,9 @@ def _direction(text: str, input_name: str) -> Direction:
     if kind in ("parameter", "run") and number.isdigit():
         if kind == "parameter":
             return Direction(kind="parameter", parameter=int(number))
-        return Direction(kind="point", point=_run_of(input_name, int(number)).final_parameters)
+        other = run_of(input_name, int(number)).result
+        return Direction(kind="point", point=other.final_parameters, labels=other.parameter_labels)
     raise StudyError(f"--along {text} is no direction", "it is none of those known", "Give parameter:N, random, steepest, or run:N", "along")
-
-
-def _run_of(name: str, number: int) -> StudyResult:
-    path = Path(name)
-    if not path.is_file() or not is_session(read_limited(path)):
-        raise StudyError(f"{name} holds no runs", "it is not a session", "Save a run with `thalweg solve --save`, and give that session")
-    for run in load_session(path).runs:
-        if run.number == number:
-            return run.result
-    raise StudyError(f"There is no run {number} in {name}", "the session does not hold it", "Give the number of one of its runs")
 
 
 def _print(found: Finding, json_file: str | None) -> None:

@@ -13,13 +13,16 @@ import click
 from thalweg.errors import StudyError
 from thalweg.options import Options
 from thalweg.storage.session import Session
-from thalweg.study.spec import SECTIONS, StudySpec, suited, with_setting
+from thalweg.study.spec import SECTIONS, Neighbour, StudySpec, suited, with_setting
 from thalweg.systems import LatticeModel
+from thalweg_app.terminal.runs import run_of
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
 STANDARD_INPUT = "-"
 MAX_STANDARD_INPUT = 64 * 2**20
+#: As a start: the parameters of a run. As a neighbour: none, not even that of the session.
+AT_NEIGHBOUR, NO_NEIGHBOUR = "neighbour", "none"
 
 #: Terminal option -> the setting that it stands for.
 PLAIN_OPTIONS = {
@@ -38,6 +41,8 @@ PLAIN_OPTIONS = {
     "starts": "starts",
     "seed": "seed",
 }
+
+NEIGHBOUR_HELP = "Start at the parameters of this run of a session, its last one without a number; `none` leaves out that of the session INPUT."
 
 #: Sections whose settings have an option of their own.
 SET_SECTIONS = ("ansatz", "optimizer", "evaluation")
@@ -66,6 +71,7 @@ def _options() -> list[Callable[[Command], Command]]:
         _setting_option("ansatz", "the trial state, e.g. k=2"),
         click.option("--depth", type=int, help="Number of layers of a layered circuit."),
         click.option("--start", help="First parameters, e.g. zero, mp2, small-random, uniform-random."),
+        click.option("--neighbour", metavar="FILE[:RUN]", help=NEIGHBOUR_HELP),
         click.option("--optimizer", type=choice["optimizer"], help="Search for the lowest energy."),
         _setting_option("optimizer", "the search, e.g. step=0.05"),
         click.option("--evaluation", type=choice["evaluation"], help="Exact energies, drawn bit strings, or exact with the error of shots."),
@@ -84,6 +90,7 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
     spec, notes = read_input(options["input_name"], unit or "angstrom")
     read = spec
     given = {path: options[name] for name, path in PLAIN_OPTIONS.items() if options[name] is not None}
+    spec = _with_neighbour(spec, options["neighbour"], given)
     if options["classical"] is not None:
         given["classical"] = [name.strip().lower() for name in options["classical"].split(",") if name.strip()]
     if options["frozen_core"] or options["active"] is not None:
@@ -96,6 +103,30 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
     for text in options["settings"]:
         spec = _with_text(spec, "--set", "", text)
     return _named_anew(spec, read), notes
+
+
+def _with_neighbour(spec: StudySpec, text: str | None, given: dict[str, Any]) -> StudySpec:
+    """The study from the run that `text` names; `--start neighbour` says the same as naming one, and leaves `given`."""
+    if text is not None:
+        spec = spec.model_copy(update={"neighbour": Neighbour() if text == NO_NEIGHBOUR else _neighbour(text)})
+    if str(given.get("ansatz.start")).lower() == AT_NEIGHBOUR:
+        del given["ansatz.start"]
+        if not spec.neighbour.is_given:
+            raise StudyError(
+                "--start neighbour does not say which run",
+                "a search starts at the parameters of a run of a session",
+                "Name it as --neighbour FILE or --neighbour FILE:RUN",
+            )
+    return spec
+
+
+def _neighbour(text: str) -> Neighbour:
+    """The parameters of the run `FILE:RUN`, or of the last run of `FILE`. StudyError where there is none."""
+    name, mark, number = text.rpartition(":")
+    if not mark or not number.isdecimal() or Path(text).exists():
+        name, number = text, ""
+    run = run_of(name, int(number) if number else None)
+    return run.result.as_start(f"run {run.number} of {Path(name).name}")
 
 
 def _named_anew(spec: StudySpec, read: StudySpec) -> StudySpec:

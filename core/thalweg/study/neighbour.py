@@ -18,7 +18,6 @@ from thalweg.arrays import FloatArray
 from thalweg.circuit.program import Program
 from thalweg.errors import StudyError
 from thalweg.study.problem import Problem, prepare, trial_state
-from thalweg.study.result import StudyResult
 from thalweg.study.spec import Neighbour, StudySpec
 from thalweg.watch import SILENT, Watch
 
@@ -31,14 +30,6 @@ OWN_STARTS = {
     "uniform-random": "at random angles",
 }
 LAYER = " in layer "
-
-
-def neighbour_of(result: StudyResult, name: str) -> Neighbour:
-    """The final parameters of a run as a start; `name` is what it is called, as in `run 3`. StudyError where it has none."""
-    if not result.final_parameters:
-        raise StudyError(f"{name[:1].upper()}{name[1:]} has no parameters to begin at", "they were not handed over", "Take another run", "neighbour")
-    source = f"{name}, {result.label}, {result.spec.ansatz.title}"
-    return Neighbour(parameters=result.final_parameters, labels=result.parameter_labels, source=source)
 
 
 def as_found(spec: StudySpec, parameters: tuple[float, ...], labels: tuple[str, ...], watch: Watch = SILENT) -> StudySpec:

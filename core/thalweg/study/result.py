@@ -6,7 +6,8 @@ from typing import Any
 
 from pydantic import BaseModel, ConfigDict
 
-from thalweg.study.spec import StudySpec
+from thalweg.errors import StudyError
+from thalweg.study.spec import Neighbour, StudySpec
 
 #: Why a minimisation ended -> the sentence shown.
 STOP_REASONS: dict[str, str] = {
@@ -191,6 +192,15 @@ class StudyResult(Record):
     versions: dict[str, str]
     constants: dict[str, float | str]
     spec: StudySpec
+
+    def as_start(self, name: str) -> Neighbour:
+        """The final parameters as a start of another search; `name` is what this run is called, as in `run 3`. StudyError where it has none."""
+        if not self.final_parameters:
+            what = f"{name[:1].upper()}{name[1:]} has no parameters to start from"
+            why = "it was cut off before it handed any over" if self.parameters else "its trial state has none"
+            raise StudyError(what, why, "Take another run", "neighbour")
+        source = f"{name}, {self.label}, {self.spec.ansatz.title}"
+        return Neighbour(parameters=self.final_parameters, labels=self.parameter_labels, source=source)
 
     @property
     def trace(self) -> Trace:

@@ -15,7 +15,7 @@ from thalweg.study.diagnosis_spec import Direction, Landscape
 from thalweg.study.events import Warned
 from thalweg.study.figures import inspect
 from thalweg.study.hessian import curvature_of
-from thalweg.study.neighbour import by_label, neighbour_of
+from thalweg.study.neighbour import by_label
 from thalweg.study.path import BondPath
 from thalweg.study.repeat import repeat
 from thalweg.study.result import StudyResult
@@ -38,7 +38,7 @@ RING = LatticeModel(lattice=Chain(sites=4), model=Heisenberg())
 
 
 def start(result: StudyResult) -> Neighbour:
-    return neighbour_of(result, "run 1")
+    return result.as_start("run 1")
 
 
 def study(ansatz=UCCSD(), system=FOUR, **more) -> StudySpec:  # noqa: B008 - settings are frozen
@@ -234,7 +234,7 @@ def test_what_does_not_fit_is_refused_before_the_search(doubles, more, field, wo
 
 def test_a_run_without_parameters_is_no_start(doubles):
     with pytest.raises(StudyError, match="Run 4 has no parameters"):
-        neighbour_of(doubles.model_copy(update={"final_parameters": ()}), "run 4")
+        doubles.model_copy(update={"final_parameters": ()}).as_start("run 4")
 
 
 def test_numbers_and_labels_must_be_as_many():
