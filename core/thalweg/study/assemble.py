@@ -42,7 +42,7 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome, begins: tuple[str, ...
     two_qubit = program_gates(problem).two_qubit
     evidence = _evidence(exact, end, energy, norm, facts, two_qubit)
     verdict = judge(evidence)
-    remarks += begins + classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _spread_remark(outcome) + _pool_remark(problem)
+    remarks += begins + classical_remarks + warnings_of(problem) + (exact.remarks if exact else ()) + _start_remarks(outcome) + _pool_remark(problem)
     prepared, encoded, program = problem.prepared, problem.encoded, problem.program
     sector = prepared.fermions.sector if prepared.fermions is not None else None
     return StudyResult(
@@ -74,6 +74,7 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome, begins: tuple[str, ...
         shots=sum(s.shots for s in outcome.starts),
         iterations=sum(s.iterations for s in outcome.starts),
         seconds=sum(s.seconds for s in outcome.starts),
+        elapsed=outcome.elapsed,
         preparation_seconds=problem.seconds,
         stop_reason=best.stop_reason,
         gradient_norm=norm,
@@ -167,11 +168,12 @@ def _classical(problem: Problem) -> tuple[dict[str, float | None], tuple[str, ..
     return classical_energies(problem.prepared.fermions, problem.spec.classical)
 
 
-def _spread_remark(outcome: Outcome) -> tuple[str, ...]:
+def _start_remarks(outcome: Outcome) -> tuple[str, ...]:
     energies = [s.energy for s in outcome.starts]
+    remarks = tuple(f"Start {k + 1} is lost: its process ended twice, perhaps for want of memory." for k in outcome.lost)
     if len(energies) < 2:
-        return ()
-    return (f"{len(energies)} starts end between {min(energies):.9f} and {max(energies):.9f}; the lowest counts.",)
+        return remarks
+    return (*remarks, f"{len(energies)} starts end between {min(energies):.9f} and {max(energies):.9f}; the lowest counts.")
 
 
 def _pool_remark(problem: Problem) -> tuple[str, ...]:

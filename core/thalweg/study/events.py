@@ -39,7 +39,10 @@ class Stage(Event):
 
 
 class Iteration(Event):
-    """One iterate of one start; see `optimize.objective.Progress`."""
+    """One iterate of one start; see `optimize.objective.Progress`.
+
+    Starts that run side by side tell theirs in turn; iteration 0 of a start that was heard of before means that it begins anew.
+    """
 
     kind: Literal["iteration"] = "iteration"
     start: int  # 0-based
@@ -61,6 +64,16 @@ class StepTaken(Event):
     start: int  # 0-based
     number: int  # 0 for the reference or the shallowest circuit
     step: GrowthStep
+
+
+class StartEnded(Event):
+    """One start has come to its end; `energy` is that of its record."""
+
+    kind: Literal["start-ended"] = "start-ended"
+    start: int  # 0-based
+    energy: float
+    reason: str  # a key of STOP_REASONS
+    seconds: float
 
 
 class Warned(Event):
@@ -114,7 +127,7 @@ class ScanFinished(Event):
 
 
 AnyEvent = Annotated[
-    Started | Stage | Iteration | StepTaken | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
+    Started | Stage | Iteration | StepTaken | StartEnded | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
     Field(discriminator="kind"),
 ]
 EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)

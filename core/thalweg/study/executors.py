@@ -1,4 +1,4 @@
-"""Where the points of a scan run: in this process, on this machine's cores, or on a Dask cluster."""
+"""Where the points of a scan and the starts of a study run: in this process, on this machine's cores, or on a Dask cluster."""
 
 from __future__ import annotations
 
@@ -10,7 +10,10 @@ import sys
 import threading
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
+from multiprocessing import forkserver
 from multiprocessing.connection import wait
+from multiprocessing.context import BaseContext
+from multiprocessing.process import BaseProcess
 from typing import Any, TypeVar
 
 from thalweg import __version__
@@ -51,16 +54,22 @@ class Local(InProcess):
 
     def took(self, seconds: float) -> None:
         """A point was run here. The first may have loaded libraries, which a pool would load as well: what is left of it counts."""
-        if self._first:
-            self._first = False
-            seconds = seconds - START_UP if seconds > START_UP else float("inf")
-        self._shortest = min(self._shortest, seconds)
+        certain = self._certain(seconds)
+        self._first = False
+        self._shortest = min(self._shortest, certain if certain > 0 else float("inf"))
 
-    def pays(self, points_left: int) -> bool:
-        """Whether the time that a pool saves on these points is more than its start takes."""
+    def pays(self, points_left: int, running: float = 0.0) -> bool:
+        """Whether the time that a pool saves on these points is more than its start takes.
+
+        `running`: seconds that a point under way has taken so far; while no other is done, each is expected to take as long at least.
+        """
         workers = min(self.workers, points_left)
         start = START_AGAIN if _server_runs() else START_UP
-        return workers > 1 and self._shortest < float("inf") and self._shortest * points_left * (1.0 - 1.0 / workers) > start
+        each = self._shortest if self._shortest < float("inf") else self._certain(running)
+        return workers > 1 and each * points_left * (1.0 - 1.0 / workers) > start
+
+    def _certain(self, seconds: float) -> float:
+        return seconds - START_UP if self._first else seconds
 
     def pool(self) -> Executor:
         return local_pool(self.workers)
@@ -90,10 +99,36 @@ def local_pool(workers: int = 0) -> ProcessPoolExecutor:
     They are forked from a server that has the libraries loaded but no threads, where the system has such servers. This process itself is
     not forked: that would copy the threads of numba and Qt in an unknown state.
     """
+    return _Pool(workers or usable_cores(), mp_context=worker_context(), initializer=_enter_worker)
+
+
+def worker_context() -> BaseContext:
+    """How processes are started here, and what they share with this one is made by."""
     context = multiprocessing.get_context("forkserver" if _has_server() else "spawn")
     if _has_server():
         context.set_forkserver_preload(list(_PRELOADED))
-    return _Pool(workers or usable_cores(), mp_context=context, initializer=_enter_worker)
+    return context
+
+
+def start_process(function: Callable[..., None], *args: Any) -> BaseProcess:
+    """function(*args) in a process like those of the pool. Waits for the server where that still loads its libraries.
+
+    Only the server, once, or the process itself where there is none, takes over the surroundings that are arranged meanwhile.
+    """
+    process: BaseProcess = worker_context().Process(target=_as_worker, args=(function, args), daemon=True)  # type: ignore[attr-defined]
+    if not _has_server():
+        with _for_children():
+            process.start()
+        return process
+    with _for_children():
+        forkserver.ensure_running()
+    process.start()
+    return process
+
+
+def _as_worker(function: Callable[..., None], args: tuple[Any, ...]) -> None:
+    _enter_worker()
+    function(*args)
 
 
 def _has_server() -> bool:
@@ -103,8 +138,6 @@ def _has_server() -> bool:
 
 def _server_runs() -> bool:
     """Whether a pool of this process has loaded the libraries already."""
-    from multiprocessing import forkserver
-
     return _has_server() and getattr(forkserver._forkserver, "_forkserver_pid", None) is not None
 
 

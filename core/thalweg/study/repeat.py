@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 
-from thalweg.study.events import AnyEvent, Iteration
+from thalweg.study.events import AnyEvent, Iteration, StartEnded
+from thalweg.study.executors import Local
 from thalweg.study.result import Record, StudyResult
 from thalweg.study.run import never, run
 
@@ -31,14 +32,20 @@ class Repetition(Record):
         return self.deviation <= tolerance and (self.exact_deviation or 0.0) <= tolerance
 
 
-def repeat(first: StudyResult, emit: Callable[[AnyEvent], None] = lambda event: None, should_stop: Callable[[], bool] = never) -> Repetition | None:
-    """Runs `first.spec` again; None when stopped on the way. Raises what `run` raises.
+def repeat(
+    first: StudyResult,
+    emit: Callable[[AnyEvent], None] = lambda event: None,
+    should_stop: Callable[[], bool] = never,
+    local: Local | None = None,
+) -> Repetition | None:
+    """Runs the starts of `first` again; None when stopped on the way. Raises what `run` raises. `local` as for `run`.
 
-    A start that was ended by hand or by the clock is ended after the same number of iterations, and its lowest iterates are compared.
+    A start that was ended by hand or by the clock is ended after the same number of iterations, and its lowest iterates are compared;
+    starts then run one after another, as each is to be ended apart.
     """
     ends = OuterEnds(first)
     stop_rules = first.spec.stop.model_copy(update={"seconds": 0.0})
-    spec = first.spec.model_copy(update={"stop": stop_rules, "starts": len(first.starts)})
+    spec = first.spec.model_copy(update={"stop": stop_rules})
 
     def watch(event: AnyEvent) -> None:
         ends.take(event)
@@ -51,17 +58,23 @@ def repeat(first: StudyResult, emit: Callable[[AnyEvent], None] = lambda event: 
         asked = asked or should_stop()
         return asked or ends.due()
 
-    second = run(spec, watch, stop)
+    second = run(spec, watch, stop, None if ends else local, list(numbers_of_starts(first)))
     if asked:
         return None
     return _compare(first, second, outer=bool(ends))
+
+
+def numbers_of_starts(result: StudyResult) -> Iterator[int]:
+    """Which starts of its study, counted from 0, the result has; some may have been lost or never begun."""
+    return (start.seed - result.seed for start in result.starts)
 
 
 class OuterEnds:
     """Says once, at the recorded iterate of each start that was ended from outside, that it is time to end."""
 
     def __init__(self, first: StudyResult) -> None:
-        self._last = {index: start.iterations for index, start in enumerate(first.starts) if start.stop_reason in OUTER_ENDS}
+        starts = zip(numbers_of_starts(first), first.starts, strict=True)
+        self._last = {index: start.iterations for index, start in starts if start.stop_reason in OUTER_ENDS}
         self._due = False
 
     def __bool__(self) -> bool:
@@ -70,6 +83,8 @@ class OuterEnds:
     def take(self, event: AnyEvent) -> None:
         if isinstance(event, Iteration) and event.iteration >= self._last.get(event.start, event.iteration + 1):
             self._due = True
+        elif isinstance(event, StartEnded):
+            self._due = False  # it ended by itself there, and the next one is not meant
 
     def due(self) -> bool:
         due, self._due = self._due, False

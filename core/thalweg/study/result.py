@@ -126,6 +126,9 @@ class StudyResult(Record):
 
     `energy` and everything drawn from it is that of the simulated state, without noise; `measured_energy` with its
     `standard_error` is what the shots gave. With exact evaluation `standard_error`, where there is one, is what shots would have.
+
+    `seconds` are those of all starts added up, so that runs can be compared; `elapsed` is the time by the clock of the whole search where
+    starts ran side by side, None where they ran one after another.
     """
 
     label: str
@@ -159,6 +162,7 @@ class StudyResult(Record):
     shots: int = 0
     iterations: int
     seconds: float
+    elapsed: float | None = None
     preparation_seconds: float
     stop_reason: str
     gradient_norm: float | None

@@ -2,37 +2,42 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 
 from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import FloatArray
 from thalweg.exact.answer import ExactAnswer
 from thalweg.study.assemble import assemble
-from thalweg.study.continuation import follow
-from thalweg.study.course import Course
-from thalweg.study.depth_ladder import climb
 from thalweg.study.events import AnyEvent, Finished, Started, Warned, watch_into
+from thalweg.study.executors import Local
 from thalweg.study.figures import warnings_of
-from thalweg.study.growth import grow
 from thalweg.study.neighbour import refuse_unfit_start, start_words
-from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.point_seed import PointSeed
 from thalweg.study.problem import Problem, exact_answer, prepare, target_error
 from thalweg.study.result import StudyResult
 from thalweg.study.simulator import refuse_unfit
 from thalweg.study.spec import StudySpec
+from thalweg.study.starts import run_starts
 
 
 def never() -> bool:
     return False
 
 
-def run(spec: StudySpec, emit: Callable[[AnyEvent], None] = lambda event: None, should_stop: Callable[[], bool] = never) -> StudyResult:
+def run(
+    spec: StudySpec,
+    emit: Callable[[AnyEvent], None] = lambda event: None,
+    should_stop: Callable[[], bool] = never,
+    local: Local | None = None,
+    only: Collection[int] | None = None,
+) -> StudyResult:
     """Runs one study and returns its result, which is also emitted as `Finished`.
 
-    Raises StudyError for what a person can mend, and Stopped when stopped before there is a best point to keep.
+    `local` lets several starts run side by side where that pays, `only` names those to run, counted from 0; the result is the same to the
+    last digit, but for its times. Raises StudyError for what a person can mend, and Stopped when stopped before there is a best point to
+    keep.
     """
-    result, _ = run_from(spec, None, emit, should_stop)
+    result, _ = run_from(spec, None, emit, should_stop, local, only)
     emit(Finished(result=result))
     return result
 
@@ -42,6 +47,8 @@ def run_from(
     seed: PointSeed | None,
     emit: Callable[[AnyEvent], None] = lambda event: None,
     should_stop: Callable[[], bool] = never,
+    local: Local | None = None,
+    only: Collection[int] | None = None,
 ) -> tuple[StudyResult, PointSeed]:
     """As `run`, from a neighbour's seed where there is one; also returns the seed for the next neighbour."""
     watch = watch_into(emit, should_stop)
@@ -53,9 +60,9 @@ def run_from(
     for text in warnings_of(problem) + begins:
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)
-    emit(_started(problem, exact))
+    emit(_started(problem, exact, spec.starts if only is None else 1 + max(only)))
     watch.stage("Minimising")
-    result = assemble(exact, _from_every_start(problem, exact, initial, emit, should_stop), begins)
+    result = assemble(exact, run_starts(problem, exact, initial, emit, should_stop, local, only), begins)
     return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
 
 
@@ -64,39 +71,8 @@ def _takes(spec: StudySpec, initial: FloatArray | None) -> bool:
     return initial is not None and not isinstance(spec.ansatz, Adaptive) and not spec.ladder.on
 
 
-def search(course: Course, initial: FloatArray | None) -> SearchEnd:
-    """One start by the way that the settings name: growth, a depth ladder, continuation, or one minimisation of a fixed trial state."""
-    spec = course.problem.spec
-    if isinstance(spec.ansatz, Adaptive):
-        return grow(course, spec.ansatz)
-    if spec.ladder.on:
-        return climb(course)
-    if spec.continuation > 1 and initial is None:
-        return follow(course, spec.continuation)
-    descent = course.minimise(course.problem.program, course.first_parameters(initial))
-    return descent.end(descent.reason)
-
-
-def _from_every_start(
-    problem: Problem,
-    exact: ExactAnswer | None,
-    initial: FloatArray | None,
-    emit: Callable[[AnyEvent], None],
-    should_stop: Callable[[], bool],
-) -> Outcome:
-    outcome = Outcome()
-    for index in range(problem.spec.starts):
-        if index and should_stop():
-            break
-        course = Course(problem, exact, emit, should_stop, index)
-        end = search(course, initial if index == 0 else None)
-        outcome.ends.append(end)
-        outcome.starts.append(course.record(end))
-    return outcome
-
-
-def _started(problem: Problem, exact: ExactAnswer | None) -> Started:
-    prepared, spec = problem.prepared, problem.spec
+def _started(problem: Problem, exact: ExactAnswer | None, n_starts: int) -> Started:
+    prepared = problem.prepared
     return Started(
         label=prepared.label,
         energy_unit=prepared.energy_unit,
@@ -105,5 +81,5 @@ def _started(problem: Problem, exact: ExactAnswer | None) -> Started:
         exact_energy=None if exact is None else exact.energy,
         target_error=target_error(problem, exact),
         n_parameters=problem.program.n_parameters,
-        n_starts=spec.starts,
+        n_starts=n_starts,
     )

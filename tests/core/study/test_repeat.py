@@ -6,6 +6,7 @@ import pytest
 
 from thalweg.study import repeat as module
 from thalweg.study.events import Finished, Iteration
+from thalweg.study.executors import Local
 from thalweg.study.repeat import OuterEnds, repeat
 from thalweg.study.run import run
 from thalweg.study.spec import StudySpec, with_setting
@@ -72,6 +73,33 @@ def test_a_start_cut_by_the_clock_does_not_end_the_starts_after_it():
     assert again.deviation < 1e-10
 
 
+def test_only_the_starts_that_the_run_has_are_repeated():
+    whole = run(SPEC.model_copy(update={"starts": 3}))
+    energies = [s.energy for s in whole.starts]
+    recorded = whole.model_copy(update={"starts": (whole.starts[0], whole.starts[2]), "energy": min(energies[0], energies[2])})
+    again = repeat(recorded)
+    assert [s.seed for s in again.result.starts] == [s.seed for s in recorded.starts]
+    assert [s.energy for s in again.result.starts] == [energies[0], energies[2]]
+
+
+def test_a_start_that_ends_by_itself_at_the_recorded_iterate_does_not_end_the_next():
+    whole = run(SPEC.model_copy(update={"starts": 2}))
+    cut = whole.starts[0].model_copy(update={"stop_reason": "seconds"})
+    again = repeat(whole.model_copy(update={"starts": (cut, whole.starts[1])}))
+    assert len(again.result.starts) == 2
+    assert again.deviation < 1e-10
+
+
+@pytest.mark.parametrize(("reason", "beside"), [("gradient", True), ("seconds", False)])
+def test_starts_are_repeated_side_by_side_unless_one_is_to_be_ended_apart(first, monkeypatch, reason, beside):
+    used = []
+    monkeypatch.setattr(module, "run", lambda spec, emit, stop, local, only: used.append((local, only)) or first)
+    local = Local(2)
+    start = first.starts[0].model_copy(update={"stop_reason": reason})
+    repeat(first.model_copy(update={"starts": (start,)}), local=local)
+    assert used == [(local if beside else None, [0])]
+
+
 def test_a_stopped_repetition_gives_no_figure(first):
     seen = []
     assert repeat(first, seen.append, lambda: any(isinstance(e, Iteration) for e in seen)) is None
@@ -90,7 +118,7 @@ def test_an_end_is_due_once(first):
 def test_the_time_limit_of_the_first_run_does_not_cut_the_second(first, monkeypatch):
     used = []
 
-    def record(spec, emit, should_stop):
+    def record(spec, *_):
         used.append(spec)
         return first
 
