@@ -16,6 +16,7 @@ from thalweg_app.presenters.scan_control import OFFERED, SPACINGS, ScanControl
 from thalweg_app.presenters.wording import time_left
 from thalweg_app.theme import SPACE, icon
 from thalweg_app.widgets.fold import Fold
+from thalweg_app.widgets.tab_order import visit_after
 
 #: Rest after an edit before the time is estimated.
 REST_MS = 600
@@ -168,6 +169,7 @@ class ScanForm(QWidget):
             form.edited.connect(self._edit_within)
             self._forms[key] = form
             self._fields.addWidget(form)
+            visit_after(self.path, form)
         for name, form in self._forms.items():
             form.setVisible(name == key)
         path = self._scans.draft.path

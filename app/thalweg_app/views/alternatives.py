@@ -9,6 +9,7 @@ from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 from thalweg.registry import Alternatives, key_of
 from thalweg_app.forms import OptionsForm, QuietCombo, describe, form_grid
 from thalweg_app.presenters.setup import SetupEditing, node_at
+from thalweg_app.widgets.tab_order import visit_after
 
 
 class AlternativeBox(QWidget):
@@ -49,6 +50,7 @@ class AlternativeBox(QWidget):
             form.edited.connect(self._setup.edit)
             self._forms[key] = form
             self._layout.addWidget(form)
+            visit_after(self.menu, form)
         for other, form in self._forms.items():
             form.setVisible(other == key)
         self._forms[key].show_values(self._setup.shown, self._setup.errors)

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from PySide6.QtGui import QAction, QActionGroup, QKeySequence
 from PySide6.QtWidgets import QApplication, QMenu
 
+from thalweg_app.plots.all_pictures import PICTURES
 from thalweg_app.presenters.wording import DIFFERENCE_UNITS, unit_name
 from thalweg_app.views.dialogs import show_about
 
@@ -72,7 +73,7 @@ class Menus:
         self._add(menu, "Paste atoms…", None, self._window.files.ask_paste, "Reads a list of atoms from text.")
         self._add(menu, "Copy picture", "Ctrl+Shift+C", lambda: self._window.picture.copy_image(), "Copies the picture shown as an image.")
         menu.addSeparator()
-        menu.addActions([ledger.use_action, ledger.delete_action])
+        menu.addActions([ledger.use_action, ledger.start_action, ledger.delete_action])
 
     def _run_menu(self) -> None:
         menu, ledger = self._menu("&Run"), self._window.ledger_view
@@ -86,7 +87,7 @@ class Menus:
 
     def _view_menu(self) -> None:
         menu, window = self._menu("&View"), self._window
-        for i, picture in enumerate(window.pictures):
+        for i, picture in enumerate(PICTURES):
             self._add(menu, picture.title, f"Ctrl+{i + 1}", partial(window.show_picture, i), picture.about)
         menu.addSeparator()
         appearances = menu.addMenu("&Appearance")

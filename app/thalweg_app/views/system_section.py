@@ -24,7 +24,10 @@ from thalweg_app.views.molecule_picture import MoleculePicture
 from thalweg_app.views.orbital_ladder import OrbitalLadder
 from thalweg_app.widgets.figure_grid import FigureGrid
 from thalweg_app.widgets.fold import Fold
+from thalweg_app.widgets.tab_order import visit_after
 
+#: Errors of these settings stand beside them.
+SHOWN_ELSEWHERE = ("system", "encoding", "ansatz", "optimizer", "stop", "target", "neighbour")
 #: Offered while typing; any basis of the library can be typed.
 BASIS_NAMES = [
     "sto-3g",
@@ -110,7 +113,7 @@ class SystemSection(QWidget):
         shown_in_form = {row.path for row in self._form(key).rows}
         shown_in_form |= self.lattice.paths() if isinstance(system, LatticeModel) else set()
         loose = [e for path, e in errors.items() if path.startswith("system") and path not in shown_in_form]
-        loose += [e for path, e in errors.items() if path.partition(".")[0] not in ("system", "encoding", "ansatz", "optimizer", "stop", "target")]
+        loose += [e for path, e in errors.items() if path.partition(".")[0] not in SHOWN_ELSEWHERE]
         self._problem.setText("\n".join(str(e) for e in loose))
         self._problem.setVisible(bool(loose))
 
@@ -156,6 +159,7 @@ class SystemSection(QWidget):
                     row.editor.setCompleter(completer)
             self._forms[key] = form
             self._form_place.addWidget(form)
+            visit_after(self.atoms_fold, form)
         return self._forms[key]
 
     def _toggle_orbital(self, number: int) -> None:

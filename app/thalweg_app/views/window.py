@@ -6,7 +6,7 @@ from pathlib import Path
 
 from PySide6.QtCore import QSettings, QSize, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
-from PySide6.QtWidgets import QApplication, QMainWindow, QSplitter, QTabWidget
+from PySide6.QtWidgets import QApplication, QMainWindow, QSplitter
 
 from thalweg.study.events import Failed
 from thalweg_app.colours import Palette
@@ -15,6 +15,7 @@ from thalweg_app.plots.all_pictures import PICTURES
 from thalweg_app.plots.chart_view import load_ahead
 from thalweg_app.plots.curve import CurvePicture
 from thalweg_app.plots.picture import Picture
+from thalweg_app.plots.picture_tabs import PictureTabs
 from thalweg_app.presenters.document import Recovery
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import Theme, application_icon
@@ -44,7 +45,7 @@ class Window(QMainWindow):
         self.files = Files(self, workbench, recovery)
         self.help = HelpBubble(self)
         self.column = SetupColumn(workbench)
-        self.pictures: list[Picture] = [make(workbench) for make in PICTURES]
+        self.pictures = PictureTabs(workbench)
         self.ledger_view = LedgerView(workbench.ledger)
         self.status = StatusLine(workbench)
         self._lay_out()
@@ -60,10 +61,10 @@ class Window(QMainWindow):
     @property
     def picture(self) -> Picture:
         """The picture shown."""
-        return self.pictures[self.tabs.currentIndex()]
+        return self.pictures.shown
 
     def show_picture(self, index: int) -> None:
-        self.tabs.setCurrentIndex(index)
+        self.pictures.setCurrentIndex(index)
         self.picture.view.setFocus()
 
     def run(self) -> None:
@@ -74,13 +75,18 @@ class Window(QMainWindow):
     def scan(self) -> None:
         """Takes over what is still being typed, shows the curve, and runs its points."""
         self._commit_typing()
-        self.show_picture(next(i for i, picture in enumerate(self.pictures) if isinstance(picture, CurvePicture)))
+        self.show_picture(PICTURES.index(CurvePicture))
         self.workbench.scans.start()
 
     def _commit_typing(self) -> None:
         focus = QApplication.focusWidget()
         if isinstance(focus, TextEntry):
             focus.commit()
+
+    def start_from_selected(self) -> None:
+        """Lets the search begin at the parameters of the selected run, and shows where that is said."""
+        self.workbench.start_from_selected()
+        self.column.show_start()
 
     def open_path(self, path: str) -> None:
         self.files.open(Path(path))
@@ -121,15 +127,8 @@ class Window(QMainWindow):
         self.close()
 
     def _lay_out(self) -> None:
-        self.tabs = QTabWidget()
-        self.tabs.setDocumentMode(True)
-        self.tabs.setAccessibleName("Pictures")
-        self.tabs.setMinimumHeight(340)  # a tall picture must not squeeze the ledger of all others
-        for i, picture in enumerate(self.pictures):
-            self.tabs.addTab(picture, picture.title)
-            self.tabs.setTabToolTip(i, f"{picture.about} (Ctrl+{i + 1})")
         self.right = QSplitter(Qt.Orientation.Vertical)
-        self.right.addWidget(self.tabs)
+        self.right.addWidget(self.pictures)
         self.right.addWidget(self.ledger_view)
         self.right.setStretchFactor(0, 3)
         self.right.setStretchFactor(1, 1)
@@ -174,8 +173,9 @@ class Window(QMainWindow):
         self.column.system.paste_asked.connect(self.files.ask_paste)
         self.column.system.sample_asked.connect(self.files.open_sample)
         self.ledger_view.use_asked.connect(bench.use_selected)
+        self.ledger_view.start_asked.connect(self.start_from_selected)
         self.ledger_view.check_asked.connect(bench.check_selected)
-        self.tabs.currentChanged.connect(lambda _: self.redraw())
+        self.pictures.currentChanged.connect(lambda _: self.redraw())
         self.theme.changed.connect(self._apply_palette)
 
     def show_failure(self, failure: Failed) -> None:
@@ -193,8 +193,7 @@ class Window(QMainWindow):
         if self._loading.is_alive():
             QTimer.singleShot(PREPARE_MS, self, self._prepare)
             return
-        for picture in self.pictures:
-            picture.prepare()
+        self.pictures.shown.prepare()
 
     def _keep(self) -> None:
         self._recovery.keep(self.workbench.document)
@@ -202,8 +201,7 @@ class Window(QMainWindow):
     def _apply_palette(self, palette: Palette) -> None:
         self.column.set_palette(palette)
         self.ledger_view.set_palette(palette)
-        for picture in self.pictures:
-            picture.set_palette(palette)
+        self.pictures.set_palette(palette)
 
     def _restore_place(self) -> None:
         settings = QSettings()

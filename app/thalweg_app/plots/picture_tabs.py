@@ -1,0 +1,68 @@
+"""The pictures as tabs. A picture is built when it is shown first, or ahead when nothing else is to be done."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from PySide6.QtWidgets import QTabWidget, QVBoxLayout, QWidget
+
+from thalweg_app.colours import LIGHT, Palette
+from thalweg_app.plots.all_pictures import PICTURES
+from thalweg_app.plots.picture import Picture
+from thalweg_app.presenters.workbench import Workbench
+from thalweg_app.widgets.tab_order import visit_after
+
+
+class PictureTabs(QTabWidget):
+    """A list of pictures too: asking for one builds it."""
+
+    def __init__(self, workbench: Workbench) -> None:
+        super().__init__()
+        self._workbench, self._palette = workbench, LIGHT
+        self._built: dict[int, Picture] = {}
+        self.setDocumentMode(True)
+        self.setAccessibleName("Pictures")
+        self.setMinimumSize(640, 340)  # no picture, whenever it is built, widens the window or squeezes the ledger
+        for i, kind in enumerate(PICTURES):
+            page = QWidget()
+            QVBoxLayout(page).setContentsMargins(0, 0, 0, 0)
+            self.addTab(page, kind.title)
+            self.setTabToolTip(i, f"{kind.about} (Ctrl+{i + 1})")
+
+    def __len__(self) -> int:
+        return len(PICTURES)
+
+    def __getitem__(self, place: int) -> Picture:
+        if place not in self._built:
+            self._built[place] = self._build(place)
+        return self._built[place]
+
+    def __iter__(self) -> Iterator[Picture]:
+        return (self[i] for i in range(len(self)))
+
+    @property
+    def shown(self) -> Picture:
+        return self[self.currentIndex()]
+
+    def build_ahead(self) -> bool:
+        """Builds one more picture; False when all are there."""
+        place = next((i for i in range(len(self)) if i not in self._built), None)
+        if place is None:
+            return False
+        self._built[place] = self._build(place)
+        return True
+
+    def set_palette(self, palette: Palette) -> None:
+        self._palette = palette
+        for picture in self._built.values():
+            picture.set_palette(palette)
+
+    def _build(self, place: int) -> Picture:
+        picture = PICTURES[place](self._workbench)
+        picture.set_palette(self._palette)
+        layout = self.widget(place).layout()
+        assert layout is not None
+        layout.addWidget(picture)
+        picture.show()  # a layout would show it a turn later
+        visit_after(self.tabBar(), picture)
+        return picture
