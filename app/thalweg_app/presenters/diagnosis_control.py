@@ -136,6 +136,7 @@ class DiagnosisControl:
         settings = {
             "study": run.result.spec if run is not None else self._open_study(),
             "centre": run.result.final_parameters if run is not None else (),
+            "labels": run.result.parameter_labels if run is not None else (),
             "directions": tuple(directions),
             "reach": parse_number(draft.reach, "reach"),
             "points": parse_whole(draft.points, "points"),
@@ -149,7 +150,7 @@ class DiagnosisControl:
             other = next((run for run in self._ledger.ticked if run is not self._ledger.selected), None)
             if other is None:
                 raise StudyError("No other run is ticked", "the line leads from the selected run to a ticked one", "Tick a run in the ledger")
-            return Direction(kind="point", point=other.result.final_parameters)
+            return Direction(kind="point", point=other.result.final_parameters, labels=other.result.parameter_labels)
         return Direction(kind="steepest" if kind == "steepest" else "random")
 
     def _open_study(self) -> StudySpec:

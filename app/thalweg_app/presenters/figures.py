@@ -99,4 +99,5 @@ class DerivedFigures:
 
 def key_of(spec: StudySpec) -> Any:
     """What the figures depend on; an edit of the search leaves them fresh."""
-    return spec.system, spec.encoding, spec.ansatz, spec.memory_gib, spec.exact
+    start = (spec.neighbour, spec.ladder, spec.continuation) if spec.neighbour.is_given else None  # what may refuse or move the start
+    return spec.system, spec.encoding, spec.ansatz, spec.reference, start, spec.memory_gib, spec.exact

@@ -132,6 +132,11 @@ class Ledger:
         return self.run(self._selected)
 
     @property
+    def can_start(self) -> bool:
+        """Whether the selected run has parameters that a search can start from."""
+        return self.selected is not None and bool(self.selected.result.final_parameters)
+
+    @property
     def ticked(self) -> list[Run]:
         return [run for run in self._runs if run.number in self._ticked]
 

@@ -9,13 +9,14 @@ from typing import Any
 
 from thalweg.errors import StudyError
 from thalweg.options import Options
-from thalweg.study.spec import UNIONS, StudySpec, spec_from_data, suited
+from thalweg.study.spec import UNIONS, Neighbour, StudySpec, spec_from_data, suited
 from thalweg.systems import Integrals, Molecule
 from thalweg.systems.elements import find_element
 from thalweg_app.presenters.fields import FieldFacts, fields_of
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.listeners import Listeners
 from thalweg_app.presenters.numbers import parse_number, parse_whole
+from thalweg_app.presenters.wording import counted
 
 _NOTHING: Mapping[Any, Any] = MappingProxyType({})
 
@@ -72,6 +73,12 @@ class SetupEditing:
         if not self.has_system:
             return "There is no system yet: open a geometry, paste one, or take a sample."
         return next((str(error) for error in self.errors.values()), "")
+
+    @property
+    def start_line(self) -> str:
+        """Which run the search starts from; empty where it begins as the trial state says."""
+        start = self.spec.neighbour
+        return f"Starts from {start.source or 'another run'}: {counted(len(start.parameters), 'parameter')}" if start.is_given else ""
 
     def load(self, spec: StudySpec) -> None:
         """Takes over settings as a new beginning, which undo does not reach behind."""
@@ -147,6 +154,15 @@ class SetupEditing:
         """Puts the settings of a run back; undo returns to what was there."""
         if spec != self.spec or self._draft.errors:
             self._record(text, Draft(spec, shelf=self._draft.shelf))
+
+    def start_from(self, run: Neighbour, text: str) -> None:
+        """The search begins at the parameters of a run, whatever else is chosen."""
+        if run != self.spec.neighbour:
+            self._record(text, replace(self._draft, spec=self.spec.model_copy(update={"neighbour": run})))
+
+    def leave_start(self) -> None:
+        """The search begins as the trial state says."""
+        self.start_from(Neighbour(), "removal of the start")
 
     def refuse(self, spec: StudySpec, error: StudyError) -> None:
         """Notes that a calculation refused these settings; the mark goes when they change."""

@@ -8,6 +8,7 @@ from typing import Literal, Protocol
 
 import numpy as np
 
+from thalweg.ansatz import Adaptive
 from thalweg.arrays import FloatArray
 from thalweg.study.result import GrowthStep, StudyResult, Trace
 from thalweg.units import CHEMICAL_ACCURACY
@@ -160,7 +161,7 @@ def growth_table(result: StudyResult | None, difference_unit: str = "mEh") -> Ta
     rows: list[tuple[str, ...]] = []
     keys: list[tuple[float | str, ...]] = []
     for number, step in enumerate(result.growth):
-        added = "; ".join(step.added) or result.reference_name
+        added = _added(result, number)
         error = wording.difference(step.error, result.energy_unit, difference_unit)
         rows.append((str(number), added, wording.count(step.parameters), wording.count(step.two_qubit_gates), wording.energy(step.energy), error))
         keys.append(
@@ -168,6 +169,14 @@ def growth_table(result: StudyResult | None, difference_unit: str = "mEh") -> Ta
         )
     header = ("Step", "Added", "Parameters", "Two-qubit gates", f"Energy / {wording.unit_name(result.energy_unit)}", f"Error / {unit}")
     return Table(header, tuple(rows), (True, False, True, True, True, True), tuple(keys), "What each step added, and the energy after it.")
+
+
+def _added(result: StudyResult, number: int) -> str:
+    """What a step appended. Growth begins with the reference, or with all that another run had grown."""
+    added = result.growth[number].added
+    if number == 0 and added and isinstance(result.spec.ansatz, Adaptive):
+        return f"{wording.counted(len(added), 'operator')} of {result.spec.neighbour.source or 'another run'}"
+    return "; ".join(added) or result.reference_name
 
 
 def _levels(main: Shown) -> tuple[Level, ...]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import Any
 
+from thalweg.errors import StudyError
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 from thalweg_app.presenters import jobs
@@ -116,6 +117,16 @@ class Workbench:
         run = self.ledger.selected
         if run is not None:
             self.setup.use(run.result.spec, f"use of run {run.number}'s set-up")
+
+    def start_from_selected(self) -> None:
+        """Lets the search of the set-up begin at the parameters of the selected run."""
+        run = self.ledger.selected
+        if run is None:
+            return
+        try:
+            self.setup.start_from(run.result.as_start(f"run {run.number}"), f"start from run {run.number}")
+        except StudyError as error:
+            self.told(str(error))
 
     def choose_difference_unit(self, unit: str) -> None:
         self.difference_unit = self.ledger.difference_unit = unit

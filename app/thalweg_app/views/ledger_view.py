@@ -107,9 +107,10 @@ class LedgerModel(QAbstractTableModel):
 
 
 class LedgerView(QWidget):
-    """`use_asked` and `check_asked` concern the selected run."""
+    """`use_asked`, `start_asked` and `check_asked` concern the selected run."""
 
     use_asked = Signal()
+    start_asked = Signal()
     check_asked = Signal()
 
     def __init__(self, ledger: Ledger) -> None:
@@ -153,7 +154,7 @@ class LedgerView(QWidget):
 
     def set_palette(self, palette: Palette) -> None:
         self.model.palette = palette
-        for action, name in ((self.use_action, "reuse"), (self.check_action, "check"), (self.delete_action, "delete")):
+        for action, name in zip(self.actions_of_run, ("reuse", "begin", "check", "delete"), strict=True):
             action.setIcon(icon(name, palette.ink, 16))
         self.model.refresh()
 
@@ -168,8 +169,9 @@ class LedgerView(QWidget):
 
     def _show_selection(self) -> None:
         run = self._ledger.selected
-        for action in (self.use_action, self.check_action, self.delete_action):
+        for action in self.actions_of_run:
             action.setEnabled(run is not None)
+        self.start_action.setEnabled(self._ledger.can_start)
         row = next((i for i, r in enumerate(self.model.rows) if run is not None and r.number == run.number), -1)
         if row >= 0 and self.view.currentIndex().row() != row:
             self.view.selectRow(row)
@@ -183,16 +185,20 @@ class LedgerView(QWidget):
         self.use_action = QAction("Use this set-up", self)
         self.use_action.triggered.connect(lambda _=False: self.use_asked.emit())
         self.use_action.setToolTip("Puts the settings of the selected run back into the set-up column.")
+        self.start_action = QAction("Start from this run", self)
+        self.start_action.triggered.connect(lambda _=False: self.start_asked.emit())
+        self.start_action.setToolTip("Lets the search of the set-up column begin at the final parameters of the selected run.")
         self.check_action = QAction("Check again", self)
         self.check_action.triggered.connect(lambda _=False: self.check_asked.emit())
         self.check_action.setToolTip("Repeats the selected run and states the deviation.")
         self.delete_action = QAction("Delete run", self)
         self.delete_action.triggered.connect(lambda _=False: self.delete_selected())
         self.delete_action.setToolTip("Takes the selected run out of the ledger; undo brings it back.")
+        self.actions_of_run = (self.use_action, self.start_action, self.check_action, self.delete_action)
 
     def _menu(self) -> QMenu:
         menu = QMenu(self)
-        menu.addActions([self.use_action, self.check_action])
+        menu.addActions([self.use_action, self.start_action, self.check_action])
         menu.addSeparator()
         menu.addAction(self.delete_action)
         return menu
@@ -205,7 +211,7 @@ class LedgerView(QWidget):
         row.setSpacing(2)
         row.addWidget(title)
         row.addStretch(1)
-        for action in (self.use_action, self.check_action, self.delete_action):
+        for action in self.actions_of_run:
             button = QToolButton()
             button.setDefaultAction(action)
             button.setToolButtonStyle(Qt.ToolButtonStyle.ToolButtonTextBesideIcon)

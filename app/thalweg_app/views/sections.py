@@ -11,12 +11,14 @@ from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import StopRules
 from thalweg.study.derived import StudyFigures
 from thalweg.study.spec import DepthLadder, StudySpec, Target
+from thalweg_app.colours import Palette
 from thalweg_app.forms import OptionsForm
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.setup import SetupEditing
 from thalweg_app.presenters.tables import Figure
 from thalweg_app.theme import SPACE, show_fresh
 from thalweg_app.views.alternatives import AlternativeBox
+from thalweg_app.views.start_line import StartLine
 from thalweg_app.widgets.figure_grid import FigureGrid
 from thalweg_app.widgets.fold import Fold
 
@@ -42,8 +44,9 @@ class SectionBody(QWidget):
         self.problem.setText("\n".join(found))
         self.problem.setVisible(bool(found))
 
-    def folds(self) -> list[Fold]:
-        return list(self.findChildren(Fold))
+    def set_palette(self, palette: Palette) -> None:
+        for fold in self.findChildren(Fold):
+            fold.refresh_icon()
 
 
 class EncodingSection(SectionBody):
@@ -72,6 +75,7 @@ class TrialSection(SectionBody):
     def __init__(self, setup: SetupEditing) -> None:
         super().__init__(setup)
         self.choice = AlternativeBox(setup, "ansatz", "Ansatz", ANSATZE)
+        self.start = StartLine(setup)
         self.figures = FigureGrid()
         self._order = QLabel(wordWrap=True)
         self._order.setProperty("role", "muted")
@@ -81,14 +85,19 @@ class TrialSection(SectionBody):
         ]
         for form in self.forms:
             form.edited.connect(setup.edit)
-        for part in (self.choice, *self.forms, self.figures, self._order):
+        for part in (self.choice, self.start, *self.forms, self.figures, self._order):
             self.column.addWidget(part)
 
     def refresh(self) -> None:
         self.choice.refresh()
         self.show_problem("ansatz", "ladder")
+        self.start.refresh()
         for form in self.forms:
             form.show_values(self.setup.shown, self.setup.errors)
+
+    def set_palette(self, palette: Palette) -> None:
+        super().set_palette(palette)
+        self.start.set_palette(palette)
 
     def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
         self.figures.show_figures([] if figures is None else _trial_figures(figures), is_fresh)

@@ -95,11 +95,14 @@ class SetupColumn(QWidget):
         for section in self.sections.values():
             section.refresh_icon()
         for body in (self.encoding, self.trial, self.search):
-            for fold in body.folds():
-                fold.refresh_icon()
+            body.set_palette(palette)
         self.run_button.setIcon(icon("run", palette.on_accent, 14))
         self.stop_button.setIcon(icon("stop", palette.ink, 14))
         self.refresh_answer()
+
+    def show_start(self) -> None:
+        """Opens the trial state, where it stands which run the search starts from."""
+        self.sections["ansatz"].set_open(True)
 
     def _reveal(self, path: str) -> None:
         """Opens the section that holds a field with an error."""
