@@ -75,19 +75,21 @@ class Adaptive(Options):
         pool = FERMIONIC[key](hamiltonian)
         return pools.symmetric_part(pool, hamiltonian) if self.point_group else pool
 
-    def choose(self, slopes: FloatArray, barred: tuple[int, ...], smallest: float) -> list[int]:
+    def choose(self, slopes: FloatArray, barred: tuple[int, ...], smallest: FloatArray | float) -> list[int]:
         """The operators to append, largest slope first, equal ones in the order of the pool; none of those barred.
 
-        `barred` are the operators appended last, whose slope vanishes but for the rest that the search left.
+        `barred` are the operators appended last, whose slope vanishes but for the rest that the search left. `smallest`: what a slope
+        must exceed, one number for all or one each.
         """
         sizes = np.abs(slopes)
         sizes[list(barred)] = 0.0
+        sizes = np.where(sizes > smallest, sizes, 0.0)
         largest = float(sizes.max(initial=0.0))
-        if largest <= smallest:
+        if largest == 0.0:
             return []
         compared = np.round(sizes / largest, COMPARED_DECIMALS)
         order = np.argsort(-compared, kind="stable")[: self.at_once]
-        return [int(i) for i in order if sizes[i] > smallest]
+        return [int(i) for i in order if sizes[i]]
 
     def start_parameters(self, ground: Ground, program: Program, rng: np.random.Generator) -> FloatArray:
         """Parameters of a program grown by `program.n_parameters` operators, radians, shape (K,)."""

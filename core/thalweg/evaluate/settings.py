@@ -78,12 +78,27 @@ class Source:
     def sampled_gradient(self, parameters: FloatArray, shots: FloatArray, *, random_terms: bool) -> Slopes:
         raise AssertionError("this evaluation draws no shots")
 
-    def _shifted(self, parameters: FloatArray, measure: Callable[[FloatArray, int], Estimate]) -> Slopes:
-        """The gradient from energies at shifted angles; `measure` takes the angles and the parameter that they belong to."""
+    def shifted_slopes(self, parameters: FloatArray, first: int) -> Slopes:
+        """The derivatives by the parameters from number `first` on, by shift rules, each energy counted; shape (K - first,)."""
+        every = self._shifted(parameters, self._at, first)
+        variance = None if every.variance is None else every.variance[first:]
+        return Slopes(every.gradient[first:], variance, every.cost, None if every.shots is None else every.shots[first:])
+
+    def _at(self, angles: FloatArray, parameter: int) -> Estimate:
+        """One energy of a shift rule for the derivative by this parameter."""
+        raise AssertionError(f"{type(self).__name__} shifts no angles")
+
+    def _shifted(self, parameters: FloatArray, measure: Callable[[FloatArray, int], Estimate], first: int = 0) -> Slopes:
+        """The gradient from energies at shifted angles; `measure` takes the angles and the parameter that they belong to.
+
+        Parameters before number `first` are left out: theirs stays 0.
+        """
         map_, angles = self.simulator.angles, self.simulator.angles.of(parameters)
         by_parameter, variance = np.zeros(self.n_parameters), np.zeros(self.n_parameters)
         shots, count, cost, is_exact = np.zeros(self.n_parameters), np.zeros(self.n_parameters), Cost(0), True
         for a, (k, factor, highest) in enumerate(zip(map_.parameter.tolist(), map_.factor.tolist(), map_.highest.tolist(), strict=True)):
+            if k < first:
+                continue
             rule = SHIFT_RULES[highest]
             for shift, weight in zip(rule.shifts, rule.weights, strict=True):
                 for sign in (1.0, -1.0):

@@ -53,7 +53,7 @@ class SampledSource(Source):
         return self._measured(self.simulator.angles.of(parameters), self._settings.shots)
 
     def energy_and_gradient(self, parameters: FloatArray) -> tuple[Estimate, Slopes]:
-        return self.energy(parameters), self._shifted(parameters, lambda angles, k: self._measured(angles, self._settings.shots))
+        return self.energy(parameters), self._shifted(parameters, self._at)
 
     def metric(self, parameters: FloatArray, part: MetricPart) -> Metric:
         """From overlaps of the state with its shifted copies, each with the shots of one energy."""
@@ -67,6 +67,9 @@ class SampledSource(Source):
         """
         measure = self._drawn if random_terms else self._measured
         return self._shifted(parameters, lambda angles, k: measure(angles, int(shots[k])))
+
+    def _at(self, angles: FloatArray, parameter: int) -> Estimate:
+        return self._measured(angles, self._settings.shots)
 
     def _measured(self, angles: FloatArray, shots: int) -> Estimate:
         weights = self.simulator.set_weights

@@ -177,9 +177,10 @@ def _start_remarks(outcome: Outcome) -> tuple[str, ...]:
 
 
 def _pool_remark(problem: Problem) -> tuple[str, ...]:
-    if not isinstance(problem.spec.ansatz, Adaptive) or isinstance(problem.spec.evaluation, Exact):
+    evaluation = problem.spec.evaluation
+    if not isinstance(problem.spec.ansatz, Adaptive) or isinstance(evaluation, Exact | Shots) or evaluation.gradient == "shift-rule":
         return ()
-    return ("The slopes of the pool are those of the simulation, without noise, and no circuits are counted for them.",)
+    return ("The slopes of the pool are those of the simulation, as gradients are, and no circuits are counted for them.",)
 
 
 def _exact_fields(exact: ExactAnswer | None) -> dict[str, Any]:

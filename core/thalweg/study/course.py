@@ -12,7 +12,8 @@ import numpy as np
 from thalweg.arrays import FloatArray
 from thalweg.circuit.program import Program
 from thalweg.errors import Stopped
-from thalweg.estimate import FREE
+from thalweg.estimate import FREE, Slopes
+from thalweg.evaluate import Shots
 from thalweg.exact.answer import ExactAnswer
 from thalweg.optimize.objective import CountedObjective, Progress, StopRules
 from thalweg.simulate.engine import Engine
@@ -166,6 +167,16 @@ class Course:
             raise Stopped(reason)
         return objective.best_parameters if np.isfinite(objective.best_energy) else start
 
+    def measured_slopes(self, program: Program, parameters: FloatArray, first: int) -> Slopes | None:
+        """The derivatives by the parameters from number `first` on as a device would measure them, counted; None where gradients are not."""
+        problem = replace(self.problem, program=program)
+        source = search_source(problem, self.engine(program), self._draws, self.watch)
+        if not source.begins_by_simulation:
+            return None
+        slopes = source.shifted_slopes(parameters, first)
+        self._spent += slopes.cost
+        return slopes
+
     def take_step(self, descent: Descent, added: tuple[str, ...], largest_slope: float | None) -> None:
         """Records and reports what the trial state has grown to."""
         step = GrowthStep(
@@ -182,8 +193,15 @@ class Course:
         self.steps.append(step)
         self._emit(StepTaken(start=self.index, number=len(self.steps) - 1, step=step))
 
-    def reaches_target(self, energy: float) -> bool:
-        return self.target_energy is not None and energy <= self.target_energy
+    def reaches_target(self, descent: Descent) -> bool:
+        """Whether its energy is within the target; a measured one must be so by two standard errors."""
+        margin = 2 * (descent.standard_error or 0.0) if self.is_sampled else 0.0
+        return self.target_energy is not None and descent.energy + margin <= self.target_energy
+
+    @property
+    def is_sampled(self) -> bool:
+        """Whether energies carry statistical noise."""
+        return isinstance(self.problem.spec.evaluation, Shots)
 
     def record(self, end: SearchEnd) -> StartRecord:
         """Everything that was reported, and the end."""

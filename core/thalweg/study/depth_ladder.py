@@ -32,13 +32,13 @@ def climb(course: Course) -> SearchEnd:
         for depth in range(first_depth(course.problem), getattr(ansatz, name) + 1):
             course.watch.stage(f"Depth {depth}")
             descent = _rung(course, ansatz.model_copy(update={name: depth}), kept[-1] if kept else None)
-            if kept and descent.energy > kept[-1].energy - course.problem.spec.ladder.least_gain:
+            if kept and not _falls(course, kept[-1], descent):
                 reason = descent.reason if descent.is_final else "no-gain"
                 break
             kept.append(descent)
             course.take_step(descent, (f"depth {depth}",), None)
             reason = descent.reason
-            if descent.is_final or course.reaches_target(descent.energy):
+            if descent.is_final or course.reaches_target(descent):
                 reason = reason if descent.is_final else "target"
                 break
     except Stopped as stop:
@@ -64,10 +64,18 @@ def _rung(course: Course, ansatz: Any, below: Descent | None) -> Descent:
         return course.minimise(program, course.parameters_of(ansatz, program))
     start: FloatArray = ansatz.from_shallower(below.parameters, program.n_parameters)
     descent = course.minimise(program, start)
-    if descent.is_final or descent.energy <= below.energy - course.problem.spec.ladder.least_gain:
+    if descent.is_final or _falls(course, below, descent):
         return descent
     again = course.minimise(program, course.displaced(start), descent.engine)
     return min(again, descent, key=lambda d: d.energy)
+
+
+def _falls(course: Course, below: Descent, descent: Descent) -> bool:
+    """Whether one layer more gained enough; measured energies must show it by two standard errors of their difference."""
+    least = course.problem.spec.ladder.least_gain
+    if course.is_sampled:
+        least = max(least, 2.0 * float(np.hypot(below.standard_error or 0.0, descent.standard_error or 0.0)))
+    return descent.energy <= below.energy - least
 
 
 def _end(course: Course, kept: list[Descent], reason: str) -> SearchEnd:

@@ -37,7 +37,8 @@ def grow(course: Course, ansatz: Adaptive) -> SearchEnd:
             raise
         reason = stop.reason
     first = growing.descents[0]
-    best = min(growing.descents, key=lambda descent: descent.energy)
+    # where energies are measured, the lowest of many would be low by luck
+    best = growing.descents[-1] if course.is_sampled else min(growing.descents, key=lambda descent: descent.energy)
     end = best.end(reason, tuple(course.steps))
     return replace(end, start_parameters=first.start, start_energy=first.start_energy, start_gradient_norm=growing.first_slope)
 
@@ -60,9 +61,14 @@ class _Growing:
         barred = tuple(pool.labels.index(label) for label in added[-ansatz.at_once :])
         while True:
             slopes = slopes_at(descent.engine.state(descent.parameters))
-            self._take_step(descent, added, float(np.abs(slopes).max(initial=0.0)))
-            chosen = ansatz.choose(slopes, barred, SMALLEST_SLOPE)
-            reason = self._reason_to_end(descent, slopes, chosen)
+            if not course.steps:
+                self.first_slope = float(np.abs(slopes).max(initial=0.0))
+            reason, smallest = self._reason_to_end(descent), np.full(slopes.size, SMALLEST_SLOPE)
+            if not reason:
+                slopes, smallest = self._as_measured(pool, descent, slopes, smallest)
+            course.take_step(descent, added, float(np.abs(slopes).max(initial=0.0)))
+            chosen = ansatz.choose(slopes, barred, smallest)
+            reason = reason or self._reason_of_slopes(slopes, chosen, smallest)
             if reason:
                 return reason
             count = descent.problem.program.n_parameters
@@ -77,21 +83,36 @@ class _Growing:
                 return descent.reason
             self.descents.append(descent)
 
-    def _take_step(self, descent: Descent, added: tuple[str, ...], largest: float) -> None:
-        if not self._course.steps:
-            self.first_slope = largest
-        self._course.take_step(descent, added, largest)
+    def _as_measured(self, pool: Any, descent: Descent, slopes: FloatArray, smallest: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """The slopes of the pool as the evaluation gives them, and what each must exceed to count.
 
-    def _reason_to_end(self, descent: Descent, slopes: FloatArray, chosen: list[int]) -> str:
+        All operators are appended with the angle 0, where each leaves the others their slopes. Of N slopes that are nothing but noise the
+        largest is about sigma sqrt(2 ln N) (Donoho and Johnstone 1994).
+        """
+        program = descent.problem.program
+        self._course.watch.stage(f"Slopes of {len(pool)} operators")
+        whole: Any = pool.grown(program, list(range(len(pool))))
+        at = np.concatenate([descent.parameters, np.zeros(len(pool))])
+        measured = self._course.measured_slopes(whole, at, program.n_parameters)
+        if measured is None:
+            return slopes, smallest
+        if measured.variance is not None:
+            smallest = np.maximum(smallest, np.sqrt(2.0 * np.log(max(len(pool), 2)) * measured.variance))
+        return measured.gradient, smallest
+
+    def _reason_to_end(self, descent: Descent) -> str:
         if descent.is_final:
             return descent.reason
-        if self._ansatz.at_target and self._course.reaches_target(descent.energy):
+        if self._ansatz.at_target and self._course.reaches_target(descent):
             return "target"
-        if float(np.linalg.norm(slopes)) < self._ansatz.least_slope or not chosen:
+        return "operators" if descent.problem.program.n_parameters >= self._ansatz.max_operators else ""
+
+    def _reason_of_slopes(self, slopes: FloatArray, chosen: list[int], smallest: FloatArray) -> str:
+        if float(np.linalg.norm(slopes)) < self._ansatz.least_slope:
             return "pool-slope"
-        if descent.problem.program.n_parameters >= self._ansatz.max_operators:
-            return "operators"
-        return ""
+        if chosen:
+            return ""
+        return "slope-noise" if np.any(smallest > SMALLEST_SLOPE) else "pool-slope"
 
 
 def pool_slopes(problem: Problem, pool: Any, watch: Watch) -> Callable[[Any], FloatArray]:

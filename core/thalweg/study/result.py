@@ -24,6 +24,7 @@ STOP_REASONS: dict[str, str] = {
     "cut-off": "the calculation was cut off; the lowest energy so far is kept",
     "no-parameters": "the trial state has no parameters",
     "pool-slope": "no operator of the pool has a slope above the limit",
+    "slope-noise": "no slope of the pool stands out of its statistical error",
     "operators": "the limit on the number of operators was reached",
     "no-gain": "one layer more no longer lowered the energy",
     "not-finite": "the energy became infinite or not a number",
@@ -115,7 +116,7 @@ class GrowthStep(Record):
     two_qubit_gates: int | None
     energy: float
     error: float | None
-    largest_slope: float | None  # among the operators of the pool, after this step; None without a pool
+    largest_slope: float | None  # among the operators of the pool, after this step, as they were measured; None without a pool
     iteration: int  # iterations and evaluations of the whole start when the step ended
     evaluations: int
     standard_error: float | None = None  # of a sampled energy, or the one that shots would have

@@ -7,6 +7,7 @@ from collections.abc import Callable, Collection
 from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import FloatArray
 from thalweg.exact.answer import ExactAnswer
+from thalweg.study.afresh import measured_afresh
 from thalweg.study.assemble import assemble
 from thalweg.study.events import AnyEvent, Finished, Started, Warned, watch_into
 from thalweg.study.executors import Local
@@ -62,7 +63,8 @@ def run_from(
     exact = exact_answer(problem, watch)
     emit(_started(problem, exact, spec.starts if only is None else 1 + max(only)))
     watch.stage("Minimising")
-    result = assemble(exact, run_starts(problem, exact, initial, emit, should_stop, local, only), begins)
+    outcome = measured_afresh(run_starts(problem, exact, initial, emit, should_stop, local, only))
+    result = assemble(exact, outcome, begins)
     return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
 
 

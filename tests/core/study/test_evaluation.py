@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from support.dense import expansion_matrix
 
-from thalweg.ansatz import UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import UCCSD, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import JordanWigner
 from thalweg.errors import StudyError
 from thalweg.evaluate import Exact, ExactWithError, Shots
@@ -217,13 +217,6 @@ def test_a_stop_is_obeyed_in_the_middle_of_a_gradient():
     assert result.stop_reason == "stopped-by-person"
     assert len(asked) < 35
     assert result.iterations == 0
-
-
-def test_growth_under_shots_says_that_its_slopes_are_exact():
-    result = run(study(ansatz=Adaptive(max_operators=1), optimizer=SPSA(max_iterations=2)))
-    assert any("slopes of the pool" in remark for remark in result.remarks)
-    assert result.measured_energy == result.starts[0].energy
-    assert not any("slopes of the pool" in remark for remark in run(study(ansatz=Adaptive(max_operators=1), evaluation=Exact())).remarks)
 
 
 @pytest.mark.parametrize(
