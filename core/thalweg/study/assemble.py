@@ -20,7 +20,7 @@ from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
 from thalweg.study.lattice_facts import best_string, exact_s_z, facts_with_energies
 from thalweg.study.outcome import Outcome, SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
-from thalweg.study.result import LeadingWeight, StudyResult
+from thalweg.study.result import LeadingWeight, SiteFigures, StudyResult
 from thalweg.study.site_figures import has_site_figures, site_figures
 from thalweg.study.verdict import Evidence, judge
 from thalweg.units import constants_record
@@ -29,7 +29,7 @@ from thalweg.units import constants_record
 LOST_WEIGHT = 1e-6
 
 
-def assemble(exact: ExactAnswer | None, outcome: Outcome, begins: tuple[str, ...] = ()) -> StudyResult:
+def assemble(exact: ExactAnswer | None, exact_sites: SiteFigures | None, outcome: Outcome, begins: tuple[str, ...] = ()) -> StudyResult:
     """The result of a finished or stopped search; `begins` says where it began, in words."""
     best, end = outcome.starts[outcome.best], outcome.ends[outcome.best]
     problem, parameters = end.problem, end.parameters
@@ -87,7 +87,7 @@ def assemble(exact: ExactAnswer | None, outcome: Outcome, begins: tuple[str, ...
         operator_order=program.order,
         pauli_terms=heaviest_terms(encoded.working),
         sites=site_figures(problem, np.asarray(engine.state(parameters))[None]) if has_site_figures(problem) else None,
-        exact_sites=None if exact is None else site_figures(problem, exact.vectors),
+        exact_sites=exact_sites,
         system_facts=facts_with_energies(problem, energy, exact),
         best_string=best_string(problem, engine, parameters),
         seed=problem.spec.seed,

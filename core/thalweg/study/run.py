@@ -17,6 +17,7 @@ from thalweg.study.point_seed import PointSeed
 from thalweg.study.problem import Problem, exact_answer, prepare, target_error
 from thalweg.study.result import StudyResult
 from thalweg.study.simulator import refuse_unfit
+from thalweg.study.site_figures import exact_site_figures
 from thalweg.study.spec import StudySpec
 from thalweg.study.starts import run_starts
 
@@ -61,10 +62,11 @@ def run_from(
     for text in warnings_of(problem) + begins:
         emit(Warned(text=text))
     exact = exact_answer(problem, watch)
+    exact_sites = exact_site_figures(problem, exact, watch)
     emit(_started(problem, exact, spec.starts if only is None else 1 + max(only)))
     watch.stage("Minimising")
     outcome = measured_afresh(run_starts(problem, exact, initial, emit, should_stop, local, only))
-    result = assemble(exact, outcome, begins)
+    result = assemble(exact, exact_sites, outcome, begins)
     return result, PointSeed(problem.prepared.seed, result.final_parameters, result.parameter_labels)
 
 

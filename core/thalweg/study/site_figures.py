@@ -8,7 +8,8 @@ from typing import Any
 import numpy as np
 
 from thalweg.arrays import FloatArray, plain
-from thalweg.study.problem import Problem
+from thalweg.exact.answer import ExactAnswer
+from thalweg.study.problem import Problem, Recent
 from thalweg.study.result import SiteFigures
 from thalweg.systems.hubbard import Hubbard
 from thalweg.systems.lattice_graph import LatticeGraph
@@ -19,6 +20,8 @@ from thalweg.watch import SILENT, Watch
 MAX_SITES = 20
 #: Momenta of the structure factor up to this length, in units of 1 / nearest distance.
 LONGEST_MOMENTUM = 2 * np.pi + 1e-6
+
+_exact = Recent(2)
 
 
 def has_site_figures(problem: Problem) -> bool:
@@ -32,6 +35,19 @@ def has_site_figures(problem: Problem) -> bool:
     return problem.encoded.working.n_qubits == qubits == system.graph().n_sites and qubits <= MAX_SITES
 
 
+def exact_site_figures(problem: Problem, exact: ExactAnswer | None, watch: Watch = SILENT) -> SiteFigures | None:
+    """Those of the whole exact level, kept for the next run of this system; None where there are none. Raises Stopped when asked to stop."""
+    if exact is None or exact.vectors is None or not has_site_figures(problem):
+        return None
+
+    def work_out() -> tuple[ExactAnswer, SiteFigures | None]:
+        watch.stage("Correlations of the exact state")
+        return exact, site_figures(problem, exact.vectors, watch)
+
+    found: SiteFigures | None = _exact.get((id(exact), problem.spec.system), work_out)[1]
+    return found
+
+
 def site_figures(problem: Problem, vectors: Any, watch: Watch = SILENT) -> SiteFigures | None:
     """Figures of a state, or averaged over an orthonormal set of states, first axis; None where there are none or they cannot be had.
 
@@ -42,7 +58,7 @@ def site_figures(problem: Problem, vectors: Any, watch: Watch = SILENT) -> SiteF
         return None
     if isinstance(system.model, Hubbard):
         in_sector = np.ndim(vectors) == 3  # a circuit of electrons on the register has no such amplitudes
-        return _electron_figures(problem, system.model, system.graph(), np.asarray(vectors)) if in_sector else None
+        return _electron_figures(problem, system.model, system.graph(), np.asarray(vectors), watch) if in_sector else None
     return _spin_figures(system.graph(), np.asarray(vectors), watch)
 
 
@@ -93,7 +109,7 @@ def _momenta(graph: LatticeGraph) -> list[FloatArray]:
     return sorted(kept, key=lambda k: (round(float(np.linalg.norm(k)), 9), round(float(k[0]), 9), round(float(k[1]), 9)))
 
 
-def _electron_figures(problem: Problem, model: Hubbard, graph: LatticeGraph, vectors: np.ndarray) -> SiteFigures:
+def _electron_figures(problem: Problem, model: Hubbard, graph: LatticeGraph, vectors: np.ndarray, watch: Watch) -> SiteFigures:
     """Double occupancy of each site, as the expectation of n_up n_down in the orbitals of the Hamiltonian."""
     from thalweg.operators.sector_hamiltonian import SectorHamiltonian
 
@@ -103,6 +119,7 @@ def _electron_figures(problem: Problem, model: Hubbard, graph: LatticeGraph, vec
     n = graph.n_sites
     occupancy = np.zeros(n)
     for site in range(n):
+        watch.check()
         row = orbitals[site]
         fourfold = np.einsum("p,q,r,s->pqrs", row, row, row, row)
         pair = replace(fermions, core_energy=0.0, one_body=np.zeros((n, n)), two_body=fourfold)

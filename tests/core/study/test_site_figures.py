@@ -3,13 +3,16 @@
 import numpy as np
 import pytest
 
+from thalweg.errors import Stopped
 from thalweg.study.problem import exact_answer, prepare
 from thalweg.study.run import run
-from thalweg.study.site_figures import site_figures
+from thalweg.study.site_figures import exact_site_figures, site_figures
 from thalweg.study.spec import HardwareEfficient, StudySpec
 from thalweg.systems import LatticeModel
 from thalweg.systems.hubbard import Hubbard
 from thalweg.systems.lattice import Chain, Square
+from thalweg.systems.spin_models import Heisenberg
+from thalweg.watch import Watch
 
 
 def exact_sites(system, **settings):
@@ -64,3 +67,14 @@ def test_molecules_have_no_sites():
 
     result = run(StudySpec(system=Molecule(atoms=(("H", 0, 0, 0), ("H", 0, 0, 0.74)))))
     assert result.sites is None
+
+
+@pytest.mark.parametrize("model", [Heisenberg(), Hubbard()], ids=lambda model: model.key)
+def test_figures_of_the_exact_state_are_kept_for_the_next_run_and_hear_a_stop(model):
+    problem = prepare(StudySpec(system=LatticeModel(lattice=Chain(sites=6), model=model), ansatz=HardwareEfficient()))
+    exact = exact_answer(problem)
+    with pytest.raises(Stopped):
+        exact_site_figures(problem, exact, Watch(should_stop=lambda: True))
+    figures = exact_site_figures(problem, exact)
+    assert figures == site_figures(problem, exact.vectors)
+    assert exact_site_figures(problem, exact, Watch(should_stop=lambda: True)) is figures
