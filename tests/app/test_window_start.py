@@ -49,6 +49,19 @@ def test_a_start_that_does_not_fit_is_told_beside_it(qtbot, window, starter):
     assert window.column.run_button.isEnabled()
 
 
+def test_how_much_is_taken_over_is_told_while_it_is_known(qtbot, window, starter):
+    window.workbench.ledger.add(studies.result(**FOUND))
+    window.ledger_view.start_action.trigger()
+    line = window.column.trial.start
+    assert not line.taken.isVisible()
+    qtbot.waitUntil(lambda: bool(jobs_of(starter, INSPECT)) and bool(jobs_of(starter, INSPECT)[-1].payload["neighbour"]["labels"]))
+    jobs_of(starter, INSPECT)[-1].listener.done(studies.figures(start="2 of 44 parameters begin there.").model_dump(mode="json"))
+    assert line.taken.text() == "2 of 44 parameters begin there."
+    assert line.taken.isVisible()
+    line.button.click()
+    assert line.isHidden()
+
+
 def test_the_button_has_a_name_and_a_tip(window):
     button = window.column.trial.start.button
     assert button.accessibleName() == "Start without that run"

@@ -83,7 +83,7 @@ class Workbench:
         if run is None:
             return NOTHING_YET
         figures = self.figures.shown if self.figures.is_fresh else None
-        known = figures.warnings if figures is not None and run.result.spec == self.setup.spec else ()
+        known = (*figures.warnings, figures.start) if figures is not None and run.result.spec == self.setup.spec else ()
         return answer_of(run.number, run.result, known)
 
     @property

@@ -36,7 +36,7 @@ def figures_lines(figures: StudyFigures) -> list[str]:
         ]
     rows += _qubit_rows(figures.qubits, figures.qubits_before_tapering, figures.terms, figures.one_norm, figures.largest_weight, unit)
     rows += [("Symmetry", text) for text in figures.symmetries]
-    rows += [("Parameters", f"{figures.parameters:,} ({counted(figures.factors, 'factor')})")]
+    rows += [("Parameters", f"{figures.parameters:,} ({counted(figures.factors, 'factor')})"), ("Start", figures.start)]
     if figures.two_qubit_gates is not None:
         rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
     if figures.measurement_sets is not None:

@@ -100,6 +100,7 @@ class TrialSection(SectionBody):
         self.start.set_palette(palette)
 
     def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
+        self.start.show_figures(figures, is_fresh)
         self.figures.show_figures([] if figures is None else _trial_figures(figures), is_fresh)
         self._order.setText("" if figures is None or not figures.operator_order else f"Factor order: {figures.operator_order}")
         self._order.setVisible(bool(self._order.text()) and is_fresh)

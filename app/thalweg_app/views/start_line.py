@@ -5,6 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import QSize, Qt
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QToolButton, QVBoxLayout, QWidget
 
+from thalweg.study.derived import StudyFigures
 from thalweg_app.colours import Palette
 from thalweg_app.forms import describe
 from thalweg_app.presenters.setup import SetupEditing
@@ -23,9 +24,11 @@ class StartLine(QWidget):
     def __init__(self, setup: SetupEditing) -> None:
         super().__init__()
         self._setup = setup
-        self.text, self.problem = QLabel(wordWrap=True), QLabel(wordWrap=True)
+        self.text, self.taken, self.problem = (QLabel(wordWrap=True) for _ in range(3))
         self.text.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
         describe(self.text, "Start", HELP)
+        self.taken.setProperty("role", "muted")
+        self.taken.setAccessibleName("What is taken over")
         self.problem.setProperty("role", "error")
         self.problem.setAccessibleName("Why the search cannot start there")
         self.button = QToolButton()
@@ -41,6 +44,7 @@ class StartLine(QWidget):
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(3)
         column.addLayout(row)
+        column.addWidget(self.taken)
         column.addWidget(self.problem)
 
     def refresh(self) -> None:
@@ -50,6 +54,12 @@ class StartLine(QWidget):
         self.problem.setText("" if error is None else str(error))
         self.problem.setVisible(error is not None)
         self.setVisible(bool(line))
+
+    def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
+        """How much of that run finds a place, while it is known."""
+        sentence = figures.start if figures is not None and is_fresh else ""
+        self.taken.setText(sentence)
+        self.taken.setVisible(bool(sentence))
 
     def set_palette(self, palette: Palette) -> None:
         self.button.setIcon(icon("delete", palette.ink, 16))

@@ -45,6 +45,7 @@ class StudyFigures(Record):
     operator_order: str
     facts: dict[str, Any]
     warnings: tuple[str, ...]
+    start: str = ""  # what is taken over from another run, in a sentence
     ladder: tuple[Rung, ...]
     pauli_terms: tuple[tuple[str, float], ...]
     measurement_sets: int | None = None  # of strings read together, qubit by qubit; None where there are too many strings to sort at once

@@ -112,10 +112,10 @@ def refuse_unfit_start(problem: Problem) -> None:
     ansatz, program = first_trial_state(problem)
     if _beginning(problem, ansatz, program).taken.any():
         return
-    here = f"while those here are such as `{program.labels()[0]}`" if program.n_parameters else "and this trial state has none"
+    here = f"here such as `{program.labels()[0]}`" if program.n_parameters else "here none"
     raise StudyError(
         f"The search cannot start from {source}",
-        f"no parameter is the same: that run has such as `{spec.neighbour.labels[0]}`, {here}",
+        f"no parameter is the same, there such as `{spec.neighbour.labels[0]}`, {here}",
         "Choose a trial state that shares operators with that run, or start without it",
         "neighbour",
     )
