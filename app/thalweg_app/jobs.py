@@ -13,19 +13,21 @@ ShouldStop = Callable[[], bool]
 
 
 def run(payload: Any, emit: Emit, should_stop: ShouldStop) -> None:
-    """Runs the study whose settings are the payload; the result leaves as the event `Finished`."""
+    """Runs the study whose settings are the payload, several starts side by side where that pays; the result leaves as the event `Finished`."""
+    from thalweg.study.executors import Local
     from thalweg.study.run import run as run_study
     from thalweg.study.spec import spec_from_data
 
-    run_study(spec_from_data(payload), emit, should_stop)
+    run_study(spec_from_data(payload), emit, should_stop, Local())
 
 
 def check(payload: Any, emit: Emit, should_stop: ShouldStop) -> Any:
     """Repeats the run whose result is the payload and gives the deviation; None when stopped on the way."""
+    from thalweg.study.executors import Local
     from thalweg.study.repeat import repeat
     from thalweg.study.result import StudyResult
 
-    repetition = repeat(StudyResult.model_validate(payload), emit, should_stop)
+    repetition = repeat(StudyResult.model_validate(payload), emit, should_stop, Local())
     return None if repetition is None else repetition.model_dump(mode="json", exclude={"result"})
 
 

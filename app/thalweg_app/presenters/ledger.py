@@ -67,7 +67,7 @@ COLUMNS: tuple[Column, ...] = (
     _plain("Parameters", "Free parameters of the trial state.", lambda r: r.parameters, wording.count),
     _plain("Two-qubit gates", "Two-qubit gates of the trial state's circuit.", lambda r: r.two_qubit_gates, wording.count),
     _plain("Evaluations", "Energy evaluations of all starts.", lambda r: r.evaluations, wording.count),
-    _plain("Seconds", "Time of the search.", lambda r: r.seconds, wording.seconds_text),
+    _plain("Seconds", "Time of the search, that of all starts added up.", lambda r: r.seconds, wording.seconds_text),
     _plain("Seed", "Seed of every random choice.", lambda r: r.seed),
     Column("Note", "Your own remark; double click to edit.", False, lambda run, _: run.note, lambda run: run.note),
 )

@@ -5,14 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
-from thalweg.study.events import AnyEvent, Finished, Iteration, Stage, Started, Warned
+from thalweg.study.events import AnyEvent, Finished, Iteration, Stage, Started, StartEnded, Warned
 from thalweg.study.result import StudyResult
 from thalweg.study.spec import StudySpec
 
 
 @dataclass
 class LiveStart:
-    """Columns of one start, growing."""
+    """Columns of one start, growing; empty while it has not been heard of."""
 
     iteration: list[int] = field(default_factory=list)
     evaluations: list[int] = field(default_factory=list)
@@ -23,6 +23,7 @@ class LiveStart:
     shots: list[int] = field(default_factory=list)
     standard_error: list[float | None] = field(default_factory=list)
     noiseless: list[float | None] = field(default_factory=list)
+    reason: str = ""  # why it ended
 
     def add(self, event: Iteration) -> None:
         self.iteration.append(event.iteration)
@@ -38,7 +39,10 @@ class LiveStart:
 
 @dataclass
 class LiveRun:
-    """Fed with events; `check_of` is the number of the ledger's run that is repeated, None for a new run."""
+    """Fed with events; `check_of` is the number of the ledger's run that is repeated, None for a new run.
+
+    Starts may run side by side, so that their events come in turn; `starts` are in the order of their numbers.
+    """
 
     spec: StudySpec
     check_of: int | None = None
@@ -55,6 +59,8 @@ class LiveRun:
         for event in events:
             if isinstance(event, Iteration):
                 self._iterate(event)
+            elif isinstance(event, StartEnded):
+                self._start(event.start).reason = event.reason
             elif isinstance(event, Stage):
                 self.stage, self.fraction = event.text, event.fraction
             elif isinstance(event, Started):
@@ -67,10 +73,37 @@ class LiveRun:
     @property
     def best(self) -> tuple[int, int] | None:
         """(start, position in its columns) of the lowest energy; None before the first iterate."""
-        places = [(s.energy[i], k, i) for k, s in enumerate(self.starts) for i in [min(range(len(s.energy)), key=s.energy.__getitem__)]]
+        begun = [(s, k) for k, s in enumerate(self.starts) if s.energy]
+        places = [(s.energy[i], k, i) for s, k in begun for i in [min(range(len(s.energy)), key=s.energy.__getitem__)]]
         return min(places)[1:] if places else None
 
-    def _iterate(self, event: Iteration) -> None:
-        while len(self.starts) <= event.start:
+    @property
+    def n_starts(self) -> int:
+        return self.spec.starts if self.started is None else self.started.n_starts
+
+    @property
+    def running(self) -> list[int]:
+        """The starts under way that have told an iterate."""
+        return [k for k, s in enumerate(self.starts) if s.energy and not s.reason]
+
+    @property
+    def ended(self) -> int:
+        """How many starts have come to their end."""
+        return sum(bool(s.reason) for s in self.starts)
+
+    @property
+    def lead(self) -> int | None:
+        """The start to be looked at: the first of those under way, so that it stays the same until its end; then the best one."""
+        if self.running:
+            return self.running[0]
+        return None if self.best is None else self.best[0]
+
+    def _start(self, number: int) -> LiveStart:
+        while len(self.starts) <= number:
             self.starts.append(LiveStart())
-        self.starts[event.start].add(event)
+        return self.starts[number]
+
+    def _iterate(self, event: Iteration) -> None:
+        if event.iteration == 0 and self._start(event.start).energy:
+            self.starts[event.start] = LiveStart()  # its process was lost, and it begins anew
+        self._start(event.start).add(event)

@@ -17,8 +17,10 @@ def partial_result(live: LiveRun, figures: StudyFigures | None, reason: str) -> 
     best, started = live.best, live.started
     if best is None or started is None or figures is None:
         return None
-    starts = tuple(_record(start, live.spec.seed + k, reason) for k, start in enumerate(live.starts))
-    energy = starts[best[0]].energy
+    begun = [k for k, start in enumerate(live.starts) if start.energy]
+    starts = tuple(_record(live.starts[k], live.spec.seed + k, reason) for k in begun)
+    best_start = begun.index(best[0])
+    energy = starts[best_start].energy
     error = None if started.exact_energy is None else energy - started.exact_energy
     return StudyResult(
         label=started.label,
@@ -46,9 +48,9 @@ def partial_result(live: LiveRun, figures: StudyFigures | None, reason: str) -> 
         seconds=sum(s.seconds for s in starts),
         preparation_seconds=0.0,
         stop_reason=reason,
-        gradient_norm=starts[best[0]].gradient_norm,
+        gradient_norm=starts[best_start].gradient_norm,
         starts=starts,
-        best_start=best[0],
+        best_start=best_start,
         operator_order=figures.operator_order,
         pauli_terms=figures.pauli_terms,
         system_facts=figures.facts,
@@ -75,7 +77,7 @@ def _record(start: LiveStart, seed: int, reason: str) -> StartRecord:
     return StartRecord(
         seed=seed,
         energy=start.energy[lowest],
-        stop_reason=reason,
+        stop_reason=start.reason or reason,
         evaluations=start.evaluations[-1],
         iterations=start.iteration[-1],
         gradient_norm=start.gradient_norm[lowest],

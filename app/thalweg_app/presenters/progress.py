@@ -25,25 +25,45 @@ def estimate(live: LiveRun) -> Estimate:
     """What the status line shows. Searches are foretold by the trend of the gradient and bounded by the stop rules."""
     if live.is_stopping:
         return Estimate("Stopped; examining the best point" if live.has_noticed else "Stopping; the best point is kept", None, None)
-    if not live.starts:
+    lead = live.lead
+    if lead is None:
         return Estimate(live.stage or "Waiting for a free process", live.fraction, None)
-    current = live.starts[-1]
-    left = _seconds_left(live)
+    ahead = _ahead(live)
     spent = sum(s.seconds[-1] for s in live.starts if s.seconds)
-    fraction = None if left is None else spent / (spent + left) if spent + left > 0 else None
-    n_starts = live.spec.starts
-    which = f", start {len(live.starts)} of {n_starts}" if n_starts > 1 else ""
-    return Estimate(f"Minimising: iteration {current.iteration[-1]:,}{which}", fraction, left)
+    fraction = None if ahead is None else spent / (spent + ahead[0]) if spent + ahead[0] > 0 else None
+    return Estimate(_words(live, lead), fraction, None if ahead is None else ahead[1])
 
 
-def _seconds_left(live: LiveRun) -> float | None:
-    current = live.starts[-1]
-    here = _this_start(live.spec, current.seconds, current.gradient_norm, current.evaluations)
-    if here is None:
+def starts_in_words(live: LiveRun, start: int) -> str:
+    """`start 3 of 8`, with the number of those done where several are under way; empty for a single one."""
+    if live.n_starts < 2:
+        return ""
+    one = f"start {start + 1} of {live.n_starts}"
+    return f"{one} ({live.ended} done, {len(live.running)} under way)" if len(live.running) > 1 else one
+
+
+def _words(live: LiveRun, lead: int) -> str:
+    which = starts_in_words(live, lead)
+    if not live.running and which:
+        return f"Minimising: {live.ended} of {live.n_starts} starts done"
+    return f"Minimising: iteration {live.starts[lead].iteration[-1]:,}" + (f", {which}" if which else "")
+
+
+def _ahead(live: LiveRun) -> tuple[float, float] | None:
+    """Seconds of search to come, of all starts added up, and until the last one ends with as many side by side as now; None if unknown.
+
+    A start of which nothing can be said is expected to take as long as those that have ended, or else as the slowest under way.
+    """
+    running = [live.starts[k] for k in live.running]
+    here = [_this_start(live.spec, s.seconds, s.gradient_norm, s.evaluations) for s in running]
+    ended = [s.seconds[-1] for s in live.starts if s.reason and s.seconds]
+    foreseen = [s.seconds[-1] + left for s, left in zip(running, here, strict=True) if left is not None]
+    if not ended and not foreseen:
         return None
-    finished = [s.seconds[-1] for s in live.starts[:-1] if s.seconds]
-    each = sum(finished) / len(finished) if finished else current.seconds[-1] + here
-    return here + each * max(0, live.spec.starts - len(live.starts))
+    usual = sum(ended) / len(ended) if ended else max(foreseen)
+    left = [max(0.0, usual - s.seconds[-1]) if h is None else h for s, h in zip(running, here, strict=True)]
+    work = sum(left) + usual * max(0, live.n_starts - live.ended - len(running))
+    return work, max([work / max(1, len(running)), *left])
 
 
 def _this_start(spec: StudySpec, seconds: list[float], norms: list[float | None], evaluations: list[int]) -> float | None:

@@ -84,11 +84,11 @@ def shown_result(number: int, result: StudyResult) -> Shown:
 
 def shown_live(live: LiveRun) -> Shown | None:
     """None before the first iterate."""
-    if live.started is None or not live.starts:
+    lead = live.lead
+    if live.started is None or lead is None:
         return None
     s = live.started
     name = "Running" if live.check_of is None else f"Check of run {live.check_of}"
-    lead = len(live.starts) - 1
     return Shown(name, s.energy_unit, s.reference_name, s.reference_energy, s.exact_energy, s.target_error, tuple(live.starts), lead, {})
 
 

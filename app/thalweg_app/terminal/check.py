@@ -55,9 +55,10 @@ def _check_run(run: Run, tolerance: float, quiet: bool) -> tuple[bool, int]:
         print(f"Run {run.number} of the session: {first.label}", file=sys.stderr)
 
     def work(emit: Emit, should_stop: ShouldStop) -> Repetition | None:
+        from thalweg.study.executors import Local
         from thalweg.study.repeat import repeat
 
-        return repeat(first, emit, should_stop)
+        return repeat(first, emit, should_stop, Local())
 
     try:
         again, status = attend(work, make_display(first.spec, quiet=quiet))

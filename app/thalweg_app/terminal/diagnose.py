@@ -72,7 +72,7 @@ def diagnose(what: str, figure: Path | None, json_file: str | None, quiet: bool,
 
 def _work(what: str, study: StudySpec, result: StudyResult | None, workers: int, options: dict[str, Any]) -> Callable[[Emit, ShouldStop], Finding]:
     if what in ("curvature", "starts"):
-        return lambda emit, should_stop: _of_run(what, study, result, emit, should_stop)
+        return lambda emit, should_stop: _of_run(what, study, result, workers, emit, should_stop)
     settings = _trainability(study, options) if what == "trainability" else _landscape(study, result, options)
 
     def work(emit: Emit, should_stop: ShouldStop) -> Finding:
@@ -85,12 +85,13 @@ def _work(what: str, study: StudySpec, result: StudyResult | None, workers: int,
     return work
 
 
-def _of_run(what: str, study: StudySpec, result: StudyResult | None, emit: Emit, should_stop: ShouldStop) -> Finding:
+def _of_run(what: str, study: StudySpec, result: StudyResult | None, workers: int, emit: Emit, should_stop: ShouldStop) -> Finding:
     from thalweg.study.events import watch_into
+    from thalweg.study.executors import Local
     from thalweg.study.hessian import curvature_of, spread_of_starts
     from thalweg.study.run import run
 
-    result = run(study, emit, should_stop) if result is None else result
+    result = run(study, emit, should_stop, None if workers == 1 else Local(workers)) if result is None else result
     return spread_of_starts(result) if what == "starts" else curvature_of(result, watch_into(emit, should_stop))
 
 

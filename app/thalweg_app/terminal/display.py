@@ -6,10 +6,11 @@ import sys
 import time
 from typing import Protocol
 
-from thalweg.study.events import AnyEvent, Iteration, Stage, Warned
+from thalweg.study.events import AnyEvent, Iteration, Stage, StartEnded, Warned
+from thalweg.study.result import STOP_REASONS
 from thalweg.study.spec import StudySpec
 from thalweg_app.presenters.live import LiveRun
-from thalweg_app.presenters.progress import estimate
+from thalweg_app.presenters.progress import estimate, starts_in_words
 from thalweg_app.presenters.wording import difference_factor, significant, time_left, unit_name
 
 #: Seconds between two plain lines of iterations.
@@ -58,7 +59,7 @@ class SilentDisplay:
 
 
 class LineDisplay(SilentDisplay):
-    """One line a stage, and one every two seconds of minimising."""
+    """One line a stage, one a start that has ended where there are several, and one every two seconds of minimising."""
 
     def __init__(self, spec: StudySpec) -> None:
         self._live = LiveRun(spec)
@@ -71,10 +72,19 @@ class LineDisplay(SilentDisplay):
             self.say(event.text[:1].upper() + event.text[1:])
         elif isinstance(event, Warned):
             self.say(f"Warning: {event.text}")
+        elif isinstance(event, StartEnded):
+            self._tell_end(event)
         elif isinstance(event, Iteration) and time.monotonic() - self._last_line >= LINE_INTERVAL:
             self._last_line = time.monotonic()
             left = estimate(self._live).seconds_left
             self.say(iterate_text(self._live, event) + (f", {time_left(left)}" if left is not None else ""))
+
+    def _tell_end(self, event: StartEnded) -> None:
+        started = self._live.started
+        if started is not None and started.n_starts > 1:
+            reason = STOP_REASONS.get(event.reason, event.reason)
+            unit = unit_name(started.energy_unit)
+            self.say(f"Start {event.start + 1} ended at {event.energy:.8f} {unit}: {reason}; {self._live.ended} of {started.n_starts} done")
 
 
 class LiveDisplay:
@@ -85,7 +95,7 @@ class LiveDisplay:
         from rich.progress import BarColumn, Progress, SpinnerColumn, TaskProgressColumn, TextColumn, TimeElapsedColumn
 
         self._live = LiveRun(spec)
-        self._latest: Iteration | None = None
+        self._latest: dict[int, Iteration] = {}  # of each start
         columns = [
             SpinnerColumn("line"),
             TextColumn("{task.description}"),
@@ -107,15 +117,16 @@ class LiveDisplay:
     def take(self, event: AnyEvent) -> None:
         self._live.take([event])
         if isinstance(event, Iteration):
-            self._latest = event
-        elif isinstance(event, Stage):
-            self._latest = None
+            self._latest[event.start] = event
+        elif isinstance(event, Stage) and len(self._live.running) < 2:  # side by side it is one of many
+            self._latest.clear()
         elif isinstance(event, Warned):
             self.say(f"Warning: {event.text}")
 
     def tick(self) -> None:
         now = estimate(self._live)
-        text = now.text if self._latest is None else iterate_text(self._live, self._latest)
+        latest = None if self._live.lead is None else self._latest.get(self._live.lead)
+        text = now.text if latest is None else iterate_text(self._live, latest)
         self._bar.tasks[0].total = None if now.fraction is None else 1.0  # the library's `update` cannot take a total back
         left = "" if now.seconds_left is None else time_left(now.seconds_left)
         self._bar.update(self._task, description=text, completed=now.fraction or 0.0, left=left)
@@ -131,8 +142,8 @@ def iterate_text(live: LiveRun, event: Iteration) -> str:
     if started is None:
         return f"iteration {event.iteration:,}"
     parts = [f"iteration {event.iteration:,}", f"energy {event.energy:.8f} {unit_name(started.energy_unit)}"]
-    if started.n_starts > 1:
-        parts.insert(0, f"start {event.start + 1} of {started.n_starts}")
+    if which := starts_in_words(live, event.start):
+        parts.insert(0, which)
     if started.exact_energy is not None:
         factor, unit = difference_factor(started.energy_unit, "mEh")
         parts.append(f"error {significant((event.energy - started.exact_energy) * factor)} {unit}")

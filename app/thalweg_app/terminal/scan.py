@@ -33,6 +33,7 @@ from thalweg_app.terminal.scan_display import make_scan_display
 from thalweg_app.terminal.scan_setup import path_options, read_scan, read_values
 from thalweg_app.terminal.setup import read_setup, setup_options
 from thalweg_app.terminal.solve import STANDARD_OUTPUT, check_targets, session_to_extend
+from thalweg_app.terminal.where import where_options
 
 #: Options that a resumed scan still takes: where it runs, what is written, and points to add.
 FREE_WITH_RESUME = frozenset(
@@ -76,10 +77,7 @@ class Plan:
 @click.command()
 @setup_options
 @path_options
-@click.option(
-    "--executor", type=click.Choice(EXECUTORS), default="local", show_default=True, help="This machine's cores, this process, or a cluster."
-)
-@click.option("--workers", type=click.IntRange(min=0), default=0, help="Processes of the local executor; 0 takes all cores.")
+@where_options(EXECUTORS, "points")
 @click.option("--scheduler", default="", metavar="tcp://HOST:PORT", help="Address of the Dask scheduler.")
 @click.option("--refine", type=click.IntRange(min=0), default=0, metavar="N", help="Add N points when the curve is there.")
 @click.option("--where", type=click.Choice(["minimum", "error"]), default="minimum", help="Where to refine: around the minimum, or at large errors.")

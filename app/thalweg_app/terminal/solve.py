@@ -20,18 +20,22 @@ from thalweg_app.presenters.traces import X_TITLES, XChoice, convergence, shown_
 from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.display import make_display
 from thalweg_app.terminal.setup import read_setup, setup_options
+from thalweg_app.terminal.where import local_of, where_options
 
 STANDARD_OUTPUT = "-"
 
 
 @click.command()
 @setup_options
+@where_options(("local", "serial"), "several starts")
 @click.option("--save", type=click.Path(path_type=Path), metavar="FILE", help="Save a session; a session that is there gets one more run.")
 @click.option("--figure", type=click.Path(path_type=Path), metavar="FILE", help="Draw the convergence as PNG, SVG or PDF.")
 @click.option("--x-axis", type=click.Choice(list(X_TITLES)), default="iteration", help="What the figure is drawn against.")
 @click.option("--json", "json_file", metavar="FILE|-", help="Write the result as one JSON object; - is standard output and nothing else.")
 @click.option("--quiet", is_flag=True, help="Show no progress.")
-def solve(save: Path | None, figure: Path | None, x_axis: XChoice, json_file: str | None, quiet: bool, **options: Any) -> int:
+def solve(
+    executor: str, workers: int, save: Path | None, figure: Path | None, x_axis: XChoice, json_file: str | None, quiet: bool, **options: Any
+) -> int:
     """Find the lowest energy of a trial state and judge it against the exact one.
 
     INPUT is a file (XYZ, a list of atoms, FCIDUMP, HDF5 molecular data, a lattice, a session), the name of a sample, or - for standard input.
@@ -46,7 +50,7 @@ def solve(save: Path | None, figure: Path | None, x_axis: XChoice, json_file: st
     def work(emit: Emit, should_stop: ShouldStop) -> StudyResult:
         from thalweg.study.run import run  # loads the numerical libraries, which Ctrl-C may interrupt as well
 
-        return run(spec, emit, should_stop)
+        return run(spec, emit, should_stop, local_of(executor, workers))
 
     result, status = attend(work, make_display(spec, quiet=quiet))
     if result is None:

@@ -67,6 +67,7 @@ class _Starts:
         self._workers: StartWorkers | None = None
         self._is_stopping = self._was_shared = False
         self._began = self._looked = 0.0
+        self._reason = "stopped-by-person"
 
     def run(self, starts: Iterable[int], initial: FloatArray | None) -> Outcome:
         begun = time.perf_counter()
@@ -83,7 +84,7 @@ class _Starts:
         if self._failure is not None:
             raise self._failure
         if not self._found:
-            raise Stopped("stopped-by-person")
+            raise Stopped(self._reason)
         records, ends = zip(*(self._found[index] for index in sorted(self._found)), strict=True)
         elapsed = time.perf_counter() - begun if self._was_shared else None
         return Outcome(list(records), list(ends), tuple(sorted(self._lost)), elapsed)
@@ -103,7 +104,8 @@ class _Starts:
         self._began = time.perf_counter()
         try:
             found = run_start(self._problem, self._exact, index, initial if index == 0 else None, lambda event: self._tell(index, event), self._asked)
-        except Stopped:  # before its first energy
+        except Stopped as stop:  # before its first energy
+            self._reason = stop.reason
             return
         except MemoryError:
             if self._workers is None:

@@ -2,7 +2,7 @@ import pytest
 import studies
 
 from thalweg.optimize.objective import StopRules
-from thalweg.study.events import Iteration, Stage
+from thalweg.study.events import Iteration, Stage, StartEnded
 from thalweg_app.presenters.live import LiveRun
 from thalweg_app.presenters.progress import estimate
 
@@ -36,10 +36,36 @@ def test_an_evaluation_limit_bounds_the_guess():
     assert estimate(run).seconds_left == pytest.approx(4.0)
 
 
+def end(run, start):
+    run.take([StartEnded(start=start, energy=-1.0, reason="gradient", seconds=8.0)])
+
+
 def test_starts_to_come_are_counted():
     run = live([(0, 0, None, 0.0), (0, 1, None, 8.0), (1, 0, None, 0.0), (1, 1, None, 1.0)], starts=4, stop=StopRules(seconds=10, evaluations=0))
+    end(run, 0)
     assert estimate(run).seconds_left == pytest.approx(9.0 + 2 * 8.0)
-    assert "start 2 of 4" in estimate(run).text
+    assert estimate(run).text == "Minimising: iteration 1, start 2 of 4"
+
+
+def test_starts_side_by_side_share_the_time_to_come():
+    told = [(0, 0, None, 0.0), (1, 0, None, 0.0), (0, 1, None, 8.0), (2, 0, None, 0.0), (1, 1, None, 4.0), (2, 1, None, 2.0)]
+    run = live(told, starts=6, stop=StopRules(seconds=10, evaluations=0))
+    end(run, 0)
+    now = estimate(run)
+    assert now.seconds_left == pytest.approx((6.0 + 8.0 + 3 * 8.0) / 2)
+    assert now.fraction == pytest.approx(14.0 / (14.0 + 38.0))
+    assert now.text == "Minimising: iteration 1, start 2 of 6 (1 done, 2 under way)"
+
+
+def test_the_slowest_of_the_last_starts_bounds_the_time_left():
+    run = live([(0, 0, None, 0.0), (1, 0, None, 0.0), (0, 1, None, 1.0), (1, 1, None, 9.0)], starts=2, stop=StopRules(seconds=10, evaluations=0))
+    assert estimate(run).seconds_left == pytest.approx(9.0)
+
+
+def test_between_two_starts_those_done_are_told():
+    run = live([(0, 0, None, 0.0), (0, 1, None, 8.0)], starts=8)
+    end(run, 0)
+    assert estimate(run).text == "Minimising: 1 of 8 starts done"
 
 
 def test_nothing_is_said_where_nothing_is_known():

@@ -3,7 +3,7 @@ import studies
 from fake_starter import FakeStarter
 
 from thalweg.storage.session import Run
-from thalweg.study.events import Failed, Finished, Iteration, Stage, Started, Warned
+from thalweg.study.events import Failed, Finished, Iteration, Stage, Started, StartEnded, Warned
 from thalweg_app.presenters.jobs import CHECK, RUN
 from thalweg_app.presenters.progress import estimate
 from thalweg_app.presenters.run_control import RunControl
@@ -111,6 +111,17 @@ def test_a_run_ended_by_force_keeps_its_lowest_energy_and_never_counts_as_reache
     assert not kept.reached_target
     assert "stopped by hand" in kept.verdict
     assert kept.final_parameters == ()
+
+
+def test_of_starts_side_by_side_ended_by_force_those_that_had_an_energy_are_kept(starter, runs, heard):
+    runs.submit(studies.study(starts=3, seed=5))
+    told = [started(), iteration(0, -7.86), iteration(0, -7.8, start=2), iteration(1, -7.88, start=2)]
+    starter.last.listener.events([*told, StartEnded(start=0, energy=-7.86, reason="gradient", seconds=1.0)])
+    runs.stop()
+    starter.last.listener.stopped()
+    kept = heard.finished[0]
+    assert [(s.seed, s.energy, s.stop_reason) for s in kept.starts] == [(5, -7.86, "gradient"), (7, -7.88, "stopped-by-person")]
+    assert (kept.best_start, kept.energy) == (1, -7.88)
 
 
 def test_while_the_best_point_is_examined_a_second_stop_ends_the_run_at_once(starter, runs, heard):

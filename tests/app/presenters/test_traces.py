@@ -2,7 +2,7 @@ import numpy as np
 import pytest
 import studies
 
-from thalweg.study.events import Iteration, Started
+from thalweg.study.events import Iteration, Started, StartEnded
 from thalweg_app.presenters.live import LiveRun
 from thalweg_app.presenters.traces import convergence, shown_live, shown_result
 
@@ -82,10 +82,8 @@ def test_errors_follow_the_unit_chosen():
     assert chart.panels[1].band.text == "Chemical accuracy, 4.18 kJ/mol"  # the thermochemical calorie is 4.184 J
 
 
-def test_a_run_under_way_is_drawn_from_its_first_iterate_on():
-    live = LiveRun(studies.study())
-    assert shown_live(live) is None
-    started = Started(
+def started(n_starts=1):
+    return Started(
         label="LiH",
         energy_unit="hartree",
         reference_name="HF",
@@ -93,9 +91,28 @@ def test_a_run_under_way_is_drawn_from_its_first_iterate_on():
         exact_energy=-7.88,
         target_error=1e-3,
         n_parameters=4,
-        n_starts=1,
+        n_starts=n_starts,
     )
-    live.take([started, Iteration(start=0, iteration=0, evaluations=1, energy=-7.86, gradient_norm=0.1, seconds=0.0)])
+
+
+def test_a_run_under_way_is_drawn_from_its_first_iterate_on():
+    live = LiveRun(studies.study())
+    assert shown_live(live) is None
+    live.take([started(), Iteration(start=0, iteration=0, evaluations=1, energy=-7.86, gradient_norm=0.1, seconds=0.0)])
     chart = convergence(shown_live(live))
     assert chart.panels[0].series[-1].name == "Running"
     assert chart.panels[0].series[-1].y.tolist() == [-7.86]
+
+
+def test_of_starts_side_by_side_the_first_under_way_is_in_front_and_those_not_begun_are_empty():
+    live = LiveRun(studies.study(starts=3))
+    told = [(0, 0, -7.86), (2, 0, -7.8), (0, 1, -7.87), (2, 1, -7.85)]
+    live.take([started(3), *(Iteration(start=s, iteration=i, evaluations=i, energy=e, gradient_norm=0.1, seconds=i) for s, i, e in told)])
+    curves = convergence(shown_live(live)).panels[0].series
+    assert [(c.name, c.role, c.y.tolist()) for c in curves] == [
+        ("Running, start 2", "faint", []),
+        ("Running, start 3", "faint", [-7.8, -7.85]),
+        ("Running", "variational", [-7.86, -7.87]),
+    ]
+    live.take([StartEnded(start=0, energy=-7.87, reason="gradient", seconds=1.0)])
+    assert convergence(shown_live(live)).panels[0].series[-1].y.tolist() == [-7.8, -7.85]

@@ -7,7 +7,7 @@ import io
 import pytest
 from rich.console import Console
 
-from thalweg.study.events import Iteration, Stage, Started, Warned
+from thalweg.study.events import Iteration, Stage, Started, StartEnded, Warned
 from thalweg.study.spec import StudySpec
 from thalweg.systems import Molecule
 from thalweg_app.presenters.live import LiveRun
@@ -90,3 +90,28 @@ def test_a_screen_shows_energy_part_done_and_time_left():
 def test_the_display_follows_what_standard_error_is(quiet, screen, kind, monkeypatch):
     monkeypatch.setattr("sys.stderr", type("Stream", (io.StringIO,), {"isatty": lambda self: screen})())
     assert type(make_display(SPEC, quiet=quiet)) is kind
+
+
+def test_of_starts_side_by_side_a_screen_shows_the_first_under_way_and_how_many_are_done():
+    display = LiveDisplay(SPEC)
+    screen = io.StringIO()
+    display._bar.live.console = Console(file=screen, force_terminal=True, width=170)
+    with display:
+        display.take(started(n_starts=3))
+        for event in (iteration(4, -1.13), iteration(9, -1.0, start=1), Stage(text="Start 2: Operator 3"), iteration(1, -1.1, start=2)):
+            display.take(event)
+        display.tick()
+        display.take(StartEnded(start=0, energy=-1.13, reason="gradient", seconds=1.0))
+        display.tick()
+    shown = screen.getvalue()
+    assert "start 1 of 3 (0 done, 3 under way), iteration 4, energy -1.13000000 Eh" in shown
+    assert "start 2 of 3 (1 done, 2 under way), iteration 9, energy -1.00000000 Eh" in shown
+    assert "Operator" not in shown
+
+
+def test_a_pipe_gets_a_line_a_start_that_has_ended(capsys):
+    with LineDisplay(SPEC) as display:
+        for event in (started(n_starts=2), iteration(1, start=1), StartEnded(start=1, energy=-1.13, reason="gradient", seconds=1.0)):
+            display.take(event)
+    last = capsys.readouterr().err.splitlines()[-1]
+    assert last == "Start 2 ended at -1.13000000 Eh: the largest gradient component fell below the limit; 1 of 2 done"
