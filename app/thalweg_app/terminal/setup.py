@@ -6,7 +6,7 @@ import sys
 import tempfile
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeVar, get_args
 
 import click
 
@@ -15,6 +15,7 @@ from thalweg.options import Options
 from thalweg.storage.session import Session
 from thalweg.study.spec import SECTIONS, Neighbour, StudySpec, suited, with_setting
 from thalweg.systems import LatticeModel
+from thalweg.systems.spin_reference import ReferenceChoice
 from thalweg_app.terminal.runs import run_of
 
 Command = TypeVar("Command", bound=Callable[..., Any])
@@ -70,6 +71,7 @@ def _options() -> list[Callable[[Command], Command]]:
         click.option("--ansatz", type=choice["ansatz"], help="Trial state."),
         _setting_option("ansatz", "the trial state, e.g. k=2"),
         click.option("--depth", type=int, help="Number of layers of a layered circuit."),
+        click.option("--reference", help="State to begin at: 22ab00, 0101, a combination such as 2200,2020, or for spins up, neel, plus, singlets."),
         click.option("--start", help="First parameters, e.g. zero, mp2, small-random, uniform-random."),
         click.option("--neighbour", metavar="FILE[:RUN]", help=NEIGHBOUR_HELP),
         click.option("--optimizer", type=choice["optimizer"], help="Search for the lowest energy."),
@@ -95,6 +97,8 @@ def read_setup(options: dict[str, Any]) -> tuple[StudySpec, tuple[str, ...]]:
         given["classical"] = [name.strip().lower() for name in options["classical"].split(",") if name.strip()]
     if options["frozen_core"] or options["active"] is not None:
         given["system.active_space"] = _active_space(options["frozen_core"], options["active"])
+    if options["reference"] is not None:
+        given |= _reference(options["reference"])
     for path, value in given.items():
         spec = _with_option(spec, path, value)
     for section in SET_SECTIONS:
@@ -201,6 +205,12 @@ def _from_standard_input(unit: str) -> tuple[StudySpec, tuple[str, ...]]:
         path = Path(folder) / "standard input"
         path.write_bytes(content)
         return _from_file(path, unit, name="")
+
+
+def _reference(text: str) -> dict[str, str]:
+    """The name of a state of a lattice model, or a state that is written out."""
+    word = text.strip().lower()
+    return {"system.reference": word, "reference": ""} if word in get_args(ReferenceChoice) else {"reference": text}
 
 
 def _active_space(frozen_core: bool, active: str | None) -> str:

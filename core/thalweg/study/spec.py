@@ -183,7 +183,7 @@ class StudySpec(Options):
     @classmethod
     def _digits_are_text(cls, value: Any) -> Any:
         """`2200` on a command line or in a hand-written file is read as a number before it gets here."""
-        return str(value) if isinstance(value, int) and not isinstance(value, bool) else value
+        return str(value) if isinstance(value, int | float) and not isinstance(value, bool) else value
 
 
 #: Section of the spec -> its alternatives, for forms, the terminal and contract tests.
