@@ -6,6 +6,7 @@ another encoding, and trial states that share operators.
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 from collections.abc import Iterable
 from dataclasses import dataclass
@@ -30,6 +31,8 @@ OWN_STARTS = {
     "uniform-random": "at random angles",
 }
 LAYER = " in layer "
+#: How many terms, bonds or sites a part of a Hamiltonian has: its angle keeps its meaning on a larger lattice (Brandao et al. 2018).
+COUNTS = re.compile(r"^\d+ (?=.*\bterms?$)|(?<= on )\d+ (?=(?:bond|site|set)s?\b)|(?<=term)s$|(?<=bond)s$|(?<=site)s$")
 
 
 def as_found(spec: StudySpec, parameters: tuple[float, ...], labels: tuple[str, ...], watch: Watch = SILENT) -> StudySpec:
@@ -164,13 +167,15 @@ def _depth_of(problem: Problem, ansatz: Any) -> int:
 def _named(labels: Iterable[str]) -> list[list[tuple[str, int]]]:
     """The operators of each label, each with the number of times that it has occurred before.
 
-    `a; b in layer 2` are two operators that share a parameter; what names no layer is in the first.
+    `a; b in layer 2` are two operators that share a parameter; what names no layer is in the first. Parts of a Hamiltonian are told
+    apart by their kind and order in the layer, not by their size.
     """
     seen: Counter[str] = Counter()
     named = []
     for label in labels:
         text, mark, layer = label.rpartition(LAYER)
-        parts = [f"{part}{LAYER}{layer if mark else 1}" for part in (text if mark else label).split("; ")]
+        operators = (text if mark else label).split("; ")
+        parts = [f"{COUNTS.sub('', operator)}{LAYER}{layer if mark else 1}" for operator in operators]
         named.append([(part, seen[part]) for part in parts])
         seen.update(parts)
     return named

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from thalweg.ansatz import UCCD, UCCSD, Adaptive, AlternatingOperators, ExchangeLayers, HardwareEfficient, KUpCCGSD
+from thalweg.ansatz import ANSATZE, UCCD, UCCSD, Adaptive, AlternatingOperators, ExchangeLayers, HardwareEfficient, KUpCCGSD
 from thalweg.encoding import BravyiKitaev
 from thalweg.errors import StudyError
 from thalweg.optimize import FreeAxis
@@ -17,6 +17,7 @@ from thalweg.study.figures import inspect
 from thalweg.study.hessian import curvature_of
 from thalweg.study.neighbour import by_label
 from thalweg.study.path import BondPath
+from thalweg.study.problem import prepare
 from thalweg.study.repeat import repeat
 from thalweg.study.result import StudyResult
 from thalweg.study.run import run
@@ -67,6 +68,17 @@ def stopped():
 @pytest.fixture(scope="module")
 def grown():
     return run(study(Adaptive()))
+
+
+@pytest.mark.parametrize("ansatz", [cls() for cls in ANSATZE if cls is not AlternatingOperators], ids=lambda a: a.key)
+@pytest.mark.parametrize("system", [FOUR, RING], ids=["electrons", "spins"])
+def test_every_parameter_of_every_trial_state_has_a_label_of_its_own(ansatz, system):
+    try:
+        labels = prepare(study(ansatz, system)).program.labels()
+    except StudyError:
+        return  # not for this kind of system, which the trial state's own tests hold
+    assert len(set(labels)) == len(labels)
+    assert not any(label.startswith("theta") for label in labels)
 
 
 def test_a_converged_run_started_from_itself_ends_at_once_at_the_same_energy():
@@ -149,6 +161,17 @@ def test_a_schedule_of_angles_is_continued():
     result = runs_from(first, AlternatingOperators(depth=3), RING)
     expected = AlternatingOperators(depth=3).from_shallower(np.array(first.final_parameters), result.parameters)
     assert result.start_parameters == pytest.approx(expected)
+
+
+def test_angles_of_a_small_lattice_begin_those_of_a_larger_one():
+    """Parts of one layer may have one label, and it names a number of bonds: they are told apart by their order."""
+    small = run(study(AlternatingOperators(depth=2), RING))
+    larger = LatticeModel(lattice=Chain(sites=8), model=Heisenberg())
+    taken, own = runs_from(small, AlternatingOperators(depth=2), larger), run(study(AlternatingOperators(depth=2), larger))
+    assert taken.start_parameters == small.final_parameters
+    assert taken.trace.energy[0] < own.trace.energy[0]
+    several = runs_from(small, AlternatingOperators(depth=3), larger)
+    assert "in a circuit with 1 layer more" in several.remarks[0]
 
 
 def test_free_axes_are_continued_as_well():
