@@ -7,6 +7,7 @@ import subprocess
 import sys
 import time
 from collections import deque
+from pathlib import Path
 from types import SimpleNamespace
 
 import pytest
@@ -251,8 +252,10 @@ def test_no_process_is_left_behind_when_the_program_is_killed():
 
 
 def is_there(pid):
+    """Whether the process runs; what has ended may stay listed until its new parent has heard of it."""
     try:
         os.kill(pid, 0)
     except ProcessLookupError:
         return False
-    return True
+    stat = Path(f"/proc/{pid}/stat")
+    return not (stat.exists() and stat.read_text().rpartition(")")[2].split()[0] == "Z")
