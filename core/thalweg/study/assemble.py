@@ -170,7 +170,7 @@ def _classical(problem: Problem) -> tuple[dict[str, float | None], tuple[str, ..
 
 def _start_remarks(outcome: Outcome) -> tuple[str, ...]:
     energies = [s.energy for s in outcome.starts]
-    remarks = tuple(f"Start {k + 1} is lost: its process ended twice, perhaps for want of memory." for k in outcome.lost)
+    remarks = tuple(f"Start {k + 1} is lost: its process ended, perhaps for want of memory." for k in outcome.lost)
     if len(energies) < 2:
         return remarks
     return (*remarks, f"{len(energies)} starts end between {min(energies):.9f} and {max(energies):.9f}; the lowest counts.")

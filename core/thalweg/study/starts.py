@@ -5,6 +5,7 @@ A start depends on the study and on its number alone, so that both ways give the
 
 from __future__ import annotations
 
+import multiprocessing
 import time
 from collections import deque
 from collections.abc import Callable, Iterable
@@ -95,7 +96,8 @@ class _Starts:
 
     def _most(self, starts: int) -> int:
         """Processes that may share these starts, this one counted: each holds states of its own within the memory budget."""
-        if self._local is None or min(starts, self._local.workers) < 2:
+        is_worker = multiprocessing.parent_process() is not None  # the cores are taken by others of its kind
+        if self._local is None or is_worker or min(starts, self._local.workers) < 2:
             return 1
         engine = make_engine(self._problem, watch_into(lambda event: None, self._should_stop))
         return min(starts, self._local.workers, self._problem.budget_bytes // max(1, engine.memory_bytes()))

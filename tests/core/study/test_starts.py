@@ -2,6 +2,7 @@
 
 import multiprocessing
 import os
+import pickle
 import signal
 import subprocess
 import sys
@@ -10,6 +11,7 @@ from collections import deque
 from pathlib import Path
 from types import SimpleNamespace
 
+import numpy as np
 import pytest
 from support.starts import PATIENCE, Eager, Heard, chain, endless, wait_for_another, with_settings, without_times
 
@@ -18,6 +20,10 @@ from thalweg.study import executors, start_workers, starts
 from thalweg.study.executors import Local
 from thalweg.study.problem import make_engine, prepare
 from thalweg.study.run import run
+from thalweg.study.spec import StudySpec
+from thalweg.systems import LatticeModel
+from thalweg.systems.hubbard import Hubbard
+from thalweg.systems.lattice import Chain
 
 CASES = {
     "coupled cluster": with_settings(chain(4, starts=4), ansatz__start="uniform-random"),
@@ -25,6 +31,8 @@ CASES = {
     "layers": with_settings(chain(4, starts=3), ansatz="hardware-efficient", ladder__on=True, stop__evaluations=300),
     "shots": with_settings(chain(2, starts=3), evaluation="shots", optimizer="spsa", optimizer__max_iterations=20),
 }
+#: More iterates than a pipe holds, so that a process with this start cannot end while nobody reads.
+LONG = with_settings(endless(chain(2, starts=3)), optimizer__max_iterations=5000)
 #: Goes on until it is stopped.
 ENDLESS = endless(chain(4, starts=3))
 
@@ -91,17 +99,15 @@ def killing(heard, times):
 
 
 def test_a_lost_process_costs_one_repetition_of_its_start(heard):
-    spec = CASES["coupled cluster"]
-    result = run(spec, killing(heard, 1), local=Eager(2))
-    assert without_times(result) == without_times(run(spec))
+    result = run(LONG, killing(heard, 1), local=Eager(2))
+    assert without_times(result) == without_times(run(LONG))
     assert sum(e.kind == "iteration" and (e.start, e.iteration) == (1, 0) for e in heard) == 2
 
 
 def test_a_start_lost_twice_is_left_out_and_named(heard):
-    spec = CASES["coupled cluster"]
-    result = run(spec, killing(heard, 2), local=Eager(2))
-    assert [s.seed - spec.seed for s in result.starts] == [0, 2, 3]
-    assert any(remark.startswith("Start 2 is lost: its process ended twice") for remark in result.remarks)
+    result = run(LONG, killing(heard, 2), local=Eager(2))
+    assert [s.seed - LONG.seed for s in result.starts] == [0, 2]
+    assert any(remark.startswith("Start 2 is lost: its process ended") for remark in result.remarks)
     assert result.energy == pytest.approx(min(s.energy for s in result.starts), abs=1e-10)
 
 
@@ -186,6 +192,13 @@ def test_without_a_second_core_or_a_second_start_no_process_is_started(clock, fa
     assert not fake.made
 
 
+def test_inside_a_worker_starts_run_one_after_another(clock, fake, monkeypatch):
+    clock.step = 1.0
+    monkeypatch.setattr(multiprocessing, "parent_process", lambda: multiprocessing.current_process())
+    assert len(run(CASES["coupled cluster"], local=Local(4)).starts) == 4
+    assert not fake.made
+
+
 def test_processes_whose_states_do_not_fit_the_memory_budget_together_are_not_started(clock, fake):
     clock.step = 1.0
     engine = make_engine(prepare(chain(6)))
@@ -215,6 +228,26 @@ def test_a_start_without_memory_beside_others_is_tried_again_alone(fake):
     assert any("Start 2 is lost" in remark for remark in result.remarks)
 
 
+@pytest.mark.parametrize(
+    ("system", "ansatz"),
+    [
+        (LatticeModel(lattice=Chain(sites=6)), "alternating-operators"),
+        (LatticeModel(lattice=Chain(sites=6)), "exchange-layers"),
+        (LatticeModel(lattice=Chain(sites=4), model=Hubbard()), "uccsd"),
+        (chain(4).system, "k-upccgsd"),
+        (chain(4).system, "number-conserving"),
+    ],
+)
+def test_a_problem_is_the_same_to_the_last_digit_on_the_other_side(system, ansatz):
+    here = prepare(with_settings(StudySpec(system=system), ansatz=ansatz))
+    there = pickle.loads(pickle.dumps(start_workers.plain_problem(here)))
+    parameters = np.random.default_rng(3).uniform(-1.0, 1.0, here.program.n_parameters)
+    (energy, gradient), other = make_engine(here).energy_and_gradient(parameters), make_engine(there).energy_and_gradient(parameters)
+    assert energy == other[0]
+    assert np.array_equal(gradient, other[1])
+    assert there.prepared.mean_field is None
+
+
 def test_an_error_that_cannot_travel_arrives_in_words():
     class LocalError(Exception):  # not to be found by its name elsewhere
         pass
@@ -228,6 +261,10 @@ PROGRAM = """
 import multiprocessing, sys
 from support.starts import Eager, chain, endless
 from thalweg.study.run import run
+from thalweg.study.spec import StudySpec
+from thalweg.systems import LatticeModel
+from thalweg.systems.hubbard import Hubbard
+from thalweg.systems.lattice import Chain
 
 def take(event):
     if event.kind == "iteration" and event.start == 1 and event.iteration == 0:
