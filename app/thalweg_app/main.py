@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import faulthandler
+import gc
 import signal
 import sys
 import traceback
@@ -42,8 +43,10 @@ def open_window(argv: list[str]) -> int:
             heartbeat.start()
             window.show()
             QTimer.singleShot(0, lambda: begin(window, argv))
+            QTimer.singleShot(0, settle)
             return application.exec()
         finally:
+            gc.enable()
             pool.shut_down()
             sys.excepthook = old_hook
             faulthandler.disable()
@@ -80,6 +83,12 @@ def begin(window: Window, argv: list[str]) -> None:
     window.workbench.document.mark_pristine()
     window.workbench.history.clear()
     window.files.offer_recovery()
+
+
+def settle() -> None:
+    """Collects garbage from now on, and leaves out what the start has made: a look through all of it would halt the window for long."""
+    gc.freeze()
+    gc.enable()
 
 
 def defect_hook(window: Window) -> Callable[[type[BaseException], BaseException, TracebackType | None], None]:

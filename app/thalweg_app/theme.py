@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import math
 from functools import lru_cache
 from typing import Literal
 
 from PySide6.QtCore import QByteArray, QObject, QRectF, QSettings, QSize, Qt, Signal
-from PySide6.QtGui import QColor, QFont, QFontDatabase, QIcon, QPainter, QPalette, QPixmap
+from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QIcon, QPainter, QPalette, QPixmap
 from PySide6.QtSvg import QSvgRenderer
 from PySide6.QtWidgets import QApplication, QLabel, QWidget
 
@@ -208,9 +209,14 @@ def show_fresh(label: QLabel, is_fresh: bool) -> None:
 def icon(name: str, colour: str, size: int = 20) -> QIcon:
     """An icon of `resources/icons` in one colour (QtSvg does not follow the text colour by itself)."""
     made = QIcon()
-    for scale in (1, 2, 3):
+    for scale in range(1, math.ceil(_sharpest()) + 1):
         made.addPixmap(pixmap(name, colour, size, scale))
     return made
+
+
+def _sharpest() -> float:
+    """Pixels of the finest screen to one of the window's."""
+    return max((screen.devicePixelRatio() for screen in QGuiApplication.screens()), default=1.0)
 
 
 def pixmap(name: str, colour: str, size: int, scale: float = 1.0) -> QPixmap:

@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-import logging
 import os
 import sys
 import tempfile
-from logging.handlers import RotatingFileHandler
 from pathlib import Path
 
 LOG_BYTES = 2**20
@@ -51,6 +49,9 @@ def _usual_cache() -> Path:
 
 def log_defect(error: BaseException) -> Path:
     """Appends the traceback to the log and returns the log's path."""
+    import logging  # every start of the program would wait for it
+    from logging.handlers import RotatingFileHandler
+
     path = state_folder() / "thalweg.log"
     handler = RotatingFileHandler(path, maxBytes=LOG_BYTES, backupCount=OLD_LOGS, encoding="utf-8")
     handler.setFormatter(logging.Formatter("%(asctime)s %(levelname)s %(message)s"))

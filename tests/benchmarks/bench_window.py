@@ -91,18 +91,20 @@ def row(bar: str, text: str, measured: float, limit: float) -> Row:
 
 def open_window() -> tuple[Any, Any, Any]:
     """(application, pool, window), shown and with the sample loaded, as the program does it."""
-    from thalweg_app.compiled import keep_compiled
-    from thalweg_app.threads import cap_threads
+    from thalweg_app.cli import cap_threads, keep_compiled
 
     cap_threads()
     keep_compiled()
-    from thalweg_app import main as program
+    from thalweg_app.terminal.window import load_window
+
+    program = load_window()
     from thalweg_app.worker import WorkerPool
 
     application, pool = program.make_application(), WorkerPool()
     window = program.make_window(application, pool)
     window.show()
     program.begin(window, [])
+    program.settle()
     return application, pool, window
 
 
