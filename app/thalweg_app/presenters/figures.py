@@ -98,6 +98,7 @@ class DerivedFigures:
 
 
 def key_of(spec: StudySpec) -> Any:
-    """What the figures depend on; an edit of the search leaves them fresh."""
+    """What the figures depend on; seeds, starts, the target and stop rules leave them fresh."""
     start = (spec.neighbour, spec.ladder, spec.continuation) if spec.neighbour.is_given else None  # what may refuse or move the start
-    return spec.system, spec.encoding, spec.ansatz, spec.reference, start, spec.memory_gib, spec.exact
+    search = (spec.optimizer, spec.evaluation)
+    return spec.system, spec.encoding, spec.ansatz, spec.reference, start, search, spec.memory_gib, spec.exact

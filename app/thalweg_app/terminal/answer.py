@@ -39,14 +39,24 @@ def figures_lines(figures: StudyFigures) -> list[str]:
     rows += [("Parameters", f"{figures.parameters:,} ({counted(figures.factors, 'factor')})"), ("Start", figures.start)]
     if figures.two_qubit_gates is not None:
         rows.append(("Two-qubit gates", f"{figures.two_qubit_gates:,}" + (f", depth {figures.depth:,}" if figures.depth is not None else "")))
-    if figures.measurement_sets is not None:
-        step = "" if figures.circuits_a_step is None else f"; {counted(figures.circuits_a_step, 'circuit')} an iteration on a device"
-        rows.append(("Measurement sets", f"{figures.measurement_sets:,}{step}"))
+    rows += _measurement_rows(figures)
     exact = f"; exact energy {bytes_text(figures.exact_bytes)}" if figures.exact_bytes else ""
     rows += [("Memory", bytes_text(figures.memory_bytes) + exact), ("Operator order", figures.operator_order)]
     facts = [(_words(name), _fact(name, value, unit)) for name, value in figures.facts.items()]
     warnings = [f"Warning: {text}" for text in figures.warnings]
     return [*aligned(rows), "", *aligned(facts), *_ladder(figures), *([""] if warnings else []), *warnings]
+
+
+def _measurement_rows(figures: StudyFigures) -> Rows:
+    if figures.measurement_sets is None:
+        return [("Pool", counted(figures.pool_operators, "operator"))] if figures.pool_operators is not None else []
+    step = "" if figures.circuits_a_step is None else f"; {counted(figures.circuits_a_step, 'circuit')} an iteration on a device"
+    step += "" if figures.shots_a_step is None else f", {counted(figures.shots_a_step, 'shot')}"
+    rows = [("Measurement sets", f"{figures.measurement_sets:,}{step}")]
+    if figures.pool_operators is not None and figures.pool_circuits is not None:
+        slopes = f"{counted(figures.pool_circuits, 'circuit')} for their slopes at every step of growth"
+        rows.append(("Pool", f"{counted(figures.pool_operators, 'operator')}; {slopes}"))
+    return rows
 
 
 def aligned(rows: Iterable[tuple[str, str]]) -> list[str]:

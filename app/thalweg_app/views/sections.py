@@ -119,9 +119,10 @@ class SearchSection(SectionBody):
         self.rules = OptionsForm(StopRules, "stop")
         self.rules_fold = Fold("Stop rules")
         self.rules_fold.set_content(self.rules)
+        self.figures = FigureGrid()
         for form in (*self.forms, self.rules):
             form.edited.connect(setup.edit)
-        for part in (self.choice, self.evaluation, *self.forms, self.rules_fold):
+        for part in (self.choice, self.evaluation, *self.forms, self.rules_fold, self.figures):
             self.column.addWidget(part)
 
     def refresh(self) -> None:
@@ -135,7 +136,7 @@ class SearchSection(SectionBody):
             self.rules_fold.set_open(True)
 
     def show_figures(self, figures: StudyFigures | None, is_fresh: bool) -> None:
-        """The search has no derived figures."""
+        self.figures.show_figures([] if figures is None else _search_figures(figures), is_fresh)
 
 
 def _encoding_figures(figures: StudyFigures) -> list[Figure]:
@@ -160,3 +161,15 @@ def _trial_figures(figures: StudyFigures) -> list[Figure]:
         Figure("Two-qubit gates", wording.count(figures.two_qubit_gates), "Of the circuit on the working register, any pair of qubits connected."),
         Figure("Depth", wording.count(figures.depth), "Layers of gates that can act at the same time."),
     ]
+
+
+def _search_figures(figures: StudyFigures) -> list[Figure]:
+    """What a device would do. Without strings sorted into sets there are no such figures."""
+    found = [
+        ("Measurement sets", figures.measurement_sets, "Sets of Pauli strings that one circuit reads together, qubit by qubit."),
+        ("Circuits a step", figures.circuits_a_step, "That a device would run for one iteration, gradients by shift rules."),
+        ("Shots a step", figures.shots_a_step, "Repetitions of these circuits, all together."),
+        ("Operators in the pool", figures.pool_operators, "That adaptive growth chooses from."),
+        ("Circuits a choice", figures.pool_circuits, "That a device would run for the slopes of the whole pool, once for every step of growth."),
+    ]
+    return [Figure(name, wording.count(value), help) for name, value, help in found if value is not None]

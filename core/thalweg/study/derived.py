@@ -50,3 +50,6 @@ class StudyFigures(Record):
     pauli_terms: tuple[tuple[str, float], ...]
     measurement_sets: int | None = None  # of strings read together, qubit by qubit; None where there are too many strings to sort at once
     circuits_a_step: int | None = None  # that a device would run for one iteration of the search
+    shots_a_step: int | None = None  # of that iteration; None without shots, and where the optimiser chooses their number itself
+    pool_operators: int | None = None  # that adaptive growth chooses from
+    pool_circuits: int | None = None  # that a device would run for the slopes of all of them, once for every step of growth

@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
-from thalweg.circuit.angles import angles_of
+from typing import Any
+
+from thalweg.ansatz.adaptive import Adaptive
+from thalweg.circuit.angles import Angles, angles_of
 from thalweg.circuit.compile import excitation_gates
-from thalweg.circuit.program import GateProgram
+from thalweg.circuit.program import GateProgram, Program
 from thalweg.circuit.structure import structure_of
 from thalweg.cost.gates import GateCounts, gate_counts
 from thalweg.cost.groups import qubit_wise_groups
 from thalweg.encoding.encoded import EncodedSystem
+from thalweg.estimate import SHOTS
 from thalweg.evaluate.metric import metric_circuits
 from thalweg.evaluate.shift import SHIFT_RULES
 from thalweg.operators.pauli import PauliExpansion, pauli_label
@@ -71,19 +75,43 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
     )
 
 
-def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int]:
-    """Measurement sets, and the circuits of one iteration: energies times sets."""
-    expansion, program = measured_register(problem).working, problem.program
+def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int | None]:
+    """Measurement sets, and what one iteration and one choice of growth take: energies times sets."""
+    expansion, spec = measured_register(problem).working, problem.spec
+    pool = _whole_pool(problem, watch) if isinstance(spec.ansatz, Adaptive) else None
+    operators: dict[str, int | None] = {} if pool is None else {"pool_operators": pool.n_parameters - problem.program.n_parameters}
     if len(expansion) > MOST_SORTED_TERMS:
-        return {}
+        return operators
     watch.stage("Sorting the Pauli strings into measurement sets")
     key = (id(expansion),)
     sets: int = _set_counts.get(key, lambda: (expansion, len(qubit_wise_groups(expansion, largest_first=True, watch=watch))))[1]
-    angles, structure, optimizer = angles_of(program), structure_of(program, expansion.one_norm), problem.spec.optimizer
-    gradient = sum(SHIFT_RULES[highest].evaluations for highest in angles.highest.tolist())
-    part = optimizer.metric_a_step()
+    angles, structure = angles_of(problem.program), structure_of(problem.program, expansion.one_norm)
+    part = spec.optimizer.metric_a_step()
     overlaps = 0 if part is None else metric_circuits(angles, part, structure.layer)
-    return {"measurement_sets": sets, "circuits_a_step": sets * optimizer.energies_a_step(structure, gradient) + overlaps}
+    energies = spec.optimizer.energies_a_step(structure, _energies_of(angles))
+    shots = None if SHOTS in spec.optimizer.needs else getattr(spec.evaluation, "shots", None)
+    found: dict[str, int | None] = {
+        "measurement_sets": sets,
+        "circuits_a_step": sets * energies + overlaps,
+        "shots_a_step": None if shots is None else shots * (energies + overlaps),
+    }
+    if pool is not None:
+        found["pool_circuits"] = sets * (_energies_of(angles_of(pool)) - _energies_of(angles))
+    return found | operators
+
+
+def _energies_of(angles: Angles) -> int:
+    """Energies of a gradient by shift rules."""
+    return sum(SHIFT_RULES[highest].evaluations for highest in angles.highest.tolist())
+
+
+def _whole_pool(problem: Problem, watch: Watch) -> Program:
+    """The trial state with every operator of its pool appended."""
+    watch.stage("Making the pool of operators")
+    ansatz: Any = problem.spec.ansatz
+    pool = ansatz.operators(problem.ground)
+    whole: Program = pool.grown(problem.program, list(range(len(pool))))
+    return whole
 
 
 def exact_bytes(problem: Problem) -> int:

@@ -2,6 +2,8 @@ import pytest
 import studies
 from fake_starter import FakeStarter
 
+from thalweg.evaluate import Shots
+from thalweg.optimize import COBYLA
 from thalweg.study.events import Failed
 from thalweg_app.presenters.figures import DerivedFigures
 
@@ -52,6 +54,15 @@ def test_an_edit_of_the_search_leaves_the_figures_fresh(starter, figures):
     figures.follow(studies.study(seed=99, starts=3))
     assert figures.is_fresh
     assert len(starter.jobs) == 1
+
+
+@pytest.mark.parametrize("changes", [{"optimizer": COBYLA()}, {"evaluation": Shots(shots=77)}, {"reference": "2200"}])
+def test_what_a_device_would_run_is_worked_out_anew_for_another_search(starter, figures, changes):
+    figures.follow(studies.study())
+    starter.last.listener.done(studies.figures().model_dump(mode="json"))
+    figures.follow(studies.study(**changes))
+    assert not figures.is_fresh
+    assert len(starter.jobs) == 2
 
 
 def test_going_back_shows_known_figures_without_asking_again(starter, figures):

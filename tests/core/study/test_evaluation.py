@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from support.dense import expansion_matrix
 
-from thalweg.ansatz import UCCSD, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.encoding import JordanWigner
 from thalweg.errors import StudyError
 from thalweg.evaluate import Exact, ExactWithError, Shots
@@ -282,7 +282,17 @@ def test_the_circuits_of_a_step_are_foretold(optimizer):
     two = run(spec.model_copy(update={"optimizer": optimizer.model_copy(update={"max_iterations": 2})})).trace
     figures = inspect(spec.model_copy(update={"optimizer": optimizer}))
     assert two.circuits[2] - two.circuits[1] == figures.circuits_a_step
+    assert figures.shots_a_step == (None if "shots" in optimizer.needs else two.shots[2] - two.shots[1])
     assert figures.measurement_sets == 5
+
+
+def test_the_circuits_of_a_choice_of_growth_are_foretold():
+    spec = study(system=CHAIN, ansatz=Adaptive(max_operators=1), evaluation=Exact(gradient="shift-rule"), optimizer=COBYLA(max_iterations=1))
+    figures = inspect(spec)
+    result = run(spec)
+    assert figures.pool_operators == len(spec.ansatz.operators(prepare(spec).ground))
+    assert result.growth[0].evaluations * figures.measurement_sets == figures.pool_circuits  # the start is judged by the simulation
+    assert inspect(study(system=CHAIN)).pool_circuits is None
 
 
 @pytest.mark.parametrize("reuse", [True, False])
