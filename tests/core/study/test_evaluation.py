@@ -287,7 +287,7 @@ def test_the_circuits_of_a_step_are_foretold(optimizer):
 
 
 def test_the_circuits_of_a_choice_of_growth_are_foretold():
-    spec = study(system=CHAIN, ansatz=Adaptive(max_operators=1), evaluation=Exact(gradient="shift-rule"), optimizer=COBYLA(max_iterations=1))
+    spec = study(system=CHAIN, ansatz=Adaptive(max_operators=1), evaluation=Exact(gradient="shift-rule"), optimizer=COBYLA(max_iterations=5))
     figures = inspect(spec)
     result = run(spec)
     assert figures.pool_operators == len(spec.ansatz.operators(prepare(spec).ground))
