@@ -10,7 +10,7 @@ import sys
 import threading
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
-from multiprocessing import forkserver
+from multiprocessing import forkserver, resource_tracker
 from multiprocessing.connection import wait
 from multiprocessing.context import BaseContext
 from multiprocessing.process import BaseProcess
@@ -120,6 +120,7 @@ def start_process(function: Callable[..., None], *args: Any) -> BaseProcess:
         with _for_children():
             process.start()
         return process
+    resource_tracker.ensure_running()  # the server would start it as well, and it lets Ctrl-C through again when it has
     with _for_children():
         forkserver.ensure_running()
     process.start()

@@ -3,11 +3,13 @@
 import multiprocessing
 import os
 import pickle
+import re
 import signal
 import subprocess
 import sys
 import time
 from collections import deque
+from multiprocessing import forkserver
 from pathlib import Path
 from types import SimpleNamespace
 
@@ -255,6 +257,13 @@ def test_an_error_that_cannot_travel_arrives_in_words():
     portable = start_workers._portable(LocalError("only here"))
     assert isinstance(portable, RuntimeError)
     assert "only here" in str(portable)
+
+
+def test_the_server_of_processes_is_deaf_to_ctrl_c_from_its_first_moment():
+    executors.start_process(os.getpid).join()
+    status = Path(f"/proc/{forkserver._forkserver._forkserver_pid}/status").read_text()
+    blocked = int(re.search(r"SigBlk:\s*(\w+)", status)[1], 16)
+    assert blocked & 1 << signal.SIGINT - 1
 
 
 PROGRAM = """
