@@ -104,6 +104,19 @@ def test_what_the_calculation_refuses_is_marked_in_its_field(qtbot, window, star
     assert "Odd electrons" in window.status.text
 
 
+def test_a_refused_reference_opens_the_section_where_it_stands(qtbot, window, starter):
+    window.workbench.setup.edit("reference", "2200, 2ab0")
+    assert not window.column.sections["ansatz"].is_open
+    window.run()
+    what = Failed(what="The determinants have different symmetries", why="no eigenstate mixes them", fix="Leave one out", field="reference")
+    jobs_of(starter, RUN)[0].listener.failed(what)
+    assert window.column.sections["ansatz"].is_open
+    assert not window.column.sections["optimizer"].is_open
+    form = next(f for f in window.column.trial.forms if any(r.path == "reference" for r in f.rows))
+    assert form.fold.is_open
+    assert "different symmetries" in next(r for r in form.rows if r.path == "reference").error.text()
+
+
 def test_a_killed_calculation_is_told_and_the_window_lives_on(qtbot, window, starter):
     window.run()
     jobs_of(starter, RUN)[0].listener.failed(Failed(what="The calculation was cut off", why="no memory", fix="Run it again", details="x"))

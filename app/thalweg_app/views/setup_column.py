@@ -21,6 +21,10 @@ STOP_NOW_HELP = "Does not wait for the properties of the best point; its energy 
 _ANSWER_PICTURES = {"good": "reached", "bad": "missed", "unclear": "unclear"}
 
 
+#: Settings of the study itself that stand in the section of the trial state; all others stand in that of the search.
+OF_TRIAL = frozenset({"reference", "continuation", "ladder", "neighbour"})
+
+
 class SetupColumn(QWidget):
     """Shows the workbench's set-up and figures; `run_asked` and `stop_asked` come from the buttons."""
 
@@ -56,7 +60,7 @@ class SetupColumn(QWidget):
     def refresh(self) -> None:
         for body in self._bodies.values():
             body.refresh()
-        for path in self._workbench.setup.draft.errors:
+        for path in self._workbench.setup.errors:
             self._reveal(path)
         self.refresh_summaries()
         self.refresh_buttons()
@@ -107,7 +111,7 @@ class SetupColumn(QWidget):
     def _reveal(self, path: str) -> None:
         """Opens the section that holds a field with an error."""
         first = path.partition(".")[0]
-        self.sections[first if first in self.sections else "optimizer"].set_open(True)
+        self.sections[first if first in self.sections else "ansatz" if first in OF_TRIAL else "optimizer"].set_open(True)
 
     def _scroll(self) -> QScrollArea:
         holder = QWidget()
