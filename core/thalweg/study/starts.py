@@ -66,7 +66,7 @@ class _Starts:
         self._lost: list[int] = []
         self._failure: BaseException | None = None
         self._workers: StartWorkers | None = None
-        self._is_stopping = self._was_shared = False
+        self._is_stopping = self._is_ending = self._was_shared = False  # ending: stopped, or failed
         self._began = self._looked = 0.0
         self._reason = "stopped-by-person"
 
@@ -119,23 +119,20 @@ class _Starts:
             self._local.took(time.perf_counter() - self._began)
 
     def _asked(self) -> bool:
-        """Whether what runs here is to stop."""
+        """Whether what runs here is to stop. Asked several times an evaluation."""
         if self._local is None:
             return self._should_stop()
-        self._heed_stop()
         if time.perf_counter() - self._looked >= TICK:
             self._look(0.0)
-        return self._is_ending
+        return self._is_ending or self._heed_stop()
 
-    @property
-    def _is_ending(self) -> bool:
-        return self._is_stopping or self._failure is not None
-
-    def _heed_stop(self) -> None:
+    def _heed_stop(self) -> bool:
+        """Whether the person asked to stop, which all starts under way are told of once."""
         if not self._is_stopping and self._should_stop():
-            self._is_stopping = True
+            self._is_stopping = self._is_ending = True
             if self._workers is not None:
                 self._workers.stop()
+        return self._is_stopping
 
     def _look(self, seconds: float) -> None:
         """Takes what the other processes have told, waiting up to `seconds` for it, or starts them where that pays now."""
@@ -163,7 +160,7 @@ class _Starts:
         if is_lost and index is not None and index not in self._tried:
             self._again.append(index)
         elif isinstance(news, Raised) and not is_lost:
-            self._failure = news.error
+            self._failure, self._is_ending = news.error, True
         elif isinstance(news, Ended) and news.end is not None and index is not None:
             self._keep(index, with_study(news.end, self._problem))
         if is_lost or not self._left or self._is_ending:
