@@ -13,6 +13,13 @@ def test_pictures_are_built_when_they_are_shown_first(window):
     assert window.pictures.findChildren(Picture)[-1].palette_now == window.theme.palette
 
 
+def test_all_pictures_are_built_ahead_one_after_the_other(window):
+    counts = [len(window.pictures.findChildren(Picture)) for _ in window.pictures.prepare()]
+    assert counts[-4:] == [2, 3, 4, 5]
+    assert [type(p).title for p in window.pictures] == ["Convergence", "Curve", "Hamiltonian", "State", "Diagnosis"]
+    assert len(window.pictures.findChildren(Picture)) == 5
+
+
 @pytest.mark.parametrize("place", range(5))
 def test_the_tab_key_leads_from_the_tabs_into_the_picture_and_then_to_the_ledger(window, place):
     window.show_picture(place)

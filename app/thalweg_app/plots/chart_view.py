@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import importlib
 import threading
+from collections.abc import Iterator
 from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QPointF, QSize, Qt, Signal
@@ -12,7 +13,7 @@ from PySide6.QtWidgets import QLabel, QSizePolicy, QStackedLayout, QVBoxLayout, 
 
 from thalweg_app.colours import LIGHT, Palette
 from thalweg_app.plots.legend import Legend
-from thalweg_app.presenters.chart import Chart
+from thalweg_app.presenters.chart import Chart, Panel
 
 if TYPE_CHECKING:
     from thalweg_app.plots.panel_view import PanelView
@@ -102,10 +103,16 @@ class ChartView(QWidget):
             if fresh or self._follows:
                 self.fit()
 
-    def prepare(self, chart: Chart) -> None:
-        """Builds the axes of such a chart while nothing else is to be done, so that the first picture comes at once."""
+    def prepare(self, chart: Chart) -> Iterator[None]:
+        """Builds the axes of such a chart, one at each step, so that the first picture comes at once; ends when a chart is shown meanwhile."""
         if not self._panels:
-            self._build_panels(chart)
+            self._clear_panels()
+            made = self._panels
+            yield
+            for panel in chart.panels:
+                if self._panels is made:
+                    self._add_panel(panel, is_last=panel is chart.panels[-1])
+                    yield
 
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
@@ -156,24 +163,33 @@ class ChartView(QWidget):
             self._panels[-1].item.setLabel("bottom", self._chart.x_title, color=self._palette.ink)
 
     def _build_panels(self, chart: Chart) -> None:
-        from thalweg_app.plots.panel_view import PanelView
+        self._clear_panels()
+        for panel in chart.panels:
+            self._add_panel(panel, is_last=panel is chart.panels[-1])
 
+    def _clear_panels(self) -> None:
         layout = self.graphics.ci.layout
         self.graphics.clear()
         for row in range(len(self._panels)):  # a row keeps its height when it has become empty
             layout.setRowStretchFactor(row, 0)
             layout.setRowPreferredHeight(row, 0)
         self._titled = None
-        self._panels = [PanelView(panel, self._palette, self.font()) for panel in chart.panels]
-        for row, (view, panel) in enumerate(zip(self._panels, chart.panels, strict=True)):
-            self.graphics.addItem(view.item, row=row, col=0)
-            layout.setRowStretchFactor(row, round(100 * panel.share))
-            layout.setRowPreferredHeight(row, 1000 * panel.share)
-            view.item.getViewBox().sigRangeChangedManually.connect(self._on_manual_range)
-            if row:
-                view.item.setXLink(self._panels[0].item)
-            if row < len(self._panels) - 1:
-                view.item.getAxis("bottom").setStyle(showValues=False)
+        self._panels = []
+
+    def _add_panel(self, panel: Panel, is_last: bool) -> None:
+        """Puts a panel under those that there are."""
+        from thalweg_app.plots.panel_view import PanelView
+
+        view, row, layout = PanelView(panel, self._palette, self.font()), len(self._panels), self.graphics.ci.layout
+        self._panels.append(view)
+        self.graphics.addItem(view.item, row=row, col=0)
+        layout.setRowStretchFactor(row, round(100 * panel.share))
+        layout.setRowPreferredHeight(row, 1000 * panel.share)
+        view.item.getViewBox().sigRangeChangedManually.connect(self._on_manual_range)
+        if row:
+            view.item.setXLink(self._panels[0].item)
+        if not is_last:
+            view.item.getAxis("bottom").setStyle(showValues=False)
 
     def _on_manual_range(self, *_: Any) -> None:
         self._follows = False

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import ClassVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QSplitter
+from PySide6.QtWidgets import QLabel, QSplitter, QWidget
 
 from thalweg_app.forms import QuietCombo, describe
 from thalweg_app.plots.picture import Picture
@@ -22,8 +23,8 @@ class ConvergencePicture(Picture):
     title: ClassVar[str] = "Convergence"
     about: ClassVar[str] = "Energy and error of the selected run, with the ticked runs laid over it."
 
-    def __init__(self, workbench: Workbench) -> None:
-        super().__init__(workbench)
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
+        super().__init__(workbench, parent)
         self.axis = QuietCombo()
         for key, title in X_TITLES.items():
             self.axis.addItem(title, key)
@@ -43,8 +44,8 @@ class ConvergencePicture(Picture):
         split.setStretchFactor(1, 1)
         self.body.addWidget(split, 1)
 
-    def prepare(self) -> None:
-        self.view.prepare(BLANK)
+    def prepare(self) -> Iterator[None]:
+        yield from self.view.prepare(BLANK)
 
     def refresh(self) -> None:
         self.refresh_live()

@@ -6,7 +6,7 @@ from pathlib import Path
 from typing import ClassVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QCheckBox, QLabel, QMenu, QPushButton, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QCheckBox, QLabel, QMenu, QPushButton, QSplitter, QStackedWidget, QWidget
 
 from thalweg_app.colours import Palette
 from thalweg_app.forms import QuietCombo, describe
@@ -27,7 +27,7 @@ from thalweg_app.presenters.curve_numbers import scan_csv
 from thalweg_app.presenters.scan_control import REFINED_BY, REFINEMENTS, scan_title
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.widgets.number_table import NumberTable
-from thalweg_app.widgets.scrolled import scrolled
+from thalweg_app.widgets.scrolled import scrolled_column
 
 SIDE_WIDTH = 330
 
@@ -36,16 +36,15 @@ class CurvePicture(Picture):
     title: ClassVar[str] = "Curve"
     about: ClassVar[str] = "Dissociation or coupling curve with its error, and what the curve yields."
 
-    def __init__(self, workbench: Workbench) -> None:
-        super().__init__(workbench)
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
+        super().__init__(workbench, parent)
         self.scans = workbench.scans
-        self.form = ScanForm(self.scans)
         self._make_controls()
         self.table = NumberTable("Points of the curve")
         self.stack = QStackedWidget()
         self.stack.addWidget(self.view)
         self.stack.addWidget(self.table)
-        self.body.addWidget(self._split(), 1)
+        self._lay_out()
         self.view.read_out.disconnect()
         self.view.pointed.connect(self._read)
         self.view.chosen.connect(self._open_point)
@@ -136,11 +135,13 @@ class CurvePicture(Picture):
         for part in (self.choice, self.length, self.as_table, self.resume, self.refine):
             self.controls.addWidget(part)
 
-    def _split(self) -> QSplitter:
-        side = QWidget()
-        column = QVBoxLayout(side)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.setSpacing(8)
+    def _lay_out(self) -> None:
+        split = QSplitter(Qt.Orientation.Horizontal, self)
+        split.setChildrenCollapsible(False)
+        self.body.addWidget(split, 1)
+        split.addWidget(self.stack)
+        column = scrolled_column(split, SIDE_WIDTH)
+        self.form = ScanForm(self.scans, column.parentWidget())
         self.sentence, self.remarks = QLabel(wordWrap=True), QLabel(wordWrap=True)
         self.sentence.setProperty("role", "heading")
         self.sentence.setAccessibleName("Verdict on the curve")
@@ -156,14 +157,8 @@ class CurvePicture(Picture):
         column.addWidget(self.yields)
         column.addWidget(self.remarks)
         column.addStretch(1)
-        scroll = scrolled(side, SIDE_WIDTH)
-        split = QSplitter(Qt.Orientation.Horizontal)
-        split.setChildrenCollapsible(False)
-        split.addWidget(self.stack)
-        split.addWidget(scroll)
         split.setStretchFactor(0, 1)
         split.setSizes([640, SIDE_WIDTH])
-        return split
 
     def _fill_choices(self) -> None:
         self.choice.blockSignals(True)

@@ -17,9 +17,9 @@ from thalweg_app.presenters.diagnosis import Finding, chart_of, table_of_finding
 from thalweg_app.presenters.diagnosis_control import COSTS, DIRECTIONS, QUESTIONS
 from thalweg_app.presenters.tables import Table
 from thalweg_app.presenters.workbench import Workbench
-from thalweg_app.theme import SPACE, icon
+from thalweg_app.theme import icon
 from thalweg_app.widgets.number_table import NumberTable
-from thalweg_app.widgets.scrolled import scrolled
+from thalweg_app.widgets.scrolled import scrolled_column
 
 SIDE_WIDTH = 330
 
@@ -49,20 +49,20 @@ class DiagnosisPicture(Picture):
     title: ClassVar[str] = "Diagnosis"
     about: ClassVar[str] = "Why a search fails: vanishing gradients, the landscape, the curvature at the found point."
 
-    def __init__(self, workbench: Workbench) -> None:
-        super().__init__(workbench)
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
+        super().__init__(workbench, parent)
         self.control = workbench.diagnosis
         self.map = MapView()
         self.stack = QStackedWidget()
         self.stack.addWidget(self.view)
         self.stack.addWidget(self.map)
-        split = QSplitter(Qt.Orientation.Horizontal)
+        split = QSplitter(Qt.Orientation.Horizontal, self)
         split.setChildrenCollapsible(False)
+        self.body.addWidget(split, 1)
         split.addWidget(self.stack)
-        split.addWidget(scrolled(self._side(), SIDE_WIDTH))
+        self._fill(scrolled_column(split, SIDE_WIDTH))
         split.setStretchFactor(0, 1)
         split.setSizes([640, SIDE_WIDTH])
-        self.body.addWidget(split, 1)
         self.control.changed.connect(self.refresh_shown)
         self.control.progressed.connect(self._show_progress)
 
@@ -121,11 +121,7 @@ class DiagnosisPicture(Picture):
     def _show_progress(self) -> None:
         self.progress.setText(self.control.stage if self.control.is_running else "")
 
-    def _side(self) -> QWidget:
-        side = QWidget()
-        column = QVBoxLayout(side)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.setSpacing(SPACE)
+    def _fill(self, column: QVBoxLayout) -> None:
         self.what = QuietCombo()
         for key, (title, _) in QUESTIONS.items():
             self.what.addItem(title, key)
@@ -139,15 +135,14 @@ class DiagnosisPicture(Picture):
         self.table = NumberTable("What the diagnosis found")
         self.table.setSortingEnabled(False)
         self.table.horizontalHeader().setStretchLastSection(True)
-        for part in (self.what, self.about_what, self._form(), self.trouble, self._buttons(), self.progress, self.sentence):
+        for part in (self.what, self.about_what, self._form(column.parentWidget()), self.trouble, self._buttons(), self.progress, self.sentence):
             column.addWidget(part)
         self.table.setMinimumHeight(150)
         column.addWidget(self.table, 1)
         column.addStretch(1)
-        return side
 
-    def _form(self) -> QWidget:
-        holder = QWidget()
+    def _form(self, parent: QWidget | None) -> QWidget:
+        holder = QWidget(parent)
         grid = form_grid(holder)
         self._fields: dict[str, tuple[QLabel, QWidget]] = {}
         for row, (name, (title, help)) in enumerate(_FIELDS.items()):

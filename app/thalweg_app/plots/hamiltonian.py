@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import ClassVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QLineEdit, QSplitter
+from PySide6.QtWidgets import QLabel, QLineEdit, QSplitter, QWidget
 
 from thalweg_app.forms import describe
 from thalweg_app.plots.picture import Picture
@@ -20,8 +20,8 @@ class HamiltonianPicture(Picture):
     title: ClassVar[str] = "Hamiltonian"
     about: ClassVar[str] = "Pauli terms by weight, with a filter and the one-norm."
 
-    def __init__(self, workbench: Workbench) -> None:
-        super().__init__(workbench)
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
+        super().__init__(workbench, parent)
         self.filter = QLineEdit()
         self.filter.setPlaceholderText("for example  X0 Y3  or  Z")
         self.filter.setClearButtonEnabled(True)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import ClassVar
 
@@ -29,8 +29,9 @@ class Picture(QWidget):
     title: ClassVar[str] = ""
     about: ClassVar[str] = ""
 
-    def __init__(self, workbench: Workbench) -> None:
-        super().__init__()
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
+        """A parent spares work: a widget that moves into another is styled again with all that is in it."""
+        super().__init__(parent)
         self.workbench = workbench
         self.palette_now = LIGHT
         self.view = ChartView(self.title)
@@ -61,8 +62,9 @@ class Picture(QWidget):
         """Draws the present state."""
         raise NotImplementedError(type(self).__name__)
 
-    def prepare(self) -> None:
-        """Builds ahead what the first drawing would take long for; called when nothing else is to be done."""
+    def prepare(self) -> Iterator[None]:
+        """Builds ahead, a little at each step, what the first drawing would take long for."""
+        yield from ()
 
     def refresh_whole(self) -> None:
         """Draws the present state and shows all of it."""

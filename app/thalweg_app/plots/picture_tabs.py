@@ -1,4 +1,4 @@
-"""The pictures as tabs. A picture is built when it is shown first, or ahead when nothing else is to be done."""
+"""The pictures as tabs. A picture is built when it is shown first, or ahead by `prepare`."""
 
 from __future__ import annotations
 
@@ -20,12 +20,14 @@ class PictureTabs(QTabWidget):
         super().__init__()
         self._workbench, self._palette = workbench, LIGHT
         self._built: dict[int, Picture] = {}
+        self._pages: list[QVBoxLayout] = []
         self.setDocumentMode(True)
         self.setAccessibleName("Pictures")
         self.setMinimumSize(640, 340)  # no picture, whenever it is built, widens the window or squeezes the ledger
         for i, kind in enumerate(PICTURES):
             page = QWidget()
-            QVBoxLayout(page).setContentsMargins(0, 0, 0, 0)
+            self._pages.append(QVBoxLayout(page))
+            self._pages[-1].setContentsMargins(0, 0, 0, 0)
             self.addTab(page, kind.title)
             self.setTabToolTip(i, f"{kind.about} (Ctrl+{i + 1})")
 
@@ -44,13 +46,13 @@ class PictureTabs(QTabWidget):
     def shown(self) -> Picture:
         return self[self.currentIndex()]
 
-    def build_ahead(self) -> bool:
-        """Builds one more picture; False when all are there."""
-        place = next((i for i in range(len(self)) if i not in self._built), None)
-        if place is None:
-            return False
-        self._built[place] = self._build(place)
-        return True
+    def prepare(self) -> Iterator[None]:
+        """Builds ahead, a little at each step, so that none halts the window for long."""
+        yield from self.shown.prepare()
+        for place in range(len(self)):
+            if place not in self._built:
+                self._built[place] = self._build(place)
+                yield
 
     def set_palette(self, palette: Palette) -> None:
         self._palette = palette
@@ -58,11 +60,10 @@ class PictureTabs(QTabWidget):
             picture.set_palette(palette)
 
     def _build(self, place: int) -> Picture:
-        picture = PICTURES[place](self._workbench)
+        page = self._pages[place]
+        picture = PICTURES[place](self._workbench, page.parentWidget())
         picture.set_palette(self._palette)
-        layout = self.widget(place).layout()
-        assert layout is not None
-        layout.addWidget(picture)
+        page.addWidget(picture)
         picture.show()  # a layout would show it a turn later
         visit_after(self.tabBar(), picture)
         return picture

@@ -25,8 +25,8 @@ REST_MS = 600
 class ScanForm(QWidget):
     """Shows the draft of `ScanControl`."""
 
-    def __init__(self, scans: ScanControl) -> None:
-        super().__init__()
+    def __init__(self, scans: ScanControl, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
         self._scans = scans
         self._errors: dict[str, StudyError] = {}
         self._forms: dict[str, OptionsForm] = {}

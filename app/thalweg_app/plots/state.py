@@ -26,9 +26,9 @@ class StatePicture(Picture):
     title: ClassVar[str] = "State"
     about: ClassVar[str] = "Leading determinants against the exact state, particle number, spin, variance, fidelity, natural occupations."
 
-    def __init__(self, workbench: Workbench) -> None:
+    def __init__(self, workbench: Workbench, parent: QWidget | None = None) -> None:
         self.occupations = ChartView("Natural occupations")
-        super().__init__(workbench)
+        super().__init__(workbench, parent)
         self._label = QLabel()
         self._label.setProperty("role", "heading")
         self.controls.addWidget(self._label)

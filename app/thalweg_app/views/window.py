@@ -186,14 +186,13 @@ class Window(QMainWindow):
         self.picture.refresh_live()
 
     def _load_ahead(self) -> None:
-        self._loading = load_ahead()
+        self._loading, self._ahead = load_ahead(), self.pictures.prepare()
         self._prepare()
 
     def _prepare(self) -> None:
-        if self._loading.is_alive():
+        """One step at a time: what is typed or clicked meanwhile is dealt with between two."""
+        if self._loading.is_alive() or next(self._ahead, self) is not self:
             QTimer.singleShot(PREPARE_MS, self, self._prepare)
-            return
-        self.pictures.shown.prepare()
 
     def _keep(self) -> None:
         self._recovery.keep(self.workbench.document)

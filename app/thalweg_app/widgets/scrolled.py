@@ -3,18 +3,19 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QHBoxLayout, QScrollArea, QWidget
+from PySide6.QtWidgets import QScrollArea, QSplitter, QVBoxLayout, QWidget
 
 
-def scrolled(inner: QWidget, width: int) -> QScrollArea:
-    """The widget in an area that is at least `width` wide and scrolls up and down only."""
-    area = QScrollArea()
+def scrolled_column(split: QSplitter, width: int) -> QVBoxLayout:
+    """A column, to be filled, in an area at the end of `split` that is at least `width` wide and scrolls up and down only."""
+    area = QScrollArea(split)
     area.setWidgetResizable(True)
     area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
     area.setMinimumWidth(width)
-    holder = QWidget()
-    row = QHBoxLayout(holder)
-    row.setContentsMargins(12, 0, 4, 0)
-    row.addWidget(inner)
+    holder = QWidget(area.viewport())
+    column = QVBoxLayout(holder)
+    column.setContentsMargins(12, 0, 4, 0)
+    column.setSpacing(8)
     area.setWidget(holder)
-    return area
+    split.addWidget(area)
+    return column

@@ -17,7 +17,7 @@ def visit_after(before: QWidget, late: QWidget) -> None:
 def visited(whole: QWidget) -> list[QWidget]:
     """What can have the focus within a widget, itself among it, in order."""
     found, following = [whole], whole.nextInFocusChain()
-    while following is not whole and whole.isAncestorOf(following):
+    while following is not None and following is not whole and whole.isAncestorOf(following):
         found.append(following)
         following = following.nextInFocusChain()
     return [widget for widget in found if widget.focusPolicy() != Qt.FocusPolicy.NoFocus]

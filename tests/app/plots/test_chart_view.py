@@ -35,6 +35,20 @@ def test_an_empty_chart_says_what_to_do(view):
     assert "Run" in view._empty.text()
 
 
+@pytest.mark.parametrize("steps", [0, 1, 2, 3, 4])
+def test_a_chart_shown_while_its_axes_are_built_ahead_is_whole(view, steps):
+    ahead = view.prepare(RUN)
+    for _ in range(steps):
+        next(ahead, None)
+    view.show_chart(RUN)
+    assert list(ahead) == []  # nothing is built beside what is shown
+    assert len(view._panels) == len(RUN.panels)
+    assert view._panels[1].item.getAxis("bottom").style["showValues"]
+    assert not view._panels[0].item.getAxis("bottom").style["showValues"]
+    (_, _), (low, high) = ranges(view)
+    assert low < studies.EXACT < studies.REFERENCE < high
+
+
 def test_everything_drawn_is_inside_the_range(view):
     view.show_chart(RUN)
     (x0, x1), (y0, y1) = ranges(view)
