@@ -50,26 +50,28 @@ class Local(InProcess):
 
     def __init__(self, workers: int = 0) -> None:
         self.workers = workers or usable_cores()
-        self._first, self._shortest = True, float("inf")
+        self._is_first, self._first, self._shortest = True, 0.0, float("inf")
 
     def took(self, seconds: float) -> None:
         """A point was run here. The first may have loaded libraries, which a pool would load as well: what is left of it counts."""
-        certain = self._certain(seconds)
-        self._first = False
-        self._shortest = min(self._shortest, certain if certain > 0 else float("inf"))
+        if self._is_first:
+            self._first, self._is_first = self._certain(seconds), False
+        else:
+            self._shortest = min(self._shortest, seconds)
 
     def pays(self, points_left: int, running: float = 0.0) -> bool:
         """Whether the time that a pool saves on these points is more than its start takes.
 
-        `running`: seconds that a point under way has taken so far; while no other is done, each is expected to take as long at least.
+        `running`: seconds that a point under way has taken so far. While none but the first is done, each is expected to take as long as
+        either at least.
         """
         workers = min(self.workers, points_left)
         start = START_AGAIN if _server_runs() else START_UP
-        each = self._shortest if self._shortest < float("inf") else self._certain(running)
+        each = self._shortest if self._shortest < float("inf") else max(self._first, self._certain(running))
         return workers > 1 and each * points_left * (1.0 - 1.0 / workers) > start
 
     def _certain(self, seconds: float) -> float:
-        return seconds - START_UP if self._first else seconds
+        return max(0.0, seconds - START_UP) if self._is_first else seconds
 
     def pool(self) -> Executor:
         return local_pool(self.workers)

@@ -76,6 +76,19 @@ def test_a_pool_is_started_only_where_it_pays(monkeypatch):
     assert warm.pays(40)
 
 
+def test_what_a_point_under_way_has_taken_counts_until_a_better_figure_is_there(monkeypatch):
+    monkeypatch.setattr(executors, "_server_runs", lambda: False)
+    local = Local(workers=2)
+    assert not local.pays(4, executors.START_UP + 1.0)  # much of it may be libraries
+    assert local.pays(4, executors.START_UP + 2.0)
+    local.took(executors.START_UP + 0.1)  # of which next to nothing is certain
+    assert not local.pays(4, 1.0)
+    assert local.pays(4, 2.0)
+    local.took(0.5)
+    assert not local.pays(4, 2.0)
+    assert local.pays(11)
+
+
 def test_a_long_scan_moves_to_a_pool_and_keeps_its_curve(monkeypatch):
     monkeypatch.setattr(executors, "START_UP", 0.0)
     monkeypatch.setattr(executors, "START_AGAIN", 0.0)

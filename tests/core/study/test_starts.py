@@ -53,6 +53,13 @@ def test_starts_side_by_side_give_the_digits_of_a_serial_run(name, heard):
     assert without_times(beside) == without_times(run(CASES[name]))
 
 
+def test_long_loops_are_cut_alike_in_every_process(heard, monkeypatch):
+    monkeypatch.setenv("NUMBA_NUM_THREADS", "2")  # 18 qubits are shared by threads, and sums depend on the shares
+    spec = StudySpec(system=LatticeModel(lattice=Chain(sites=18)), starts=2, exact=False)
+    spec = with_settings(spec, ansatz="hardware-efficient", ansatz__start="uniform-random", stop__evaluations=3)
+    assert without_times(run(spec, heard.append, local=Eager(2))) == without_times(run(spec))
+
+
 def test_every_iterate_of_every_start_is_heard_in_order(heard):
     result = run(CASES["coupled cluster"], heard.append, local=Eager(2))
     for index, record in enumerate(result.starts):
