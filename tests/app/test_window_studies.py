@@ -5,6 +5,7 @@ import windows
 from instant_starter import InstantStarter
 from PySide6.QtCore import QPoint, Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QFileDialog
 
 from thalweg.storage.session import load_session
 from thalweg.study.spec import StudySpec
@@ -146,3 +147,31 @@ def test_a_landscape_over_two_directions_is_a_map(window):
     diagnosis.start.click()
     assert diagnosis.stack.currentWidget() is diagnosis.map
     assert diagnosis.sentence.text()
+
+
+def test_the_frames_of_a_file_are_chosen_by_dialog_and_run(qtbot, window, tmp_path):
+    file = tmp_path / "stretch.xyz"
+    file.write_text("".join(f"2\n\nH 0 0 0\nH 0 0 {r}\n" for r in (0.7, 0.8, 0.9)))
+    form = picture(window, CurvePicture).form
+    choose(form.path, "frames")
+    assert form.frames.isVisible()
+    assert not form.spacing.isVisible()
+    assert "No frames are chosen" in form.trouble.text()
+    form.frames.choose.click()
+    windows.dialog(window, QFileDialog).fileSelected.emit(str(file))
+    assert form.frames.file.text() == "stretch.xyz: 3 frames, read in ångström"
+    form.start.click()
+    result = window.workbench.scans.chosen.result
+    assert [p.coordinate for p in result.points] == [1.0, 2.0, 3.0]
+    assert result.axis == "Frame"
+    choose(form.path, "bond")
+    assert form.spacing.isVisible()
+    assert not form.frames.isVisible()
+
+
+def test_frames_of_another_molecule_are_refused_in_a_sentence(window, tmp_path):
+    (tmp_path / "other.xyz").write_text("2\n\nH 0 0 0\nH 0 0 0.7\n2\n\nLi 0 0 0\nH 0 0 1.6\n")
+    form = picture(window, CurvePicture).form
+    window.workbench.scans.open_frames(tmp_path / "other.xyz")
+    assert form.trouble.text().startswith("Frame 2 of other.xyz has other atoms")
+    assert not form.start.isEnabled()

@@ -9,10 +9,12 @@ from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QPushButton, QVBox
 
 from thalweg.errors import StudyError
 from thalweg.registry import key_of
+from thalweg.study.path import PATHS, FramesPath
 from thalweg.study.scan_spec import Literature
 from thalweg_app.colours import LIGHT, Palette
 from thalweg_app.forms import OptionsForm, QuietCombo, TextEntry, describe, form_grid
-from thalweg_app.presenters.scan_control import OFFERED, SPACINGS, ScanControl
+from thalweg_app.plots.frames_rows import FramesRows
+from thalweg_app.presenters.scan_control import SPACINGS, ScanControl
 from thalweg_app.presenters.wording import time_left
 from thalweg_app.theme import SPACE, icon
 from thalweg_app.widgets.fold import Fold
@@ -36,7 +38,10 @@ class ScanForm(QWidget):
         column.addLayout(self._path_row())
         self._fields = QVBoxLayout()
         column.addLayout(self._fields)
-        column.addWidget(self._points_rows())
+        self.frames = FramesRows(scans)
+        self._points = self._points_rows()
+        column.addWidget(self.frames)
+        column.addWidget(self._points)
         column.addLayout(self._switches())
         self.trouble = QLabel(wordWrap=True)
         self.trouble.setProperty("role", "error")
@@ -52,6 +57,11 @@ class ScanForm(QWidget):
         draft = self._scans.draft
         key = key_of(type(draft.path))
         self.path.setCurrentIndex(self.path.findData(key))
+        is_frames = isinstance(draft.path, FramesPath)
+        self.frames.setVisible(is_frames)
+        self._points.setVisible(not is_frames)
+        if is_frames:
+            self.frames.refresh()
         self._show_form(key)
         self.spacing.setCurrentIndex(self.spacing.findData(draft.spacing))
         for name, entry in self._entries.items():
@@ -80,8 +90,8 @@ class ScanForm(QWidget):
 
     def _path_row(self) -> QHBoxLayout:
         self.path = QuietCombo()
-        for cls in OFFERED:
-            self.path.addItem(cls.title, cls.model_fields["key"].default)
+        for cls in PATHS:
+            self.path.addItem(cls.title, key_of(cls))
         describe(self.path, "Path", "What is varied from point to point.")
         self.path.activated.connect(lambda i: self._scans.choose_path(self.path.itemData(i)))
         row = QHBoxLayout()
@@ -164,14 +174,16 @@ class ScanForm(QWidget):
         return holder
 
     def _show_form(self, key: str) -> None:
+        for name, other in self._forms.items():
+            other.setVisible(name == key)
+        if isinstance(self._scans.draft.path, FramesPath):
+            return
         if key not in self._forms:
             form = OptionsForm(type(self._scans.draft.path), "path")
             form.edited.connect(self._edit_within)
             self._forms[key] = form
             self._fields.addWidget(form)
             visit_after(self.path, form)
-        for name, form in self._forms.items():
-            form.setVisible(name == key)
         path = self._scans.draft.path
         self._forms[key].show_values(lambda dotted: getattr(path, dotted.removeprefix("path.")), self._errors)
 

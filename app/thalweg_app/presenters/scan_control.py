@@ -5,6 +5,7 @@ from __future__ import annotations
 import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import Any, Literal
 
 from pydantic import ValidationError
@@ -12,7 +13,7 @@ from pydantic import ValidationError
 from thalweg.errors import StudyError
 from thalweg.storage.session import ScanRun
 from thalweg.study.events import AnyEvent, Failed, ScanFinished, ScanPoint, ScanStarted, Stage
-from thalweg.study.path import PATHS, ScanPath
+from thalweg.study.path import PATHS, BondPath, FramesPath, ScanPath
 from thalweg.study.path.setting import SettingPath
 from thalweg.study.scan_refine import Place, refined
 from thalweg.study.scan_result import CurvePoint, ScanResult
@@ -22,6 +23,7 @@ from thalweg_app.presenters.curve import ShownCurve
 from thalweg_app.presenters.jobs import Job, JobListener, JobStarter
 from thalweg_app.presenters.listeners import Listeners
 from thalweg_app.presenters.numbers import parse_number, parse_whole
+from thalweg_app.presenters.scan_frames import FramesFile
 
 SCAN = "thalweg_app.jobs:scan"
 FORESEE = "thalweg_app.jobs:foresee"
@@ -30,15 +32,15 @@ REFINED_BY = 4
 REFINEMENTS: dict[Place, str] = {"minimum": "Around the minimum", "error": "Where the error is worst"}
 Spacing = Literal["equal", "geometric", "list"]
 SPACINGS: dict[Spacing, str] = {"equal": "Equal spacing", "geometric": "Geometric spacing", "list": "List of values"}
-#: Paths that can be set up in the window; frames come from a file.
-OFFERED: tuple[type[ScanPath], ...] = tuple(cls for cls in PATHS if cls.model_fields["key"].default != "frames")
 
 
 @dataclass
 class ScanDraft:
     """What the form holds, as typed."""
 
-    path: ScanPath = field(default_factory=lambda: OFFERED[0]())
+    path: ScanPath = field(default_factory=BondPath)
+    frames: FramesFile = field(default_factory=FramesFile)
+    among_frames: str = ""  # numbers of the frames to run; empty for all
     spacing: Spacing = "equal"
     first: str = "0.6"
     last: str = "3.2"
@@ -49,13 +51,27 @@ class ScanDraft:
     fixed_spin: bool = False
     literature: Literature = field(default_factory=Literature)
 
-    def points(self) -> tuple[float, ...]:
+    def path_for(self, study: StudySpec) -> ScanPath:
+        """The path; that over frames is read from their file. StudyError where they do not fit."""
+        return self.frames.path(study) if isinstance(self.path, FramesPath) else self.path
+
+    def points(self, path: ScanPath) -> tuple[float, ...]:
         """StudyError naming the field at fault."""
+        if isinstance(path, FramesPath):
+            return self._frame_numbers(path)
         if self.spacing == "list":
             return read_points(self.values)
         first, last = parse_number(self.first, "first"), parse_number(self.last, "last")
         make = linear_points if self.spacing == "equal" else geometric_points
         return make(first, last, parse_whole(self.count, "count"))
+
+    def _frame_numbers(self, path: FramesPath) -> tuple[float, ...]:
+        if not self.among_frames.strip():
+            return tuple(float(k + 1) for k in range(len(path.frames)))
+        numbers = read_points(self.among_frames)
+        for number in numbers:
+            path.frame(number)
+        return numbers
 
 
 @dataclass
@@ -153,11 +169,12 @@ class ScanControl:
         if study is None:
             raise StudyError("There is nothing to scan", "no system is open or a field is in error", "Open a system first")
         draft = self.draft
+        path = draft.path_for(study)
         scan = ScanSpec.model_validate(
             {
                 "study": study,
-                "path": draft.path,
-                "points": draft.points(),
+                "path": path,
+                "points": draft.points(path),
                 "follow_orbitals": draft.follow_orbitals,
                 "both_directions": draft.both_directions,
                 "spin": "fixed" if draft.fixed_spin else "any",
@@ -191,10 +208,23 @@ class ScanControl:
                 self.draft.path = SettingPath(setting=next(iter(numeric_settings(study)), ""))
             self.changed()
 
+    def open_frames(self, file: Path) -> None:
+        """Follows the frames of this file; a sentence when it cannot be read."""
+        try:
+            self.draft.frames = FramesFile.open(file)
+        except StudyError as error:
+            self.told(str(error))
+            return
+        self.draft.path = FramesPath()
+        self.changed()
+
+    @property
+    def frames_told(self) -> str:
+        """Which file of frames is followed, and how many frames it has."""
+        return self.draft.frames.told(self._study())
+
     def pick_atom(self, number: int) -> None:
         """An atom was clicked in the picture: it becomes the second atom of the bond, and the second the first."""
-        from thalweg.study.path import BondPath
-
         if isinstance(self.draft.path, BondPath) and number != self.draft.path.second:
             self.draft.path = BondPath(first=self.draft.path.second, second=number)
             self.changed()

@@ -12,6 +12,7 @@ import click
 from thalweg.errors import StudyError
 from thalweg.storage.files import read_limited
 from thalweg.study.path import AnglePath, BondPath, BreathePath, DihedralPath, FramesPath, SettingPath, StretchPath
+from thalweg.study.path.frames import frames_path
 from thalweg.study.scan_spec import AnyPath, Literature, ScanSpec, geometric_points, linear_points, read_points
 from thalweg.study.spec import Molecule, StudySpec
 from thalweg.units import ENERGY_UNITS
@@ -105,23 +106,13 @@ def _numbers(text: str, count: int, name: str) -> list[int]:
 
 
 def _frames(study: StudySpec, input_name: str) -> FramesPath:
-    from thalweg.systems.xyz import read_frames
-
     if input_name == STANDARD_INPUT:
         raise StudyError("--frames cannot read standard input", "the file is read a second time", "Give the name of the file")
-    molecule = study.system
-    if not isinstance(molecule, Molecule):
+    if not isinstance(study.system, Molecule):
         raise StudyError("--frames needs geometries", "this system has no atoms", "Give an XYZ file with several geometries")
     file = Path(input_name) if Path(input_name).exists() else find_sample(input_name)
     assert file is not None  # the study was read from it
-    read = read_frames(read_limited(file).decode("utf-8-sig", "replace"), molecule.unit)
-    symbols = [atom[0] for atom in molecule.atoms]
-    for number, frame in enumerate(read, 1):
-        if [atom[0] for atom in frame.atoms] != symbols:
-            raise StudyError(
-                f"Frame {number} of {file.name} has other atoms", "all frames must hold the atoms of the first, in its order", "Sort them"
-            )
-    return FramesPath(frames=tuple(tuple(atom[1:] for atom in frame.atoms) for frame in read))
+    return frames_path(read_limited(file).decode("utf-8-sig", "replace"), file.name, study)
 
 
 def _points(path: AnyPath, options: dict[str, Any]) -> tuple[float, ...]:
