@@ -61,6 +61,9 @@ class Theme(QObject):
         if self._dressed != self.palette:
             self._dressed = self.palette
             self._application.setStyleSheet(style_sheet(self.palette))
+            for widget in self._application.allWidgets():
+                if isinstance(widget, QLabel) and widget.property("role") in FIGURE_ROLES:
+                    _slant(widget)  # another sheet brings back the font that the label had under the first one
 
     def _apply(self) -> None:
         dark = self.appearance == "dark"
@@ -194,15 +197,23 @@ def mark(widget: QWidget, name: str, value: object) -> None:
         widget.style().polish(widget)
 
 
+#: What `show_fresh` makes of a label.
+FIGURE_ROLES = ("figure", "stale")
+
+
 def show_fresh(label: QLabel, is_fresh: bool) -> None:
     """A figure in ink, or dimmed and slanted while it is worked out again. By palette and font, since these labels change often."""
     role = "figure" if is_fresh else "stale"
     if label.property("role") != role:
         label.setProperty("role", role)
         label.setForegroundRole(QPalette.ColorRole.WindowText if is_fresh else QPalette.ColorRole.PlaceholderText)
-        font = label.font()
-        font.setItalic(not is_fresh)
-        label.setFont(font)
+        _slant(label)
+
+
+def _slant(label: QLabel) -> None:
+    font = label.font()
+    font.setItalic(label.property("role") == "stale")
+    label.setFont(font)
 
 
 @lru_cache(maxsize=256)

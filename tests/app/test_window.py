@@ -205,6 +205,19 @@ def test_f1_explains_the_field_with_the_focus(qtbot, window):
     window.help.hide()
 
 
+def test_figures_stay_upright_or_slanted_as_they_are_when_the_appearance_changes(qtbot, window, starter):
+    lines = {name: section.line for name, section in window.column.sections.items() if name != "optimizer"}
+    qtbot.waitUntil(lambda: bool(jobs_of(starter, INSPECT)))
+    for looks in ("dark", "light"):
+        assert all(line.font().italic() for line in lines.values())
+        window.theme.choose(looks)
+    jobs_of(starter, INSPECT)[-1].listener.done(studies.figures().model_dump(mode="json"))
+    for looks in ("dark", "light"):
+        assert not any(line.font().italic() for line in lines.values())
+        window.theme.choose(looks)
+    assert not any(line.font().italic() for line in lines.values())
+
+
 @pytest.mark.parametrize("appearance", ["dark", "light"])
 def test_appearance_changes_everything_at_once_and_is_remembered(qtbot, window, appearance):
     add_run(window, 1e-5)
