@@ -11,7 +11,7 @@ from typing import Any
 def json_text(data: Any, indent: int | None = None) -> str:
     """Plain data as JSON. ValueError when a figure is not finite; see `first_not_finite` for its place."""
     separators = (",", ":") if indent is None else (",", ": ")
-    return json.dumps(data, ensure_ascii=False, allow_nan=False, indent=indent, separators=separators, default=_plain)
+    return json.dumps(data, ensure_ascii=False, allow_nan=False, indent=indent, separators=separators, default=plain)
 
 
 def read_json(text: str) -> Any:
@@ -43,7 +43,8 @@ def _finite(text: str) -> float:
     return value
 
 
-def _plain(value: Any) -> Any:
+def plain(value: Any) -> Any:
+    """A value that JSON has no form of, as plain data. TypeError where there is none."""
     if isinstance(value, datetime):
         return value.isoformat()
     if hasattr(value, "tolist"):  # numpy scalars and arrays among the facts

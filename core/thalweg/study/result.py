@@ -34,7 +34,7 @@ CONVERGED = frozenset({"gradient", "energy-change", "converged", "target", "no-p
 
 
 class Record(BaseModel):
-    model_config = ConfigDict(frozen=True)
+    model_config = ConfigDict(frozen=True, ser_json_inf_nan="constants")  # never silently null
 
 
 class Trace(Record):

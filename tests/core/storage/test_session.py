@@ -60,6 +60,21 @@ def test_the_published_schema_is_that_of_the_models():
     assert schema_path().read_text() == schema_text(), "run: .venv/bin/python -m thalweg.storage.schema"
 
 
+@pytest.mark.parametrize("value", [float("nan"), float("inf"), -float("inf")])
+def test_no_infinite_number_becomes_an_empty_one(tmp_path, session, result, value):
+    trace = result.trace.model_copy(update={"energy": (-1.0, value)})
+    start = result.starts[0].model_copy(update={"trace": trace})
+    with pytest.raises(StudyError, match=r"starts\.0\.trace\.energy\.1 is not a finite number"):
+        save_session(session.with_result(result.model_copy(update={"starts": (start,)})), tmp_path / "s.json")
+    assert not (tmp_path / "s.json").exists()
+
+
+def test_a_note_may_speak_of_such_numbers(tmp_path, session, result):
+    noted = session.with_result(result, note="energy:NaN, [Infinity]")
+    save_session(noted, tmp_path / "s.json")
+    assert load_session(tmp_path / "s.json").runs[-1].note == "energy:NaN, [Infinity]"
+
+
 def test_a_figure_that_is_not_finite_is_refused_and_the_old_file_stays(tmp_path, session, result):
     path = tmp_path / "one.thalweg.json"
     save_session(session, path)
