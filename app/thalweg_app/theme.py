@@ -217,11 +217,13 @@ def _slant(label: QLabel) -> None:
 
 
 @lru_cache(maxsize=256)
-def icon(name: str, colour: str, size: int = 20) -> QIcon:
-    """An icon of `resources/icons` in one colour (QtSvg does not follow the text colour by itself)."""
+def icon(name: str, colour: str, size: int = 20, disabled: str = "") -> QIcon:
+    """An icon of `resources/icons` in one colour (QtSvg does not follow the text colour by itself), in another where its button is disabled."""
     made = QIcon()
     for scale in range(1, math.ceil(_sharpest()) + 1):
         made.addPixmap(pixmap(name, colour, size, scale))
+        if disabled:
+            made.addPixmap(pixmap(name, disabled, size, scale), QIcon.Mode.Disabled)
     return made
 
 

@@ -7,25 +7,31 @@ from collections.abc import Sequence
 from typing import Any
 
 import pyqtgraph as pg
+from PySide6.QtGui import QFontMetricsF, QGuiApplication
 
 from thalweg_app.presenters.wording import minus
 
 #: Pixels along the axis that a label needs, with room around it.
 LABEL_HEIGHT = 22
+#: Pixels between two names.
+NAME_GAP = 7
 _SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
 class PlainAxis(pg.AxisItem):
-    """Decimal numbers with a true minus sign and without unit prefixes."""
+    """Decimal numbers with a true minus sign and without unit prefixes. `whole` leaves out what lies between whole numbers."""
 
     def __init__(self, orientation: str) -> None:
         super().__init__(orientation)
         self.enableAutoSIPrefix(False)
         self.setStyle(tickLength=-4, maxTickLevel=1, maxTextLevel=1)
         self._finest = 1.0
+        self.whole = False
 
     def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802
         levels: list[tuple[float, list[float]]] = super().tickValues(minVal, maxVal, size)
+        if self.whole:
+            levels = [(spacing, values) for spacing, values in levels if spacing >= 1] or [(1.0, [*range(math.ceil(minVal), math.floor(maxVal) + 1)])]
         self._finest = min((spacing for spacing, values in levels[:2] if len(values)), default=1.0)
         return levels
 
@@ -77,9 +83,9 @@ class NameAxis(PlainAxis):
         return [(float(step), [float(i) for i in visible if i % step == 0])]
 
     def tickStrings(self, values: Sequence[float], scale: float, spacing: float) -> list[str]:  # noqa: N802
-        longest = max((len(n) for n in self._names), default=0)
-        room = self.width() / max(1, len(values)) if values else 0.0
-        fits = longest * 6.4 < room
+        metrics = QFontMetricsF(self.style["tickFont"] or QGuiApplication.font())
+        longest = max((metrics.horizontalAdvance(n) for n in self._names), default=0.0)
+        fits = longest + NAME_GAP < self.width() / max(1, len(values))
         return [self._names[int(v)] if fits else str(int(v) + 1) for v in values]
 
 

@@ -89,7 +89,7 @@ class DiagnosisPicture(Picture):
     def set_palette(self, palette: Palette) -> None:
         super().set_palette(palette)
         self.map.set_palette(palette)
-        self.start.setIcon(icon("run", palette.on_accent, 14))
+        self.start.setIcon(icon("run", palette.on_accent, 14, palette.muted))
         self.stop.setIcon(icon("stop", palette.ink, 14))
 
     def numbers(self) -> tuple[list[str], list[list[object]]]:

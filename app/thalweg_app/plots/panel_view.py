@@ -52,8 +52,11 @@ class PanelView:
     def show(self, panel: Panel, palette: Palette) -> None:
         self._panel, self._palette = panel, palette
         self._show_frame(panel.y_title, palette)
-        if isinstance(axis := self.item.getAxis("bottom"), NameAxis):
+        axis = self.item.getAxis("bottom")
+        if isinstance(axis, NameAxis):
             axis.set_names(panel.categories)
+        else:
+            axis.whole = all((s.x == np.round(s.x)).all() for s in panel.series)  # iterations, layers, frames
         self._show_band()
         self._show_levels()
         self._show_series()

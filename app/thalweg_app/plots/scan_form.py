@@ -84,7 +84,7 @@ class ScanForm(QWidget):
             self._rest.start()
 
     def set_palette(self, palette: Palette) -> None:
-        self.start.setIcon(icon("run", palette.on_accent, 14))
+        self.start.setIcon(icon("run", palette.on_accent, 14, palette.muted))
         self.stop.setIcon(icon("stop", palette.ink, 14))
         self._fold.refresh_icon()
 

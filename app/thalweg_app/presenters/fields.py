@@ -12,7 +12,7 @@ from pydantic import BaseModel
 #: Fields that have an editor of their own and no place in a generated form.
 OWN_EDITORS = frozenset({"key", "atoms", "listing", "source", "described"})
 #: Words for keys of choices whose plain spelling would read badly; all others are made from the key itself.
-CHOICE_WORDS = {"mp2": "MP2", "ccsd": "CCSD", "ccsd(t)": "CCSD(T)", "ry": "RY", "ry-rz": "RY and RZ", "angstrom": "ångström"}
+CHOICE_WORDS = {"mp2": "MP2", "ccsd": "CCSD", "ccsd(t)": "CCSD(T)", "ry": "RY", "ry-rz": "RY and RZ", "angstrom": "ångström", "-": "−"}
 
 Kind = Literal["number", "whole", "text", "switch", "choice", "choices"]
 

@@ -100,7 +100,7 @@ class SetupColumn(QWidget):
             section.refresh_icon()
         for body in (self.encoding, self.trial, self.search):
             body.set_palette(palette)
-        self.run_button.setIcon(icon("run", palette.on_accent, 14))
+        self.run_button.setIcon(icon("run", palette.on_accent, 14, palette.muted))
         self.stop_button.setIcon(icon("stop", palette.ink, 14))
         self.refresh_answer()
 

@@ -170,7 +170,7 @@ class LatticePicture(QWidget):
             box = QRectF(x - radius, y - radius, 2 * radius, 2 * radius)
             painter.drawEllipse(box)
             if numbered:
-                painter.setPen(QColor(self._palette.ink if fill.lightnessF() > 0.5 else self._palette.paper))
+                painter.setPen(readable_on(fill, self._palette))
                 painter.drawText(box, Qt.AlignmentFlag.AlignCenter, graph.site_name(site)[:3])
 
     def _draw_legend(self, painter: QPainter) -> None:
@@ -192,3 +192,8 @@ def _gap(point: FloatArray, a: FloatArray, b: FloatArray) -> float:
     square = float(along @ along)
     t = 0.0 if square == 0 else float(np.clip((point - a) @ along / square, 0.0, 1.0))
     return float(np.linalg.norm(point - a - t * along))
+
+
+def readable_on(fill: QColor, palette: Palette) -> QColor:
+    """The colour of ink or of paper, whichever stands out more."""
+    return max((QColor(palette.ink), QColor(palette.paper)), key=lambda colour: abs(colour.lightnessF() - fill.lightnessF()))

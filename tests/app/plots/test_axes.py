@@ -3,8 +3,9 @@
 import math
 
 import pytest
+from PySide6.QtGui import QFontMetricsF, QGuiApplication
 
-from thalweg_app.plots.axes import DecadeAxis
+from thalweg_app.plots.axes import DecadeAxis, NameAxis, PlainAxis
 
 
 @pytest.fixture
@@ -45,3 +46,31 @@ def test_every_label_stands_at_its_number(axis):
 def test_a_low_axis_has_few_labels(axis):
     assert labels(axis, -3.95, -2.05, size=60.0) == ["2×10⁻⁴", "5×10⁻³"]
     assert len(labels(axis, -12.2, -0.8, size=110.0)) <= 6
+
+
+@pytest.mark.parametrize(("low", "high"), [(-0.1, 3.1), (0.9, 4.2), (-3.0, 97.0), (0.2, 0.8)])
+def test_counted_things_have_no_labels_between_whole_numbers(qtbot, low, high):
+    axis = PlainAxis("bottom")
+    axis.whole = True
+    levels = axis.tickValues(low, high, 700.0)
+    assert all(v == round(v) for _, values in levels for v in values)
+    texts = [text for spacing, values in levels for text in axis.tickStrings(values, 1.0, spacing)]
+    assert not any("." in text for text in texts)
+    assert len(texts) >= 2 or high < 1
+
+
+@pytest.mark.parametrize(("width", "shown"), [(900, ["11100111", "11011111"]), (90, ["1", "2"])])
+def test_names_stand_under_bars_only_where_they_do_not_run_into_one_another(qtbot, width, shown):
+    axis = NameAxis("bottom")
+    axis.setGeometry(0, 0, width, 40)
+    axis.set_names(("11100111", "11011111"))
+    assert axis.tickStrings([0.0, 1.0], 1.0, 1.0) == shown
+
+
+def test_names_as_wide_as_their_room_are_left_out(qtbot):
+    axis = NameAxis("bottom")
+    names = tuple(f"{k:08b}" for k in range(12))
+    axis.set_names(names)
+    widest = max(QFontMetricsF(QGuiApplication.font()).horizontalAdvance(name) for name in names)
+    axis.setGeometry(0, 0, 12 * widest, 40)
+    assert axis.tickStrings([float(i) for i in range(12)], 1.0, 1.0) == [str(i + 1) for i in range(12)]

@@ -30,6 +30,6 @@ def test_bounds_are_put_into_words():
     assert "above 0" in help_text(by_name(StudySpec)["memory_gib"])
 
 
-@pytest.mark.parametrize(("key", "words"), [("doubles-first", "Doubles first"), ("ccsd(t)", "CCSD(T)"), ("zero", "Zero")])
+@pytest.mark.parametrize(("key", "words"), [("doubles-first", "Doubles first"), ("ccsd(t)", "CCSD(T)"), ("zero", "Zero"), ("-", "−"), ("+", "+")])
 def test_choices_read_as_words(key, words):
     assert choice_words(key) == words
