@@ -10,7 +10,7 @@ from thalweg.study.events import AnyEvent, Failed
 
 
 class Message(BaseModel):
-    model_config = ConfigDict(frozen=True)
+    model_config = ConfigDict(frozen=True, defer_build=True)
 
 
 class StartJob(Message):
@@ -76,5 +76,6 @@ class JobStopped(Message):
 
 Order = Annotated[StartJob | StopJob, Field(discriminator="order")]
 Reply = Annotated[Ready | Compiling | Events | Noticed | Done | JobFailed | JobStopped, Field(discriminator="say")]
-ORDERS: TypeAdapter[StartJob | StopJob] = TypeAdapter(Order)
-REPLIES: TypeAdapter[Ready | Compiling | Events | Noticed | Done | JobFailed | JobStopped] = TypeAdapter(Reply)
+_LATER = ConfigDict(defer_build=True)
+ORDERS: TypeAdapter[StartJob | StopJob] = TypeAdapter(Order, config=_LATER)
+REPLIES: TypeAdapter[Ready | Compiling | Events | Noticed | Done | JobFailed | JobStopped] = TypeAdapter(Reply, config=_LATER)

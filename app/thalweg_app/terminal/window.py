@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import gc
 import importlib
+import os
 from pathlib import Path
 from types import ModuleType
 
@@ -42,9 +43,10 @@ def load_window() -> ModuleType:
     """The module of the window, loaded the quick way. Collection of garbage is off until the window stands (`main.settle`).
 
     Next to nothing that loading makes is garbage, yet looking for some takes a tenth of the start. What knows no Qt is loaded before Qt,
-    whose import hook reads the source of every module that comes after it.
+    whose import hook reads the source of every module that comes after it. Plug-ins of pydantic, of which there are none, are not searched for.
     """
     gc.disable()
+    os.environ.setdefault("PYDANTIC_DISABLE_PLUGINS", "__all__")
     for module in ("thalweg_app.presenters.workbench", "thalweg_app.presenters.opening", "thalweg_app.messages"):
         importlib.import_module(module)
     return importlib.import_module("thalweg_app.main")

@@ -30,7 +30,7 @@ def now() -> datetime:
 
 
 class SessionPart(BaseModel):
-    model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False, ser_json_inf_nan="constants")
+    model_config = ConfigDict(frozen=True, defer_build=True, extra="forbid", allow_inf_nan=False, ser_json_inf_nan="constants")
 
 
 class Run(SessionPart):

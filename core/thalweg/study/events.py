@@ -13,7 +13,7 @@ from thalweg.watch import Watch
 
 
 class Event(BaseModel):
-    model_config = ConfigDict(frozen=True)
+    model_config = ConfigDict(frozen=True, defer_build=True)
 
 
 class Started(Event):
@@ -130,7 +130,7 @@ AnyEvent = Annotated[
     Started | Stage | Iteration | StepTaken | StartEnded | Warned | Finished | Failed | StoppedEarly | ScanStarted | ScanPoint | ScanFinished,
     Field(discriminator="kind"),
 ]
-EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent)
+EVENT_ADAPTER: TypeAdapter[AnyEvent] = TypeAdapter(AnyEvent, config=ConfigDict(defer_build=True))
 
 
 def watch_into(emit: Callable[[AnyEvent], None], should_stop: Callable[[], bool]) -> Watch:

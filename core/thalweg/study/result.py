@@ -34,7 +34,9 @@ CONVERGED = frozenset({"gradient", "energy-change", "converged", "target", "no-p
 
 
 class Record(BaseModel):
-    model_config = ConfigDict(frozen=True, ser_json_inf_nan="constants")  # never silently null
+    """Validators are built at their first use: no start of the program needs them."""
+
+    model_config = ConfigDict(frozen=True, defer_build=True, ser_json_inf_nan="constants")  # never silently null
 
 
 class Trace(Record):
