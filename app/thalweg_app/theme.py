@@ -61,9 +61,6 @@ class Theme(QObject):
         if self._dressed != self.palette:
             self._dressed = self.palette
             self._application.setStyleSheet(style_sheet(self.palette))
-            for widget in self._application.allWidgets():
-                if isinstance(widget, QLabel) and widget.property("role") in FIGURE_ROLES:
-                    _slant(widget)  # another sheet brings back the font that the label had under the first one
 
     def _apply(self) -> None:
         dark = self.appearance == "dark"
@@ -197,23 +194,17 @@ def mark(widget: QWidget, name: str, value: object) -> None:
         widget.style().polish(widget)
 
 
-#: What `show_fresh` makes of a label.
-FIGURE_ROLES = ("figure", "stale")
-
-
 def show_fresh(label: QLabel, is_fresh: bool) -> None:
-    """A figure in ink, or dimmed and slanted while it is worked out again. By palette and font, since these labels change often."""
+    """A figure in ink, or dimmed and slanted while it is worked out again.
+
+    By a sheet of its own, since these labels change often and styling by the window's sheet takes longer; a font that is set is lost when
+    the appearance changes.
+    """
     role = "figure" if is_fresh else "stale"
     if label.property("role") != role:
         label.setProperty("role", role)
         label.setForegroundRole(QPalette.ColorRole.WindowText if is_fresh else QPalette.ColorRole.PlaceholderText)
-        _slant(label)
-
-
-def _slant(label: QLabel) -> None:
-    font = label.font()
-    font.setItalic(label.property("role") == "stale")
-    label.setFont(font)
+        label.setStyleSheet("" if is_fresh else "font-style: italic")
 
 
 @lru_cache(maxsize=256)
