@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+from typing import overload
 
 import numpy as np
 
@@ -14,7 +16,32 @@ from thalweg.watch import SILENT, Watch
 #: Strings placed between two looks at the watch; the largest registers take about 50 ms for so many.
 PIECE = 1000
 
-Groups = tuple[IntArray, ...]
+
+@dataclass(frozen=True, eq=False)
+class Groups(Sequence[IntArray]):
+    """Sets of indices into an expansion. A set is cut out of `members` when it is asked for: their number alone is wanted more often.
+
+    Attributes:
+        members: the indices, set by set.
+        ends: where each set ends, shape (number of sets,).
+    """
+
+    members: IntArray
+    ends: IntArray
+
+    def __len__(self) -> int:
+        return self.ends.size
+
+    def __iter__(self) -> Iterator[IntArray]:
+        stops = self.ends.tolist()
+        return map(self.members.__getitem__, map(slice, [0, *stops], stops))
+
+    @overload
+    def __getitem__(self, place: int) -> IntArray: ...
+    @overload
+    def __getitem__(self, place: slice) -> Sequence[IntArray]: ...
+    def __getitem__(self, place: int | slice) -> IntArray | Sequence[IntArray]:
+        return tuple(self)[place]
 
 
 def qubit_wise_groups(expansion: PauliExpansion, *, largest_first: bool = False, watch: Watch = SILENT) -> Groups:
@@ -87,5 +114,4 @@ def _in_pieces(place: Callable[[int, int, int], int], size: int, watch: Watch) -
 
 def _collect(expansion: PauliExpansion, group: IntArray, count: int) -> Groups:
     members, ends = members_of(group, (expansion.x | expansion.z) != 0, count)
-    stops = ends.tolist()
-    return tuple(map(members.__getitem__, map(slice, [0, *stops], stops)))
+    return Groups(members, ends)
