@@ -26,6 +26,7 @@ class COBYLA(OptimizerSettings):
         return 1
 
     def minimise(self, objective: Objective, start: FloatArray, rng: np.random.Generator) -> str:
-        limits = {"maxiter": self.max_iterations, "rhobeg": self.first_step, "tol": self.tolerance}
+        least = start.size + 2  # the first simplex and one step: the method makes no sense with less
+        limits = {"maxiter": max(self.max_iterations, least), "rhobeg": self.first_step, "tol": self.tolerance}
         result = minimise_with_scipy("COBYLA", objective, start, limits, gradient=False, iterate_on_call=True)
         return "converged" if result.success else "iterations"

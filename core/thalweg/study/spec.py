@@ -165,7 +165,7 @@ class StudySpec(Options):
     stop: StopRules = StopRules()
     target: Target = Target()
     ladder: DepthLadder = DepthLadder()
-    neighbour: Neighbour = Neighbour()
+    neighbour: Neighbour = option(Neighbour(), "Neighbour", "Another run at whose final parameters the search begins.")
     reference: str = option("", "Reference", REFERENCE_HELP, advanced=True)
     continuation: int = option(0, "Continuation steps", CONTINUATION_HELP, ge=0, le=1000, advanced=True)
     classical: tuple[ClassicalMethod, ...] = option((), "Classical methods", "Reference figures to compute beside the exact one.")
