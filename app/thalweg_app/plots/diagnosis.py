@@ -16,6 +16,7 @@ from thalweg_app.presenters.chart import Chart
 from thalweg_app.presenters.diagnosis import Finding, chart_of, table_of_finding
 from thalweg_app.presenters.diagnosis_control import COSTS, DIRECTIONS, QUESTIONS
 from thalweg_app.presenters.tables import Table
+from thalweg_app.presenters.wording import typeset
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import icon
 from thalweg_app.widgets.number_table import NumberTable
@@ -110,9 +111,9 @@ class DiagnosisPicture(Picture):
         else:
             drawn = isinstance(found, TrainabilityResult | LandscapeResult)
             self.view.show_chart(chart_of(found) if found is not None and drawn else EMPTY)
-        sentence = "" if found is None else found.verdict[:1].upper() + found.verdict[1:] + "."
+        sentence = "" if found is None else typeset(found.verdict[:1].upper() + found.verdict[1:] + ".")
         self.sentence.setText(sentence)
-        rows = () if found is None else tuple(table_of_finding(found))
+        rows = () if found is None else tuple((name, typeset(text)) for name, text in table_of_finding(found))
         keys: tuple[tuple[float | str, ...], ...] = tuple((float(i), float(i)) for i in range(len(rows)))
         self.table.show_table(Table(("Figure", "Value"), rows, (False, False), keys, "What the diagnosis found."))
         self.table.setVisible(bool(rows))

@@ -59,7 +59,7 @@ def curve_chart(shown: ShownCurve | None, units: CurveUnits) -> Chart:
         return Chart("Curve", "", (), EMPTY)
     factor, unit = units.coordinate(shown.unit)
     x = np.array([p.coordinate for p, _ in shown.done]) * factor
-    title = f"{shown.axis} / {unit}" if unit else shown.axis
+    title = f"{shown.axis} / {UNIT_SIGNS.get(unit, unit)}" if unit else shown.axis
     energy = Panel(f"Energy / {wording.unit_name(shown.energy_unit)}", _energies(shown, x), share=1.15)
     return Chart("Curve", title, (energy, _errors(shown, x, units)), EMPTY, _describe(shown))
 
@@ -73,7 +73,7 @@ def curve_table(shown: ShownCurve | None, units: CurveUnits) -> Table:
     energy_unit = wording.unit_name(shown.energy_unit)
     reference = shown.done[0][1].reference_name if shown.done else "Reference"
     header = (
-        f"{shown.axis} / {unit}" if unit else shown.axis,
+        f"{shown.axis} / {UNIT_SIGNS.get(unit, unit)}" if unit else shown.axis,
         f"{reference} / {energy_unit}",
         f"Variational / {energy_unit}",
         f"Exact / {energy_unit}",
@@ -100,7 +100,7 @@ def point_text(shown: ShownCurve, coordinate: float, units: CurveUnits) -> str:
     point = nearest_point(shown, coordinate / factor)
     if point is None:
         return ""
-    place = f"{point.coordinate * factor:.6g} {unit}".strip()
+    place = f"{point.coordinate * factor:.6g} {UNIT_SIGNS.get(unit, unit)}".strip()
     if point.result is None:
         return f"{place}: {point.failure}"
     scale, difference_unit = wording.difference_factor(shown.energy_unit, units.difference)

@@ -49,7 +49,7 @@ def _trainability(found: TrainabilityResult) -> Chart:
         spread = np.array([2 * p.variance_error for p in points])
         name = "Variance" if value is None else counted(value, held[:-1])
         curves.append(Series(name, x, np.where(y > 0, y, np.nan), "variational" if rank == 0 else "overlay", rank, spread=spread))
-    unit = "" if found.unit == "1" else f" / {unit_name(found.unit)}^2"
+    unit = "" if found.unit == "1" else f" / {unit_name(found.unit)}²"
     panel = Panel(f"Variance of the gradient{unit}", tuple(curves), log=True)
     return Chart("Trainability", along.capitalize(), (panel,), "", found.verdict)
 

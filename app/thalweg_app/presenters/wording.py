@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 from thalweg.units import ENERGY_UNITS
 
 MISSING = "–"
@@ -49,6 +51,11 @@ def significant(value: float, digits: int = 3) -> str:
 def minus(text: str) -> str:
     """A true minus sign, which has the width of a digit."""
     return text.replace("-", "−")
+
+
+def typeset(text: str) -> str:
+    """What the terminal writes in plain letters, with the signs of print: plus or minus, a square, a true minus before a number."""
+    return re.sub(r"-(?=\d)", "−", text.replace("+-", "±").replace("^2", "²"))
 
 
 def count(value: int | None) -> str:

@@ -62,7 +62,7 @@ def test_nothing_to_draw_says_what_to_do():
 def test_the_chart_holds_reference_exact_variational_and_errors_with_their_band():
     chart = curve_chart(ShownCurve("Variational", "Li1-H2 distance", "angstrom", curve()), CurveUnits())
     energy, error = chart.panels
-    assert chart.x_title == "Li1-H2 distance / angstrom"
+    assert chart.x_title == "Li1-H2 distance / Å"
     assert [s.role for s in energy.series] == ["reference", "exact", "variational"]
     assert error.log
     assert error.series[0].y == pytest.approx([0.1 * (1 + i) for i in range(9)])
@@ -80,7 +80,7 @@ def test_units_change_coordinates_and_errors():
 
 def test_an_angle_is_not_converted():
     chart = curve_chart(ShownCurve("Variational", "Angle 2-1-3", "degree", curve()), CurveUnits("bohr"))
-    assert chart.x_title == "Angle 2-1-3 / degree"
+    assert chart.x_title == "Angle 2-1-3 / °"
     assert chart.panels[0].series[0].x[0] == 1.0
 
 

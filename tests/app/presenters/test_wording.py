@@ -39,3 +39,15 @@ def test_memory_has_a_fitting_unit(value, text):
 )
 def test_time_left_is_rounded_like_a_guess(seconds, text):
     assert wording.time_left(seconds) == text
+
+
+@pytest.mark.parametrize(
+    ("plain", "printed"),
+    [
+        ("variance 0.0123 +- 0.001 Eh^2, 4 parameters", "variance 0.0123 ± 0.001 Eh², 4 parameters"),
+        ("-1.5 Eh at -0.25", "−1.5 Eh at −0.25"),
+        ("one-qubit gates, 1e-05", "one-qubit gates, 1e−05"),
+    ],
+)
+def test_plain_letters_become_the_signs_of_print(plain, printed):
+    assert wording.typeset(plain) == printed
