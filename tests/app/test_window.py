@@ -6,7 +6,7 @@ import windows
 from PySide6.QtCore import QSettings, Qt
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QLineEdit, QMessageBox
+from PySide6.QtWidgets import QLabel, QLineEdit, QMessageBox
 from windows import add_run, curves, finish, iteration, jobs_of, press, started
 
 from thalweg.study.events import Failed
@@ -102,6 +102,15 @@ def test_what_the_calculation_refuses_is_marked_in_its_field(qtbot, window, star
     row = next(r for r in window.column.system._forms["molecule"].rows if r.path == "system.multiplicity")
     assert "Odd electrons" in row.error.text()
     assert "Odd electrons" in window.status.text
+
+
+def test_the_encoding_can_be_chosen_for_electrons_only(qtbot, window):
+    section = window.column.sections["encoding"]
+    section.set_open(True)
+    assert window.column.encoding.choice.isVisible()
+    window.workbench.setup.choose("system", "lattice")
+    assert not window.column.encoding.choice.isVisible()
+    assert "Every site is a qubit" in " ".join(label.text() for label in window.column.encoding.findChildren(QLabel) if label.isVisible())
 
 
 def test_a_refused_reference_opens_the_section_where_it_stands(qtbot, window, starter):

@@ -53,7 +53,8 @@ class DecadeAxis(pg.AxisItem):
 
     def tickValues(self, minVal: float, maxVal: float, size: float) -> list[tuple[float, list[float]]]:  # noqa: N802
         decades = range(math.ceil(minVal), math.floor(maxVal) + 1)
-        if len(decades) < 2:
+        edge = (maxVal - minVal) * LABEL_HEIGHT / (2 * max(size, LABEL_HEIGHT))  # a label nearer to an end is not drawn
+        if sum(minVal + edge <= d <= maxVal - edge for d in decades) < 2:
             return [(1.0, within_a_decade(minVal, maxVal, round(size / LABEL_HEIGHT)))]
         step = max(1, math.ceil(len(decades) * LABEL_HEIGHT / max(size, 1.0)))
         return [(float(step), [float(d) for d in decades if d % step == 0])]

@@ -8,6 +8,7 @@ from typing import Any
 
 from thalweg.storage.session import Run
 from thalweg.study.result import StudyResult
+from thalweg.systems import has_electrons
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.listeners import Listeners
@@ -37,13 +38,19 @@ def _plain(name: str, help: str, value: Callable[[StudyResult], Any], text: Call
     return Column(name, help, numeric, lambda run, _: text(value(run.result)), lambda run: value(run.result))
 
 
+def _encoding(result: StudyResult) -> str:
+    if not has_electrons(result.spec.system):
+        return wording.MISSING
+    return f"{result.spec.encoding.title}{' T' if result.qubits != result.qubits_before_tapering else ''}"
+
+
 COLUMNS: tuple[Column, ...] = (
     Column("Run", "Number of the run; tick it to lay it over the picture.", True, lambda run, _: str(run.number), lambda run: run.number),
     _plain("System", "What was studied.", lambda r: r.label, numeric=False),
     _plain(
         "Encoding",
-        "Fermions to qubits; T marks tapering.",
-        lambda r: f"{r.spec.encoding.title}{' T' if r.qubits != r.qubits_before_tapering else ''}",
+        "Fermions to qubits; T marks tapering. Spins need none.",
+        _encoding,
         numeric=False,
     ),
     _plain("Trial state", "The ansatz.", lambda r: r.spec.ansatz.title, numeric=False),

@@ -5,7 +5,7 @@ from __future__ import annotations
 from thalweg.errors import StudyError
 from thalweg.study.derived import StudyFigures
 from thalweg.study.spec import StudySpec
-from thalweg.systems import LatticeModel, Molecule
+from thalweg.systems import LatticeModel, Molecule, has_electrons
 from thalweg_app.presenters import wording
 from thalweg_app.presenters.wording import counted
 
@@ -56,7 +56,10 @@ def _system(spec: StudySpec, figures: StudyFigures | None) -> str:
 
 
 def _encoding(spec: StudySpec, figures: StudyFigures | None) -> str:
-    chosen = f"{spec.encoding.title}, {'tapered' if spec.encoding.taper else 'not tapered'}"
+    if has_electrons(spec.system):
+        chosen = f"{spec.encoding.title}, {'tapered' if spec.encoding.taper else 'not tapered'}"
+    else:
+        chosen = "every site is a qubit"
     if figures is None:
         return chosen
     before, after = figures.qubits_before_tapering, figures.qubits

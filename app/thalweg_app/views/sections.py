@@ -11,6 +11,7 @@ from thalweg.optimize import OPTIMIZERS
 from thalweg.optimize.objective import StopRules
 from thalweg.study.derived import StudyFigures
 from thalweg.study.spec import DepthLadder, StudySpec, Target
+from thalweg.systems import has_electrons
 from thalweg_app.colours import Palette
 from thalweg_app.forms import OptionsForm
 from thalweg_app.presenters import wording
@@ -54,12 +55,16 @@ class EncodingSection(SectionBody):
         super().__init__(setup)
         self.choice = AlternativeBox(setup, "encoding", "Encoding", ENCODINGS)
         self.figures = FigureGrid()
+        self._unneeded = QLabel("Every site is a qubit: encodings are for electrons.", wordWrap=True)
         self._symmetries = QLabel(wordWrap=True)
         self._symmetries.setAccessibleName("Symmetries found")
-        for part in (self.choice, self.figures, self._symmetries):
+        for part in (self._unneeded, self.choice, self.figures, self._symmetries):
             self.column.addWidget(part)
 
     def refresh(self) -> None:
+        is_needed = has_electrons(self.setup.spec.system)
+        self._unneeded.setVisible(not is_needed)
+        self.choice.setVisible(is_needed)
         self.choice.refresh()
         self.show_problem("encoding")
 

@@ -1,6 +1,7 @@
 import pytest
 import studies
 
+from thalweg.systems import LatticeModel
 from thalweg_app.presenters.history import History
 from thalweg_app.presenters.ledger import COLUMNS, Ledger
 
@@ -117,3 +118,9 @@ def test_listeners_hear_of_rows_and_of_selection(ledger):
     assert (len(rows), len(selections)) == (0, 1)
     ledger.delete(1)
     assert (len(rows), len(selections)) == (1, 2)
+
+
+def test_a_run_of_spins_shows_no_encoding(ledger):
+    ledger.add(studies.result(spec=studies.study(system=LatticeModel())))
+    column = next(i for i, c in enumerate(COLUMNS) if c.name == "Encoding")
+    assert ledger.cell(ledger.rows[-1], column) == "–"

@@ -2,7 +2,9 @@ import pytest
 import studies
 
 from thalweg.encoding import JordanWigner
-from thalweg.systems import Molecule
+from thalweg.systems import LatticeModel, Molecule
+from thalweg.systems.hubbard import Hubbard
+from thalweg.systems.lattice import Chain
 from thalweg_app.presenters.summaries import formula, summary, system_label
 
 
@@ -46,3 +48,9 @@ def test_formulas_follow_hill_order(symbols, text):
 def test_a_molecule_without_a_name_is_called_by_its_formula():
     spec = studies.study(system=Molecule(atoms=(("H", 0, 0, 0), ("H", 0, 0, 0.7)), basis="cc-pvdz"))
     assert system_label(spec) == "H2, cc-pvdz"
+
+
+def test_spins_need_no_encoding():
+    spec = studies.study(system=LatticeModel())
+    assert summary("encoding", spec, studies.figures(qubits=8, qubits_before_tapering=8)) == "every site is a qubit: 8 qubits, 631 terms"
+    assert summary("encoding", studies.study(system=LatticeModel(model=Hubbard(), lattice=Chain(sites=4))), None) == "Jordan-Wigner, tapered"
