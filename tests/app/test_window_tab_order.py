@@ -30,6 +30,18 @@ def test_the_tab_key_leads_from_the_tabs_into_the_picture_and_then_to_the_ledger
     assert window.ledger_view.isAncestorOf(order[inside[-1] + 1])
 
 
+@pytest.mark.parametrize("place", range(5))
+def test_the_tab_key_visits_a_pictures_own_controls_before_its_tools(window, place):
+    window.show_picture(place)
+    picture = window.picture
+    order = visited(window)
+    own = [picture.controls.itemAt(i).widget() for i in range(picture.controls.count())]
+    own = [order.index(w) for w in own if w is not None and w in order]
+    tools = [order.index(button) for button, _ in picture._tools]
+    assert [*own, *tools] == sorted([*own, *tools])
+    assert tools == list(range(tools[0], tools[-1] + 1))
+
+
 def test_the_tab_key_visits_a_form_after_the_menu_that_chose_it(window):
     window.column.sections["optimizer"].set_open(True)
     choice = window.column.search.choice

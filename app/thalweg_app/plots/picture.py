@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from itertools import pairwise
 from pathlib import Path
 from typing import ClassVar
 
@@ -19,6 +20,7 @@ from thalweg_app.presenters.chart import chart_data, csv_of, table_of
 from thalweg_app.presenters.jobs import DRAW, JobListener
 from thalweg_app.presenters.workbench import Workbench
 from thalweg_app.theme import SPACE, icon
+from thalweg_app.widgets.tab_order import visit_after, visited
 
 PICTURE_FILTER = "PNG picture (*.png);;SVG drawing (*.svg);;PDF document (*.pdf)"
 
@@ -52,6 +54,14 @@ class Picture(QWidget):
         layout.addLayout(self._head())
         layout.addLayout(self.body, 1)
         layout.addWidget(self._read_out)
+
+    def order_focus(self) -> None:
+        """Lets the Tab key visit the picture's own controls, the tools and the chart as they stand, whenever each was made."""
+        items = (self.controls.itemAt(i) for i in range(self.controls.count()))
+        own = [widget for item in items if item is not None and (widget := item.widget()) is not None]
+        row = [*own, *(button for button, _ in self._tools), self.view]
+        for before, late in pairwise([widget for widget in row if visited(widget)]):
+            visit_after(before, late)
 
     @property
     def charts(self) -> list[ChartView]:

@@ -66,4 +66,5 @@ class PictureTabs(QTabWidget):
         page.addWidget(picture)
         picture.show()  # a layout would show it a turn later
         visit_after(self.tabBar(), picture)
+        picture.order_focus()
         return picture
