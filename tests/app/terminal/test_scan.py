@@ -150,8 +150,8 @@ def test_the_curve_is_drawn(thalweg, name, begins):
     content = Path(name).read_bytes()
     assert content.startswith(begins)
     if name.endswith("svg"):
-        for word in ("UCCSD", "Exact", "Hartree-Fock", "H1-H2 distance / angstrom"):
-            assert word in content.decode()
+        for word in ("UCCSD", "Exact", "Hartree-Fock", "H1-H2 distance / Å"):
+            assert word in content.decode("utf-8")
 
 
 def test_a_scan_is_saved_refined_resumed_and_checked(thalweg):
