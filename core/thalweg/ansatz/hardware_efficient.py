@@ -31,10 +31,12 @@ class HardwareEfficient(Options):
     def build(self, ground: Ground) -> GateProgram:
         """Rotations on every qubit before the first and after each entangling layer, each with its own parameter.
 
-        At zero angles a basis state as reference comes out unchanged up to its sign, because CZ is diagonal.
+        At zero angles the reference comes out unchanged up to its sign: CZ is diagonal, and a superposition is begun with the signs that
+        an odd number of entangling layers takes away.
         """
         n = ground.qubits.n_qubits
         pairs = entangled_pairs(n, self.entangler)
+        begin = reference_program(ground, signs=pairs if self.depth % 2 else ())
         rows: list[GateRow] = []
         labels: list[str] = []
         for layer in range(self.depth + 1):
@@ -42,7 +44,7 @@ class HardwareEfficient(Options):
                 rows += [(Gate.CZ, 1 << a, 1 << b, -1, 0.0) for a, b in pairs]
             self._rotation_layer(n, layer, rows, labels)
         kind, x, z, parameter, factor = zip(*rows, strict=True)
-        return reference_program(ground).followed_by(kind, x, z, parameter, factor, labels, self._order())
+        return begin.followed_by(kind, x, z, parameter, factor, labels, self._order())
 
     def start_parameters(self, ground: Ground, program: GateProgram, rng: np.random.Generator) -> FloatArray:
         """Angles in radians, shape (K,)."""

@@ -1,10 +1,13 @@
 """The layered circuit as data."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from thalweg.ansatz.ground import Ground
 from thalweg.ansatz.hardware_efficient import HardwareEfficient, entangled_pairs
+from thalweg.ansatz.preparation import reference_program
 from thalweg.circuit.program import Gate
 from thalweg.operators.pauli import PauliExpansion
 from thalweg.simulate.register import RegisterEngine
@@ -51,6 +54,31 @@ def test_zero_angles_leave_the_reference_unchanged_up_to_sign(entangler, referen
     assert not start.any()
     assert abs(state[reference]) == pytest.approx(1.0, abs=1e-14)
     assert np.count_nonzero(np.abs(state) > 1e-14) == 1
+
+
+@pytest.mark.parametrize("entangler", ["line", "ring", "all-pairs"])
+@pytest.mark.parametrize(
+    "fields",
+    [
+        {"reference_kind": "plus"},
+        {"reference_kind": "singlets", "reference_pairs": ((0, 2), (1, 3))},
+        {"reference_kind": "combination", "reference_terms": ((0.6, 0b0111), (-0.8, 0b1011))},
+    ],
+    ids=lambda fields: fields["reference_kind"],
+)
+def test_a_superposition_comes_out_of_every_depth_and_is_continued_by_a_deeper_circuit(entangler, fields):
+    base = replace(ground(4), **fields)
+    rng = np.random.default_rng(3)
+    wanted = RegisterEngine(base.qubits, reference_program(base)).state(np.zeros(0))
+    for depth in (1, 2, 3):
+        settings, deeper = (HardwareEfficient(depth=d, rotations="ry-rz", entangler=entangler) for d in (depth, depth + 1))
+        program, longer = settings.build(base), deeper.build(base)
+        at_zero = RegisterEngine(base.qubits, program).state(np.zeros(program.n_parameters))
+        assert abs(np.vdot(wanted, at_zero)) == pytest.approx(1.0, abs=1e-12)
+        angles = rng.normal(size=program.n_parameters)
+        shallow = RegisterEngine(base.qubits, program).state(angles)
+        deep = RegisterEngine(base.qubits, longer).state(deeper.from_shallower(angles, longer.n_parameters))
+        assert abs(np.vdot(shallow, deep)) == pytest.approx(1.0, abs=1e-12)
 
 
 def test_starts_are_repeatable_and_as_wide_as_stated():

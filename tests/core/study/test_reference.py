@@ -25,8 +25,6 @@ FOUR = StudySpec(system=Molecule(name="chain", atoms=tuple(("H", 0.0, 0.0, 1.5 *
 @pytest.mark.parametrize("encoding", ["jordan-wigner", "parity"])
 @pytest.mark.parametrize(("reference", "name"), [("2020", "determinant 2020"), ("0.8*2200 - 0.6*2020", "0.8*2200 - 0.6*2020")])
 def test_the_search_begins_at_the_reference(ansatz, encoding, reference, name):
-    if isinstance(ansatz, HardwareEfficient) and "*" in reference:
-        ansatz = ansatz.model_copy(update={"depth": 2})  # two equal layers of controlled Z are the identity
     spec = with_setting(FOUR.model_copy(update={"reference": reference, "ansatz": ansatz}), "encoding", encoding)
     result = run(spec.model_copy(update={"stop": spec.stop.model_copy(update={"evaluations": 2})}))
     assert result.reference_name == name
