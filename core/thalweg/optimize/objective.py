@@ -254,6 +254,8 @@ class CountedObjective:
         if self._should_stop():
             raise Stopped("stopped-by-person")
         rules, spent = self._rules, self.spent
+        if np.isinf(min(self.best_energy, self._seen.estimate.energy)):
+            return  # the first energy is found whatever the limits: without it there is nothing to keep
         if rules.evaluations and spent.evaluations >= rules.evaluations:
             raise Stopped("evaluations")
         if rules.shots and spent.shots >= rules.shots:

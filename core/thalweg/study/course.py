@@ -199,6 +199,16 @@ class Course:
         return self.target_energy is not None and descent.energy + margin <= self.target_energy
 
     @property
+    def spent_limit(self) -> str:
+        """Which limit of the study is used up, as a key of STOP_REASONS; empty where there is something left."""
+        rules = self.problem.spec.stop
+        if rules.evaluations and self._spent.evaluations >= rules.evaluations:
+            return "evaluations"
+        if rules.shots and self._spent.shots >= rules.shots:
+            return "shots"
+        return "seconds" if rules.seconds and self._seconds >= rules.seconds else ""
+
+    @property
     def is_sampled(self) -> bool:
         """Whether energies carry statistical noise."""
         return isinstance(self.problem.spec.evaluation, Shots)
@@ -290,12 +300,5 @@ class Course:
 
     def _refuse_spent(self) -> None:
         """Raises Stopped where a limit is used up; the first minimisation that is shown has one evaluation at least."""
-        rules = self.problem.spec.stop
-        if not self._columns:
-            return
-        if rules.evaluations and self._spent.evaluations >= rules.evaluations:
-            raise Stopped("evaluations")
-        if rules.shots and self._spent.shots >= rules.shots:
-            raise Stopped("shots")
-        if rules.seconds and self._seconds >= rules.seconds:
-            raise Stopped("seconds")
+        if self._columns and self.spent_limit:
+            raise Stopped(self.spent_limit)

@@ -105,7 +105,9 @@ class _Growing:
             return descent.reason
         if self._ansatz.at_target and self._course.reaches_target(descent):
             return "target"
-        return "operators" if descent.problem.program.n_parameters >= self._ansatz.max_operators else ""
+        if descent.problem.program.n_parameters >= self._ansatz.max_operators:
+            return "operators"
+        return self._course.spent_limit  # before the slopes, which may take more than all the rest
 
     def _reason_of_slopes(self, slopes: FloatArray, chosen: list[int], smallest: FloatArray) -> str:
         if float(np.linalg.norm(slopes)) < self._ansatz.least_slope:

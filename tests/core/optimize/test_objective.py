@@ -75,13 +75,20 @@ def test_each_rule_stops_with_its_own_reason(rules, points, reason):
     assert stop.value.reason == reason
 
 
-def test_time_and_the_person_stop_before_the_next_evaluation():
-    for rules, ask, reason in ((StopRules(seconds=1e-9), False, "seconds"), (StopRules(), True, "stopped-by-person")):
-        objective, _ = make(rules, should_stop=lambda ask=ask: ask)
-        with pytest.raises(Stopped) as stop:
-            objective.value(np.zeros(2))
-        assert stop.value.reason == reason
-        assert objective.evaluations == 0
+def test_the_person_stops_before_the_next_evaluation():
+    objective, _ = make(should_stop=lambda: True)
+    with pytest.raises(Stopped, match="stopped-by-person"):
+        objective.value(np.zeros(2))
+    assert objective.evaluations == 0
+
+
+def test_a_time_limit_stops_after_the_first_energy_which_is_worth_keeping():
+    objective, _ = make(StopRules(seconds=1e-9))
+    objective.value(np.zeros(2))
+    with pytest.raises(Stopped, match="seconds"):
+        objective.value(np.ones(2))
+    assert objective.evaluations == 1
+    assert np.isfinite(objective.best_energy)
 
 
 def test_an_energy_that_is_not_a_number_stops_the_search():

@@ -120,3 +120,12 @@ def test_a_ladder_under_shots_climbs_on_only_where_the_fall_stands_out():
     assert all(fall >= bar for fall, bar in falls)
     assert result.stop_reason == "no-gain"
     assert result.measured_energy != result.growth[-1].energy
+
+
+@pytest.mark.parametrize("limit", [{"shots": 10}, {"evaluations": 1}, {"seconds": 1e-9}])
+def test_slopes_of_a_pool_are_not_measured_past_a_limit(limit):
+    result = run(growing(system=FOUR, stop=StopRules(**limit)))
+    assert result.stop_reason == next(iter(limit))
+    assert len(result.growth) == 1
+    assert result.evaluations == 2  # the reference, and its last measurement
+    assert result.shots == 8000

@@ -23,3 +23,16 @@ def test_a_stopped_study_keeps_its_best_point_and_the_next_one_runs_to_its_end(a
     finished = run(spec)
     assert finished.stop_reason == "gradient"
     assert finished.energy < stopped.energy
+
+
+@pytest.mark.parametrize("changes", [{}, {"ansatz": "adaptive"}, {"ansatz": "number-conserving", "ladder.on": True}, {"continuation": 2}])
+def test_a_time_limit_that_is_over_at_once_leaves_the_first_energy(changes):
+    atoms = tuple(("H", 0.0, 0.0, 1.2 * i) for i in range(4))
+    spec = with_setting(StudySpec(system=Molecule(name="four", atoms=atoms), starts=2), "stop.seconds", 1e-9)
+    for field, value in changes.items():
+        spec = with_setting(spec, field, value)
+    result = run(spec)
+    assert result.stop_reason == "seconds"
+    assert len(result.starts) == 2
+    assert all(len(start.trace.energy) == 1 for start in result.starts)
+    assert result.energy == min(start.trace.energy[0] for start in result.starts)
