@@ -9,6 +9,8 @@ from collections.abc import Callable, Hashable
 from dataclasses import dataclass, replace
 from typing import Any
 
+import numpy as np
+
 from thalweg.ansatz.adaptive import Adaptive
 from thalweg.ansatz.ground import Ground
 from thalweg.circuit.axes import with_free_axes
@@ -25,6 +27,8 @@ from thalweg.systems.prepared import MeanFieldSeed, PreparedSystem
 from thalweg.watch import SILENT, Watch
 
 GIB = 2**30
+#: Far beyond any unit, and small enough that products of energies stay finite.
+LARGEST_COEFFICIENT = 1e100
 
 
 @dataclass(frozen=True)
@@ -101,6 +105,7 @@ def prepare(spec: StudySpec, watch: Watch = SILENT, neighbour: MeanFieldSeed | N
         prepared = _references.get((id(prepared), spec.reference), lambda: (prepared, with_reference(prepared, spec.reference)))[1]
     watch.stage("Encoding")
     encoded = _encodings.get((id(prepared), spec.encoding), lambda: (prepared, _encode(spec, prepared, watch)))[1]
+    _refuse_overflow(encoded)
     watch.stage("Building the trial state")
     kind, pairs, terms = prepared.reference_kind, prepared.reference_pairs, prepared.reference_terms
     ground = Ground(prepared.fermions, encoded.working, encoded.reference_bits, encoded, kind, pairs, terms)
@@ -151,6 +156,18 @@ def _encode(spec: StudySpec, prepared: PreparedSystem, watch: Watch) -> EncodedS
         return encode_fermions(prepared.fermions, spec.encoding, watch)
     assert prepared.spins is not None
     return encode_spins(prepared.spins, spec.encoding, prepared.reference_bits)
+
+
+def _refuse_overflow(encoded: EncodedSystem) -> None:
+    """StudyError where the squares of energies could not be worked out, as variances need."""
+    largest = float(np.abs(encoded.full.coefficients).max(initial=0.0))
+    if not largest <= LARGEST_COEFFICIENT:
+        raise StudyError(
+            "The Hamiltonian cannot be worked with",
+            f"its largest coefficient is {largest:.3g} and the limit is {LARGEST_COEFFICIENT:.3g}",
+            "Check its numbers, or write them in a larger unit",
+            "system",
+        )
 
 
 def _refuse_mapping(spec: StudySpec, n_orbitals: int) -> None:

@@ -64,8 +64,12 @@ def read_combination(text: str, read_state: Callable[[str], T]) -> Combination[T
     states = tuple(state for _, state in found)
     _refuse_unusable(states)
     amplitudes = np.array([amplitude for amplitude, _ in found])
+    largest = np.abs(amplitudes).max()
+    if np.isinf(largest):
+        raise StudyError("An amplitude of the reference is too large", "it is beyond the range of numbers", EXAMPLE, "reference")
+    amplitudes /= largest or 1.0  # so that no square overflows or vanishes
     norm = float(np.linalg.norm(amplitudes))
-    if not 0.0 < norm < np.inf or np.abs(amplitudes).min() <= SMALLEST_AMPLITUDE * norm:
+    if np.abs(amplitudes).min() <= SMALLEST_AMPLITUDE * norm:
         raise StudyError("An amplitude of the reference is zero", "such a term adds nothing", "Leave it out", "reference")
     return Combination(states, tuple((amplitudes / norm).tolist()))
 
