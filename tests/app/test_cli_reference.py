@@ -32,7 +32,7 @@ def test_a_molecule_begins_at_what_is_written_out(thalweg, reference, name):
     ("reference", "name"), [("neel", "Neel state"), ("Singlets", "dimer singlets"), ("01010101 - 10101010", "0.7071*01010101 - 0.7071*10101010")]
 )
 def test_spins_begin_at_a_named_state_or_at_what_is_written_out(thalweg, reference, name):
-    found = solved(thalweg, "ring_8_heisenberg", "--ansatz", "hardware-efficient", "--depth", "2", "--start", "zero", "--reference", reference)
+    found = solved(thalweg, "ring_8_heisenberg", "--ansatz", "hardware-efficient", "--depth", "3", "--start", "zero", "--reference", reference)
     assert found["reference_name"] == name
     assert found["starts"][0]["trace"]["energy"][0] == pytest.approx(found["reference_energy"], abs=1e-9)
 
@@ -53,3 +53,24 @@ def test_what_fits_no_system_is_refused_in_one_sentence(thalweg, arguments, word
     assert status == 2
     assert words in err
     assert "Traceback" not in err
+
+
+@pytest.mark.parametrize(
+    ("words", "remark"),
+    [
+        (["river_crews_cut", "--reference", "11110000"], "begins from all plus, not from basis state 11110000"),
+        (["river_crews_cut", "--reference", "11110000,00001110"], "begins from all plus, not from"),
+        (["river_crews_cut", "--reference", "11110000", "--ansatz-set", "initial=reference"], ""),
+        (["river_crews_cut", "--reference", "11110000", "--ansatz-set", "mixer=ring"], ""),
+        (["river_crews_cut"], ""),
+        (["ring_8_heisenberg", "--reference", "01010101"], "begins from dimer singlets, not from basis state 01010101"),
+        (["ring_8_heisenberg", "--reference", "01010101 - 10101010"], ""),
+    ],
+)
+def test_a_typed_reference_that_the_circuit_does_not_begin_with_is_remarked(thalweg, words, remark):
+    found = solved(thalweg, *words, "--ansatz", "alternating-operators", "--start", "zero")
+    remarks = [text for text in found["remarks"] if "begins from" in text]
+    assert len(remarks) == bool(remark)
+    assert remark in " ".join(remarks)
+    at_reference = found["starts"][0]["trace"]["energy"][0] == pytest.approx(found["reference_energy"], abs=1e-9)
+    assert at_reference == (not remark)

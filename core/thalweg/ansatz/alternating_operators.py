@@ -20,6 +20,8 @@ from thalweg.options import Options, option
 #: Sum in radians of the rotation angles that a full step of the ramp turns one site by, and the angle of a full step of a mixer:
 #: near the best ones of Zhou et al. 2020 for cuts of a ring, and small enough for lattices with many bonds at a site.
 RAMP_STEP, MIXER_STEP = 2.4, 1.2
+#: Initial states that have a name.
+NAMED_STATES = {"plus": "all plus", "singlets": "dimer singlets"}
 #: Parts of a layer that its description names.
 NAMED_PARTS = 6
 SPLIT_HELP = (
@@ -128,6 +130,13 @@ class AlternatingOperators(Options):
         interpolated: FloatArray = rows.ravel()
         return interpolated
 
+    def begins_elsewhere(self, ground: Ground) -> str:
+        """The state that the circuit begins with in place of the reference, in words; empty where it begins with the reference."""
+        state = self._initial(ground)
+        if (state.reference_kind, state.reference_bits) == (ground.reference_kind, ground.reference_bits):
+            return ""
+        return NAMED_STATES.get(state.reference_kind, f"the bit string {_bits_of(state)}")
+
     def _turns(self, ground: Ground) -> list[_Turn]:
         """The groups of one layer in order of action: those of which the initial state is no eigenstate first."""
         state = self._initial(ground)
@@ -186,13 +195,17 @@ class AlternatingOperators(Options):
     def _order(self, ground: Ground, turns: list[_Turn]) -> str:
         state = self._initial(ground)
         whole = "the combination of the reference" if state.begins_combined else "the basis state of the reference"
-        begins = {"plus": "all plus", "singlets": "dimer singlets"}.get(state.reference_kind, whole)
+        begins = NAMED_STATES.get(state.reference_kind, whole)
         if self._has_mixer(ground) and self.mixer == "ring" and self.initial == "fitting" and not state.begins_combined:
-            begins = f"the bit string {''.join(str(state.reference_bits >> q & 1) for q in range(ground.qubits.n_qubits))}"
+            begins = f"the bit string {_bits_of(state)}"
         named = [turn.group.label for turn in turns[:NAMED_PARTS]]
         named += [f"{len(turns) - NAMED_PARTS} more parts"] if len(turns) > NAMED_PARTS else []
         angle = "an angle for each term" if self.multi_angle else "one angle for each part"
         return f"from {begins}, {self.depth} times: {', then '.join(named)}; {angle}"
+
+
+def _bits_of(ground: Ground) -> str:
+    return "".join(str(ground.reference_bits >> q & 1) for q in range(ground.qubits.n_qubits))
 
 
 def _fitting_pairs(ground: Ground) -> tuple[tuple[int, int], ...]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from thalweg.ansatz.adaptive import Adaptive
+from thalweg.ansatz.alternating_operators import AlternatingOperators
 from thalweg.circuit.angles import Angles, angles_of
 from thalweg.circuit.compile import excitation_gates
 from thalweg.circuit.program import GateProgram, Program
@@ -12,6 +13,7 @@ from thalweg.circuit.structure import structure_of
 from thalweg.cost.gates import GateCounts, gate_counts
 from thalweg.cost.groups import qubit_wise_groups
 from thalweg.encoding.encoded import EncodedSystem
+from thalweg.errors import StudyError
 from thalweg.estimate import SHOTS
 from thalweg.evaluate.metric import metric_circuits
 from thalweg.evaluate.shift import SHIFT_RULES
@@ -19,7 +21,7 @@ from thalweg.operators.pauli import PauliExpansion, pauli_label
 from thalweg.study.derived import Rung, StudyFigures
 from thalweg.study.neighbour import refuse_unfit_start, start_words
 from thalweg.study.problem import GIB, Problem, Recent, make_engine, prepare
-from thalweg.study.simulator import measured_register
+from thalweg.study.simulator import measured_register, refuse_unfit
 from thalweg.study.spec import StudySpec
 from thalweg.watch import SILENT, Watch
 
@@ -68,7 +70,7 @@ def figures_of(problem: Problem, watch: Watch = SILENT) -> StudyFigures:
         operator_order=program.order,
         facts=prepared.facts,
         start=" ".join(start_words(problem)),
-        warnings=warnings_of(problem) + _exact_warnings(problem),
+        warnings=warnings_of(problem) + _exact_warnings(problem) + _refusal(problem),
         ladder=tuple(Rung(**vars(row)) for row in prepared.ladder),
         pauli_terms=heaviest_terms(encoded.working),
         **_measurement_figures(problem, watch),
@@ -90,11 +92,9 @@ def _measurement_figures(problem: Problem, watch: Watch) -> dict[str, int | None
     overlaps = 0 if part is None else metric_circuits(angles, part, structure.layer)
     energies = spec.optimizer.energies_a_step(structure, _energies_of(angles))
     shots = None if SHOTS in spec.optimizer.needs else getattr(spec.evaluation, "shots", None)
-    found: dict[str, int | None] = {
-        "measurement_sets": sets,
-        "circuits_a_step": sets * energies + overlaps,
-        "shots_a_step": None if shots is None else shots * (energies + overlaps),
-    }
+    found: dict[str, int | None] = {"measurement_sets": sets}
+    if problem.program.n_parameters:  # otherwise there is nothing to iterate
+        found |= {"circuits_a_step": sets * energies + overlaps, "shots_a_step": None if shots is None else shots * (energies + overlaps)}
     if pool is not None:
         found["pool_circuits"] = sets * (_energies_of(angles_of(pool)) - _energies_of(angles))
     return found | operators
@@ -133,6 +133,15 @@ def _exact_warnings(problem: Problem) -> tuple[str, ...]:
     return (f"The exact energy needs about {needed / GIB:.3g} GiB and {budget / GIB:.3g} GiB are allowed: switch it off or raise the memory budget",)
 
 
+def _refusal(problem: Problem) -> tuple[str, ...]:
+    """The sentence by which the run would be refused, where parts of the settings do not go together."""
+    try:
+        refuse_unfit(problem)
+    except StudyError as error:
+        return (f"The study cannot run like this: {error}",)
+    return ()
+
+
 def program_gates(problem: Problem) -> GateCounts:
     """Gates of the trial state on the working register."""
     program, encoded = problem.program, problem.encoded
@@ -146,7 +155,16 @@ def program_gates(problem: Problem) -> GateCounts:
 
 def warnings_of(problem: Problem) -> tuple[str, ...]:
     note = problem.encoded.degenerate_note
-    return problem.prepared.warnings + ((note,) if note else ()) + problem.encoded.remarks
+    return problem.prepared.warnings + ((note,) if note else ()) + problem.encoded.remarks + _reference_warnings(problem)
+
+
+def _reference_warnings(problem: Problem) -> tuple[str, ...]:
+    """A sentence where the circuit begins with another state than the reference that was typed."""
+    spec, name = problem.spec, problem.prepared.reference_name
+    begins = spec.ansatz.begins_elsewhere(problem.ground) if spec.reference and isinstance(spec.ansatz, AlternatingOperators) else ""
+    if not begins:
+        return ()
+    return (f"The circuit begins from {begins}, not from {name}: set the initial state of the trial state to `reference` to begin there",)
 
 
 def symmetry_texts(encoded: EncodedSystem) -> tuple[str, ...]:

@@ -303,6 +303,24 @@ def test_the_circuits_of_a_step_with_free_axes_are_foretold(reuse):
     assert trace.circuits[2] - trace.circuits[1] == inspect(spec).circuits_a_step
 
 
+@pytest.mark.parametrize("optimizer", [Adam(), ICANS(), NaturalGradient()], ids=lambda o: o.key)
+def test_nothing_is_foretold_of_a_step_where_there_is_no_parameter_to_search(optimizer):
+    figures = inspect(study(ansatz=Adaptive(), evaluation=Shots(shots=100), optimizer=optimizer))
+    assert figures.measurement_sets
+    assert (figures.circuits_a_step, figures.shots_a_step) == (None, None)
+
+
+@pytest.mark.parametrize(
+    ("changes", "words"),
+    [({"optimizer": FreeAxis()}, "single-qubit rotations"), ({"optimizer": ICANS(), "evaluation": Exact()}, "draws none"), ({"optimizer": Adam()}, "")],
+    ids=["axes", "shots", "fit"],
+)
+def test_figures_say_what_the_run_would_be_refused_for(changes, words):
+    warnings = [text for text in inspect(study(**changes)).warnings if "cannot run like this" in text]
+    assert len(warnings) == bool(words)
+    assert words in " ".join(warnings)
+
+
 @pytest.mark.parametrize("key", sorted(set(OPTIMIZERS.keys()) - {"free-axis"}))
 def test_every_optimiser_lowers_the_energy_of_a_molecule(key):
     cls = OPTIMIZERS.get(key)
