@@ -13,6 +13,7 @@ import click
 from click.core import ParameterSource
 
 from thalweg.errors import StudyError
+from thalweg.paths import as_characters
 from thalweg.storage.files import write_atomically
 from thalweg.storage.plain_json import json_text
 from thalweg.storage.session import ScanRun, Session, load_session, save_session
@@ -226,7 +227,7 @@ def _print(result: ScanResult, units: CurveUnits, json_file: str | None, csv_fil
     texts = ((json_file, lambda: json_text(scan_data(result), indent=1) + "\n"), (csv_file, lambda: scan_csv(result, units)))
     for name, make in texts:
         if name is not None and name != STANDARD_OUTPUT:
-            write_atomically(Path(name), make().encode())
+            write_atomically(Path(name), as_characters(make()).encode())
     on_output = [make for name, make in texts if name == STANDARD_OUTPUT]
     click.echo(on_output[0]() if on_output else "\n".join(scan_lines(result, units)), nl=not on_output)
 

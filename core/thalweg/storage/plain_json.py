@@ -7,11 +7,16 @@ import math
 from datetime import datetime
 from typing import Any
 
+from thalweg.paths import as_characters
+
 
 def json_text(data: Any, indent: int | None = None) -> str:
-    """Plain data as JSON. ValueError when a figure is not finite; see `first_not_finite` for its place."""
+    """Plain data as JSON. ValueError when a figure is not finite; see `first_not_finite` for its place.
+
+    What is no character in UTF-8 becomes a question mark.
+    """
     separators = (",", ":") if indent is None else (",", ": ")
-    return json.dumps(data, ensure_ascii=False, allow_nan=False, indent=indent, separators=separators, default=plain)
+    return as_characters(json.dumps(data, ensure_ascii=False, allow_nan=False, indent=indent, separators=separators, default=plain))
 
 
 def read_json(text: str) -> Any:

@@ -8,12 +8,13 @@ from pathlib import Path
 from typing import Any, Final, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
+from pydantic_core import PydanticSerializationError
 
 from thalweg import __version__
 from thalweg.errors import StudyError
 from thalweg.storage.files import read_limited, write_atomically
 from thalweg.storage.migrations import CURRENT_FORMAT, migrate
-from thalweg.storage.plain_json import first_not_finite, plain, read_json
+from thalweg.storage.plain_json import first_not_finite, json_text, plain, read_json
 from thalweg.study.result import StudyResult
 from thalweg.study.scan_result import ScanResult
 from thalweg.study.spec import StudySpec
@@ -87,11 +88,14 @@ class Session(SessionPart):
 def save_session(session: Session, path: Path) -> None:
     """Writes the file whole or not at all. StudyError when a figure is not finite or the system refuses."""
     whole = session.model_copy(update={"program_version": __version__})
-    text = whole.model_dump_json(fallback=plain)  # many times faster than json.dumps, and the window saves while it lives
-    place = first_not_finite(whole.model_dump(mode="python")) if NOT_FINITE.search(text) else ""
+    try:
+        text = whole.model_dump_json(fallback=plain)  # many times faster than json.dumps, and the window saves while it lives
+    except PydanticSerializationError:  # a name or a note holds what is no character in UTF-8
+        text = ""
+    place = first_not_finite(whole.model_dump(mode="python")) if not text or NOT_FINITE.search(text) else ""
     if place:
         raise StudyError("The session cannot be saved", f"the figure {place} is not a finite number", "Delete that run and save again")
-    write_atomically(path, text.encode("utf-8"))
+    write_atomically(path, (text or json_text(whole.model_dump(mode="python"))).encode("utf-8"))
 
 
 def load_session(path: Path) -> Session:

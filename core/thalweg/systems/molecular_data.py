@@ -12,6 +12,7 @@ import numpy as np
 
 from thalweg.arrays import FloatArray
 from thalweg.errors import StudyError
+from thalweg.paths import as_characters
 from thalweg.systems.elements import formula
 from thalweg.systems.fcidump import MAX_ORBITALS, Listing, write_listing
 from thalweg.systems.integrals import Integrals
@@ -25,7 +26,7 @@ def read_molecular_data(path: Path) -> Integrals:
 
     try:
         with h5py.File(path, "r") as file:
-            return _integrals(file, path.name)
+            return _integrals(file, as_characters(path.name))
     except (OSError, RuntimeError, KeyError, ValueError, TypeError, AttributeError) as error:
         raise StudyError(
             f"'{path.name}' cannot be read as HDF5 molecular data", str(error).strip("'\" ")[:120], "Give a file with stored integrals"

@@ -8,6 +8,7 @@ from typing import Any
 from pydantic import ValidationError
 
 from thalweg.errors import StudyError
+from thalweg.paths import as_characters
 from thalweg.systems.fcidump import looks_like_listing, read_listing
 from thalweg.systems.integrals import Integrals
 from thalweg.systems.lattice_file import looks_like_lattice, read_edge_list, read_lattice_file
@@ -42,7 +43,7 @@ def open_system(path: str | Path, unit: str = "angstrom", **overrides: Any) -> t
     text = _text(content, path.name)
     if looks_like_listing(text):
         listing = read_listing(text)
-        system = Integrals(name=_name(path), listing=text, source=path.name, described="; ".join(listing.comments))
+        system = Integrals(name=_name(path), listing=text, source=as_characters(path.name), described="; ".join(listing.comments))
         return _with(system, given), (
             f"Read '{path.name}' as FCIDUMP: {listing.n_electrons} electrons in {listing.n_orbitals} orbitals",
             *listing.notes,
@@ -117,4 +118,4 @@ def _text(content: bytes, name: str) -> str:
 
 def _name(path: Path) -> str:
     """The file's name without its ending; nothing for the customary name FCIDUMP, which says nothing."""
-    return "" if path.name.upper() == "FCIDUMP" else path.stem
+    return "" if path.name.upper() == "FCIDUMP" else as_characters(path.stem)

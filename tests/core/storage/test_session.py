@@ -60,12 +60,21 @@ def test_the_published_schema_is_that_of_the_models():
     assert schema_path().read_text() == schema_text(), "run: .venv/bin/python -m thalweg.storage.schema"
 
 
+def test_a_name_that_is_no_text_does_not_keep_a_session_from_being_saved(tmp_path, session):
+    odd = session.model_copy(update={"name": os.fsdecode(b"br\xfccke")})
+    save_session(odd, tmp_path / "s.json")
+    back = load_session(tmp_path / "s.json")
+    assert back.name == "br?cke"
+    assert back.runs == session.runs
+
+
+@pytest.mark.parametrize("name", ["", os.fsdecode(b"\xff")])
 @pytest.mark.parametrize("value", [float("nan"), float("inf"), -float("inf")])
-def test_no_infinite_number_becomes_an_empty_one(tmp_path, session, result, value):
+def test_no_infinite_number_becomes_an_empty_one(tmp_path, session, result, value, name):
     trace = result.trace.model_copy(update={"energy": (-1.0, value)})
     start = result.starts[0].model_copy(update={"trace": trace})
     with pytest.raises(StudyError, match=r"starts\.0\.trace\.energy\.1 is not a finite number"):
-        save_session(session.with_result(result.model_copy(update={"starts": (start,)})), tmp_path / "s.json")
+        save_session(session.model_copy(update={"name": name}).with_result(result.model_copy(update={"starts": (start,)})), tmp_path / "s.json")
     assert not (tmp_path / "s.json").exists()
 
 

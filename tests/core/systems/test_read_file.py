@@ -1,5 +1,6 @@
 """Files are opened by what they hold; each sample and each stored molecule is a system."""
 
+import os
 from pathlib import Path
 
 import h5py
@@ -93,6 +94,18 @@ def test_other_encodings_are_read(tmp_path):
     (tmp_path / "a.xyz").write_bytes("2\nwater \xe9\nH 0 0 0\nH 0 0 0.74".encode("latin-1"))
     (tmp_path / "b.xyz").write_bytes(GEOMETRY.encode("utf-16"))
     assert len(open_system(tmp_path / "a.xyz")[0].atoms) == len(open_system(tmp_path / "b.xyz")[0].atoms) == 2
+
+
+@pytest.mark.parametrize("content", [GEOMETRY, LISTING])
+def test_bytes_of_a_name_that_are_no_text_become_question_marks(tmp_path, content):
+    path = tmp_path / os.fsdecode(b"gr\xfcn.xyz")
+    try:
+        path.write_text(content)
+    except OSError:
+        return  # this system has no such names
+    system, _ = open_system(path)
+    assert system.name == "gr?n"
+    system.model_dump_json()
 
 
 def test_overrides_win_over_the_file(tmp_path):
