@@ -156,7 +156,9 @@ class DiagnosisControl:
     def _open_study(self) -> StudySpec:
         study = self._study()
         if study is None:
-            raise StudyError("There is nothing to diagnose", "no system is open or a field is in error", "Open a system first")
+            raise StudyError(
+                "There is nothing to diagnose", "no system is open, or a setting is refused", "Open a system, or mend what is marked in the set-up"
+            )
         return study
 
     def _selected(self) -> Run:

@@ -29,6 +29,8 @@ SCAN = "thalweg_app.jobs:scan"
 FORESEE = "thalweg_app.jobs:foresee"
 #: How many points a refinement adds.
 REFINED_BY = 4
+#: More are a slip of the keyboard, and the list of them would halt the window.
+MOST_POINTS = 10_000
 REFINEMENTS: dict[Place, str] = {"minimum": "Around the minimum", "error": "Where the error is worst"}
 Spacing = Literal["equal", "geometric", "list"]
 SPACINGS: dict[Spacing, str] = {"equal": "Equal spacing", "geometric": "Geometric spacing", "list": "List of values"}
@@ -63,7 +65,10 @@ class ScanDraft:
             return read_points(self.values)
         first, last = parse_number(self.first, "first"), parse_number(self.last, "last")
         make = linear_points if self.spacing == "equal" else geometric_points
-        return make(first, last, parse_whole(self.count, "count"))
+        count = parse_whole(self.count, "count")
+        if count > MOST_POINTS:
+            raise StudyError(f"{count:,} points are too many", f"a scan has {MOST_POINTS:,} at the most", "Ask for fewer points", "count")
+        return make(first, last, count)
 
     def _frame_numbers(self, path: FramesPath) -> tuple[float, ...]:
         if not self.among_frames.strip():
@@ -167,7 +172,9 @@ class ScanControl:
         """The scan as it is set up. StudyError when something does not fit."""
         study = self._study()
         if study is None:
-            raise StudyError("There is nothing to scan", "no system is open or a field is in error", "Open a system first")
+            raise StudyError(
+                "There is nothing to scan", "no system is open, or a setting is refused", "Open a system, or mend what is marked in the set-up"
+            )
         draft = self.draft
         path = draft.path_for(study)
         scan = ScanSpec.model_validate(

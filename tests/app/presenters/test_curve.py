@@ -205,6 +205,13 @@ def test_no_system_no_scan():
     assert "nothing to scan" in scans.obstacle
 
 
+@pytest.mark.parametrize("spacing", ["equal", "geometric"])
+def test_far_too_many_points_are_refused_before_they_are_listed(control, spacing):
+    control.edit("spacing", spacing)
+    control.edit("count", "1e15")
+    assert control.obstacle == "1,000,000,000,000,000 points are too many: a scan has 10,000 at the most. Ask for fewer points."
+
+
 def finished(control):
     control.start()
     listener, spec = run_scan_events(control, curve())
