@@ -55,7 +55,7 @@ class DerivedFigures:
         self._asked = key = key_of(spec)
         listener = JobListener(
             done=lambda value: self._on_done(key, value),
-            failed=lambda failure: self._on_failed(key, spec, failure),
+            failed=lambda failure: self._on_failed(key, failure),
             stopped=lambda: self._over(key),
         )
         self._job = self._starter.start(self._function, spec.model_dump(mode="json"), listener)
@@ -73,14 +73,15 @@ class DerivedFigures:
         if self._wanted is not None and key == key_of(self._wanted):
             self._set(figures, True)
 
-    def _on_failed(self, key: Any, spec: StudySpec, failure: Failed) -> None:
+    def _on_failed(self, key: Any, failure: Failed) -> None:
+        """The refusal is of the set-up as it is now, in which e.g. the seed may have changed since."""
         self._over(key)
         if self._wanted is None or key != key_of(self._wanted):
             return
         if failure.details:
             self.defect(failure)
         else:
-            self.refused(spec, StudyError(failure.what, failure.why, failure.fix, failure.field))
+            self.refused(self._wanted, StudyError(failure.what, failure.why, failure.fix, failure.field))
         self.changed()
 
     def _over(self, key: Any) -> None:

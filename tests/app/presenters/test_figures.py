@@ -89,6 +89,16 @@ def test_a_refusal_carries_its_field_and_a_defect_its_traceback(starter, figures
     assert defects[0].details == "Traceback"
 
 
+def test_a_refusal_is_of_the_settings_as_they_are_when_it_comes(starter, figures):
+    refused = []
+    figures.refused.connect(lambda spec, error: refused.append(spec))
+    figures.follow(studies.study())
+    figures.follow(studies.study(seed=99))
+    assert len(starter.jobs) == 1
+    starter.last.listener.failed(Failed(what="No such basis", why="it is unknown", fix="Choose another", field="system.basis"))
+    assert refused == [studies.study(seed=99)]
+
+
 def test_a_set_up_that_does_not_validate_asks_for_nothing(starter, figures):
     figures.follow(None)
     assert not starter.jobs
