@@ -6,7 +6,7 @@ import windows
 from PySide6.QtCore import QSettings, Qt
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QLabel, QLineEdit, QMessageBox
+from PySide6.QtWidgets import QLabel, QLineEdit, QMenu, QMessageBox
 from windows import add_run, curves, finish, iteration, jobs_of, press, started
 
 from thalweg.study.events import Failed
@@ -79,7 +79,12 @@ def test_runs_queue_and_can_be_taken_off(qtbot, window, starter):
     window.run()
     window.run()
     assert window.status._waiting.text() == "1 waiting"
-    window.status._waiting.menu().actions()[0].trigger()
+    menu = window.status._waiting.menu()
+    menu.aboutToShow.emit()
+    for _ in range(3):
+        window.status.refresh()  # as a run under way tells of itself
+    assert window.status._waiting.findChildren(QMenu) == [menu]
+    menu.actions()[0].trigger()
     assert not window.workbench.runs.queue
 
 

@@ -77,10 +77,10 @@ class RunControl:
         self.stop()
         self.changed()
 
-    def withdraw(self, position: int) -> None:
-        """Takes a waiting run off the queue."""
-        if 0 <= position < len(self.queue):
-            del self.queue[position]
+    def withdraw(self, queued: Queued) -> None:
+        """Takes a run off the queue, if it still waits."""
+        if any(waiting is queued for waiting in self.queue):
+            self.queue = [waiting for waiting in self.queue if waiting is not queued]
             self.changed()
 
     def _enqueue(self, queued: Queued) -> None:

@@ -31,6 +31,9 @@ class StatusLine(QStatusBar):
         self._waiting = QToolButton()
         self._waiting.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
         describe(self._waiting, "Waiting runs", "Runs that wait; choose one to take it off the queue.")
+        self._menu = QMenu(self._waiting)
+        self._menu.aboutToShow.connect(self._fill_queue)
+        self._waiting.setMenu(self._menu)
         self.setSizeGripEnabled(False)
         self.addWidget(self._text, 1)
         for part in (self._waiting, self._left, self._bar):
@@ -95,9 +98,11 @@ class StatusLine(QStatusBar):
         queue = self._workbench.runs.queue
         self._waiting.setVisible(bool(queue))
         self._waiting.setText(f"{len(queue)} waiting")
-        menu = QMenu(self._waiting)
-        for position, queued in enumerate(queue):
+
+    def _fill_queue(self) -> None:
+        self._menu.clear()
+        runs = self._workbench.runs
+        for queued in runs.queue:
             what = system_label(queued.spec) if queued.check_of is None else f"check of run {queued.check_of.number}"
-            action = menu.addAction(f"Take off: {what}, {queued.spec.ansatz.title}, {queued.spec.optimizer.title}")
-            action.triggered.connect(lambda _=False, position=position: self._workbench.runs.withdraw(position))
-        self._waiting.setMenu(menu)
+            action = self._menu.addAction(f"Take off: {what}, {queued.spec.ansatz.title}, {queued.spec.optimizer.title}")
+            action.triggered.connect(lambda _=False, queued=queued: runs.withdraw(queued))

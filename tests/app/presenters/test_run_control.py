@@ -85,9 +85,22 @@ def test_runs_wait_for_each_other_in_order(starter, runs, heard):
 def test_a_waiting_run_can_be_withdrawn(starter, runs):
     runs.submit(studies.study())
     runs.submit(studies.other_study())
-    runs.withdraw(0)
-    assert not runs.queue
-    runs.withdraw(5)
+    runs.submit(studies.study())
+    first, second = runs.queue
+    runs.withdraw(first)
+    assert runs.queue == [second]
+    runs.withdraw(first)
+    assert runs.queue == [second]
+
+
+def test_a_run_that_has_begun_meanwhile_is_not_withdrawn_nor_another_in_its_stead(starter, runs):
+    for study in (studies.study(), studies.other_study(), studies.study()):
+        runs.submit(study)
+    begun, waiting = runs.queue
+    starter.last.listener.events([Finished(result=studies.result())])
+    starter.last.listener.done(None)
+    runs.withdraw(begun)
+    assert runs.queue == [waiting]
 
 
 def test_stop_keeps_the_best_that_the_calculation_hands_over(starter, runs, heard):
