@@ -5,11 +5,13 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+from thalweg.ansatz import Adaptive
 from thalweg.study.spec import StudySpec
-from thalweg_app.presenters.live import LiveRun
+from thalweg_app.presenters.live import LiveRun, LiveStart
 
-#: Iterates that the trend of the gradient is read from.
+#: Iterates that the trend of the gradient is read from: the later half, and not fewer or many more than these.
 TREND = 12
+MOST_OF_TREND = 400
 
 
 @dataclass(frozen=True)
@@ -55,7 +57,7 @@ def _ahead(live: LiveRun) -> tuple[float, float] | None:
     A start of which nothing can be said is expected to take as long as those that have ended, or else as the slowest under way.
     """
     running = [live.starts[k] for k in live.running]
-    here = [_this_start(live.spec, s.seconds, s.gradient_norm, s.evaluations) for s in running]
+    here = [_this_start(live.spec, s) for s in running]
     ended = [s.seconds[-1] for s in live.starts if s.reason and s.seconds]
     foreseen = [s.seconds[-1] + left for s, left in zip(running, here, strict=True) if left is not None]
     if not ended and not foreseen:
@@ -66,25 +68,39 @@ def _ahead(live: LiveRun) -> tuple[float, float] | None:
     return work, max([work / max(1, len(running)), *left])
 
 
-def _this_start(spec: StudySpec, seconds: list[float], norms: list[float | None], evaluations: list[int]) -> float | None:
-    spent = seconds[-1]
+def _this_start(spec: StudySpec, start: LiveStart) -> float | None:
+    seconds, spent = start.seconds, start.seconds[-1]
     bounds = []
     if spec.stop.seconds:
         bounds.append(max(0.0, spec.stop.seconds - spent))
-    if spec.stop.evaluations and evaluations[-1] > 0 and spent > 0:
-        bounds.append(spent * (spec.stop.evaluations / evaluations[-1] - 1.0))
-    trend = _by_gradient(seconds, norms, spec.stop.gradient)
+    for limit, done in ((spec.stop.evaluations, start.evaluations[-1]), (_iterations(spec), start.iteration[-1])):
+        if limit and done > 0 and spent > 0:
+            bounds.append(spent * (limit / done - 1.0))
+    trend = _by_gradient(seconds, start.gradient_norm, spec.stop.gradient)
     if trend is not None:
         bounds.append(trend)
     return max(0.0, min(bounds)) if bounds and (trend is not None or len(seconds) > 1) else None
 
 
+def _iterations(spec: StudySpec) -> int:
+    """After how many iterations a start ends; 0 where it has several searches one after another."""
+    several = isinstance(spec.ansatz, Adaptive) or spec.ladder.on or spec.continuation > 1
+    return 0 if several else int(getattr(spec.optimizer, "max_iterations", 0))
+
+
 def _by_gradient(seconds: list[float], norms: list[float | None], limit: float) -> float | None:
-    """Seconds until the gradient meets its limit, if it goes on falling by the same factor a second."""
-    points = [(t, math.log(n)) for t, n in zip(seconds[-TREND:], norms[-TREND:], strict=True) if n]
+    """Seconds until the gradient meets its limit, if it goes on falling by the same factor a second: the straight line nearest to its logarithm.
+
+    The gradient of single iterates goes up and down, so that a line through two of them would foretell now a second, now an hour.
+    """
+    latest = max(TREND, min(len(seconds) // 2, MOST_OF_TREND))
+    points = [(t, math.log(n)) for t, n in zip(seconds[-latest:], norms[-latest:], strict=True) if n]
     if limit <= 0 or len(points) < 4:
         return None
-    (first, high), (last, low) = points[0], points[-1]
-    if last <= first or low >= high:
+    middle, level = (sum(values) / len(points) for values in zip(*points, strict=True))
+    spread = sum((t - middle) ** 2 for t, _ in points)
+    slope = sum((t - middle) * (g - level) for t, g in points) / spread if spread > 0 else 0.0
+    if slope >= 0:
         return None
-    return max(0.0, (low - math.log(limit)) * (last - first) / (high - low))
+    now = level + slope * (points[-1][0] - middle)
+    return max(0.0, (math.log(limit) - now) / slope)

@@ -1,6 +1,10 @@
+import math
+
 import pytest
 import studies
 
+from thalweg.ansatz import Adaptive
+from thalweg.optimize import Adam
 from thalweg.optimize.objective import StopRules
 from thalweg.study.events import Iteration, Stage, StartEnded
 from thalweg_app.presenters.live import LiveRun
@@ -34,6 +38,21 @@ def test_a_time_limit_bounds_the_guess():
 def test_an_evaluation_limit_bounds_the_guess():
     run = live([(0, i, None, float(i)) for i in range(5)], stop=StopRules(evaluations=10))
     assert estimate(run).seconds_left == pytest.approx(4.0)
+
+
+def test_the_iterations_allowed_bound_the_guess():
+    told = [(0, i, None, float(i)) for i in range(5)]
+    assert estimate(live(told, optimizer=Adam(max_iterations=16))).seconds_left == pytest.approx(12.0)
+    grown = live(told, optimizer=Adam(max_iterations=16), ansatz=Adaptive(), stop=StopRules(evaluations=0))
+    assert estimate(grown).seconds_left is None  # each step of growth may take as many
+
+
+def test_a_gradient_that_goes_up_and_down_while_it_falls_gives_a_steady_guess():
+    norms = [10.0 ** (-i / 50 + 0.5 * math.sin(2.4 * i)) for i in range(220)]  # 1e-6 is met at iterate 300, 100 iterates a second
+    told = [(0, i, norm, i / 100) for i, norm in enumerate(norms)]
+    guesses = [estimate(live(told[:n])).seconds_left + told[n - 1][3] for n in range(150, 221)]
+    assert min(guesses) == pytest.approx(3.0, rel=0.1)
+    assert max(guesses) == pytest.approx(3.0, rel=0.1)
 
 
 def end(run, start):
@@ -74,7 +93,7 @@ def test_nothing_is_said_where_nothing_is_known():
 
 
 def test_a_rising_gradient_gives_no_guess():
-    run = live([(0, i, 0.1 * (i + 1), float(i)) for i in range(6)], stop=StopRules(evaluations=0))
+    run = live([(0, i, 0.1 * (i + 1), float(i)) for i in range(6)], stop=StopRules(evaluations=0), ansatz=Adaptive())
     assert estimate(run).seconds_left is None
 
 
