@@ -22,6 +22,7 @@ def test_a_run_of_the_ledger_becomes_the_start_and_is_taken_away_by_the_keyboard
     assert line.isHidden()
     action.trigger()
     assert line.isVisible()  # the section opens, wherever it was
+    qtbot.waitUntil(lambda: line.visibleRegion().boundingRect().height() == line.height())  # and the column scrolls to it
     assert line.text.text() == "Starts from run 2, LiH, STO-3G, UCCSD: 2 parameters"
     assert action in window.menuBar().actions()[1].menu().actions()
     line.button.setFocus(Qt.FocusReason.TabFocusReason)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtCore import QSize, Qt, QTimer, Signal
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
 
 from thalweg_app.colours import LIGHT, Palette
@@ -16,6 +16,8 @@ from thalweg_app.views.system_section import SystemSection
 from thalweg_app.widgets.fold import Section
 
 WIDTH = 388
+#: Pixels kept in sight above and under what is brought into sight.
+ROOM = 60
 STOP_HELP = "Ends the run and keeps the best point so far (Esc)."
 STOP_NOW_HELP = "Does not wait for the properties of the best point; its energy is kept (Esc)."
 _ANSWER_PICTURES = {"good": "reached", "bad": "missed", "unclear": "unclear"}
@@ -105,8 +107,9 @@ class SetupColumn(QWidget):
         self.refresh_answer()
 
     def show_start(self) -> None:
-        """Opens the trial state, where it stands which run the search starts from."""
+        """Opens the trial state and brings into sight where it stands which run the search starts from."""
         self.sections["ansatz"].set_open(True)
+        QTimer.singleShot(0, self, lambda: self._area.ensureWidgetVisible(self.trial.start, 0, ROOM))  # once the section is laid out
 
     def _reveal(self, path: str) -> None:
         """Opens the section that holds a field with an error."""
@@ -125,7 +128,7 @@ class SetupColumn(QWidget):
             column.addWidget(section)
         column.addStretch(1)
         self.sections["system"].set_open(True)
-        area = QScrollArea()
+        area = self._area = QScrollArea()
         area.setWidgetResizable(True)
         area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         area.setWidget(holder)

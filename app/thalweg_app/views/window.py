@@ -86,7 +86,8 @@ class Window(QMainWindow):
     def start_from_selected(self) -> None:
         """Lets the search begin at the parameters of the selected run, and shows where that is said."""
         self.workbench.start_from_selected()
-        self.column.show_start()
+        if self.workbench.setup.start_line:
+            self.column.show_start()
 
     def open_path(self, path: str) -> None:
         self.files.open(Path(path))
