@@ -37,7 +37,7 @@ class SetupColumn(QWidget):
         super().__init__()
         self._workbench = workbench
         self.system = SystemSection(workbench.setup)
-        self.encoding, self.trial, self.search = (make(workbench.setup) for make in (EncodingSection, TrialSection, SearchSection))
+        self.encoding, self.trial, self.search = EncodingSection(workbench.setup), TrialSection(workbench.setup), SearchSection(workbench.setup)
         bodies = {"system": self.system, "encoding": self.encoding, "ansatz": self.trial, "optimizer": self.search}
         self.sections: dict[str, Section] = {}
         self._bodies = bodies
