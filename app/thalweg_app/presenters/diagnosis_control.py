@@ -145,7 +145,7 @@ class DiagnosisControl:
 
     def _direction(self, kind: str, parameter: str) -> Direction:
         if kind == "parameter":
-            return Direction(kind="parameter", parameter=parse_whole(parameter, "parameter"))
+            return _made(Direction, {"kind": "parameter", "parameter": parse_whole(parameter, "parameter")})
         if kind == "point":
             other = next((run for run in self._ledger.ticked if run is not self._ledger.selected), None)
             if other is None:

@@ -70,6 +70,13 @@ def test_two_directions_make_a_map(control):
     assert directions[1]["parameter"] == 3
 
 
+def test_a_parameter_below_zero_is_said(control):
+    control.edit("what", "landscape")
+    control.edit("first", "parameter")
+    control.edit("first_parameter", "-1")
+    assert control.obstacle == "Setting 'parameter' cannot be -1: input should be greater than or equal to 0. Give a value that fits."
+
+
 @pytest.mark.parametrize(
     ("name", "value", "words"), [("sizes", "a", "no list of numbers"), ("samples", "x", "whole number"), ("samples", "2", "samples")]
 )
