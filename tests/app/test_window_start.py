@@ -15,6 +15,7 @@ FOUND = {"final_parameters": (0.1, -0.2), "parameter_labels": ("0a 0b -> 1a 1b",
 
 def test_a_run_of_the_ledger_becomes_the_start_and_is_taken_away_by_the_keyboard(qtbot, window, starter):
     action, line = window.ledger_view.start_action, window.column.trial.start
+    window.resize(1280, 700)
     assert not action.isEnabled()
     window.workbench.ledger.add(studies.result())
     assert not action.isEnabled()

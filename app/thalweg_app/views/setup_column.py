@@ -38,9 +38,13 @@ class SetupColumn(QWidget):
         self._workbench = workbench
         self.system = SystemSection(workbench.setup)
         self.encoding, self.trial, self.search = EncodingSection(workbench.setup), TrialSection(workbench.setup), SearchSection(workbench.setup)
-        bodies = {"system": self.system, "encoding": self.encoding, "ansatz": self.trial, "optimizer": self.search}
+        self._bodies: dict[str, SystemSection | EncodingSection | TrialSection | SearchSection] = {
+            "system": self.system,
+            "encoding": self.encoding,
+            "ansatz": self.trial,
+            "optimizer": self.search,
+        }
         self.sections: dict[str, Section] = {}
-        self._bodies = bodies
         self.answer = AnswerLine()
         self._palette = LIGHT
         self.setMinimumWidth(330)
