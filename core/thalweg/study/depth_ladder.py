@@ -11,11 +11,12 @@ from typing import Any
 import numpy as np
 
 from thalweg.arrays import FloatArray
-from thalweg.errors import Stopped, StudyError
+from thalweg.errors import Stopped
 from thalweg.study.course import Course, Descent
 from thalweg.study.neighbour import first_depth
 from thalweg.study.outcome import SearchEnd
 from thalweg.study.problem import trial_state
+from thalweg.study.simulator import depth_field
 
 
 def climb(course: Course) -> SearchEnd:
@@ -46,16 +47,6 @@ def climb(course: Course) -> SearchEnd:
             raise
         reason = stop.reason
     return _end(course, kept, reason)
-
-
-def depth_field(ansatz: Any) -> str:
-    """The field that holds the number of layers; StudyError where there is none."""
-    name: str = getattr(type(ansatz), "depth_field", "")
-    if not name:
-        raise StudyError(
-            f"No depth ladder for {ansatz.title}", "this trial state has no layers", "Choose a layered one, or switch the ladder off", "ladder.on"
-        )
-    return name
 
 
 def _rung(course: Course, ansatz: Any, below: Descent | None) -> Descent:

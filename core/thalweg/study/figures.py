@@ -155,7 +155,18 @@ def program_gates(problem: Problem) -> GateCounts:
 
 def warnings_of(problem: Problem) -> tuple[str, ...]:
     note = problem.encoded.degenerate_note
-    return problem.prepared.warnings + ((note,) if note else ()) + problem.encoded.remarks + _reference_warnings(problem)
+    return problem.prepared.warnings + ((note,) if note else ()) + problem.encoded.remarks + _reference_warnings(problem) + _left_out(problem.spec)
+
+
+def _left_out(spec: StudySpec) -> tuple[str, ...]:
+    """A sentence for each way through a search that is asked for and not taken, as another goes before it."""
+    grows = isinstance(spec.ansatz, Adaptive)
+    found: tuple[str, ...] = (
+        ("There is no depth ladder: a trial state that grows operator by operator has no layers",) if grows and spec.ladder.on else ()
+    )
+    if spec.continuation > 1 and (grows or spec.ladder.on):
+        found += (f"There is no continuation: it is for a fixed trial state, and {'this one grows' if grows else 'the depth ladder changes it'}",)
+    return found
 
 
 def _reference_warnings(problem: Problem) -> tuple[str, ...]:

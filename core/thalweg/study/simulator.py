@@ -8,6 +8,7 @@ from typing import Any
 
 import numpy as np
 
+from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import ComplexArray, FloatArray, IntArray
 from thalweg.circuit.angles import Angles, angles_of, one_parameter_an_angle
 from thalweg.circuit.curvature import reference_curvature
@@ -160,6 +161,18 @@ def refuse_unfit(problem: Problem) -> None:
             "Choose one determinant or basis state as the reference, or no continuation steps",
             "continuation",
         )
+    if spec.ladder.on and not isinstance(spec.ansatz, Adaptive):
+        depth_field(spec.ansatz)
     if spec.optimizer.needs and program.n_parameters:
         offers = spec.evaluation.offers(structure_of(program, problem.encoded.working.one_norm))
         refuse_unless_offered(spec.optimizer, offers, spec.evaluation.title)
+
+
+def depth_field(ansatz: Any) -> str:
+    """The field that holds the number of layers; StudyError where there is none."""
+    name: str = getattr(type(ansatz), "depth_field", "")
+    if not name:
+        raise StudyError(
+            f"No depth ladder for {ansatz.title}", "this trial state has no layers", "Choose a layered one, or switch the ladder off", "ladder.on"
+        )
+    return name

@@ -6,9 +6,10 @@ from itertools import pairwise
 
 import pytest
 
-from thalweg.ansatz import ANSATZE, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
+from thalweg.ansatz import ANSATZE, UCCSD, Adaptive, HardwareEfficient, KUpCCGSD, NumberConserving
 from thalweg.errors import StudyError
 from thalweg.study.events import Iteration, StepTaken
+from thalweg.study.figures import inspect
 from thalweg.study.run import run
 from thalweg.study.spec import DepthLadder, StudySpec
 from thalweg.systems import Molecule
@@ -73,3 +74,28 @@ def test_growth_needs_no_ladder_and_takes_no_notice_of_it():
     result = run(study(Adaptive(), TWO))
     assert result.reached_target
     assert result.growth[0].added == ()
+
+
+@pytest.mark.parametrize(
+    ("changes", "words"),
+    [
+        ({"ansatz": Adaptive(max_operators=1)}, ["no depth ladder"]),
+        ({"ansatz": Adaptive(max_operators=1), "continuation": 2}, ["no depth ladder", "this one grows"]),
+        ({"ansatz": NumberConserving(depth=1), "continuation": 2}, ["the depth ladder changes it"]),
+        ({"ansatz": NumberConserving(depth=1)}, []),
+    ],
+)
+def test_a_way_through_the_search_that_is_not_taken_is_remarked(changes, words):
+    result = run(study(**changes))
+    found = [text for text in result.remarks if text.startswith("There is no")]
+    assert len(found) == len(words)
+    assert all(word in text for word, text in zip(words, found, strict=True))
+
+
+def test_a_ladder_without_layers_is_refused_before_the_work_and_told_by_the_figures():
+    spec = study(UCCSD())
+    assert "No depth ladder" in inspect(spec).warnings[-1]
+    events = []
+    with pytest.raises(StudyError, match="No depth ladder"):
+        run(spec, events.append)
+    assert not [event for event in events if event.kind == "started"]
