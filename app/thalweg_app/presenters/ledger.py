@@ -88,6 +88,7 @@ class Ledger:
     def __init__(self, history: History) -> None:
         self._history = history
         self._runs: tuple[Run, ...] = ()
+        self._unit_of: tuple[tuple[Run, ...], str] = ((), "hartree")
         self._last_number = 0
         self._selected: int | None = None
         self._ticked: set[int] = set()
@@ -111,9 +112,13 @@ class Ledger:
 
     @property
     def _shared_unit(self) -> str:
-        """The energy unit of all rows; empty when they differ."""
-        units = {run.result.energy_unit for run in self._runs}
-        return next(iter(units)) if len(units) == 1 else "" if units else "hartree"
+        """The energy unit of all rows; empty when they differ. Every cell asks for it, so that it is found once for these runs."""
+        runs, unit = self._unit_of
+        if runs is not self._runs:
+            units = {run.result.energy_unit for run in self._runs}
+            unit = next(iter(units)) if len(units) == 1 else "" if units else "hartree"
+            self._unit_of = self._runs, unit
+        return unit
 
     def cell(self, run: Run, column: int) -> str:
         """What a cell shows; energies carry their unit where the heading cannot."""

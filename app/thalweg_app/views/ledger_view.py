@@ -19,6 +19,8 @@ from thalweg_app.widgets.number_table import quiet, selected_text
 _Index = QModelIndex | QPersistentModelIndex
 VERDICT = next(i for i, c in enumerate(COLUMNS) if c.name == "Verdict")
 MAX_COLUMN = 230
+#: Rows that the widths of columns follow; measuring hundreds would halt the window at the end of every run.
+ROWS_MEASURED = 40
 
 
 class LedgerModel(QAbstractTableModel):
@@ -120,6 +122,7 @@ class LedgerView(QWidget):
         self.view = _Table()
         self.view.setModel(self.model)
         quiet(self.view)
+        self.view.horizontalHeader().setResizeContentsPrecision(ROWS_MEASURED)
         self.view.setSortingEnabled(True)
         self.view.horizontalHeader().setSortIndicator(0, Qt.SortOrder.AscendingOrder)
         self.view.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)

@@ -124,3 +124,26 @@ def test_a_run_of_spins_shows_no_encoding(ledger):
     ledger.add(studies.result(spec=studies.study(system=LatticeModel())))
     column = next(i for i, c in enumerate(COLUMNS) if c.name == "Encoding")
     assert ledger.cell(ledger.rows[-1], column) == "–"
+
+
+def test_the_heading_has_the_unit_until_a_run_with_another_comes_and_again_when_it_goes(ledger):
+    assert "Energy / Eh" in ledger.header
+    other = ledger.add(studies.result(energy_unit="1"))
+    assert "Energy" in ledger.header
+    ledger.delete(other.number)
+    assert "Energy / Eh" in ledger.header
+
+
+def test_cells_do_not_look_through_all_runs(ledger):
+    class Counted(tuple):
+        looks = 0
+
+        def __iter__(self):
+            Counted.looks += 1
+            return super().__iter__()
+
+    ledger._runs = Counted(ledger.runs)
+    for run in ledger.rows:
+        for column in range(len(COLUMNS)):
+            ledger.cell(run, column)
+    assert Counted.looks < 5
