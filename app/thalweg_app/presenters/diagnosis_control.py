@@ -133,6 +133,8 @@ class DiagnosisControl:
         directions = [self._direction(draft.first, draft.first_parameter)]
         if draft.second != "none":
             directions.append(self._direction(draft.second, draft.second_parameter))
+            if draft.second != "random" and directions[0] == directions[1]:
+                raise StudyError("Both directions are the same", "a map needs two", "Choose another second direction, or none")
         settings = {
             "study": run.result.spec if run is not None else self._open_study(),
             "centre": run.result.final_parameters if run is not None else (),

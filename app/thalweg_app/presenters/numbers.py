@@ -64,5 +64,8 @@ def parse_wholes(text: str, field: str = "") -> tuple[int, ...]:
         match = re.fullmatch(r"(\d{1,6})(?:-(\d{1,6}))?", part)
         if match is None:
             raise StudyError(f"'{part[:40]}' is no list of numbers", "sizes are whole numbers and ranges", "Write it as 2, 4, 6-8", field)
-        found += range(int(match[1]), int(match[2] or match[1]) + 1)
+        first, last = int(match[1]), int(match[2] or match[1])
+        if last < first:
+            raise StudyError(f"The range '{part}' is empty", "it ends below its beginning", f"Write it as {last}-{first}", field)
+        found += range(first, last + 1)
     return tuple(found)

@@ -70,6 +70,25 @@ def test_two_directions_make_a_map(control):
     assert directions[1]["parameter"] == 3
 
 
+def test_a_map_over_one_direction_twice_is_refused(control, ledger):
+    control.edit("what", "landscape")
+    for kind, other in (("steepest", "none"), ("parameter", "parameter")):
+        control.edit("first", kind)
+        control.edit("second", kind)
+        control.edit("second_parameter", "0")
+        assert control.obstacle == "Both directions are the same: a map needs two. Choose another second direction, or none."
+        control.edit("second_parameter", "1")
+        assert bool(control.obstacle) == (other == "none")
+    control.edit("first", "random")
+    control.edit("second", "random")
+    assert control.obstacle == ""
+
+
+def test_a_range_that_runs_backwards_is_said(control):
+    control.edit("layers", "4-1")
+    assert control.obstacle == "The range '4-1' is empty: it ends below its beginning. Write it as 1-4."
+
+
 def test_a_parameter_below_zero_is_said(control):
     control.edit("what", "landscape")
     control.edit("first", "parameter")
