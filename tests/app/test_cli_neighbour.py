@@ -96,3 +96,11 @@ def test_the_end_of_a_grown_run_and_the_line_between_two_of_them_can_be_looked_a
     assert len(Curvature.model_validate(json.loads(out)).eigenvalues) == full.parameters
     status, _, err = thalweg("diagnose", "g.json", "--run", "1", "--what", "landscape", "--along", "run:2", "--quiet")
     assert (status, "lacks" in err) == (2, True)
+
+
+def test_the_curvature_of_a_run_without_parameters_is_told_without_empty_figures(thalweg):
+    words = ["H2", "--ansatz", "adaptive", "--reference", "20,02"]
+    status, out, _ = thalweg("diagnose", *words, "--what", "curvature", "--quiet")
+    assert status == 0
+    assert "No parameters, no curvature." in out
+    assert "Lowest curvatures" not in out

@@ -20,6 +20,7 @@ SAMPLES = data_folder("sample_systems")
         (["solve", "H2", "--encoding", "morse"], "is not one of 'jordan-wigner'"),
         (["solve", "H2", "--basis", "no-such-basis"], "no-such-basis"),
         (["solve", "H2", "--multiplicity", "2"], "Multiplicity 2"),
+        (["solve", "H4_square", "--set", "memory_gib=1e-7"], "exceed the budget of 9.97e-08 GiB"),
         (["solve", "H2", "--reference", "1e400*20 + 02"], "too large"),
         (["solve", "ring_8_ising_h1.0", "--set", "system.model.j=1e200"], "largest coefficient"),
         (["solve", "H2", "--depth", "3"], "UCCSD has no setting 'depth'"),

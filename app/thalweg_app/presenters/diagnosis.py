@@ -32,7 +32,7 @@ def table_of_finding(found: Finding) -> list[tuple[str, str]]:
     if isinstance(found, Curvature):
         values = ", ".join(f"{v:.6g}" for v in found.eigenvalues)
         unit = unit_name(found.unit)
-        rows = [("Lowest curvatures", f"{values} {unit}"), ("Largest gradient", f"{significant(found.gradient_norm)} {unit}")]
+        rows = [("Lowest curvatures", f"{values} {unit}" if values else ""), ("Largest gradient", f"{significant(found.gradient_norm)} {unit}")]
         return [*rows, ("Mostly along", found.leading_parameter)]
     rows = [("Starts", str(found.starts)), ("Lowest", f"{found.lowest:.9f}"), ("Highest", f"{found.highest:.9f}")]
     return [*rows, ("Mean", f"{found.mean:.9f} +- {significant(found.deviation)} (standard deviation)")]

@@ -29,7 +29,7 @@ def metric_tensor(program: Program, parameters: FloatArray, *, budget_bytes: int
     if needed > budget_bytes:
         raise StudyError(
             "The metric tensor does not fit the memory budget",
-            f"the derivatives of the state by {program.n_parameters:,} parameters need {needed / 2**30:.1f} GiB",
+            f"the derivatives of the state by {program.n_parameters:,} parameters need {needed / 2**30:.3g} GiB",
             "Allow more memory, or choose an optimiser without the metric",
             "memory_gib",
         )

@@ -109,7 +109,7 @@ def _pair_count(n_orbitals: int, n_electrons: int, excitations: set[OneSpin]) ->
 def _over_budget(hamiltonian: FermionHamiltonian, needed: int) -> StudyError:
     return StudyError(
         "The trial state does not fit the memory budget",
-        f"{hamiltonian.sector} make {hamiltonian.sector.dimension:,} determinants, which need about {needed / 2**30:.1f} GiB",
+        f"{hamiltonian.sector} make {hamiltonian.sector.dimension:,} determinants, which need about {needed / 2**30:.3g} GiB",
         "Choose a smaller active space or raise the memory budget",
         "memory_gib",
     )

@@ -21,7 +21,7 @@ def regrown(ansatz: Adaptive, ground: Ground, program: Program, labels: tuple[st
     if missing:
         raise StudyError(
             f"The pool `{ansatz.pool_for(ground)}` has no operator `{missing[0]}`",
-            f"{len(missing)} of the {len(labels)} operators that the trial state begins with are not in it",
+            f"{len(missing)} of the {len(labels)} operators that the trial state begins with {'is' if len(missing) == 1 else 'are'} not in it",
             "Choose the pool that they were taken from, with the same setting of the point group, or begin without them",
             "ansatz.pool",
         )

@@ -76,8 +76,8 @@ def read_listing(text: str, budget_bytes: int = 4 * 2**30) -> Listing:
     needed = 24 * n_orbitals**4
     if needed > budget_bytes:
         raise StudyError(
-            f"The integrals need {needed / 2**30:.1f} GiB of memory",
-            f"{n_orbitals} orbitals exceed the budget of {budget_bytes / 2**30:.1f} GiB",
+            f"The integrals need {needed / 2**30:.3g} GiB of memory",
+            f"{n_orbitals} orbitals exceed the budget of {budget_bytes / 2**30:.3g} GiB",
             "List fewer orbitals or raise the memory budget",
             FIELD,
         )

@@ -103,7 +103,7 @@ class LatticeModel(Options):
         needed = 3 * 8 * graph.n_sites**4
         if needed > budget_bytes:
             raise StudyError(
-                "The integrals do not fit the memory budget", f"{needed / 2**30:.1f} GiB are needed", "Use fewer sites or a larger budget", "lattice"
+                "The integrals do not fit the memory budget", f"{needed / 2**30:.3g} GiB are needed", "Use fewer sites or a larger budget", "lattice"
             )
         fermions = model.hamiltonian(graph)
         sector = fermions.sector

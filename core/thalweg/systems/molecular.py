@@ -112,8 +112,8 @@ def _check_memory(n_functions: int, n_active: int, budget_bytes: int, field: str
     if needed > budget_bytes:
         and_active = f" and {n_active} active orbitals" if n_active else ""
         raise StudyError(
-            f"The integrals need {needed / 2**30:.1f} GiB of memory",
-            f"{n_functions} basis functions{and_active} exceed the budget of {budget_bytes / 2**30:.1f} GiB",
+            f"The integrals need {needed / 2**30:.3g} GiB of memory",
+            f"{n_functions} basis functions{and_active} exceed the budget of {budget_bytes / 2**30:.3g} GiB",
             "Take a smaller basis set or active space, or raise the memory budget",
             field,
         )
