@@ -9,6 +9,7 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from thalweg.study.diagnosis_result import LandscapeResult
 from thalweg_app.colours import LIGHT, Palette
+from thalweg_app.plots.axes import PlainAxis
 from thalweg_app.presenters.wording import unit_name
 
 #: From low to high, dark to light, so that grey print keeps the order.
@@ -24,7 +25,7 @@ class MapDrawing(QWidget):
         self._found: LandscapeResult | None = None
         self._graphics = pg.GraphicsLayoutWidget()
         self._graphics.setFrameShape(self._graphics.Shape.NoFrame)
-        self._plot = self._graphics.addPlot(row=0, col=0)
+        self._plot = self._graphics.addPlot(row=0, col=0, axisItems={side: PlainAxis(side) for side in ("left", "bottom")})
         self._image = pg.ImageItem()
         self._plot.addItem(self._image)
         self._centre = pg.ScatterPlotItem(symbol="+", size=14)
@@ -32,6 +33,11 @@ class MapDrawing(QWidget):
         self._plot.addItem(self._centre)
         self._plot.addItem(self._lowest)
         self._bar = pg.ColorBarItem(colorMap=pg.ColorMap(np.linspace(0, 1, len(SCALE)), list(SCALE)), interactive=False, width=14)
+        self._scale = PlainAxis("right")  # as wide as its numbers and its title need; that of the library has one width for all
+        self._bar.setAxisItems({"right": self._scale})
+        self._scale.unlinkFromView()
+        self._scale.setStyle(showValues=True)
+        self._bar.axis = self._scale
         self._bar.setImageItem(self._image, insert_in=self._plot)
         self.setAccessibleName("Map of energies")
         layout = QVBoxLayout(self)
@@ -66,9 +72,9 @@ class MapDrawing(QWidget):
             axis = self._plot.getAxis(side)
             axis.setPen(ink)
             axis.setTextPen(ink)
-        self._bar.axis.setPen(ink)
-        self._bar.axis.setTextPen(ink)
+        self._scale.setPen(ink)
+        self._scale.setTextPen(ink)
         if self._found is not None:
             self._plot.setLabel("bottom", self._found.labels[0], color=ink)
             self._plot.setLabel("left", self._found.labels[1], color=ink)
-            self._bar.setLabel("right", f"Energy / {unit_name(self._found.unit)}")
+            self._scale.setLabel(f"Energy / {unit_name(self._found.unit)}", color=ink)
