@@ -23,8 +23,11 @@ class FramesFile:
 
     @classmethod
     def open(cls, file: Path) -> FramesFile:
-        """StudyError where the file cannot be read or is far too long."""
-        return cls(file.name, read_limited(file).decode("utf-8-sig", "replace"))
+        """StudyError where the file cannot be read, is far too long or is no text."""
+        data = read_limited(file)
+        if b"\0" in data:
+            raise StudyError(f"{file.name} is no text", "geometries are written in plain text", "Choose an XYZ file with several geometries", "path")
+        return cls(file.name, data.decode("utf-8-sig", "replace"))
 
     def path(self, study: StudySpec) -> FramesPath:
         """The path for this study. StudyError where no file is chosen, it holds one geometry alone, or its atoms are not the molecule's."""

@@ -97,3 +97,11 @@ def test_frames_need_a_molecule(scans, study, tmp_path):
     follow(scans, tmp_path, frames(1.4, 1.6))
     study[0] = study[0].model_copy(update={"system": LatticeModel()})
     assert "Frames need a molecule" in scans.obstacle
+
+
+def test_a_file_that_is_no_text_is_refused_and_the_frames_chosen_before_stay(scans, tmp_path):
+    follow(scans, tmp_path, frames(1.4, 1.6))
+    (tmp_path / "picture.xyz").write_bytes(b"\x89PNG\0\x01\xff")
+    scans.open_frames(tmp_path / "picture.xyz")
+    assert scans.sentences == ["picture.xyz is no text: geometries are written in plain text. Choose an XYZ file with several geometries."]
+    assert scans.frames_told.startswith("stretch.xyz: 2 frames")
