@@ -123,6 +123,24 @@ def test_closing_saves_when_asked_to(qtbot, window, tmp_path):
     assert len(load_session(tmp_path / f"lih{SUFFIX}").runs) == 1
 
 
+def test_closing_while_a_run_is_under_way_asks_before_it_is_lost(qtbot, window, starter):
+    def answer(text):
+        window.close()
+        next(b for b in windows.dialog(window, QMessageBox).buttons() if b.text() == text).click()
+
+    window._may_close = False
+    window.run()
+    assert not window.workbench.document.is_dirty
+    answer("Cancel")
+    assert window.isVisible()
+    assert not starter.last.was_stopped
+    answer("Stop")
+    assert window.isVisible()
+    assert starter.last.was_stopped
+    answer("Close")
+    assert not window.isVisible()
+
+
 def test_a_clean_window_closes_at_once(qtbot, window):
     window._may_close = False
     assert window.close()

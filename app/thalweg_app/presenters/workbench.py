@@ -106,6 +106,16 @@ class Workbench:
         """Ends the run under way, or else the scan; what is finished is kept."""
         (self.runs.stop if self.runs.is_running else self.scans.stop)()
 
+    @property
+    def under_way(self) -> str:
+        """What would be lost if the program ended now: `run`, `scan`, or empty."""
+        return "run" if self.runs.is_running else "scan" if self.scans.live is not None else ""
+
+    def stop_all(self) -> None:
+        """Ends runs, those that wait, and the scan; what is finished is kept."""
+        self.runs.stop_all()
+        self.scans.stop()
+
     def check_selected(self) -> None:
         """Repeats the selected run and states the deviation."""
         run = self.ledger.selected

@@ -59,6 +59,12 @@ def ask_unsaved(parent: QWidget, name: str, has_results: bool, save: Callable[[]
     return _ask(parent, f"Save the {what} in “{name}”?", "Otherwise they are lost.", ("Save", save), ("Do not save", discard), "Cancel")
 
 
+def ask_under_way(parent: QWidget, work: str, stop: Callable[[], None], leave: Callable[[], None]) -> QMessageBox:
+    """Stop and stay, close all the same, or cancel; `work` is `run` or `scan`."""
+    kept = "its best point so far" if work == "run" else "what it has finished"
+    return _ask(parent, f"A {work} is under way", f"Stopped, {kept} is kept. Closed now, it is lost.", ("Stop", stop), ("Close", leave), "Cancel")
+
+
 def ask_recovery(parent: QWidget, names: list[str], restore: Callable[[], None], drop: Callable[[], None]) -> QMessageBox:
     """What to do with a session that a crash left behind."""
     below = f"“{names[0]}” was open when the program ended unexpectedly."

@@ -15,7 +15,7 @@ from thalweg.study.events import Failed
 from thalweg_app.presenters.document import Recovery
 from thalweg_app.presenters.opening import Opening
 from thalweg_app.presenters.workbench import Workbench
-from thalweg_app.views.dialogs import PasteDialog, ask_recovery, ask_unsaved, show_defect, show_error
+from thalweg_app.views.dialogs import PasteDialog, ask_recovery, ask_under_way, ask_unsaved, show_defect, show_error
 
 OPEN_FILTER = "All that can be read (*.thalweg.json *.json *.xyz *.txt *.fcidump FCIDUMP *.hdf5 *.h5);;Every file (*)"
 SAVE_FILTER = f"Session (*{SUFFIX})"
@@ -78,10 +78,13 @@ class Files:
 
     def close(self, go: Callable[[], None]) -> bool:
         """True when the window may close at once; otherwise a question is shown and `go` called when it is answered."""
-        document = self._workbench.document
-        if not document.is_dirty:
+        bench = self._workbench
+        if bench.under_way:
+            ask_under_way(self._window, bench.under_way, bench.stop_all, lambda: self._after_question(go))
+            return False
+        if not bench.document.is_dirty:
             return True
-        ask_unsaved(self._window, document.name, document.has_unsaved_results, lambda: self.save(go), go)
+        self._after_question(go)
         return False
 
     def offer_recovery(self) -> None:
