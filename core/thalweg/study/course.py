@@ -24,6 +24,7 @@ from thalweg.study.outcome import SearchEnd
 from thalweg.study.problem import Problem, make_engine, target_error
 from thalweg.study.result import GrowthStep, StartRecord, Trace
 from thalweg.study.simulator import search_source
+from thalweg.watch import Watch
 
 #: Width of the normal displacement, in radians, of starts that would otherwise repeat themselves.
 DISPLACEMENT = 0.1
@@ -168,12 +169,21 @@ class Course:
         return objective.best_parameters if np.isfinite(objective.best_energy) else start
 
     def measured_slopes(self, program: Program, parameters: FloatArray, first: int) -> Slopes | None:
-        """The derivatives by the parameters from number `first` on as a device would measure them, counted; None where gradients are not."""
+        """The derivatives by the parameters from number `first` on as a device would measure them, counted; None where gradients are not.
+
+        Raises Stopped at the time limit as well: there may be thousands of energies to measure.
+        """
         problem = replace(self.problem, program=program)
-        source = search_source(problem, self.engine(program), self._draws, self.watch)
+        in_time = Watch(self.watch.stage, lambda: self._should_stop() or self._is_late, self.watch.warn)
+        source = search_source(problem, self.engine(program), self._draws, in_time)
         if not source.begins_by_simulation:
             return None
-        slopes = source.shifted_slopes(parameters, first)
+        try:
+            slopes = source.shifted_slopes(parameters, first)
+        except Stopped:
+            if self._is_late and not self._should_stop():
+                raise Stopped("seconds") from None
+            raise
         self._spent += slopes.cost
         return slopes
 
@@ -206,7 +216,12 @@ class Course:
             return "evaluations"
         if rules.shots and self._spent.shots >= rules.shots:
             return "shots"
-        return "seconds" if rules.seconds and self._seconds >= rules.seconds else ""
+        return "seconds" if self._is_late else ""
+
+    @property
+    def _is_late(self) -> bool:
+        seconds = self.problem.spec.stop.seconds
+        return bool(seconds) and self._seconds >= seconds
 
     @property
     def is_sampled(self) -> bool:

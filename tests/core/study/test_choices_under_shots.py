@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 
 from thalweg.ansatz import Adaptive, HardwareEfficient
+from thalweg.errors import Stopped
 from thalweg.evaluate import Exact, ExactWithError, Shots
 from thalweg.optimize import SPSA
 from thalweg.optimize.objective import StopRules
@@ -129,3 +130,14 @@ def test_slopes_of_a_pool_are_not_measured_past_a_limit(limit):
     assert len(result.growth) == 1
     assert result.evaluations == 2  # the reference, and its last measurement
     assert result.shots == 8000
+
+
+@pytest.mark.parametrize(("seconds", "asked", "reason"), [(1e-9, False, "seconds"), (0.0, True, "stopped-by-person")])
+def test_measuring_the_slopes_of_a_pool_ends_at_the_time_limit_and_when_asked(seconds, asked, reason):
+    spec = growing(system=FOUR, stop=StopRules(seconds=seconds))
+    problem = prepare(spec)
+    operators = spec.ansatz.operators(problem.ground)
+    course = Course(problem, None, lambda event: None, lambda: asked, 0)
+    whole = operators.grown(problem.program, list(range(len(operators))))
+    with pytest.raises(Stopped, match=reason):
+        course.measured_slopes(whole, np.zeros(len(operators)), 0)
