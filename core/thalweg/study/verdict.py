@@ -66,8 +66,13 @@ def judge(evidence: Evidence) -> Verdict:
     return Verdict("outside", f"Outside {_target(evidence)}: {above} with {_cost(evidence)}{_shots(evidence)}", False)
 
 
+#: Energy differences below this, in hartree or couplings, are rounding.
+ROUNDING = 1e-12
+
+
 def amount(value: float, unit: str) -> str:
-    """An energy difference in words: mEh with three digits for hartree, otherwise the plain unit."""
+    """An energy difference in words: mEh with three digits for hartree, otherwise the plain unit; rounding as 0."""
+    value = 0.0 if abs(value) < ROUNDING else value
     return f"{value * 1e3:.3g} mEh" if unit == "hartree" else f"{value:.3g} {unit}"
 
 

@@ -4,7 +4,7 @@ from dataclasses import replace
 
 import pytest
 
-from thalweg.study.verdict import Evidence, judge
+from thalweg.study.verdict import Evidence, amount, judge
 from thalweg.units import CHEMICAL_ACCURACY
 
 GOOD = Evidence(
@@ -97,3 +97,17 @@ def test_the_error_that_shots_would_have_counts_like_a_measured_one():
     assert verdict.reached
     assert verdict.sentence.endswith("; shots would have an error bar of 0.2 mEh (two standard errors)")
     assert judge(replace(GOOD, standard_error=0.01)).kind == "uncertain"
+
+
+@pytest.mark.parametrize(
+    ("value", "unit", "text"),
+    [
+        (1.0514e-5, "hartree", "0.0105 mEh"),
+        (-2.2e-16, "hartree", "0 mEh"),
+        (3.2e-14, "J", "0 J"),
+        (-2e-12, "hartree", "-2e-09 mEh"),
+        (0.25, "t", "0.25 t"),
+    ],
+)
+def test_differences_are_told_in_words_and_rounding_as_nothing(value, unit, text):
+    assert amount(value, unit) == text
