@@ -37,8 +37,7 @@ def grow(course: Course, ansatz: Adaptive) -> SearchEnd:
             raise
         reason = stop.reason
     first = growing.descents[0]
-    # where energies are measured, the lowest of many would be low by luck
-    best = growing.descents[-1] if course.is_sampled else min(growing.descents, key=lambda descent: descent.energy)
+    best = min(growing.descents, key=lambda descent: descent.energy)  # a measured one is low by luck: `afresh` measures it once more
     end = best.end(reason, tuple(course.steps))
     return replace(end, start_parameters=first.start, start_energy=first.start_energy, start_gradient_norm=growing.first_slope)
 

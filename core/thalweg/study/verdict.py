@@ -89,10 +89,20 @@ def _wrong_symmetry(e: Evidence) -> str:
     sector = "" if e.expected_electrons is None else " of the sector asked for"
     where = f"{amount(abs(e.error), e.unit)} {'above' if e.error >= 0 else 'below'} the exact energy{sector}"
     if found:
-        return f"Wrong symmetry: {' and '.join(found)}; {where}"
+        return f"Wrong symmetry: {' and '.join(found)}; {where}{_spin_hint(e, found)}"
     if e.error < -max(1e-7, 1e-3 * e.target):
         return f"Below the exact energy: {where}, so the state has left the sector or the reference is not its lowest state"
     return ""
+
+
+def _spin_hint(e: Evidence, found: list[str]) -> str:
+    """Where the state has the spin asked for, and the lowest state of the sector another one: how the two are compared like with like."""
+    if len(found) > 1 or e.s_squared is None or e.expected_s_z is None or e.expected_electrons is None:
+        return ""
+    spin = abs(e.expected_s_z)
+    if abs(e.s_squared - spin * (spin + 1.0)) > SPIN_TOLERANCE:
+        return ""
+    return "; it has the spin asked for: set the spin of the exact state to `fixed` to compare it with the lowest state of that spin"
 
 
 def _is_stationary(e: Evidence) -> bool:

@@ -312,7 +312,11 @@ def test_nothing_is_foretold_of_a_step_where_there_is_no_parameter_to_search(opt
 
 @pytest.mark.parametrize(
     ("changes", "words"),
-    [({"optimizer": FreeAxis()}, "single-qubit rotations"), ({"optimizer": ICANS(), "evaluation": Exact()}, "draws none"), ({"optimizer": Adam()}, "")],
+    [
+        ({"optimizer": FreeAxis()}, "single-qubit rotations"),
+        ({"optimizer": ICANS(), "evaluation": Exact()}, "draws none"),
+        ({"optimizer": Adam()}, ""),
+    ],
     ids=["axes", "shots", "fit"],
 )
 def test_figures_say_what_the_run_would_be_refused_for(changes, words):

@@ -53,6 +53,21 @@ def test_anything_amiss_is_a_no(change, kind, words):
     assert words in verdict.sentence
 
 
+@pytest.mark.parametrize(
+    ("change", "is_told"),
+    [
+        ({"exact_s_squared": 2.0, "error": 0.08}, True),  # a singlet was asked for and found; the lowest state is a triplet
+        ({"s_squared": 2.0}, False),
+        ({"exact_s_squared": 2.0, "s_squared": 1.0}, False),
+        ({"exact_s_squared": 2.0, "n_electrons": 3.0}, False),
+    ],
+)
+def test_a_state_of_the_spin_asked_for_is_told_how_to_be_compared(change, is_told):
+    verdict = judge(replace(GOOD, **change))
+    assert verdict.kind == "wrong-symmetry"
+    assert ("`fixed`" in verdict.sentence) == is_told
+
+
 def test_wrong_symmetry_outranks_a_small_error():
     assert judge(replace(GOOD, error=0.0, s_squared=2.0)).kind == "wrong-symmetry"
 
