@@ -8,7 +8,6 @@ from pathlib import Path
 from typing import Any, Final, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
-from pydantic_core import PydanticSerializationError
 
 from thalweg import __version__
 from thalweg.errors import StudyError
@@ -90,7 +89,7 @@ def save_session(session: Session, path: Path) -> None:
     whole = session.model_copy(update={"program_version": __version__})
     try:
         text = whole.model_dump_json(fallback=plain)  # many times faster than json.dumps, and the window saves while it lives
-    except PydanticSerializationError:  # a name or a note holds what is no character in UTF-8
+    except ValueError:  # a name or a note holds what is no character in UTF-8
         text = ""
     place = first_not_finite(whole.model_dump(mode="python")) if not text or NOT_FINITE.search(text) else ""
     if place:
