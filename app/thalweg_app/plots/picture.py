@@ -70,7 +70,7 @@ class Picture(QWidget):
 
     def refresh(self) -> None:
         """Draws the present state."""
-        raise NotImplementedError(type(self).__name__)
+        raise AssertionError(f"{type(self).__name__} draws nothing")
 
     def prepare(self) -> Iterator[None]:
         """Builds ahead, a little at each step, what the first drawing would take long for."""

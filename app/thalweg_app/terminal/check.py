@@ -13,10 +13,9 @@ from thalweg.errors import StudyError
 from thalweg.storage.session import Run, load_session
 from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.presenters.wording import significant, unit_name
-from thalweg_app.terminal.answer import aligned
-from thalweg_app.terminal.attended import attend
 from thalweg_app.terminal.check_scan import check_scan
 from thalweg_app.terminal.display import make_display
+from thalweg_app.terminal.repetition import repeat_and_tell
 
 if TYPE_CHECKING:
     from thalweg.study.repeat import Repetition
@@ -60,18 +59,8 @@ def _check_run(run: Run, tolerance: float, quiet: bool) -> tuple[bool, int]:
 
         return repeat(first, emit, should_stop, Local())
 
-    try:
-        again, status = attend(work, make_display(first.spec, quiet=quiet))
-    except StudyError as error:
-        click.echo(f"Run {run.number}  {first.label}: cannot be repeated. {error}")
-        return False, 0
-    if again is None:
-        click.echo(f"Run {run.number}  {first.label}: stopped before it was repeated.")
-        return False, status or 130
-    good = again.within(tolerance)
-    click.echo(f"Run {run.number}  {first.label}: {'repeats' if good else 'PAST TOLERANCE'}")
-    click.echo("\n".join("    " + line for line in aligned(_rows(run, again))))
-    return good, status
+    title, nothing = f"Run {run.number}  {first.label}", ("stopped before it was repeated", 130)
+    return repeat_and_tell(title, work, make_display(first.spec, quiet=quiet), tolerance, partial(_rows, run), nothing)
 
 
 def _rows(run: Run, again: Repetition) -> list[tuple[str, str]]:

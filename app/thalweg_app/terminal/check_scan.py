@@ -3,17 +3,14 @@
 from __future__ import annotations
 
 import sys
+from functools import partial
 from typing import TYPE_CHECKING
 
-import click
-
-from thalweg.errors import StudyError
 from thalweg.storage.session import ScanRun
 from thalweg_app.jobs import Emit, ShouldStop
 from thalweg_app.presenters.curve import CurveUnits
 from thalweg_app.presenters.wording import significant, unit_name
-from thalweg_app.terminal.answer import aligned
-from thalweg_app.terminal.attended import attend
+from thalweg_app.terminal.repetition import repeat_and_tell
 from thalweg_app.terminal.scan_display import make_scan_display
 
 if TYPE_CHECKING:
@@ -33,18 +30,9 @@ def check_scan(scan: ScanRun, tolerance: float, quiet: bool) -> tuple[bool, int]
 
         return repeat_scan(first, lambda: make_executor("local"), emit, should_stop)
 
-    try:
-        again, status = attend(work, make_scan_display(CurveUnits(), 0, quiet=quiet))
-    except StudyError as error:
-        click.echo(f"{title}: cannot be repeated. {error}")
-        return False, 0
-    if again is None:
-        click.echo(f"{title}: {'stopped before it was repeated' if status else 'has no point to repeat'}.")
-        return False, status
-    good = again.within(tolerance)
-    click.echo(f"{title}: {'repeats' if good else 'PAST TOLERANCE'}")
-    click.echo("\n".join("    " + line for line in aligned(_rows(scan, again))))
-    return good, status
+    return repeat_and_tell(
+        title, work, make_scan_display(CurveUnits(), 0, quiet=quiet), tolerance, partial(_rows, scan), ("has no point to repeat", 0)
+    )
 
 
 def _rows(scan: ScanRun, again: ScanRepetition) -> list[tuple[str, str]]:

@@ -205,7 +205,9 @@ class AlternatingOperators(Options):
 
 
 def _bits_of(ground: Ground) -> str:
-    return "".join(str(ground.reference_bits >> q & 1) for q in range(ground.qubits.n_qubits))
+    from thalweg.systems.spin_reference import bit_text
+
+    return bit_text(ground.reference_bits, ground.qubits.n_qubits)
 
 
 def _fitting_pairs(ground: Ground) -> tuple[tuple[int, int], ...]:

@@ -29,11 +29,12 @@ def excitation_gates(program: ExcitationProgram, encoded: EncodedSystem) -> Gate
     assert encoded.linear is not None
     x, z, weights, factor = generator_strings(program.excitations, encoded.linear)
     tapering, order = encoded.tapering, program.order
-    if not _stays_inside(program, x, encoded):
+    begins = _begins_inside(program, x, encoded)
+    if begins is None:
         tapering = Tapering(encoded.full.n_qubits)
         order = f"{order}; {FULL_REGISTER}" if order else FULL_REGISTER
-    begins = basis_states(program.begins, encoded.linear, tapering)
-    assert begins is not None
+        begins = basis_states(program.begins, encoded.linear, tapering)
+        assert begins is not None
     reference, gates = preparation(begins)
     x, z, weights, factor = _on_register(tapering, x, z, weights, factor)
     parameter = np.asarray(program.parameter, np.int64)[factor]
@@ -45,12 +46,13 @@ def excitation_gates(program: ExcitationProgram, encoded: EncodedSystem) -> Gate
 def leaves_sector(program: ExcitationProgram, encoded: EncodedSystem) -> bool:
     """Whether the tapered register does not hold the state, so that the circuit is written on the full one."""
     assert encoded.linear is not None
-    return not _stays_inside(program, generator_strings(program.excitations, encoded.linear)[0], encoded)
+    return _begins_inside(program, generator_strings(program.excitations, encoded.linear)[0], encoded) is None
 
 
-def _stays_inside(program: ExcitationProgram, x: MaskArray, encoded: EncodedSystem) -> bool:
+def _begins_inside(program: ExcitationProgram, x: MaskArray, encoded: EncodedSystem) -> dict[int, float] | None:
+    """The state that the first factor acts on, on the tapered register; None where that or a string of these x masks leaves it."""
     assert encoded.linear is not None
-    return bool(encoded.tapering.keeps(x).all()) and basis_states(program.begins, encoded.linear, encoded.tapering) is not None
+    return basis_states(program.begins, encoded.linear, encoded.tapering) if encoded.tapering.keeps(x).all() else None
 
 
 def generator_strings(excitations: tuple[Excitation, ...], linear: LinearEncoding) -> tuple[MaskArray, MaskArray, FloatArray, IntArray]:

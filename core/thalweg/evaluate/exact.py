@@ -20,8 +20,12 @@ class Exact(EvaluationSettings):
     key: Literal["exact"] = "exact"
     gradient: GradientSource = option("adjoint", "Gradient", GRADIENT_HELP)
 
+    @property
+    def counts_gradients(self) -> bool:
+        return self.gradient == "shift-rule"
+
     def source(self, simulator: Simulator, rng: np.random.Generator) -> Source:
-        return ExactSource(simulator, by_shifts=self.gradient == "shift-rule")
+        return ExactSource(simulator, by_shifts=self.counts_gradients)
 
 
 class ExactSource(Source):

@@ -25,6 +25,10 @@ class ExactWithError(EvaluationSettings):
     sets: MeasurementSets = option("qubit-wise", "Measurement sets", SETS_HELP)
     gradient: GradientSource = option("adjoint", "Gradient", GRADIENT_HELP)
 
+    @property
+    def counts_gradients(self) -> bool:
+        return self.gradient == "shift-rule"
+
     def source(self, simulator: Simulator, rng: np.random.Generator) -> Source:
         """StudyError where the shots do not go round."""
         refuse_too_few(self.shots, simulator, "uniform")
@@ -36,7 +40,7 @@ class ExpectedSource(Source):
 
     def __init__(self, simulator: Simulator, settings: ExactWithError) -> None:
         super().__init__(simulator)
-        self.begins_by_simulation = settings.gradient == "shift-rule"
+        self.begins_by_simulation = settings.counts_gradients
         self._settings, self._shots_a_circuit = settings, settings.shots
         self._cost = Cost(1, simulator.set_weights.size, settings.shots)
 

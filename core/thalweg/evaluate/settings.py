@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Literal
+from typing import ClassVar, Literal
 
 import numpy as np
 
@@ -22,7 +22,14 @@ ALLOCATION_HELP = "How the sets share the shots: equally, by their sums of |c|, 
 
 
 class EvaluationSettings(Options):
-    """A way to evaluate is its settings plus `offers` and `source`."""
+    """A way to evaluate is its settings plus `offers` and `source`; `is_sampled`: whether its energies carry statistical noise."""
+
+    is_sampled: ClassVar[bool] = False
+
+    @property
+    def counts_gradients(self) -> bool:
+        """Whether gradients are taken from energies, each counted as on a device, instead of one sweep of the simulation."""
+        return True
 
     def offers(self, structure: Structure) -> frozenset[str]:
         """What an optimiser gets beside values, gradients and the metric, known before the run."""

@@ -25,6 +25,7 @@ PILOT = 0.1
 class Shots(EvaluationSettings):
     title: ClassVar[str] = "Shots"
     about: ClassVar[str] = "Bit strings drawn from the state turned to each measurement basis; errors fall as one over the root of the shots."
+    is_sampled: ClassVar[bool] = True
 
     key: Literal["shots"] = "shots"
     shots: int = option(10_000, "Shots", "Shots of one energy, over all measurement sets together.", ge=1, le=10**8)

@@ -6,7 +6,6 @@ from dataclasses import replace
 
 import numpy as np
 
-from thalweg.evaluate import Shots
 from thalweg.study.outcome import Outcome
 from thalweg.study.problem import make_engine
 from thalweg.study.simulator import search_source
@@ -22,7 +21,7 @@ def measured_afresh(outcome: Outcome) -> Outcome:
     """
     best = outcome.best
     record, end = outcome.starts[best], outcome.ends[best]
-    if not isinstance(end.problem.spec.evaluation, Shots) or (len(outcome.starts) == 1 and not end.growth):
+    if not end.problem.spec.evaluation.is_sampled or (len(outcome.starts) == 1 and not end.growth):
         return outcome
     source = search_source(end.problem, make_engine(end.problem), np.random.default_rng([record.seed, 1, AFRESH]))
     estimate = source.energy(end.parameters)

@@ -13,7 +13,7 @@ from thalweg import __version__
 from thalweg.ansatz.adaptive import Adaptive
 from thalweg.arrays import plain
 from thalweg.circuit.program import GateProgram
-from thalweg.evaluate import Exact, Shots
+from thalweg.evaluate import Exact
 from thalweg.exact.answer import ExactAnswer
 from thalweg.simulate.engine import StateFacts
 from thalweg.study.figures import heaviest_terms, program_gates, warnings_of
@@ -67,7 +67,7 @@ def assemble(exact: ExactAnswer | None, exact_sites: SiteFigures | None, outcome
         parameters=program.n_parameters,
         two_qubit_gates=two_qubit,
         sector_dimension=sector.dimension if sector else None,
-        measured_energy=end.energy if isinstance(problem.spec.evaluation, Shots) else None,
+        measured_energy=end.energy if problem.spec.evaluation.is_sampled else None,
         standard_error=end.standard_error,
         evaluations=sum(s.evaluations for s in outcome.starts),
         circuits=sum(s.circuits for s in outcome.starts),
@@ -156,7 +156,7 @@ def _evidence(exact: ExactAnswer | None, end: SearchEnd, energy: float, norm: fl
         s_squared=facts.s_squared,
         exact_s_squared=None if exact is None else exact.s_squared,
         standard_error=end.standard_error,
-        measured_error=end.energy - exact_energy if exact_energy is not None and isinstance(problem.spec.evaluation, Shots) else None,
+        measured_error=end.energy - exact_energy if exact_energy is not None and problem.spec.evaluation.is_sampled else None,
     )
 
 
@@ -178,7 +178,7 @@ def _start_remarks(outcome: Outcome) -> tuple[str, ...]:
 
 def _pool_remark(problem: Problem) -> tuple[str, ...]:
     evaluation = problem.spec.evaluation
-    if not isinstance(problem.spec.ansatz, Adaptive) or isinstance(evaluation, Exact | Shots) or evaluation.gradient == "shift-rule":
+    if not isinstance(problem.spec.ansatz, Adaptive) or isinstance(evaluation, Exact) or evaluation.counts_gradients:
         return ()
     return ("The slopes of the pool are those of the simulation, as gradients are, and no circuits are counted for them.",)
 

@@ -13,7 +13,6 @@ from thalweg.arrays import FloatArray
 from thalweg.circuit.program import Program
 from thalweg.errors import Stopped
 from thalweg.estimate import FREE, Slopes
-from thalweg.evaluate import Shots
 from thalweg.exact.answer import ExactAnswer
 from thalweg.optimize.objective import CountedObjective, Progress, StopRules
 from thalweg.simulate.engine import Engine
@@ -168,16 +167,14 @@ class Course:
             raise Stopped(reason)
         return objective.best_parameters if np.isfinite(objective.best_energy) else start
 
-    def measured_slopes(self, program: Program, parameters: FloatArray, first: int) -> Slopes | None:
-        """The derivatives by the parameters from number `first` on as a device would measure them, counted; None where gradients are not.
+    def measured_slopes(self, program: Program, parameters: FloatArray, first: int) -> Slopes:
+        """The derivatives by the parameters from number `first` on as a device would measure them, counted.
 
         Raises Stopped at the time limit as well: there may be thousands of energies to measure.
         """
         problem = replace(self.problem, program=program)
         in_time = Watch(self.watch.stage, lambda: self._should_stop() or self._is_late, self.watch.warn)
         source = search_source(problem, self.engine(program), self._draws, in_time)
-        if not source.begins_by_simulation:
-            return None
         try:
             slopes = source.shifted_slopes(parameters, first)
         except Stopped:
@@ -226,7 +223,7 @@ class Course:
     @property
     def is_sampled(self) -> bool:
         """Whether energies carry statistical noise."""
-        return isinstance(self.problem.spec.evaluation, Shots)
+        return self.problem.spec.evaluation.is_sampled
 
     def record(self, end: SearchEnd) -> StartRecord:
         """Everything that was reported, and the end."""

@@ -63,8 +63,8 @@ class _Growing:
             if not course.steps:
                 self.first_slope = float(np.abs(slopes).max(initial=0.0))
             reason, smallest = self._reason_to_end(descent), np.full(slopes.size, SMALLEST_SLOPE)
-            if not reason:
-                slopes, smallest = self._as_measured(pool, descent, slopes, smallest)
+            if not reason and course.problem.spec.evaluation.counts_gradients:
+                slopes, smallest = self._as_measured(pool, descent, smallest)
             course.take_step(descent, added, float(np.abs(slopes).max(initial=0.0)))
             chosen = ansatz.choose(slopes, barred, smallest)
             reason = reason or self._reason_of_slopes(slopes, chosen, smallest)
@@ -82,8 +82,8 @@ class _Growing:
                 return descent.reason
             self.descents.append(descent)
 
-    def _as_measured(self, pool: Any, descent: Descent, slopes: FloatArray, smallest: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """The slopes of the pool as the evaluation gives them, and what each must exceed to count.
+    def _as_measured(self, pool: Any, descent: Descent, smallest: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """The slopes of the pool as a device would measure them, and what each must exceed to count.
 
         All operators are appended with the angle 0, where each leaves the others their slopes. Of N slopes that are nothing but noise the
         largest is about sigma sqrt(2 ln N) (Donoho and Johnstone 1994).
@@ -93,8 +93,6 @@ class _Growing:
         whole: Any = pool.grown(program, list(range(len(pool))))
         at = np.concatenate([descent.parameters, np.zeros(len(pool))])
         measured = self._course.measured_slopes(whole, at, program.n_parameters)
-        if measured is None:
-            return slopes, smallest
         if measured.variance is not None:
             smallest = np.maximum(smallest, np.sqrt(2.0 * np.log(max(len(pool), 2)) * measured.variance))
         return measured.gradient, smallest

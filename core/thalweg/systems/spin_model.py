@@ -35,11 +35,11 @@ class SpinModel(Options):
 
     def on_graph(self, graph: LatticeGraph) -> PauliExpansion:
         """H on the sites that `graph` returned."""
-        raise NotImplementedError
+        raise AssertionError(f"{type(self).__name__} defines no Hamiltonian")
 
     def convention(self) -> str:
         """The formula with its numbers, in one line: printed with every energy."""
-        raise NotImplementedError
+        raise AssertionError(f"{type(self).__name__} states no convention")
 
     def main_coupling(self) -> float:
         """The coupling that the energy unit is named after."""
